@@ -1,0 +1,81 @@
+"""Make, defend and use a quantitative infrared calibration.
+
+Every name is loaded when it is first used, so that ``import quant`` costs next to nothing.
+"""
+
+from importlib import import_module
+from typing import Any
+
+_HOME = {
+    "Analyte": "quant.spectra.reference_table",
+    "Calibration": "quant.model.calibration",
+    "CalibrationResult": "quant.calibration.result",
+    "ColumnOf": "quant.readers.reference_csv",
+    "CrossValidationResult": "quant.calibration.cross_validation_result",
+    "InspectionResult": "quant.inspection.inspect",
+    "PredictionResult": "quant.prediction.result",
+    "QuantError": "quant.errors",
+    "ReadingOptions": "quant.readers.options",
+    "Recipe": "quant.recipe.schema",
+    "ReferenceTable": "quant.spectra.reference_table",
+    "SampleSet": "quant.spectra.sample_set",
+    "SpectraSet": "quant.spectra.spectra_set",
+    "SpectralAxis": "quant.spectra.axis",
+    "ValidationResult": "quant.calibration.validate",
+    "calibrate": "quant.calibration.calibrate",
+    "cross_validate": "quant.calibration.cross_validation",
+    "inspect": "quant.inspection.inspect",
+    "load_model": "quant.model.storage",
+    "load_recipe": "quant.recipe.load",
+    "load_samples": "quant.recipe.load",
+    "pair_samples": "quant.spectra.sample_set",
+    "predict": "quant.prediction.predict",
+    "read_reference": "quant.readers.reference_csv",
+    "read_spectra": "quant.readers.read",
+    "save_model": "quant.model.storage",
+    "validate": "quant.calibration.validate",
+    "write_report": "quant.reports.report",
+}
+
+__all__ = [  # noqa: PLE0604 (the names are loaded by __getattr__)
+    "Analyte",
+    "Calibration",
+    "CalibrationResult",
+    "ColumnOf",
+    "CrossValidationResult",
+    "InspectionResult",
+    "PredictionResult",
+    "QuantError",
+    "ReadingOptions",
+    "Recipe",
+    "ReferenceTable",
+    "SampleSet",
+    "SpectraSet",
+    "SpectralAxis",
+    "ValidationResult",
+    "calibrate",
+    "cross_validate",
+    "inspect",
+    "load_model",
+    "load_recipe",
+    "load_samples",
+    "pair_samples",
+    "predict",
+    "read_reference",
+    "read_spectra",
+    "save_model",
+    "validate",
+    "write_report",
+]
+
+
+def __getattr__(name: str) -> Any:
+    if name not in _HOME:
+        raise AttributeError(f"module 'quant' has no attribute {name!r}; it has {', '.join(__all__)}")
+    value = getattr(import_module(_HOME[name]), name)
+    globals()[name] = value
+    return value
+
+
+def __dir__() -> list[str]:
+    return __all__

@@ -1,0 +1,1 @@
+"""Cross-validation, choice of factors, calibration and validation."""

@@ -1,0 +1,166 @@
+"""The whole way from a recipe to calibrations, cross-validated and, where samples were set apart, validated."""
+
+import platform
+from importlib.metadata import PackageNotFoundError, version
+
+import numpy as np
+
+from quant.arrays import FloatArray, IntArray
+from quant.calibration.cross_validation import cross_validate, factor_limit, fit_pipeline
+from quant.calibration.cross_validation_result import CrossValidationResult
+from quant.calibration.folds import make_folds
+from quant.calibration.limits import applicability_limits, degrees_of_freedom, interval_parts
+from quant.calibration.picture import picture_of
+from quant.calibration.result import AnalyteResult, CalibrationResult
+from quant.calibration.split import split_samples
+from quant.calibration.validate import regression_direction, validate
+from quant.estimator import Step
+from quant.model.calibration import Calibration
+from quant.prediction.applicability import acquisition_domain
+from quant.recipe.load import load_samples, load_validation_samples
+from quant.recipe.pipeline import axis_behind, build_method, build_steps
+from quant.recipe.schema import Recipe
+from quant.regression.method import Method
+from quant.spectra.sample_set import SampleSet
+from quant.statistics.figures import figures_of_merit
+
+TEST_SPECTRA = 3  # kept in the model: the samples with the lowest, middle and highest value
+
+
+def calibrate(
+    recipe: Recipe, samples: SampleSet | None = None, validation: SampleSet | None = None
+) -> CalibrationResult:
+    """Make one calibration for every analyte of a recipe.
+
+    Parameters
+    ----------
+    recipe : Recipe
+    samples, validation : SampleSet, optional
+        Samples at hand, instead of the files that the recipe names.
+
+    Returns
+    -------
+    CalibrationResult
+        One entry an analyte: the model, its cross-validation, its validation, and what pictures need.
+
+    Raises
+    ------
+    QuantError
+        Of many kinds; each message says what was found, what was expected and what to do.
+    """
+    everything = load_samples(recipe) if samples is None else samples
+    separate = load_validation_samples(recipe) if samples is None else validation
+    results = tuple(_calibrate_one(recipe, everything, separate, table.name) for table in recipe.analyte)
+    return CalibrationResult(
+        title=recipe.title,
+        recipe=recipe.text,
+        analytes=results,
+        spectra_without_values=everything.spectra_without_values,
+        values_without_spectra=_unused_values(everything, separate),
+    )
+
+
+def _unused_values(samples: SampleSet, separate: SampleSet | None) -> tuple[str, ...]:
+    """Values that found a spectrum neither among the standards nor among the validation samples."""
+    other = set(separate.sample_ids) if separate else set()
+    return tuple(sample for sample in samples.values_without_spectra if sample not in other)
+
+
+def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | None, name: str) -> AnalyteResult:
+    split = split_samples(recipe, samples, separate, name)
+    training = split.calibration
+    crossed = cross_validate(training, recipe, name)
+    factors, rule = _chosen(recipe, crossed)
+    axis, quantity = training.spectra.axis, training.spectra.quantity
+    unfitted = build_steps(recipe, axis, quantity)
+    axis_after = axis_behind(unfitted, axis)
+    most = factor_limit(recipe, make_folds(training, recipe.cross_validation), axis_after.size)
+    analyte, values = training.analyte(name)
+    steps, full, processed = fit_pipeline(training, values, unfitted, build_method(recipe, axis_after, most))
+    factors = min(factors, full.factor_counts_[-1])
+    model = _model(recipe, training, crossed, steps, full.with_factors(factors), factors, processed, name)
+    mean = training.mean_by_sample(processed)
+    fitted = model.method.predict(mean)
+    validated = validate(model, split.validation, kind=split.kind, how=split.how) if split.validation is not None else None
+    return AnalyteResult(
+        analyte=analyte.name,
+        unit=analyte.unit,
+        model=model,
+        factors=factors,
+        rule=rule,
+        n_samples=len(training),
+        n_spectra=len(training.spectra),
+        limits=model.limits,
+        uncertainty=model.uncertainty,
+        sample_ids=training.sample_ids,
+        reference=values,
+        fitted=fitted,
+        calibration=figures_of_merit(
+            fitted, values, direction=regression_direction(model), unit=analyte.unit, kind="RMSEC", n_factors=factors
+        ),
+        cross_validation=crossed,
+        validation=validated,
+        left_out=split.left_out,
+        picture=picture_of(model, training, full, axis_after, processed, values),
+    )
+
+
+def _chosen(recipe: Recipe, crossed: CrossValidationResult) -> tuple[int, str]:
+    """Return the number of factors and the rule behind it."""
+    asked = recipe.regression.factors
+    if not crossed.choices:
+        return crossed.factor_counts[-1], "a straight line"
+    if isinstance(asked, int):
+        return asked, "fixed in the recipe"
+    return crossed.choices[asked], asked.replace("_", " ")
+
+
+def _model(
+    recipe: Recipe,
+    training: SampleSet,
+    crossed: CrossValidationResult,
+    steps: list[Step],
+    method: Method,
+    factors: int,
+    processed: FloatArray,
+    name: str,
+) -> Calibration:
+    analyte, values = training.analyte(name)
+    freedom = degrees_of_freedom(method, len(training), factors)
+    spectra = training.spectra
+    rows = _test_rows(training, values)
+    position = crossed.factor_counts.index(factors)
+    return Calibration(
+        analyte=analyte,
+        axis=spectra.axis,
+        quantity=spectra.quantity,
+        reading=recipe.spectra.options().to_dict(),
+        domain=acquisition_domain(spectra.notes),
+        steps=tuple(steps),
+        method=method,
+        factors=factors,
+        n_samples=len(training),
+        limits=applicability_limits(crossed, factors, processed, freedom),
+        uncertainty=interval_parts(crossed, factors, training, analyte, freedom),
+        test_spectra=spectra.values[rows],
+        test_predictions=method.predict(processed[rows]),
+        figures={"RMSECV": float(crossed.rmsecv[position])},
+        recipe=recipe.text,
+        training=spectra.sources,
+        versions=_versions(),
+    )
+
+
+def _test_rows(training: SampleSet, values: FloatArray) -> IntArray:
+    """Rows of the first spectra of the samples with the lowest, middle and highest value."""
+    order = np.argsort(values, kind="stable")
+    samples = order[np.linspace(0, order.size - 1, TEST_SPECTRA).round().astype(int)]
+    return np.array([int(np.flatnonzero(training.sample_index == sample)[0]) for sample in samples])
+
+
+def _versions() -> dict[str, str]:
+    try:
+        own = version("quant")
+    except PackageNotFoundError:  # run from a checkout that is not installed
+        own = "not installed"
+    return {"quant": own, "numpy": np.__version__, "python": platform.python_version()}

@@ -1,0 +1,102 @@
+"""What calibrating leaves: everything that the report shows."""
+
+from dataclasses import dataclass, field
+
+from quant.arrays import FloatArray
+from quant.calibration.cross_validation_result import CrossValidationResult
+from quant.calibration.picture import Picture
+from quant.calibration.split import LeftOut
+from quant.calibration.validate import ValidationResult
+from quant.model.calibration import Calibration, Limits, Uncertainty
+from quant.result import Result, documented
+from quant.statistics.figures import Figures
+from quant.text_table import Row, format_rows
+
+NOT_PROVEN = "no validation samples: how it does on new material is not proven"
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class AnalyteResult(Result):
+    """One analyte's calibration with all that was found on the way."""
+
+    analyte: str = documented("Name of the analyte")
+    unit: str = documented("Unit of the analyte")
+    model: Calibration = field(metadata={"json": False})
+    factors: int = documented("Number of factors of the model")
+    rule: str = documented("The rule that chose it")
+    n_samples: int = documented("Calibration samples")
+    n_spectra: int = documented("Calibration spectra")
+    limits: Limits = documented("Limits of applicability")
+    uncertainty: Uncertainty = documented("What the intervals are made of")
+    sample_ids: tuple[str, ...] = documented("Calibration samples")
+    reference: FloatArray = documented("Their reference values", "unit of the analyte")
+    fitted: FloatArray = documented("Their fitted values", "unit of the analyte")
+    calibration: Figures = documented("Figures of merit of the fit")
+    cross_validation: CrossValidationResult = documented("Left-out predictions with every number of factors")
+    validation: ValidationResult | None = documented("Predictions of samples that took no part, or none")
+    left_out: tuple[LeftOut, ...] = documented("Samples left out, and why")
+    picture: Picture = documented("The numbers behind the pictures")
+
+    def rows(self) -> list[Row]:
+        """The few figures that matter first."""
+        crossed, position = self.cross_validation, self.cross_validation.factor_counts.index(self.factors)
+        rows: list[Row] = [
+            ("calibration samples", self.n_samples, f"({self.n_spectra} spectra)"),
+            ("range", f"{self.limits.lowest:g} to {self.limits.highest:g}", self.unit),
+            ("factors", self.factors, f"({self.rule})"),
+            ("RMSEC", self.calibration.rmse, self.unit),
+            ("SEC", self.calibration.sec, self.unit),
+            ("RMSECV", float(crossed.rmsecv[position]), self.unit),
+            ("Q²", float(crossed.q2[position]), ""),
+        ]
+        if self.validation is None:
+            return [*rows, ("validation", NOT_PROVEN, "")]
+        found = self.validation.figures
+        return [
+            *rows,
+            (self.validation.kind, found.n_samples, "samples"),
+            ("RMSEP", found.rmse, f"{self.unit} (95 %: {found.rmse_low:.3g} to {found.rmse_high:.3g})"),
+            ("bias", found.bias, f"{self.unit} {_significance(found)}"),
+            ("SEP", found.sep, self.unit),
+            ("R²", found.r2_determination, ""),
+            ("RPD", found.rpd, ""),
+        ]
+
+    def __str__(self) -> str:
+        """Heading, the main figures, what was left out."""
+        left_out = [f"left out: {item.sample} ({item.reason})" for item in self.left_out]
+        return "\n".join([f"Calibration of {self.analyte}", format_rows(self.rows()), *self.cross_validation.guard_notes, *left_out])
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class CalibrationResult(Result):
+    """All calibrations of one recipe."""
+
+    title: str = documented("Title of the recipe")
+    recipe: str = documented("The recipe as text")
+    analytes: tuple[AnalyteResult, ...] = documented("One entry an analyte")
+    spectra_without_values: tuple[str, ...] = documented("Samples with spectra but no row in the reference table")
+    values_without_spectra: tuple[str, ...] = documented("Samples in the reference table that have no spectrum")
+
+    def __getitem__(self, analyte: str) -> AnalyteResult:
+        """Return the result of an analyte by its name."""
+        for result in self.analytes:
+            if result.analyte == analyte:
+                return result
+        raise KeyError(f"No analyte {analyte!r}; there are {', '.join(r.analyte for r in self.analytes)}.")
+
+    @property
+    def model(self) -> Calibration:
+        """The model of the first analyte: of the only one, mostly."""
+        return self.analytes[0].model
+
+    def __str__(self) -> str:
+        """Title, then one block an analyte."""
+        return "\n\n".join([self.title, *map(str, self.analytes)])
+
+
+def _significance(figures: Figures) -> str:
+    test = figures.bias_test
+    if test is None:
+        return "(not tested)"
+    return f"({'significant' if test.significant else 'not significant'}, p = {test.p:.2g})"

@@ -1,0 +1,64 @@
+"""The command ``quant``: a table of commands, each loaded when it is called."""
+
+import sys
+from importlib import import_module
+from typing import Any
+
+import click
+
+from quant.errors import QuantError
+
+# Name, module, and the line that --help shows without loading the module.
+COMMANDS = {
+    "inspect": ("quant.cli.inspect", "Look over the spectra and reference values that a recipe names."),
+    "calibrate": ("quant.cli.calibrate", "Make, cross-validate and validate the calibrations of a recipe; write the report."),
+    "predict": ("quant.cli.predict", "Predict new spectra with a saved model."),
+    "recipe": ("quant.cli.recipe", "Print the keys a recipe may have: JSON schema, or defaults with comments."),
+}
+
+
+class LazyGroup(click.Group):
+    """A group that imports a command's module only when the command is called."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:  # noqa: ARG002 (click's signature)
+        """Return the commands in the order of a working day."""
+        return list(COMMANDS)
+
+    def get_command(self, ctx: click.Context, name: str) -> click.Command | None:  # noqa: ARG002 (click's signature)
+        """Load one command."""
+        if name not in COMMANDS:
+            return None
+        command: click.Command = import_module(COMMANDS[name][0]).command
+        return command
+
+    def format_commands(self, ctx: click.Context, formatter: click.HelpFormatter) -> None:  # noqa: ARG002
+        """List the commands without loading them."""
+        with formatter.section("Commands"):
+            formatter.write_dl([(name, line) for name, (_, line) in COMMANDS.items()])
+
+    def invoke(self, ctx: click.Context) -> Any:
+        """Run a command; an expected error is told in words and becomes an exit code."""
+        try:
+            return super().invoke(ctx)
+        except QuantError as error:
+            click.echo(f"{click.style('Error', fg='red', bold=True)}: {error}", err=True)
+            ctx.exit(int(error.exit_code))
+
+
+@click.group(cls=LazyGroup, context_settings={"help_option_names": ["-h", "--help"]})
+@click.version_option(package_name="quant", message="quant %(version)s")
+def cli() -> None:
+    """Make, defend and use a quantitative infrared calibration.
+
+    Exit codes: 0 done; 1 done, but the verdict is "not accepted"; 2 wrong usage or recipe; 3 unreadable data.
+    """
+
+
+def main() -> None:
+    """Run the command line."""
+    if hasattr(sys.stdout, "reconfigure"):  # cm⁻¹ and ± on consoles that default to another code page
+        sys.stdout.reconfigure(encoding="utf-8", errors="replace")
+        sys.stderr.reconfigure(encoding="utf-8", errors="replace")
+    cli(prog_name="quant")
+
+

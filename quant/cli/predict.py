@@ -1,0 +1,38 @@
+"""``quant predict``: the everyday command. Its path imports NumPy, click and the standard library only."""
+
+from pathlib import Path
+
+import click
+
+from quant.errors import ExitCode
+from quant.files import write_text
+from quant.model.storage import load_model
+from quant.prediction.predict import predict
+from quant.readers.options import ReadingOptions
+from quant.readers.read import read_spectra
+from quant.spectra.sample_ids import expand_ids
+
+
+@click.command("predict")
+@click.argument("model", type=click.Path(path_type=Path))
+@click.argument("files", nargs=-1, required=True)
+@click.option("--out", "table", type=click.Path(path_type=Path), help="Table to write: .csv, or .json.")
+@click.option("--samples", help='Only these samples: IDs and ranges, such as "51..60" or "A3, A7".')
+@click.pass_context
+def command(ctx: click.Context, model: Path, files: tuple[str, ...], table: Path | None, samples: str | None) -> None:
+    """Predict the spectra in FILES with a saved MODEL.
+
+    FILES are read as the calibration's own files were. The exit code is 1 if the model does not apply to a sample.
+    """
+    if table is not None and table.suffix.lower() not in (".csv", ".json"):
+        raise click.UsageError(f"--out {table}: expected a name that ends in .csv or .json.")
+    calibration = load_model(model)
+    spectra = read_spectra(list(files), ReadingOptions.from_dict(calibration.reading))
+    if samples is not None:
+        spectra = spectra.select(expand_ids(samples.split(",")))
+    result = predict(calibration, spectra)
+    click.echo(str(result))
+    if table is not None:
+        write_text(table, result.to_json() + "\n" if table.suffix.lower() == ".json" else result.to_csv())
+        click.echo(f"\ntable   {table}")
+    ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))

@@ -1,0 +1,19 @@
+"""``quant recipe``."""
+
+import json
+from importlib.resources import files
+
+import click
+
+from quant.recipe.schema import Recipe
+
+
+@click.command("recipe")
+@click.option("--schema", "what", flag_value="schema", default=True, help="JSON schema, for editors that complete and check keys.")
+@click.option("--defaults", "what", flag_value="defaults", help="Every default, with comments.")
+def command(what: str) -> None:
+    """Print what a recipe may say."""
+    if what == "defaults":
+        click.echo(files("quant.recipe").joinpath("defaults.toml").read_text("utf-8").rstrip())
+    else:
+        click.echo(json.dumps(Recipe.model_json_schema(), indent=2, ensure_ascii=False))

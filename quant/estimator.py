@@ -1,0 +1,313 @@
+"""The scikit-learn contract, kept without importing scikit-learn.
+
+Everyday prediction imports NumPy, click and the standard library only. Steps and regressions therefore obey the
+contract of scikit-learn's estimators (and pass its checks) by way of this small base; the library itself is imported
+only by those of its own functions that ask for tags, and when an unfitted estimator has to raise its error.
+Not supported: `set_output` and metadata routing.
+"""
+
+import inspect
+from typing import Any, ClassVar, Self, TypeVar
+
+import numpy as np
+from numpy.typing import ArrayLike
+
+from quant.arrays import AnyArray, FloatArray
+from quant.errors import NotEnoughDataError, ParameterError
+
+EstimatorType = TypeVar("EstimatorType", bound="Estimator")
+
+
+class Estimator:
+    """Parameters by introspection, input checks in scikit-learn's wording, the common tags."""
+
+    n_features_in_: int
+    estimator_type: ClassVar[str | None] = None
+    needs_y: ClassVar[bool] = False
+    positive_only: ClassVar[bool] = False
+    fitted: ClassVar[tuple[str, ...]] = ()  # names of what `fit` learns and a saved model has to keep
+
+    @classmethod
+    def parameter_names(cls) -> list[str]:
+        """Names of the constructor's parameters, sorted."""
+        return sorted(name for name in inspect.signature(cls).parameters)
+
+    def get_params(self, deep: bool = True) -> dict[str, Any]:  # noqa: ARG002, FBT001 (the contract's signature)
+        """Return the constructor's parameters as they were given."""
+        return {name: getattr(self, name) for name in self.parameter_names()}
+
+    def set_params(self, **params: Any) -> Self:
+        """Set parameters by name.
+
+        Raises
+        ------
+        ParameterError
+            A name that the constructor does not have.
+        """
+        allowed = self.parameter_names()
+        for name in params:
+            if name not in allowed:
+                raise ParameterError(
+                    f"Invalid parameter {name!r} for estimator {self!r}. Valid parameters are: {allowed!r}."
+                )
+        for name, value in params.items():
+            setattr(self, name, value)
+        return self
+
+    def state(self) -> tuple[dict[str, Any], dict[str, AnyArray]]:
+        """Return all that is needed to come back: plain values, and arrays, by name."""
+        self.check_fitted()
+        names = (*self.parameter_names(), "n_features_in_", *self.fitted)
+        values = {name: getattr(self, name) for name in names}
+        arrays = {name: value for name, value in values.items() if isinstance(value, np.ndarray)}
+        return {name: _plain(value) for name, value in values.items() if name not in arrays}, arrays
+
+    @classmethod
+    def from_state(cls, parameters: dict[str, Any], arrays: dict[str, AnyArray]) -> Self:
+        """Return the fitted estimator that `state` described."""
+        values = {**parameters, **arrays}
+        estimator = cls(**{name: values.pop(name) for name in cls.parameter_names()})
+        for name, value in values.items():
+            setattr(estimator, name, value)
+        return estimator
+
+    def __repr__(self) -> str:
+        """Show the parameters that differ from their defaults."""
+        changed = [
+            f"{name}={_brief(getattr(self, name))}"
+            for name, parameter in inspect.signature(type(self)).parameters.items()
+            if not _same(getattr(self, name), parameter.default)
+        ]
+        return f"{type(self).__name__}({', '.join(changed)})"
+
+    def __sklearn_tags__(self) -> Any:
+        """Describe the estimator to scikit-learn."""
+        from sklearn.utils import InputTags, RegressorTags, Tags, TargetTags, TransformerTags  # deferred: start-up
+
+        return Tags(
+            estimator_type=self.estimator_type,
+            target_tags=TargetTags(required=self.needs_y),
+            transformer_tags=TransformerTags() if hasattr(self, "transform") else None,
+            regressor_tags=RegressorTags() if self.estimator_type == "regressor" else None,
+            input_tags=InputTags(positive_only=self.positive_only),
+        )
+
+    def check_fit(self, X: ArrayLike) -> FloatArray:
+        """Check training spectra, note their width (and names of columns), return them as float64 of shape (n, k)."""
+        names = _column_names(X)
+        matrix = check_spectra(X)
+        self.n_features_in_ = matrix.shape[1]
+        if names is not None:
+            self.feature_names_in_ = names
+        elif hasattr(self, "feature_names_in_"):
+            del self.feature_names_in_
+        return matrix
+
+    def check_fitted(self) -> None:
+        """Raise scikit-learn's NotFittedError when `fit` has not been called."""
+        if not hasattr(self, "n_features_in_"):
+            from sklearn.exceptions import NotFittedError  # deferred: start-up
+
+            raise NotFittedError(
+                f"This {type(self).__name__} instance is not fitted yet. Call 'fit' with appropriate arguments first."
+            )
+
+    def check_new(self, X: ArrayLike) -> FloatArray:
+        """Check spectra that come after fitting: same width, same names of columns."""
+        self.check_fitted()
+        names = _column_names(X)
+        known = getattr(self, "feature_names_in_", None)
+        if names is not None and known is not None and not np.array_equal(names, known):
+            raise ParameterError(_names_differ(names, known))
+        matrix = check_spectra(X)
+        if matrix.shape[1] != self.n_features_in_:
+            raise ParameterError(
+                f"X has {matrix.shape[1]} features, but {type(self).__name__} is expecting "
+                f"{self.n_features_in_} features as input."
+            )
+        return matrix
+
+
+class Step(Estimator):
+    """A preprocessing step: `fit` learns, `transform` applies.
+
+    `axis` (where a step has that parameter) holds the axis values of its input; `axis_after` gives those of its output.
+    A step that learns from other spectra has `learns = True`, and its `fit` takes `sample_weight`.
+    """
+
+    name: ClassVar[str]
+    learns: ClassVar[bool] = False
+
+    def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # noqa: ARG002 (the contract's signature)
+        """Note the width of the spectra; steps that learn more override this."""
+        self.check_fit(X)
+        return self
+
+    def transform(self, X: ArrayLike) -> FloatArray:
+        """Apply the step to spectra of shape (n, k)."""
+        raise NotImplementedError
+
+    def fit_transform(self, X: ArrayLike, y: ArrayLike | None = None, **fit_params: Any) -> FloatArray:
+        """Fit, then transform the same spectra."""
+        return self.fit(X, y, **fit_params).transform(X)
+
+    def axis_after(self, axis: FloatArray) -> FloatArray:
+        """Axis values of the output, given those of the input, both of shape (points,). [axis unit]"""
+        return axis
+
+
+class Regressor(Estimator):
+    """A regression of one reference value on spectra."""
+
+    estimator_type = "regressor"
+    needs_y = True
+
+    def predict(self, X: ArrayLike) -> FloatArray:
+        """Predict, shape (n,)."""
+        raise NotImplementedError
+
+    def score(self, X: ArrayLike, y: ArrayLike, sample_weight: ArrayLike | None = None) -> float:
+        """Return 1 − SSE/SST of `predict(X)` about the (weighted) mean of y; NaN if y is constant."""
+        predicted = self.predict(X)
+        values = check_target(y, predicted.size)
+        weight = check_weights(sample_weight, predicted.size)
+        total = weight @ (values - np.average(values, weights=weight)) ** 2
+        return 1.0 - float(weight @ (values - predicted) ** 2 / total) if total > 0 else float("nan")
+
+    def check_fit_pair(self, X: ArrayLike, y: ArrayLike | None) -> tuple[FloatArray, FloatArray]:
+        """Check training spectra and their reference values, shapes (n, k) and (n,)."""
+        if y is None:
+            raise ParameterError(
+                f"This {type(self).__name__} estimator requires y to be passed, but the target y is None."
+            )
+        matrix = self.check_fit(X)
+        return matrix, check_target(y, matrix.shape[0])
+
+
+def check_spectra(X: ArrayLike) -> FloatArray:
+    """Return spectra as float64 of shape (n, k), refusing what scikit-learn's `check_array` refuses, in its words."""
+    if hasattr(X, "toarray"):
+        raise TypeError("Sparse data was passed for X, but dense data is required. Use '.toarray()' to convert it.")
+    matrix: AnyArray = np.asarray(X)
+    if np.iscomplexobj(matrix):
+        raise ParameterError(f"Complex data not supported\n{matrix}\n")
+    if matrix.ndim != 2:
+        raise ParameterError(
+            f"Expected 2D array, got {matrix.ndim}D array instead (shape {matrix.shape}). Reshape your data either "
+            "using array.reshape(-1, 1) if it has one point a spectrum, or array.reshape(1, -1) if it is one spectrum."
+        )
+    try:
+        result = matrix.astype(np.float64, copy=False)
+    except TypeError as problem:  # an object that is no number: scikit-learn's checks expect a TypeError
+        raise TypeError(f"{problem}; the argument must be a string or a number") from problem
+    for size, what in zip(result.shape, ("sample", "feature"), strict=True):
+        if size < 1:
+            raise NotEnoughDataError(
+                f"Found array with 0 {what}(s) (shape={result.shape}) while a minimum of 1 is required."
+            )
+    _refuse_infinite("X", result)
+    return result
+
+
+def check_target(y: ArrayLike, n_samples: int) -> FloatArray:
+    """Return reference values as float64 of shape (n_samples,)."""
+    values: AnyArray = np.asarray(y)
+    if np.iscomplexobj(values):
+        raise ParameterError(f"Complex data not supported\n{values}\n")
+    if values.ndim == 2 and values.shape[1] == 1:
+        import warnings
+
+        from sklearn.exceptions import DataConversionWarning  # deferred: start-up
+
+        warnings.warn(
+            "A column-vector y was passed when a 1d array was expected. Please change the shape of y to (n_samples,).",
+            DataConversionWarning,
+            stacklevel=3,
+        )
+        values = values.ravel()
+    if values.ndim != 1:
+        raise ParameterError(f"y should be a 1d array, got an array of shape {values.shape} instead.")
+    result = values.astype(np.float64)
+    if result.size != n_samples:
+        raise ParameterError(f"Found input variables with inconsistent numbers of samples: {[n_samples, result.size]}")
+    _refuse_infinite("y", result)
+    return result
+
+
+def check_weights(sample_weight: ArrayLike | None, n_samples: int) -> FloatArray:
+    """Return non-negative weights of shape (n_samples,), all one by default.
+
+    Raises
+    ------
+    ParameterError
+        Another shape, a negative or non-finite weight, or none above zero.
+    """
+    if sample_weight is None:
+        return np.ones(n_samples)
+    weight = np.asarray(sample_weight, dtype=np.float64)
+    if weight.shape != (n_samples,):
+        raise ParameterError(f"sample_weight.shape == {weight.shape}, expected {(n_samples,)}!")
+    if not np.isfinite(weight).all() or (weight < 0).any():
+        raise ParameterError(
+            f"sample_weight runs from {weight.min():g} to {weight.max():g}; expected finite numbers, none below zero."
+        )
+    if not (weight > 0).any():
+        raise ParameterError("All weights in sample_weight are zero; at least one has to be above zero.")
+    return weight
+
+
+def unfitted_copy(estimator: EstimatorType) -> EstimatorType:
+    """Return a new estimator with the same parameters and nothing learnt."""
+    return type(estimator)(**estimator.get_params())
+
+
+def _refuse_infinite(name: str, values: FloatArray) -> None:
+    if np.isfinite(values).all():
+        return
+    kind = "NaN" if np.isnan(values).any() else "infinity or a value too large for dtype('float64')"
+    bad = ~np.isfinite(values)
+    rows = np.flatnonzero(bad.reshape(values.shape[0], -1).any(axis=1))
+    raise ParameterError(
+        f"Input {name} contains {kind}: {np.count_nonzero(bad)} value(s) in {rows.size} row(s), the first of them "
+        f"{rows[:5].tolist()} (counted from 0). Leave the points or spectra concerned out first."
+    )
+
+
+def _column_names(X: ArrayLike) -> AnyArray | None:
+    columns = getattr(X, "columns", None)
+    if columns is None:
+        return None
+    names = np.asarray(columns, dtype=object)
+    return names if names.size and all(isinstance(name, str) for name in names) else None
+
+
+def _names_differ(names: AnyArray, known: AnyArray) -> str:
+    unseen, missing = sorted(set(names) - set(known)), sorted(set(known) - set(names))
+    text = "The feature names should match those that were passed during fit.\n"
+    if unseen:
+        text += "Feature names unseen at fit time:\n" + "".join(f"- {name}\n" for name in unseen[:5])
+    if missing:
+        text += "Feature names seen at fit time, yet now missing:\n" + "".join(f"- {name}\n" for name in missing[:5])
+    if not unseen and not missing:
+        text += "Feature names must be in the same order as they were in fit.\n"
+    return text
+
+
+def _plain(value: object) -> object:
+    """Turn NumPy's scalars, as a grid of parameters may hold them, into Python's, so that they can go into JSON."""
+    return value.item() if isinstance(value, np.generic) else value
+
+
+def _brief(value: object) -> str:
+    if isinstance(value, np.ndarray) and value.ndim == 1 and value.size > 6:
+        return f"<{value.size} values from {value[0]:g} to {value[-1]:g}>"
+    return repr(value)
+
+
+def _same(value: object, default: object) -> bool:
+    if value is default:
+        return True
+    try:
+        return bool(value == default)
+    except ValueError:  # arrays have no single truth
+        return False

@@ -1,0 +1,95 @@
+"""Reading within limits and writing whole or not at all."""
+
+import hashlib
+import os
+import tempfile
+from collections.abc import Iterator
+from contextlib import contextmanager
+from pathlib import Path
+from typing import BinaryIO, cast
+
+from quant.errors import FileFormatError
+
+LARGEST_FILE = 512 * 2**20  # bytes; a spectra file beyond this is a mistake, not a measurement
+
+
+def read_bytes(path: str | Path, limit: int = LARGEST_FILE) -> bytes:
+    """Return the content of a file.
+
+    Raises
+    ------
+    FileFormatError
+        No such file, a folder, not readable, empty, or larger than `limit` bytes.
+    """
+    file = Path(path)
+    try:
+        size = file.stat().st_size
+        if size > limit:
+            raise FileFormatError(file, f"{size / 2**20:.0f} MiB; expected at most {limit / 2**20:.0f} MiB. Split the file.")
+        content = file.read_bytes()
+    except FileFormatError:
+        raise
+    except FileNotFoundError:
+        raise FileFormatError(file, "no such file. Check the path (recipes count paths from their own folder).") from None
+    except OSError as problem:
+        raise FileFormatError(file, f"cannot be read ({problem.strerror}); expected a readable file.") from problem
+    if not content:
+        raise FileFormatError(file, "the file is empty; expected spectra or values. Export it again.")
+    return content
+
+
+def fingerprint(content: bytes) -> str:
+    """Return the SHA-256 of some bytes as hexadecimal text."""
+    return hashlib.sha256(content).hexdigest()
+
+
+def decode_text(path: str | Path, content: bytes) -> str:
+    """Return text from bytes: UTF-8 (a byte-order mark is dropped), UTF-16 with a mark, else Latin-1.
+
+    Raises
+    ------
+    FileFormatError
+        The bytes are no text (they hold NUL characters).
+    """
+    if content[:2] in (b"\xff\xfe", b"\xfe\xff"):
+        return content.decode("utf-16", errors="replace")
+    try:
+        text = content.decode("utf-8-sig")
+    except UnicodeDecodeError:
+        text = content.decode("latin-1")  # every byte has a meaning there, so this cannot fail
+    if "\x00" in text:
+        raise FileFormatError(path, "binary content; expected a text file. Export the spectrum as JCAMP-DX or text.")
+    return text
+
+
+@contextmanager
+def whole_file(path: str | Path) -> Iterator[BinaryIO]:
+    """Write a file whole or not at all: to a neighbour first, then renamed over the target.
+
+    Whatever goes wrong before the end leaves the old file as it was.
+    """
+    target = Path(path)
+    target.parent.mkdir(parents=True, exist_ok=True)
+    descriptor, name = tempfile.mkstemp(prefix=f".{target.name}.", dir=target.parent)
+    try:
+        with os.fdopen(descriptor, "wb") as stream:
+            yield cast(BinaryIO, stream)
+            stream.flush()
+            os.fsync(stream.fileno())
+        Path(name).chmod(0o666 & ~_umask())
+        Path(name).replace(target)
+    except BaseException:
+        Path(name).unlink(missing_ok=True)
+        raise
+
+
+def write_text(path: str | Path, text: str) -> None:
+    """Write UTF-8 text whole or not at all."""
+    with whole_file(path) as stream:
+        stream.write(text.encode("utf-8"))
+
+
+def _umask() -> int:
+    current = os.umask(0)
+    os.umask(current)
+    return current

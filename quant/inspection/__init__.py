@@ -1,0 +1,1 @@
+"""What was read, how it pairs, and what is wrong with it."""

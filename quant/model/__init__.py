@@ -1,0 +1,1 @@
+"""The saved calibration: numbers and text, read back with NumPy alone."""

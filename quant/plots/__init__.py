@@ -1,0 +1,1 @@
+"""The only folder that knows matplotlib: a result goes in, axes come back."""

@@ -1,0 +1,1 @@
+"""From new spectra to values with uncertainty and applicability."""

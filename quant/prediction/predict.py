@@ -1,0 +1,149 @@
+"""From spectra to values, each with its uncertainty and a statement whether the model applies."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from quant.arrays import FloatArray, IntArray
+from quant.model.calibration import Calibration
+from quant.prediction.applicability import check_acquisition, judge
+from quant.prediction.result import Prediction, PredictionResult
+from quant.regression.band_area import BandArea
+from quant.spectra.sample_set import mean_by_sample
+from quant.spectra.spectra_set import SpectraSet
+from quant.statistics.intervals import NOT_RESOLVABLE
+
+NOT_STATED = "no laboratory error stated"
+
+@dataclass(frozen=True, eq=False)
+class Evaluation:
+    """What a model says of samples, as arrays of shape (n_samples,)."""
+
+    value: FloatArray
+    standard_error: FloatArray
+    low: FloatArray
+    high: FloatArray
+    leverage: FloatArray
+    residual: FloatArray
+    spread: FloatArray  # NaN for single spectra
+    count: IntArray
+
+
+def predict(model: Calibration, spectra: SpectraSet) -> PredictionResult:
+    """Predict every sample of a set of spectra.
+
+    Spectra that share a sample ID are averaged after preprocessing.
+
+    Parameters
+    ----------
+    model : Calibration
+    spectra : SpectraSet
+        On the model's axis (in either direction), or on another if the model's recipe allows resampling.
+
+    Raises
+    ------
+    AxisMismatchError, QuantityError, AcquisitionMismatchError
+        The spectra were not recorded as the calibration's were.
+    """
+    check_acquisition(model, spectra)
+    aligned = spectra.on_axis(model.axis, resample=bool(model.reading.get("resample", False)))
+    samples = list(dict.fromkeys(aligned.sample_ids))
+    number = {sample: i for i, sample in enumerate(samples)}
+    index = np.array([number[sample] for sample in aligned.sample_ids], dtype=np.intp)
+    found = evaluate(model, model.process(aligned.values), index, len(samples))
+    remarks = [_remarks(model, aligned, np.flatnonzero(index == i)) for i in range(len(samples))]
+    rows = tuple(_row(model, sample, found, i, remarks[i]) for i, sample in enumerate(samples))
+    return PredictionResult(model=str(model), predictions=rows)
+
+
+def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_samples: int) -> Evaluation:
+    """Evaluate a model on processed spectra.
+
+    Parameters
+    ----------
+    model : Calibration
+    processed : array of shape (n_spectra, n_points_after)
+        Spectra after `Calibration.process`.
+    index : array of int, shape (n_spectra,)
+        The sample each spectrum belongs to.
+    n_samples : int
+    """
+    method, known = model.method, model.uncertainty
+    mean = mean_by_sample(processed, index, n_samples)
+    count = np.bincount(index, minlength=n_samples)
+    value, leverage = method.predict(mean), method.leverage_each(mean)[-1]
+    residual = mean_by_sample(method.residual_each(processed)[-1], index, n_samples)
+    extra = _fewer_replicates(model, count)
+    if isinstance(method, BandArea):
+        inverted = method.inverse_interval(method.signals(mean), known.t)
+        error, low, high = inverted.standard_error, inverted.low, inverted.high
+        widen = np.sqrt(1 + extra / error**2)
+        low, high, error = value - (value - low) * widen, value + (high - value) * widen, error * widen
+    else:
+        error = np.sqrt(known.s0**2 * (1 + leverage) + extra)
+        low, high = value - known.t * error, value + known.t * error
+    deviation = (method.predict(processed) - value[index]) ** 2
+    with np.errstate(invalid="ignore", divide="ignore"):
+        spread = np.sqrt(mean_by_sample(deviation, index, n_samples) * count / (count - 1))
+    return Evaluation(value, error, low, high, leverage, residual, np.where(count > 1, spread, np.nan), count)
+
+
+def _fewer_replicates(model: Calibration, count: IntArray) -> FloatArray:
+    """Variance to add where a sample has fewer spectra than the calibration's samples had. [(unit of the analyte)²]"""
+    known = model.uncertainty
+    if known.replicate_sd is None:
+        return np.zeros(count.size)
+    return known.replicate_sd**2 * np.maximum(1 / count - 1 / known.replicates, 0.0)
+
+
+def true_value_interval(model: Calibration, value: float, error: float, low: float, high: float) -> tuple[float, float] | str:
+    """Return the 95 % interval of the true value, or why there is none.
+
+    The laboratory variance is subtracted only if it is at most half of the variance s0² it is part of (for band area, of
+    the squared standard error): beyond that the difference of two estimates says nothing.
+    """
+    laboratory = model.uncertainty.laboratory_error
+    if laboratory is None:
+        return NOT_STATED
+    base = error**2 if isinstance(model.method, BandArea) else model.uncertainty.s0**2
+    if laboratory**2 > base / 2:
+        return NOT_RESOLVABLE
+    share = float(np.sqrt(1 - laboratory**2 / error**2))
+    return value - (value - low) * share, value + (high - value) * share
+
+
+def _row(model: Calibration, sample: str, found: Evaluation, i: int, remarks: tuple[str, ...]) -> Prediction:
+    value, error, low, high = (float(a[i]) for a in (found.value, found.standard_error, found.low, found.high))
+    residual, leverage = float(found.residual[i]), float(found.leverage[i])
+    verdict = judge(model.limits, residual=residual, leverage=leverage, value=value, standard_error=error)
+    true = true_value_interval(model, value, error, low, high)
+    spread = float(found.spread[i])
+    return Prediction(
+        sample=sample,
+        analyte=model.analyte.name,
+        value=value,
+        unit=model.analyte.unit,
+        standard_error=error,
+        low=low,
+        high=high,
+        true_low=None if isinstance(true, str) else true[0],
+        true_high=None if isinstance(true, str) else true[1],
+        true_note=true if isinstance(true, str) else "",
+        applicability=verdict.verdict,
+        reasons=verdict.reasons,
+        residual=residual / model.limits.residual_warn,
+        leverage=leverage / model.limits.leverage_warn,
+        n_spectra=int(found.count[i]),
+        spread=None if np.isnan(spread) else spread,
+        remarks=remarks,
+        model_state=model.state.name,
+    )
+
+
+def _remarks(model: Calibration, spectra: SpectraSet, rows: Sequence[int] | IntArray) -> tuple[str, ...]:
+    notes = [spectra.notes[i] for i in rows]
+    found = [f"{note} not stated" for note in model.domain if not all(row.get(note) for row in notes)]
+    if any("resampled" in row for row in notes):
+        found.append("resampled onto the model's axis")
+    return tuple(found)

@@ -1,0 +1,86 @@
+"""The table that predicting leaves."""
+
+import csv
+import io
+from dataclasses import dataclass
+
+from quant.prediction.applicability import NOT_APPLICABLE
+from quant.result import Result, documented
+from quant.text_table import format_columns
+
+
+@dataclass(frozen=True, kw_only=True)
+class Prediction(Result):
+    """One analyte in one sample."""
+
+    sample: str = documented("Sample ID")
+    analyte: str = documented("Name of the analyte")
+    value: float = documented("Predicted value, mean over replicates", "unit of the analyte")
+    unit: str = documented("Unit of value, standard error and intervals")
+    standard_error: float = documented("Standard error of the value against a new reference result", "unit of the analyte")
+    low: float = documented("Lower end of the 95 % interval for a new reference result", "unit of the analyte")
+    high: float = documented("Upper end of it", "unit of the analyte")
+    true_low: float | None = documented("Lower end of the 95 % interval for the true value, where it can be told", "unit of the analyte")
+    true_high: float | None = documented("Upper end of it", "unit of the analyte")
+    true_note: str = documented("Why there is no interval for the true value, or empty")
+    applicability: str = documented("applicable, warning, or not applicable: then the value must not be used")
+    reasons: tuple[str, ...] = documented("Why not plainly applicable")
+    residual: float = documented("Residual spectrum as a multiple of its warning limit")
+    leverage: float = documented("Leverage as a multiple of its warning limit")
+    n_spectra: int = documented("Number of spectra averaged")
+    spread: float | None = documented("Standard deviation of the predictions of the replicates", "unit of the analyte")
+    remarks: tuple[str, ...] = documented("What else should be known of this result")
+    model_state: str = documented("State of the model: draft, approved, provisional or retired")
+
+
+@dataclass(frozen=True, kw_only=True)
+class PredictionResult(Result):
+    """Predictions of all samples by one model."""
+
+    model: str = documented("The model in one line")
+    predictions: tuple[Prediction, ...] = documented("One entry a sample, in the order read")
+
+    @property
+    def accepted(self) -> bool:
+        """True if the model applies to every sample."""
+        return all(row.applicability != NOT_APPLICABLE for row in self.predictions)
+
+    def __getitem__(self, sample: str) -> Prediction:
+        """Return the prediction of a sample by its ID."""
+        for row in self.predictions:
+            if row.sample == sample:
+                return row
+        raise KeyError(f"No sample {sample!r}; there are {', '.join(row.sample for row in self.predictions)}.")
+
+    def __str__(self) -> str:
+        """A table: sample, value, standard error, 95 % interval, applicability; then the reasons."""
+        header = ("sample", "value", "unit", "std error", "95 % from", "to", "applies?")
+        table = [
+            (row.sample, _shown(row.value, row), row.unit, _shown(row.standard_error, row), _shown(row.low, row), _shown(row.high, row),
+             row.applicability)
+            for row in self.predictions
+        ]
+        lines = [self.model, format_columns(header, table)]
+        lines += [f"{row.sample}: {'; '.join(row.reasons + row.remarks)}" for row in self.predictions if row.reasons or row.remarks]
+        return "\n".join(lines)
+
+    def to_csv(self) -> str:
+        """Return CSV text: a header of the documented keys, one line a sample."""
+        stream = io.StringIO()
+        writer: csv.DictWriter[str] | None = None
+        for row in self.predictions:
+            cells = {key: "; ".join(value) if isinstance(value, list) else value for key, value in row.to_dict().items()}
+            if writer is None:
+                writer = csv.DictWriter(stream, list(cells), lineterminator="\n")
+                writer.writeheader()
+            writer.writerow(cells)
+        return stream.getvalue()
+
+
+def _shown(value: float, row: Prediction) -> str:
+    """Round to a tenth of the standard error's leading digit: digits beyond that say nothing."""
+    digits = 0
+    error = abs(row.standard_error)
+    while 0 < error * 10**digits < 10 and digits < 12:  # two significant digits of the standard error
+        digits += 1
+    return f"{value:.{digits}f}"

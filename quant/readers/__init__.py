@@ -1,0 +1,1 @@
+"""One file format, one file; the registry is a plain table."""

@@ -1,0 +1,130 @@
+"""What a file calls its axis and its ordinate, and what the reading options add."""
+
+import re
+from collections.abc import Iterator
+from pathlib import Path
+
+import numpy as np
+
+from quant.arrays import FloatArray
+from quant.errors import AxisMismatchError, FileFormatError, QuantityError
+from quant.readers.options import ReadingOptions
+from quant.spectra.sample_ids import notes_from_name
+from quant.units import axis_unit_named, plain_word
+
+# Written names of ordinates, after `plain_word` and without "%" and "percent".
+_QUANTITY_WORDS = {
+    "absorbance": "absorbance",
+    "absorbanceunits": "absorbance",
+    "abs": "absorbance",
+    "au": "absorbance",
+    "a": "absorbance",
+    "transmittance": "transmittance",
+    "transmission": "transmittance",
+    "t": "transmittance",
+    "reflectance": "reflectance",
+    "r": "reflectance",
+    "log1/r": "log_reflectance",
+    "log101/r": "log_reflectance",
+    "logreflectance": "log_reflectance",
+    "arbitrary": "arbitrary",
+    "arbitraryunits": "arbitrary",
+    "kubelka-munk": "arbitrary",
+}
+_FRACTIONS = ("transmittance", "reflectance")
+LARGEST_FRACTION = 1.5  # a transmittance above this can only be percent
+LARGEST_MEAN_ABSORBANCE = 5.0  # no spectrometer measures this on average
+
+
+def quantity_named(text: str) -> str | None:
+    """Return the ordinate that `text` names, as the option ``quantity`` would give it, or None.
+
+    >>> quantity_named("%T"), quantity_named("LOG(1/R)"), quantity_named("counts")
+    ('percent_transmittance', 'log_reflectance', None)
+    """
+    word = plain_word(text)
+    plain = word.replace("percent", "").replace("%", "")
+    quantity = _QUANTITY_WORDS.get(plain)
+    if plain == word or quantity is None:
+        return quantity
+    return f"percent_{quantity}" if quantity in _FRACTIONS else None
+
+
+def axis_unit_in(heading: str) -> str | None:
+    """Return the axis unit in a column's heading such as ``wavelength (nm)``, or None."""
+    return next(filter(None, map(axis_unit_named, _parts(heading))), None)
+
+
+def quantity_in(heading: str) -> str | None:
+    """Return the ordinate named in a column's heading such as ``Transmittance [%]``, or None."""
+    return next(filter(None, map(quantity_named, _parts(heading))), None)
+
+
+def _parts(heading: str) -> Iterator[str]:
+    """Yield the whole heading, what is inside its brackets, what is outside, and its single words."""
+    yield heading
+    yield from re.findall(r"[(\[]([^)\]]*)[)\]]", heading)
+    yield re.sub(r"[(\[][^)\]]*[)\]]", "", heading)
+    yield from re.split(r"[\s,_]+", heading)
+
+
+def agreed_axis_unit(path: Path, found: str | None, options: ReadingOptions) -> str:
+    """Return the axis unit: the file's own, else the one stated, else "point".
+
+    Raises
+    ------
+    AxisMismatchError
+        The file gives one unit and the options another.
+    """
+    if found is not None and options.axis_unit not in (None, found):
+        raise AxisMismatchError(
+            f"{path}: the file gives its axis in {found!r}, but axis_unit = {options.axis_unit!r} is stated. "
+            "Leave axis_unit out, or read this file apart."
+        )
+    return found or options.axis_unit or "point"
+
+
+def agreed_quantity(path: Path, found: str | None, options: ReadingOptions) -> str | None:
+    """Return the ordinate: the one stated, else the file's own, else None; percent and fraction may override each other.
+
+    Raises
+    ------
+    QuantityError
+        The file names one ordinate and the options another.
+    """
+    stated = options.quantity
+    if stated is None:
+        return found
+    if found not in (None, "arbitrary") and stated.removeprefix("percent_") != str(found).removeprefix("percent_"):
+        raise QuantityError(
+            f"{path}: the file names its ordinate {found!r}, but quantity = {stated!r} is stated. "
+            "Leave quantity out, or read this file apart."
+        )
+    return stated
+
+
+def as_quantity(path: Path, values: FloatArray, quantity: str | None) -> tuple[FloatArray, str]:
+    """Return ordinates and what they are, percent turned into fractions; absorbance where nothing names them.
+
+    Raises
+    ------
+    FileFormatError
+        Nothing names the ordinate and the values are too large for absorbance.
+    """
+    if quantity is None:
+        mean = float(np.abs(values[np.isfinite(values)]).mean()) if np.isfinite(values).any() else 0.0
+        if mean > LARGEST_MEAN_ABSORBANCE:
+            raise FileFormatError(
+                path,
+                f"the ordinates are {mean:.4g} on average, too much for absorbance, and nothing says what they are. "
+                'Are they percent transmittance? Then set quantity = "percent_transmittance" (or what else they are).',
+            )
+        return values, "absorbance"
+    if quantity.startswith("percent_"):
+        return values / 100, quantity.removeprefix("percent_")
+    return values, quantity
+
+
+def from_file_name(path: Path, options: ReadingOptions) -> dict[str, str]:
+    """Return what sample_pattern finds in the file's name (``sample`` and others), or nothing without a pattern."""
+    return notes_from_name(path, options.sample_pattern) if options.sample_pattern is not None else {}

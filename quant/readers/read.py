@@ -1,0 +1,152 @@
+"""Read spectra from files, whatever their format."""
+
+import glob
+import os
+import re
+from collections.abc import Iterable, Sequence
+from dataclasses import replace
+from pathlib import Path
+from typing import Any
+
+from quant.checks import name_some
+from quant.errors import AxisMismatchError, FileFormatError, ParameterError, QuantityError
+from quant.files import read_bytes
+from quant.readers.options import ReadingOptions
+from quant.readers.registry import HEAD, READERS, Reader
+from quant.spectra.spectra_set import SpectraSet, join_spectra
+
+PathLike = str | os.PathLike[str]
+
+
+def read_spectra(
+    paths: PathLike | Iterable[PathLike], options: ReadingOptions | None = None, **keywords: Any
+) -> SpectraSet:
+    """Read spectra from files and put them on one axis.
+
+    Parameters
+    ----------
+    paths : str, path, or sequence of them
+        Files, patterns (``spectra/*.dx``), or folders. Of a folder every file is read that a reader recognises; hidden
+        files are left out. Files are read in natural order (2 before 10), each once.
+    options : ReadingOptions, optional
+        What the files leave unsaid.
+    **keywords
+        Fields of `ReadingOptions`, instead of `options` or on top of them.
+
+    Returns
+    -------
+    SpectraSet
+        Every spectrum has a note ``file``. Where a file departs from its format in a way whose meaning is certain, the
+        note ``reader`` says how it was understood.
+
+    Raises
+    ------
+    FileFormatError
+        No file found, or a file that is damaged or of no known format.
+    AxisMismatchError, QuantityError
+        Files that do not fit each other, or not the options.
+    ParameterError
+        Options that are wrong.
+    """
+    chosen = _options(options, keywords)
+    files = find_files(paths, chosen.format)
+    sets = [_read_file(file, chosen) for file in files]
+    return _join(files, sets, chosen.resample)
+
+
+def find_files(paths: PathLike | Iterable[PathLike], file_format: str = "auto") -> list[Path]:
+    """Return the files that `paths` mean (see `read_spectra`), in natural order, each once.
+
+    Raises
+    ------
+    FileFormatError
+        A path, pattern or folder that gives no file.
+    """
+    listed = [paths] if isinstance(paths, str | os.PathLike) else list(paths)
+    if not listed:
+        raise ParameterError("No path given; expected files, patterns or folders.")
+    files = [file for path in listed for file in _matches(os.fspath(path), file_format)]
+    return sorted(dict.fromkeys(files), key=_natural)
+
+
+def _options(options: ReadingOptions | None, keywords: dict[str, Any]) -> ReadingOptions:
+    if options is None:
+        return ReadingOptions.from_dict(keywords)
+    ReadingOptions.from_dict(keywords)  # names an unknown keyword
+    return replace(options, **keywords)
+
+
+def _natural(path: Path) -> list[list[object]]:
+    """Sort key: numbers in names count as numbers."""
+    parts = [re.split(r"(\d+)", part.lower()) for part in path.parts]
+    return [[*(int(word) if i % 2 else word for i, word in enumerate(part))] for part in parts] + [[str(path)]]
+
+
+def _matches(path: str, file_format: str) -> Sequence[Path]:
+    target = Path(path)
+    if target.is_dir():
+        return _in_folder(target, file_format)
+    if target.exists() or not glob.has_magic(path):
+        return [target]  # a file that is not there is refused when it is read
+    files = [Path(name) for name in glob.glob(path, recursive=True) if Path(name).is_file()]
+    if not files:
+        raise FileFormatError(path, f"no file matches this pattern; {_inventory(target.parent)}")
+    return files
+
+
+def _in_folder(folder: Path, file_format: str) -> list[Path]:
+    present = [file for file in folder.iterdir() if file.is_file() and not file.name.startswith(".")]
+    files = [file for file in present if _reader_of(file, _head(file), file_format) is not None]
+    if not files:
+        raise FileFormatError(folder, f"no file in this folder is recognised as spectra; {_inventory(folder)}")
+    return files
+
+
+def _inventory(folder: Path) -> str:
+    """Say what a folder holds."""
+    if not folder.is_dir():
+        return f"there is no folder {str(folder)!r}. Check the path (recipes count paths from their own folder)."
+    names = sorted(file.name for file in folder.iterdir() if not file.name.startswith("."))
+    return f"the folder holds {name_some(names) if names else 'nothing'}. Check the path and the names."
+
+
+def _head(file: Path) -> bytes:
+    try:
+        with file.open("rb") as stream:
+            return stream.read(HEAD)
+    except OSError:
+        return b""  # recognised by its name if at all; reading it then says what is wrong
+
+
+def _reader_of(file: Path, head: bytes, file_format: str) -> Reader | None:
+    candidates = [reader for reader in READERS if file_format in ("auto", reader.name)]
+    return next((reader for reader in candidates if reader.recognises(head, file.name)), None)
+
+
+def _read_file(file: Path, options: ReadingOptions) -> SpectraSet:
+    content = read_bytes(file)
+    if options.format == "auto":
+        reader = _reader_of(file, content[:HEAD], "auto")
+    else:
+        reader = next(reader for reader in READERS if reader.name == options.format)
+    if reader is None:
+        raise FileFormatError(
+            file,
+            f"of no known format; expected one of {', '.join(reader.name for reader in READERS)}. "
+            "Name it as format to learn what is wrong with it.",
+        )
+    spectra = reader.read(file, content, options)
+    notes = [{**options.notes, **row, "file": file.name} for row in spectra.notes]
+    return replace(spectra, notes=notes)
+
+
+def _join(files: Sequence[Path], sets: Sequence[SpectraSet], resample: bool) -> SpectraSet:  # noqa: FBT001
+    try:
+        return join_spectra(sets, resample=resample)
+    except (AxisMismatchError, QuantityError):
+        for file, spectra in zip(files, sets, strict=True):
+            try:
+                join_spectra([sets[0], spectra], resample=resample)
+            except (AxisMismatchError, QuantityError) as problem:
+                raise type(problem)(f"{file}: {problem} The first file is {files[0]}.") from None
+        raise

@@ -1,0 +1,1 @@
+"""Strict TOML recipes, and the pipeline each describes."""

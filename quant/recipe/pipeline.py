@@ -1,0 +1,63 @@
+"""The pipeline that a recipe describes: fresh steps and a fresh regression for one axis."""
+
+from collections.abc import Sequence
+
+from quant.arrays import FloatArray
+from quant.errors import QuantityError
+from quant.estimator import Step
+from quant.preprocessing.chain import chain_axes, place_on_axis
+from quant.recipe.schema import Recipe
+from quant.recipe.steps import make_step
+from quant.regression.band_area import BandArea
+from quant.regression.method import Method
+from quant.regression.pls import PLS
+from quant.spectra.axis import SpectralAxis
+from quant.units import QUANTITIES
+
+
+def build_steps(recipe: Recipe, axis: SpectralAxis, quantity: str) -> list[Step]:
+    """Return the recipe's preprocessing steps for spectra on an axis, not yet fitted.
+
+    Raises
+    ------
+    RecipeError
+        An unknown step or option.
+    ParameterError
+        A range or position that does not fit the axis.
+    QuantityError
+        Transmittance that no step turns into absorbance, or absorbance that a step would turn again.
+    """
+    names = [table.get("step") for table in recipe.preprocessing]
+    if quantity == "transmittance" and "absorbance" not in names:
+        raise QuantityError(
+            "The spectra are transmittance, which is not proportional to concentration; expected absorbance. "
+            'Add [[preprocessing]] with step = "absorbance" before the other steps that need it.'
+        )
+    if quantity != "transmittance" and "absorbance" in names:
+        raise QuantityError(
+            f"The step 'absorbance' needs transmittance, but the spectra are {QUANTITIES[quantity]}. "
+            'Remove the step, or state quantity = "percent_transmittance" under [spectra] if that is what they are.'
+        )
+    steps = [
+        make_step(table, f"{recipe.name}, [[preprocessing]] number {number}")
+        for number, table in enumerate(recipe.preprocessing, 1)
+    ]
+    return place_on_axis(steps, axis.values)
+
+
+def axis_behind(steps: Sequence[Step], axis: SpectralAxis) -> FloatArray:
+    """Return the axis values that the last step gives out, shape (n_points_after,). [axis unit]"""
+    return chain_axes(steps, axis.values)[-1]
+
+
+def build_method(recipe: Recipe, axis_after_steps: FloatArray, max_factors: int) -> Method:
+    """Return the recipe's regression, not yet fitted."""
+    table = recipe.regression
+    if table.method == "pls":
+        return PLS(n_factors=max_factors)
+    return BandArea(
+        bands=[band.model_dump(exclude_none=True) for band in table.bands or []],
+        reference_band=table.reference_band.model_dump(exclude_none=True) if table.reference_band else None,
+        through_origin=table.through_origin,
+        axis=axis_after_steps,
+    )

@@ -1,0 +1,201 @@
+"""What a recipe may say: strict tables, each key with its meaning, default and unit."""
+
+import tomllib
+from importlib.resources import files
+from typing import Annotated, Any, Literal
+
+from pydantic import BaseModel, ConfigDict, Field, PrivateAttr, model_validator
+
+from quant.preprocessing.registry import STEPS
+from quant.readers.options import ReadingOptions
+
+DEFAULTS: dict[str, dict[str, Any]] = tomllib.loads(files("quant.recipe").joinpath("defaults.toml").read_text("utf-8"))
+
+Positive = Annotated[int, Field(ge=1)]
+Text = Annotated[str, Field(min_length=1)]
+
+
+class Table(BaseModel):
+    """A table of a recipe: unknown keys and wrong types are errors."""
+
+    model_config = ConfigDict(extra="forbid", strict=True, frozen=True)
+
+
+class SpectraTable(Table):
+    """[spectra]: which files, and how to read them."""
+
+    files: list[Text] = Field(min_length=1, description="Files, globs or folders, counted from the recipe's own folder.")
+    format: Literal["auto", "jcamp_dx", "matrix", "two_columns"] = Field(
+        DEFAULTS["spectra"]["format"], description="File format; auto judges by content."
+    )
+    sample_column: Text | None = Field(None, description="matrix: the column that holds the sample ID.")
+    sample_label: Text | None = Field(None, description="JCAMP-DX: the label that holds the sample ID. Default TITLE.")
+    sample_pattern: Text | None = Field(
+        None, description="Regular expression on the file name; its group (?P<sample>...) is the sample ID, others are notes."
+    )
+    separator: Literal[",", ";", "tab", "space"] | None = Field(None, description="Delimited text: what parts the cells.")
+    decimal: Literal[".", ","] = Field(DEFAULTS["spectra"]["decimal"], description="Delimited text: decimal sign.")
+    axis_unit: Literal["cm-1", "nm", "um", "point"] | None = Field(None, description="Unit of the axis where the file has none.")
+    quantity: (
+        Literal[
+            "absorbance",
+            "transmittance",
+            "percent_transmittance",
+            "reflectance",
+            "percent_reflectance",
+            "log_reflectance",
+            "arbitrary",
+        ]
+        | None
+    ) = Field(None, description="What the ordinate is, where the file does not say.")
+    notes: dict[str, str] = Field(
+        default_factory=dict, description="Notes that all spectra share: technique, resolution [cm⁻¹], accessory ..."
+    )
+    resample: bool = Field(DEFAULTS["spectra"]["resample"], description="Interpolate differing axes onto the first one.")
+
+    def options(self) -> ReadingOptions:
+        """Return the options for the readers."""
+        return ReadingOptions(**self.model_dump(exclude={"files"}))
+
+
+class ReferenceSection(Table):
+    """[reference]: the table of laboratory values."""
+
+    file: Text = Field(description="CSV file, counted from the recipe's own folder.")
+    sample_column: Text | None = Field(None, description="Column of the sample ID; default: sample, sample_id or id.")
+    separator: Literal[",", ";", "tab", "space"] | None = Field(None, description="What parts the cells.")
+    decimal: Literal[".", ","] = Field(DEFAULTS["reference"]["decimal"], description="Decimal sign.")
+    unmatched: Literal["refuse", "drop"] = Field(
+        DEFAULTS["reference"]["unmatched"], description="Spectra without a row: an error, or left out and named."
+    )
+    missing: Literal["refuse", "drop"] = Field(
+        DEFAULTS["reference"]["missing"], description="Rows without a value: an error, or left out for that analyte."
+    )
+
+
+class AnalyteTable(Table):
+    """[[analyte]]: one quantity to predict; each gets a model of its own."""
+
+    name: Text = Field(description="As printed and as the model's file is called.")
+    column: Text | None = Field(None, description="Column of the reference table; default: the name.")
+    unit: str = Field("", description="Unit of the values, as printed: % m/m, mg/kg ...")
+    laboratory_error: float | None = Field(
+        None, ge=0, description="Standard error of one reported reference value. [unit of the analyte]"
+    )
+
+
+class ExcludeTable(Table):
+    """[[exclude]]: samples left out by name, with the reason that the report repeats."""
+
+    samples: list[Text] = Field(min_length=1, description='Sample IDs; ranges such as "S08..S11" are written out.')
+    reason: Text = Field(description="Why.")
+
+
+class BandTable(Table):
+    """A band: where its signal is taken, and above which baseline."""
+
+    signal: Literal["area", "height", "height_at"] = Field("area", description="Area, greatest height, or height at a position.")
+    range: list[float] | None = Field(None, min_length=2, max_length=2, description="From, to. [axis unit]")
+    position: float | None = Field(None, description="height_at: the position. [axis unit]")
+    baseline: list[float] | None = Field(
+        None, min_length=2, max_length=2, description="Two positions that carry the straight baseline; none: no baseline. [axis unit]"
+    )
+
+
+class RegressionTable(Table):
+    """[regression]: the method and its size."""
+
+    method: Literal["pls", "band_area"] = Field(DEFAULTS["regression"]["method"], description="PLS or band area.")
+    max_factors: Positive | Literal["auto"] = Field(
+        DEFAULTS["regression"]["max_factors"], description="pls: largest number of factors looked at."
+    )
+    factors: Positive | Literal["one_standard_error", "minimum", "f_ratio"] = Field(
+        DEFAULTS["regression"]["factors"], description="pls: the rule that chooses the number of factors, or the number."
+    )
+    bands: list[BandTable] | None = Field(None, description="band_area: bands whose signals are summed.")
+    reference_band: BandTable | None = Field(None, description="band_area: band whose signal divides (internal standard, path).")
+    through_origin: bool = Field(DEFAULTS["regression"]["through_origin"], description="band_area: line through the origin.")
+
+    @model_validator(mode="after")
+    def _belongs_together(self) -> "RegressionTable":
+        given = self.model_fields_set
+        if self.method == "band_area" and not self.bands:
+            raise ValueError("method = \"band_area\" needs bands = [{ signal = \"area\", range = [from, to] }]")
+        foreign = given & ({"bands", "reference_band", "through_origin"} if self.method == "pls" else {"max_factors", "factors"})
+        if foreign:
+            raise ValueError(f"{', '.join(sorted(foreign))} does not belong to method = \"{self.method}\"; remove it")
+        return self
+
+
+class CrossValidationTable(Table):
+    """[cross_validation]: how samples are left out in turn."""
+
+    scheme: Literal[
+        "auto", "leave_one_out", "random_folds", "contiguous_blocks", "interleaved", "leave_one_group_out"
+    ] = Field(DEFAULTS["cross_validation"]["scheme"], description="How the folds are made.")
+    folds: int = Field(DEFAULTS["cross_validation"]["folds"], ge=2, description="Number of folds.")
+    repeats: Positive = Field(DEFAULTS["cross_validation"]["repeats"], description="random_folds: how often, drawn anew.")
+    group: Text | None = Field(None, description="Note whose equal values are never split between folds (batch, duplicate).")
+    seed: int = Field(DEFAULTS["cross_validation"]["seed"], ge=0, description="Seed of random folds and random splits.")
+
+
+class ValidationTable(Table):
+    """[validation]: samples that take no part in the calibration. One of: samples; note and values; files; split."""
+
+    samples: list[Text] | None = Field(None, description="Sample IDs of separately prepared or sampled material.")
+    note: Text | None = Field(None, description="Note column that marks them ...")
+    values: list[Text] | None = Field(None, description="... and the values that do.")
+    files: list[Text] | None = Field(None, description="A separate folder: files, globs or folders.")
+    reference_file: Text | None = Field(None, description="Their reference table; default: the one under [reference].")
+    split: Literal["kennard_stone", "random"] | None = Field(
+        None, description="Set aside a share of one set (an internal test, not an independent validation)."
+    )
+    fraction: float = Field(DEFAULTS["validation"]["fraction"], gt=0, lt=1, description="Share that a split sets aside.")
+
+    @model_validator(mode="after")
+    def _one_way(self) -> "ValidationTable":
+        ways = [key for key in ("samples", "note", "files", "split") if getattr(self, key) is not None]
+        if len(ways) != 1:
+            raise ValueError(f"{' and '.join(ways) or 'nothing'} given; expected exactly one of samples, note, files, split")
+        if (self.note is None) != (self.values is None):
+            raise ValueError("note and values go together: note = \"subset\", values = [\"T\"]")
+        if self.reference_file is not None and self.files is None:
+            raise ValueError("reference_file goes with files")
+        if "fraction" in self.model_fields_set and self.split is None:
+            raise ValueError("fraction goes with split")
+        return self
+
+
+class Recipe(Table):
+    """A whole recipe."""
+
+    title: Text = Field(description="What the calibration is for.")
+    spectra: SpectraTable
+    reference: ReferenceSection
+    analyte: list[AnalyteTable] = Field(min_length=1)
+    exclude: list[ExcludeTable] = Field(default_factory=list)
+    preprocessing: list[dict[str, Any]] = Field(
+        default_factory=list, description=f"Steps in order, each with step = one of {', '.join(STEPS)}, and its options."
+    )
+    regression: RegressionTable = Field(default_factory=lambda: RegressionTable.model_validate({}))
+    cross_validation: CrossValidationTable = Field(default_factory=lambda: CrossValidationTable.model_validate({}))
+    validation: ValidationTable | None = None
+
+    _folder: str = PrivateAttr(default=".")
+    _text: str = PrivateAttr(default="")
+    _name: str = PrivateAttr(default="recipe")
+
+    @property
+    def folder(self) -> str:
+        """Folder that the recipe's paths count from."""
+        return self._folder
+
+    @property
+    def text(self) -> str:
+        """The recipe as it was written."""
+        return self._text
+
+    @property
+    def name(self) -> str:
+        """File name of the recipe."""
+        return self._name

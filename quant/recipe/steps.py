@@ -1,0 +1,49 @@
+"""Recipe options of a preprocessing step, derived from the signature of its class."""
+
+import inspect
+from functools import cache
+from typing import Any
+
+from pydantic import ConfigDict, Field, ValidationError, create_model
+
+from quant.errors import RecipeError
+from quant.preprocessing.registry import STEPS
+from quant.estimator import Step
+from quant.recipe.messages import did_you_mean, problems
+
+
+@cache
+def options_model(name: str) -> Any:
+    """Return the pydantic model of a step's options: its constructor's parameters but the axis."""
+    fields: dict[str, Any] = {}
+    for key, parameter in inspect.signature(STEPS[name]).parameters.items():
+        if key != "axis":
+            fields[key] = (parameter.annotation, Field(parameter.default))
+    return create_model(f"{name}_options", __config__=ConfigDict(extra="forbid"), **fields)
+
+
+def make_step(table: dict[str, Any], place: str) -> Step:
+    """Return the step that a ``[[preprocessing]]`` table describes, not yet knowing its axis.
+
+    Parameters
+    ----------
+    table : dict
+        ``step`` and its options.
+    place : str
+        Where the table stands, for messages.
+
+    Raises
+    ------
+    RecipeError
+        No such step, an unknown option, or an option of the wrong type.
+    """
+    options = dict(table)
+    name = options.pop("step", None)
+    if name not in STEPS:
+        found = "no key 'step'" if name is None else f"unknown step {name!r}"
+        raise RecipeError(f"{place}: {found}.{did_you_mean(str(name), STEPS)} Steps there are: {', '.join(STEPS)}.")
+    model = options_model(name)
+    try:
+        return STEPS[name](**dict(model.model_validate(options)))
+    except ValidationError as error:
+        raise RecipeError(problems(error, f"{place}, step {name!r}", model)) from None

@@ -1,0 +1,1 @@
+"""Regression methods: partial least squares and band area."""

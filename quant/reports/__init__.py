@@ -1,0 +1,1 @@
+"""One section, one file; a self-contained HTML page."""

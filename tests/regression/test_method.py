@@ -1,0 +1,65 @@
+"""The contract that every registered method keeps."""
+
+import numpy as np
+import pytest
+
+from quant.errors import ParameterError
+from quant.regression.band_area import BandArea
+from quant.regression.method import Method
+from quant.regression.pls import PLS
+from quant.regression.registry import METHODS
+
+
+@pytest.fixture
+def samples():
+    rng = np.random.default_rng(11)
+    y = np.linspace(1.0, 4.0, 9)
+    return np.outer(y, [1.0, 3.0, 2.0, 0.5]) + 0.01 * rng.standard_normal((9, 4)), y
+
+
+def test_registry_names_the_methods():
+    assert {"pls": PLS, "band_area": BandArea} == METHODS
+
+
+@pytest.mark.parametrize("method", METHODS.values(), ids=METHODS.keys())
+def test_every_method_answers_for_all_its_factor_counts(method, samples):
+    X, y = samples
+    fitted = method().fit(X, y)
+    assert isinstance(fitted, Method)
+    rows = len(fitted.factor_counts_)
+    for name in ("predict_each", "leverage_each", "residual_each"):
+        assert getattr(fitted, name)(X[:5]).shape == (rows, 5)
+    assert np.allclose(fitted.predict(X), fitted.predict_each(X)[-1], rtol=1e-13)
+    assert fitted.n_samples_ == 9
+    assert fitted.leverage_each(X)[-1].sum() == pytest.approx(fitted.factor_counts_[-1] + 1, rel=0.02)
+
+
+@pytest.mark.parametrize("method", METHODS.values(), ids=METHODS.keys())
+def test_every_method_comes_back_from_its_state(method, samples):
+    X, y = samples
+    fitted = method().fit(X, y)
+    back = method.from_state(*fitted.state())
+    for name in ("predict_each", "leverage_each", "residual_each"):
+        assert np.array_equal(getattr(back, name)(X), getattr(fitted, name)(X))
+    assert back.factor_counts_ == fitted.factor_counts_
+    assert back.n_samples_ == fitted.n_samples_
+
+
+@pytest.mark.parametrize("method", METHODS.values(), ids=METHODS.keys())
+def test_every_method_cuts_to_what_it_has_and_to_nothing_else(method, samples):
+    fitted = method().fit(*samples)
+    most = fitted.factor_counts_[-1]
+    assert np.allclose(fitted.with_factors(most).predict(samples[0]), fitted.predict(samples[0]), rtol=1e-13)
+    with pytest.raises(ParameterError, match="Choose a number among these"):
+        fitted.with_factors(most + 1)
+
+
+def test_who_averages_replicates():
+    assert BandArea.averages_replicates
+    assert not PLS.averages_replicates
+
+
+def test_residual_degrees_of_freedom():
+    assert PLS().residual_degrees_of_freedom(30, 4) == 25
+    assert BandArea().residual_degrees_of_freedom(7, 1) == 5
+    assert BandArea(through_origin=True).residual_degrees_of_freedom(7, 0) == 6
