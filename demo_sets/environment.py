@@ -197,7 +197,9 @@ def call(command: Sequence[str], failure: str, folder: Path, variables: dict[str
     )  # fmt: skip
     if done.returncode:
         last = "\n".join("    " + line for line in done.stdout.strip().splitlines()[-LINES_SHOWN:])
-        raise CannotPrepare(f"{failure} (exit code {done.returncode}). Its last lines:\n{last}")
+        raise CannotPrepare(
+            f"{failure} (exit code {done.returncode}). Its last lines:\n{last}\nMend that, then start again."
+        )
 
 
 @contextmanager

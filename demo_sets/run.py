@@ -15,7 +15,6 @@ import environment
 
 DONE, NOT_ACCEPTED = 0, 1  # exit codes of the command line
 RESULTS = "demo_sets/results"
-MODEL = "model.quant"  # as `quant calibrate` names it in its folder
 
 
 @dataclass(frozen=True)
@@ -45,11 +44,11 @@ class Step:
 
 ODD_SAMPLE = (
     "Exit code 1 is as it should be: one of these samples is odd on purpose, and quant says that the calibration\n"
-    "does not apply to it instead of reporting a figure that nobody could defend."
+    "does not apply to it. Nobody could defend its figure: it is not to be reported."
 )
 
 
-def steps_for(demo_set: str, title: str, new_samples: str) -> list[Step]:
+def steps_for(demo_set: str, title: str, model: str, new_samples: str) -> list[Step]:
     """Return the three commands of the everyday job: look, calibrate, predict."""
     recipe, results = f"configs/{demo_set}.toml", f"{RESULTS}/{demo_set}"
     return [
@@ -57,11 +56,11 @@ def steps_for(demo_set: str, title: str, new_samples: str) -> list[Step]:
         Step(
             f"{title}: calibrate, cross-validate, validate",
             f"quant calibrate {recipe} --out {results}",
-            writes=f"{results}/{MODEL}",
+            writes=f"{results}/{model}",
         ),
         Step(
             f"{title}: predict new samples",
-            f"quant predict {results}/{MODEL} {new_samples} --out {results}/new_samples.csv",
+            f"quant predict {results}/{model} {new_samples} --out {results}/new_samples.csv",
             writes=f"{results}/new_samples.csv",
             expected=NOT_ACCEPTED,
             remark=ODD_SAMPLE,
@@ -70,8 +69,12 @@ def steps_for(demo_set: str, title: str, new_samples: str) -> list[Step]:
 
 
 STEPS = [
-    *steps_for("dryer_solvent", "Residual solvent from the dryer", "demo_sets/dryer_solvent/new/*.dx"),
-    *steps_for("starting_material", "Unreacted starting material", "demo_sets/starting_material/new.csv"),
+    *steps_for(
+        "dryer_solvent", "Residual solvent from the dryer", "ethyl-acetate.model", "demo_sets/dryer_solvent/new/*.dx"
+    ),
+    *steps_for(
+        "starting_material", "Unreacted starting material", "nitrile-P1.model", "demo_sets/starting_material/new.csv"
+    ),
 ]
 
 CLOSING = f"""\
@@ -80,7 +83,7 @@ Done. Open the reports in a browser; tables and models lie beside them:
 
 What to try next:
     - Change a recipe in configs/ (another range, another step, fewer factors) and calibrate again.
-    - quant --help, and quant COMMAND --help
+    - {{activate}} makes quant a command of your shell; then: quant --help
     - Your own data: copy the recipe that is nearest, and name your files in it.
 {RESULTS} may be deleted at any time.
 """
@@ -99,7 +102,9 @@ def main() -> int:
         if step.remark:
             print(step.remark)
     reports = sorted((place.root / RESULTS).glob("*/*.html"))
-    print("\n" + CLOSING.format(reports="\n    ".join(str(report) for report in reports)), end="")
+    scripts = place.programs.relative_to(place.root)
+    activate = f"{scripts}\\activate" if sys.platform == "win32" else f"source {scripts}/activate"
+    print("\n" + CLOSING.format(reports="\n    ".join(map(str, reports)), activate=activate), end="")
     return DONE
 
 

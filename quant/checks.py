@@ -58,7 +58,9 @@ def as_matrix(name: str, values: ArrayLike) -> FloatArray:
     return matrix
 
 
-def paired_vectors(name_a: str, a: ArrayLike, name_b: str, b: ArrayLike, least: int = 1) -> tuple[FloatArray, FloatArray]:
+def paired_vectors(
+    name_a: str, a: ArrayLike, name_b: str, b: ArrayLike, least: int = 1
+) -> tuple[FloatArray, FloatArray]:
     """Return two vectors of one length, at least `least` long.
 
     Raises
@@ -70,7 +72,9 @@ def paired_vectors(name_a: str, a: ArrayLike, name_b: str, b: ArrayLike, least: 
     """
     first, second = as_vector(name_a, a), as_vector(name_b, b)
     if first.size != second.size:
-        raise SampleMismatchError(f"{first.size} values of {name_a} but {second.size} of {name_b}; one each is expected.")
+        raise SampleMismatchError(
+            f"{first.size} values of {name_a} but {second.size} of {name_b}; one each is expected."
+        )
     if first.size < least:
         raise NotEnoughDataError(f"{first.size} pair(s) of {name_a} and {name_b}; at least {least} are needed.")
     return first, second

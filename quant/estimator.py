@@ -25,6 +25,7 @@ class Estimator:
     estimator_type: ClassVar[str | None] = None
     needs_y: ClassVar[bool] = False
     positive_only: ClassVar[bool] = False
+    allow_nan: ClassVar[bool] = False  # missing points may come in, because the step can leave them out
     fitted: ClassVar[tuple[str, ...]] = ()  # names of what `fit` learns and a saved model has to keep
 
     @classmethod
@@ -89,13 +90,13 @@ class Estimator:
             target_tags=TargetTags(required=self.needs_y),
             transformer_tags=TransformerTags() if hasattr(self, "transform") else None,
             regressor_tags=RegressorTags() if self.estimator_type == "regressor" else None,
-            input_tags=InputTags(positive_only=self.positive_only),
+            input_tags=InputTags(positive_only=self.positive_only, allow_nan=self.allow_nan),
         )
 
     def check_fit(self, X: ArrayLike) -> FloatArray:
         """Check training spectra, note their width (and names of columns), return them as float64 of shape (n, k)."""
         names = _column_names(X)
-        matrix = check_spectra(X)
+        matrix = check_spectra(X, allow_nan=self.allow_nan)
         self.n_features_in_ = matrix.shape[1]
         if names is not None:
             self.feature_names_in_ = names
@@ -104,7 +105,13 @@ class Estimator:
         return matrix
 
     def check_fitted(self) -> None:
-        """Raise scikit-learn's NotFittedError when `fit` has not been called."""
+        """Refuse to go on when `fit` has not been called.
+
+        Raises
+        ------
+        NotFittedError
+            Scikit-learn's own.
+        """
         if not hasattr(self, "n_features_in_"):
             from sklearn.exceptions import NotFittedError  # deferred: start-up
 
@@ -113,13 +120,19 @@ class Estimator:
             )
 
     def check_new(self, X: ArrayLike) -> FloatArray:
-        """Check spectra that come after fitting: same width, same names of columns."""
+        """Check spectra that come after fitting, and return them as float64 of shape (n, k).
+
+        Raises
+        ------
+        ParameterError
+            Another width, or other names of columns, than in training.
+        """
         self.check_fitted()
         names = _column_names(X)
         known = getattr(self, "feature_names_in_", None)
         if names is not None and known is not None and not np.array_equal(names, known):
             raise ParameterError(_names_differ(names, known))
-        matrix = check_spectra(X)
+        matrix = check_spectra(X, allow_nan=self.allow_nan)
         if matrix.shape[1] != self.n_features_in_:
             raise ParameterError(
                 f"X has {matrix.shape[1]} features, but {type(self).__name__} is expecting "
@@ -175,7 +188,13 @@ class Regressor(Estimator):
         return 1.0 - float(weight @ (values - predicted) ** 2 / total) if total > 0 else float("nan")
 
     def check_fit_pair(self, X: ArrayLike, y: ArrayLike | None) -> tuple[FloatArray, FloatArray]:
-        """Check training spectra and their reference values, shapes (n, k) and (n,)."""
+        """Check training spectra and their reference values, shapes (n, k) and (n,).
+
+        Raises
+        ------
+        ParameterError
+            There are no reference values.
+        """
         if y is None:
             raise ParameterError(
                 f"This {type(self).__name__} estimator requires y to be passed, but the target y is None."
@@ -184,8 +203,20 @@ class Regressor(Estimator):
         return matrix, check_target(y, matrix.shape[0])
 
 
-def check_spectra(X: ArrayLike) -> FloatArray:
-    """Return spectra as float64 of shape (n, k), refusing what scikit-learn's `check_array` refuses, in its words."""
+def check_spectra(X: ArrayLike, *, allow_nan: bool = False) -> FloatArray:
+    """Return spectra as float64 of shape (n, k), refusing what scikit-learn's `check_array` refuses, in its words.
+
+    With `allow_nan`, missing points (NaN) pass; infinite ones never do.
+
+    Raises
+    ------
+    NotEnoughDataError
+        No spectrum, or no point.
+    ParameterError
+        Not two-dimensional, complex, or not all finite.
+    TypeError
+        Sparse, or holding what is no number.
+    """
     if hasattr(X, "toarray"):
         raise TypeError("Sparse data was passed for X, but dense data is required. Use '.toarray()' to convert it.")
     matrix: AnyArray = np.asarray(X)
@@ -205,12 +236,18 @@ def check_spectra(X: ArrayLike) -> FloatArray:
             raise NotEnoughDataError(
                 f"Found array with 0 {what}(s) (shape={result.shape}) while a minimum of 1 is required."
             )
-    _refuse_infinite("X", result)
+    _refuse_infinite("X", result, allow_nan=allow_nan)
     return result
 
 
 def check_target(y: ArrayLike, n_samples: int) -> FloatArray:
-    """Return reference values as float64 of shape (n_samples,)."""
+    """Return reference values as float64 of shape (n_samples,).
+
+    Raises
+    ------
+    ParameterError
+        Another shape or number of values, complex, or not all finite.
+    """
     values: AnyArray = np.asarray(y)
     if np.iscomplexobj(values):
         raise ParameterError(f"Complex data not supported\n{values}\n")
@@ -261,11 +298,11 @@ def unfitted_copy(estimator: EstimatorType) -> EstimatorType:
     return type(estimator)(**estimator.get_params())
 
 
-def _refuse_infinite(name: str, values: FloatArray) -> None:
-    if np.isfinite(values).all():
+def _refuse_infinite(name: str, values: FloatArray, *, allow_nan: bool = False) -> None:
+    bad = np.isinf(values) if allow_nan else ~np.isfinite(values)
+    if not bad.any():
         return
-    kind = "NaN" if np.isnan(values).any() else "infinity or a value too large for dtype('float64')"
-    bad = ~np.isfinite(values)
+    kind = "NaN" if np.isnan(values[bad]).any() else "infinity or a value too large for dtype('float64')"
     rows = np.flatnonzero(bad.reshape(values.shape[0], -1).any(axis=1))
     raise ParameterError(
         f"Input {name} contains {kind}: {np.count_nonzero(bad)} value(s) in {rows.size} row(s), the first of them "

@@ -25,12 +25,16 @@ def read_bytes(path: str | Path, limit: int = LARGEST_FILE) -> bytes:
     try:
         size = file.stat().st_size
         if size > limit:
-            raise FileFormatError(file, f"{size / 2**20:.0f} MiB; expected at most {limit / 2**20:.0f} MiB. Split the file.")
+            raise FileFormatError(
+                file, f"{size / 2**20:.0f} MiB; expected at most {limit / 2**20:.0f} MiB. Split the file."
+            )
         content = file.read_bytes()
     except FileFormatError:
         raise
     except FileNotFoundError:
-        raise FileFormatError(file, "no such file. Check the path (recipes count paths from their own folder).") from None
+        raise FileFormatError(
+            file, "no such file. Check the path (recipes count paths from their own folder)."
+        ) from None
     except OSError as problem:
         raise FileFormatError(file, f"cannot be read ({problem.strerror}); expected a readable file.") from problem
     if not content:

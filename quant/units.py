@@ -82,7 +82,9 @@ def convert_axis(values: ArrayLike, unit: str, to: str) -> FloatArray:
         if name != "cm-1" and name not in _CM_IN:
             raise ParameterError(f"No conversion from {unit!r} to {to!r}; expected two of 'cm-1', 'nm', 'um'.")
     if (array <= 0).any():
-        raise ParameterError(f"An axis value of {array.min():g} {unit} has no counterpart in {to}; expected values above 0.")
+        raise ParameterError(
+            f"An axis value of {array.min():g} {unit} has no counterpart in {to}; expected values above 0."
+        )
     if "cm-1" in (unit, to):
         return _CM_IN[to if unit == "cm-1" else unit] / array
     return array * (_CM_IN[to] / _CM_IN[unit])

@@ -148,7 +148,8 @@ def draw_part(
 def true_absorbances(nitrile: FloatArray, acid: FloatArray) -> FloatArray:
     """Absorbances that Beer-Lambert gives for nitrile and acid, both in g for 100 g of amide (dry, even pellet)."""
     parts = np.column_stack([np.full_like(nitrile, 100.0), nitrile, acid])
-    return 100.0 * parts / parts.sum(axis=1, keepdims=True) @ _pure()[:3]  # % m/m
+    shares: FloatArray = 100.0 * parts / parts.sum(axis=1, keepdims=True)  # % m/m
+    return shares @ _pure()[:3]
 
 
 # Grains scatter the shorter waves: a baseline that rises towards high wavenumbers.
@@ -175,9 +176,9 @@ def write_set(folder: Path) -> None:
     new = draw_part(rng, drawn.new.truth, "N", 21, foreign=foreign)
     parts = {"standards": drawn.standards, "validation": drawn.validation, "new": new}
     for name, part in parts.items():
-        _write_matrix(part.spectra, folder / f"spectra_{name}.csv")
+        _write_matrix(part.spectra, folder / f"{name}.csv")
     _write_reference(drawn.standards.reference, folder / "reference.csv")
-    _write_reference(drawn.validation.reference, folder / "validation.csv")
+    _write_reference(drawn.validation.reference, folder / "validation_reference.csv")
     truth = [
         (sample, f"{value:.4f}", f"{wash:.4f}")
         for name, part in parts.items()

@@ -49,7 +49,7 @@ def calibrate(
         Of many kinds; each message says what was found, what was expected and what to do.
     """
     everything = load_samples(recipe) if samples is None else samples
-    separate = load_validation_samples(recipe) if samples is None else validation
+    separate = load_validation_samples(recipe) if samples is None and validation is None else validation
     results = tuple(_calibrate_one(recipe, everything, separate, table.name) for table in recipe.analyte)
     return CalibrationResult(
         title=recipe.title,
@@ -77,11 +77,14 @@ def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | Non
     most = factor_limit(recipe, make_folds(training, recipe.cross_validation), axis_after.size)
     analyte, values = training.analyte(name)
     steps, full, processed = fit_pipeline(training, values, unfitted, build_method(recipe, axis_after, most))
-    factors = min(factors, full.factor_counts_[-1])
+    if factors > full.factor_counts_[-1]:
+        factors, rule = full.factor_counts_[-1], f"{rule}, but {getattr(full, 'guard_note_', '')}"
     model = _model(recipe, training, crossed, steps, full.with_factors(factors), factors, processed, name)
     mean = training.mean_by_sample(processed)
     fitted = model.method.predict(mean)
-    validated = validate(model, split.validation, kind=split.kind, how=split.how) if split.validation is not None else None
+    validated = (
+        validate(model, split.validation, kind=split.kind, how=split.how) if split.validation is not None else None
+    )
     return AnalyteResult(
         analyte=analyte.name,
         unit=analyte.unit,

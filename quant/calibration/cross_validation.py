@@ -76,11 +76,13 @@ def check_calibration_values(name: str, values: FloatArray) -> None:
         Fewer than four, or all equal.
     """
     if values.size < 4:
-        raise NotEnoughDataError(f"{values.size} samples with a value of {name}; at least 4 are needed, 24 or more are usual.")
+        raise NotEnoughDataError(
+            f"{values.size} samples with a value of {name}; at least 4 are needed, 24 or more are usual."
+        )
     if np.ptp(values) == 0:
         raise NotEnoughDataError(
-            f"All {values.size} reference values of {name} are {values[0]:g}; expected values that span the range to predict. "
-            "Check the column, or add standards."
+            f"All {values.size} reference values of {name} are {values[0]:g}; expected values that span the range to "
+            "predict. Check the column, or add standards."
         )
 
 
@@ -89,6 +91,8 @@ def factor_limit(recipe: Recipe, folds: Folds, n_points: int) -> int:
 
     Raises
     ------
+    NotEnoughDataError
+        A training set of one sample.
     ParameterError
         The recipe asks for more than the smallest training set, or the points, can carry.
     """
@@ -97,14 +101,21 @@ def factor_limit(recipe: Recipe, folds: Folds, n_points: int) -> int:
     possible = min(smallest - 1, n_points)
     if table.method != "pls":
         return 1
+    if possible < 1:
+        raise NotEnoughDataError(
+            f"The smallest training set of the cross-validation has {smallest} sample(s); at least 2 are needed. "
+            "Choose another scheme or group under [cross_validation], or add samples."
+        )
     asked = [number for number in (table.max_factors, table.factors) if isinstance(number, int)]
     for number in asked:
         if number > possible:
             raise ParameterError(
-                f"{number} factors asked for under [regression], but the smallest training set has {smallest} samples of "
-                f"{n_points} points; at most {possible} are possible. Lower max_factors, or add samples."
+                f"{number} factors asked for under [regression], but the smallest training set has {smallest} samples "
+                f"of {n_points} points; at most {possible} are possible. Lower max_factors, or add samples."
             )
-    most = table.max_factors if isinstance(table.max_factors, int) else min(MOST_FACTORS, max(smallest // 2, 1), possible)
+    most = (
+        table.max_factors if isinstance(table.max_factors, int) else min(MOST_FACTORS, max(smallest // 2, 1), possible)
+    )
     return max(most, *asked) if asked else most
 
 
@@ -135,7 +146,9 @@ def fit_pipeline(
     return fitted, regression, processed
 
 
-def _left_out(samples: SampleSet, values: FloatArray, out: BoolArray, steps: Sequence[Step], method: Method) -> _LeftOut:
+def _left_out(
+    samples: SampleSet, values: FloatArray, out: BoolArray, steps: Sequence[Step], method: Method
+) -> _LeftOut:
     training, left = samples.subset(~out), samples.subset(out)
     fitted_steps, regression, _ = fit_pipeline(training, values[~out], steps, method)
     processed = apply_chain(fitted_steps, left.spectra.values)
@@ -178,6 +191,7 @@ def _collect(
         unit=analyte.unit,
         scheme=folds.scheme,
         n_samples=len(samples),
+        n_units=folds.n_units,
         n_folds=len(parts),
         sample_ids=samples.sample_ids,
         reference=values,

@@ -17,6 +17,7 @@ class CrossValidationResult(Result):
     unit: str = documented("Unit of the analyte")
     scheme: str = documented("How samples were left out")
     n_samples: int = documented("Number of samples")
+    n_units: int = documented("Independent units among them: groups where samples of one group are alike")
     n_folds: int = documented("Number of folds, all repeats together")
     sample_ids: tuple[str, ...] = documented("Sample IDs")
     reference: FloatArray = documented("Reference values, one a sample", "unit of the analyte")
@@ -25,7 +26,9 @@ class CrossValidationResult(Result):
     leverage: FloatArray = documented("Left-out leverages, 1/n included: repeat, number of factors, sample")
     residual: FloatArray = documented("Left-out sums of squares of residual spectra: repeat, number of factors, sample")
     replicate_variance: FloatArray = documented("Pooled variance of replicates' predictions, one a number of factors")
-    rmsecv: FloatArray = documented("Root mean square error of left-out samples, one a number of factors", "unit of the analyte")
+    rmsecv: FloatArray = documented(
+        "Root mean square error of left-out samples, one a number of factors", "unit of the analyte"
+    )
     rmsecv_se: FloatArray = documented("Its standard error over samples", "unit of the analyte")
     q2: FloatArray = documented("1 - PRESS/SST, one a number of factors")
     choices: dict[str, int] = documented("Number of factors that each rule chooses (empty without factors to choose)")
@@ -33,7 +36,10 @@ class CrossValidationResult(Result):
 
     def __str__(self) -> str:
         """RMSECV against the number of factors, and what each rule chooses."""
-        marks = {count: ", ".join(rule.replace("_", " ") for rule, c in self.choices.items() if c == count) for count in self.factor_counts}
+        marks = {
+            count: ", ".join(rule.replace("_", " ") for rule, c in self.choices.items() if c == count)
+            for count in self.factor_counts
+        }
         rows = [
             (count, rmsecv, se, q2, marks[count])
             for count, rmsecv, se, q2 in zip(self.factor_counts, self.rmsecv, self.rmsecv_se, self.q2, strict=True)

@@ -2,8 +2,6 @@
 
 from dataclasses import dataclass
 
-import numpy as np
-
 from quant.arrays import IntArray
 from quant.errors import RecipeError
 from quant.recipe.schema import CrossValidationTable
@@ -21,6 +19,7 @@ class Folds:
 
     scheme: str
     repeats: tuple[IntArray, ...]
+    n_units: int  # independent units: groups where samples of one group are alike, else samples
 
 
 def make_folds(samples: SampleSet, table: CrossValidationTable) -> Folds:
@@ -35,28 +34,30 @@ def make_folds(samples: SampleSet, table: CrossValidationTable) -> Folds:
     ParameterError, NotEnoughDataError
         More folds than samples or groups, or a single group.
     """
-    n = len(samples)
-    groups = samples.groups(table.group) if table.group else None
-    together = f", equal {table.group!r} together" if table.group else ""
-    match _resolve(samples, table):
+    scheme = _resolve(samples, table)
+    note = table.group or (BATCH if scheme == "leave_one_group_out" and table.scheme == "auto" else None)
+    groups = samples.groups(note) if note else None
+    n, k = len(samples), table.folds
+    together = f", equal {note!r} together" if note else ""
+    match scheme:
         case "leave_one_group_out":
-            note = table.group or BATCH
-            if table.group is None and table.scheme == "leave_one_group_out":
+            if groups is None:
                 raise RecipeError(
-                    'scheme = "leave_one_group_out" under [cross_validation] needs group = "<note>", such as group = "batch".'
+                    'scheme = "leave_one_group_out" under [cross_validation] needs group = "<note>", '
+                    'such as group = "batch".'
                 )
-            return Folds(f"leave one {note} out", (splits.leave_one_group_out(samples.groups(note)),))
+            words, repeats = f"leave one {note} out", [splits.leave_one_group_out(groups)]
         case "leave_one_out":
-            return Folds(f"leave one sample out{together}", (splits.leave_one_out(n, groups),))
+            words, repeats = f"leave one sample out{together}", [splits.leave_one_out(n, groups)]
         case "contiguous_blocks":
-            return Folds(f"{table.folds} contiguous blocks{together}", (splits.contiguous_blocks(n, table.folds, groups),))
+            words, repeats = f"{k} contiguous blocks{together}", [splits.contiguous_blocks(n, k, groups)]
         case "interleaved":
-            return Folds(f"{table.folds} interleaved folds{together}", (splits.interleaved(n, table.folds, groups),))
+            words, repeats = f"{k} interleaved folds{together}", [splits.interleaved(n, k, groups)]
         case _:
-            # A generator a repeat, all grown from the one seed of the recipe.
-            seeds = np.random.SeedSequence(table.seed).spawn(table.repeats)
-            repeats = tuple(splits.random_folds(n, table.folds, np.random.default_rng(seed), groups) for seed in seeds)
-            return Folds(f"{table.folds} random folds, {table.repeats} repeats{together}", repeats)
+            seeds = [(table.seed, repeat) for repeat in range(table.repeats)]  # all from the one seed of the recipe
+            words = f"{k} random folds, {table.repeats} repeats{together}"
+            repeats = [splits.random_folds(n, k, seed, groups) for seed in seeds]
+    return Folds(words, tuple(repeats), len(set(groups)) if groups else n)
 
 
 def _resolve(samples: SampleSet, table: CrossValidationTable) -> str:

@@ -13,8 +13,8 @@ from quant.statistics.intervals import base_variance
 from quant.statistics.quantiles import t_quantile, upper_limit
 
 WARN = 0.95  # share of good new samples that pass each warning limit
-# Shares of good new samples lost to each criterion's "not applicable" limit. Together they are at most 1 % (Bonferroni).
-LOST_TO_RESIDUAL, LOST_TO_LEVERAGE, LOST_TO_RANGE = 0.004, 0.004, 0.002
+# Shares of good new samples lost to each criterion's "not applicable" limit, together at most 1 % (Bonferroni).
+LOST_TO_RESIDUAL, LOST_TO_LEVERAGE, LOST_TO_RANGE = 0.003, 0.003, 0.002
 NUMERICAL_RESIDUAL = 1e-18  # share of a spectrum's sum of squares below which a residual is rounding error
 
 
@@ -24,8 +24,8 @@ def applicability_limits(
     """Return the limits of a model with a number of factors.
 
     Residuals and leverages of calibration samples are smaller than those of good new ones, because the model was fitted
-    to them; left-out samples are as new ones are. The limit is an upper prediction limit of their cube roots, which are
-    nearly normal (Wilson & Hilferty 1931).
+    to them; left-out samples are as new ones are. Leverages are near to chi-square, so that their limit is found on cube
+    roots; residuals are sums of a few effects of very different size (noise, vapour, baseline) and take logarithms.
 
     Parameters
     ----------
@@ -38,15 +38,15 @@ def applicability_limits(
         Of the residual variance.
     """
     _, leverage, residual = result.at(factors)
-    n = result.n_samples
-    base = 1 / n  # the least leverage there is; its excess is what varies
-    excess = np.maximum(leverage - base, 0.0).ravel()
+    units, base = result.n_units, 1 / result.n_samples  # 1/n is the least leverage there is; its excess varies
+    excess = np.maximum(leverage.mean(axis=0) - base, 0.0)
     floor = NUMERICAL_RESIDUAL * float(np.mean(np.sum(processed**2, axis=1)))
+    rest = np.maximum(residual.mean(axis=0), floor)
     return Limits(
-        residual_warn=max(upper_limit(residual.ravel(), n, WARN), floor),
-        residual_stop=max(upper_limit(residual.ravel(), n, 1 - LOST_TO_RESIDUAL), floor),
-        leverage_warn=base + upper_limit(excess, n, WARN),
-        leverage_stop=base + upper_limit(excess, n, 1 - LOST_TO_LEVERAGE),
+        residual_warn=upper_limit(rest, units, WARN, "logarithm"),
+        residual_stop=upper_limit(rest, units, 1 - LOST_TO_RESIDUAL, "logarithm"),
+        leverage_warn=base + upper_limit(excess, units, WARN),
+        leverage_stop=base + upper_limit(excess, units, 1 - LOST_TO_LEVERAGE),
         lowest=float(result.reference.min()),
         highest=float(result.reference.max()),
         margin_t=t_quantile(1 - LOST_TO_RANGE, degrees_of_freedom),
@@ -80,7 +80,7 @@ def degrees_of_freedom(method: Method, n_samples: int, factors: int) -> int:
     left = method.residual_degrees_of_freedom(n_samples, factors)
     if left < 1:
         raise NotEnoughDataError(
-            f"{n_samples} samples leave no degree of freedom for {factors} factors; expected at least {factors + 2} samples. "
-            "Add samples, or lower factors under [regression]."
+            f"{n_samples} samples leave no degree of freedom for {factors} factors; expected at least "
+            f"{factors + 2} samples. Add samples, or lower factors under [regression]."
         )
     return left

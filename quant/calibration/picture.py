@@ -29,7 +29,9 @@ class Picture(Result):
     processed_axis: FloatArray = documented("Axis behind the preprocessing", "axis unit")
     processed: FloatArray = documented("Their mean spectra after preprocessing, rounded for drawing")
     regression_vector: FloatArray | None = documented("PLS: regression vector on the processed axis")
-    bands: tuple[tuple[float, float], ...] = documented("Band area: from, to of each band, the reference band last", "axis unit")
+    bands: tuple[tuple[float, float], ...] = documented(
+        "Band area: from, to of each band, the reference band last", "axis unit"
+    )
     signals: FloatArray | None = documented("Band area: signal of each calibration sample")
     line: tuple[float, float] | None = documented("Band area: slope and intercept of signal on value")
     rmsec: FloatArray = documented("RMSEC, one a number of factors", "unit of the analyte")

@@ -65,7 +65,9 @@ class AnalyteResult(Result):
     def __str__(self) -> str:
         """Heading, the main figures, what was left out."""
         left_out = [f"left out: {item.sample} ({item.reason})" for item in self.left_out]
-        return "\n".join([f"Calibration of {self.analyte}", format_rows(self.rows()), *self.cross_validation.guard_notes, *left_out])
+        return "\n".join(
+            [f"Calibration of {self.analyte}", format_rows(self.rows()), *self.cross_validation.guard_notes, *left_out]
+        )
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

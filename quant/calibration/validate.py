@@ -44,7 +44,10 @@ class ValidationResult(Result):
     def __str__(self) -> str:
         """Kind, number of samples, figures of merit."""
         inside = f"{int(self.inside.sum())} of {self.inside.size} reference values inside their 95 % interval"
-        origins = [f"  {origin}: n {f.n_samples}, RMSEP {f.rmse:.4g}, bias {f.bias:.3g} {self.unit}" for origin, f in self.by_origin.items()]
+        origins = [
+            f"  {origin}: n {f.n_samples}, RMSEP {f.rmse:.4g}, bias {f.bias:.3g} {self.unit}"
+            for origin, f in self.by_origin.items()
+        ]
         title = f"{self.kind.capitalize()} of {self.analyte}: {self.how}"
         return "\n".join([title, str(self.figures), inside, *origins])
 

@@ -12,7 +12,13 @@ from quant.reports.report import write_report
 
 @click.command("calibrate")
 @click.argument("recipe", type=click.Path(path_type=Path))
-@click.option("--out", "folder", required=True, type=click.Path(path_type=Path, file_okay=False), help="Folder for model and report.")
+@click.option(
+    "--out",
+    "folder",
+    required=True,
+    type=click.Path(path_type=Path, file_okay=False),
+    help="Folder for model and report.",
+)
 def command(recipe: Path, folder: Path) -> None:
     """Make the calibrations of RECIPE; leave model, report.html and calibration.json in a folder."""
     result = calibrate(load_recipe(recipe))

@@ -11,7 +11,10 @@ from quant.errors import QuantError
 # Name, module, and the line that --help shows without loading the module.
 COMMANDS = {
     "inspect": ("quant.cli.inspect", "Look over the spectra and reference values that a recipe names."),
-    "calibrate": ("quant.cli.calibrate", "Make, cross-validate and validate the calibrations of a recipe; write the report."),
+    "calibrate": (
+        "quant.cli.calibrate",
+        "Make, cross-validate and validate the calibrations of a recipe; write the report.",
+    ),
     "predict": ("quant.cli.predict", "Predict new spectra with a saved model."),
     "recipe": ("quant.cli.recipe", "Print the keys a recipe may have: JSON schema, or defaults with comments."),
 }
@@ -60,5 +63,3 @@ def main() -> None:
         sys.stdout.reconfigure(encoding="utf-8", errors="replace")
         sys.stderr.reconfigure(encoding="utf-8", errors="replace")
     cli(prog_name="quant")
-
-

@@ -9,7 +9,9 @@ from quant.recipe.schema import Recipe
 
 
 @click.command("recipe")
-@click.option("--schema", "what", flag_value="schema", default=True, help="JSON schema, for editors that complete and check keys.")
+@click.option(
+    "--schema", "what", flag_value="schema", default=True, help="JSON schema, for editors that complete and check keys."
+)
 @click.option("--defaults", "what", flag_value="defaults", help="Every default, with comments.")
 def command(what: str) -> None:
     """Print what a recipe may say."""

@@ -61,7 +61,10 @@ class SetInspection(Result):
         """Heading, rows, one line an analyte."""
         table = format_columns(
             ("analyte", "unit", "values", "from", "to", "mean", "without a value"),
-            [(a.analyte, a.unit, a.n_values, a.lowest, a.highest, a.mean, ", ".join(a.without_value) or "none") for a in self.analytes],
+            [
+                (a.analyte, a.unit, a.n_values, a.lowest, a.highest, a.mean, ", ".join(a.without_value) or "none")
+                for a in self.analytes
+            ],
         )
         return "\n".join([f"{self.name.capitalize()} samples", format_rows(self.rows()), table, *self.reader_notes])
 

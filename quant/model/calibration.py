@@ -7,9 +7,8 @@ from typing import Any
 import numpy as np
 
 from quant.arrays import FloatArray
-from quant.errors import QuantityError
+from quant.errors import ParameterError, QuantityError
 from quant.estimator import Step
-from quant.preprocessing.chain import apply_chain
 from quant.regression.method import Method
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.provenance import Source
@@ -138,15 +137,24 @@ class Calibration:
         Raises
         ------
         QuantityError
-            A spectrum has missing points.
+            A spectrum has missing points where the model needs them.
         """
-        if np.isnan(values).any():
-            raise QuantityError(
-                f"{int(np.isnan(values).any(axis=1).sum())} spectra have missing points; expected a number at every point "
-                "of the model's axis. Measure again."
-            )
-        return apply_chain(self.steps, values)
+        for step in self.steps:
+            if not step.allow_nan:
+                _refuse_missing(values)
+            values = step.transform(values)
+        _refuse_missing(values)
+        return values
 
     def predict_values(self, values: FloatArray) -> FloatArray:
         """Predict spectra of shape (n, n_points) on the model's axis one by one, shape (n,). [unit of the analyte]"""
         return self.method.predict(self.process(values))
+
+
+def _refuse_missing(values: FloatArray) -> None:
+    lacking = int(np.isnan(values).any(axis=1).sum())
+    if lacking:
+        raise QuantityError(
+            f"{lacking} of {len(values)} spectra have missing points; expected a number at every point that the model uses. "
+            "Measure again."
+        )

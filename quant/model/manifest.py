@@ -30,7 +30,8 @@ def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:
     step_names = {cls: name for name, cls in STEPS.items()}
     method_names = {cls: name for name, cls in METHODS.items()}
     steps = [
-        {"name": step_names[type(step)], "parameters": _split(step, f"steps/{i}", arrays)} for i, step in enumerate(model.steps)
+        {"name": step_names[type(step)], "parameters": _split(step, f"steps/{i}", arrays)}
+        for i, step in enumerate(model.steps)
     ]
     manifest = {
         "format": FORMAT,
@@ -67,8 +68,8 @@ def from_manifest(manifest: Mapping[str, Any], arrays: Arrays) -> Calibration:
         raise ModelFileError(f"The manifest says format {manifest.get('format')!r}; expected {FORMAT!r}.")
     if manifest["format_version"] != FORMAT_VERSION:
         raise ModelFileError(
-            f"The model file has format version {manifest['format_version']}; this program reads version {FORMAT_VERSION}. "
-            "Use the program version that wrote it, or a newer one."
+            f"The model file has format version {manifest['format_version']}; this program reads version "
+            f"{FORMAT_VERSION}. Use the program version that wrote it, or a newer one."
         )
     return Calibration(
         analyte=Analyte(**manifest["analyte"]),
@@ -102,6 +103,8 @@ def _split(estimator: Estimator, prefix: str, arrays: Arrays) -> dict[str, Any]:
 def _join(registry: Mapping[str, type[Any]], entry: Mapping[str, Any], prefix: str, arrays: Arrays) -> Any:
     name = entry["name"]
     if name not in registry:
-        raise ModelFileError(f"The model uses {name!r}, which this program does not know; expected {', '.join(registry)}.")
+        raise ModelFileError(
+            f"The model uses {name!r}, which this program does not know; expected {', '.join(registry)}."
+        )
     own = {key.removeprefix(f"{prefix}/"): array for key, array in arrays.items() if key.startswith(f"{prefix}/")}
     return registry[name].from_state(dict(entry["parameters"]), own)

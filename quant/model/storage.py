@@ -19,7 +19,17 @@ from quant.model.manifest import from_manifest, to_manifest
 LARGEST_ENTRY = 256 * 2**20  # bytes of one unpacked entry
 REPRODUCES = 1e-9  # share of the calibrated range within which a loaded model repeats its own predictions
 # What zipfile, json, NumPy and the constructors raise when they meet bytes that are not theirs.
-_DAMAGE = (zipfile.BadZipFile, zlib.error, ValueError, KeyError, TypeError, AttributeError, EOFError, OSError, RuntimeError)
+_DAMAGE = (
+    zipfile.BadZipFile,
+    zlib.error,
+    ValueError,
+    KeyError,
+    TypeError,
+    AttributeError,
+    EOFError,
+    OSError,
+    RuntimeError,
+)
 _EPOCH = (1980, 1, 1, 0, 0, 0)  # the same model gives the same bytes
 
 
@@ -58,8 +68,8 @@ def load_model(path: str | Path) -> Calibration:
     Raises
     ------
     ModelFileError
-        No model file, a damaged one, one of a newer format, or a model that no longer reproduces its test predictions to
-        1e-9 of its calibrated range.
+        No model file, a damaged one, one of a newer format, or a model that no longer reproduces its test predictions
+        to 1e-9 of its calibrated range.
     FileFormatError
         The file cannot be read at all.
     """
@@ -71,8 +81,8 @@ def load_model(path: str | Path) -> Calibration:
         raise ModelFileError(f"{path}: {problem}") from problem
     except _DAMAGE as problem:
         raise ModelFileError(
-            f"{path} is no intact model file ({type(problem).__name__}: {problem}); expected one written by 'quant calibrate'. "
-            "Fetch an undamaged copy."
+            f"{path} is no intact model file ({type(problem).__name__}: {problem}); expected one written by "
+            "'quant calibrate'. Fetch an undamaged copy."
         ) from problem
     _prove(model, path)
     return model
@@ -89,10 +99,14 @@ def _read(content: bytes) -> tuple[dict[str, Any], dict[str, AnyArray]]:
     with zipfile.ZipFile(io.BytesIO(content)) as archive:
         large = [entry.filename for entry in archive.infolist() if entry.file_size > LARGEST_ENTRY]
         if large:
-            raise ModelFileError(f"Entry {large[0]} unpacks to more than {LARGEST_ENTRY >> 20} MiB; no model is that large.")
+            raise ModelFileError(
+                f"Entry {large[0]} unpacks to more than {LARGEST_ENTRY >> 20} MiB; no model is that large."
+            )
         manifest = json.loads(archive.read("manifest.json"))
         arrays = {
-            name.removeprefix("arrays/").removesuffix(".npy"): npy.read_array(io.BytesIO(archive.read(name)), allow_pickle=False)
+            name.removeprefix("arrays/").removesuffix(".npy"): npy.read_array(
+                io.BytesIO(archive.read(name)), allow_pickle=False
+            )
             for name in archive.namelist()
             if name.startswith("arrays/")
         }
@@ -104,10 +118,12 @@ def _prove(model: Calibration, path: str | Path) -> None:
     try:
         off = np.abs(model.predict_values(model.test_spectra) - model.test_predictions)
     except (ValueError, AttributeError, TypeError, IndexError) as problem:
-        raise ModelFileError(f"{path}: the model cannot predict its own test spectra ({problem}). Do not use it.") from problem
+        raise ModelFileError(
+            f"{path}: the model cannot predict its own test spectra ({problem}). Do not use it."
+        ) from problem
     allowed = REPRODUCES * (model.limits.highest - model.limits.lowest)
     if not (off <= allowed).all():
         raise ModelFileError(
-            f"{path}: the model no longer reproduces its own test predictions (off by up to {np.max(off, initial=0):.3g} "
-            f"{model.analyte.unit}, allowed {allowed:.3g}). Do not use it; fetch an undamaged copy or calibrate again."
+            f"{path}: the model no longer reproduces its own test predictions (off by up to "
+            f"{np.max(off, initial=0):.3g} {model.analyte.unit}, allowed {allowed:.3g}). Do not use it; fetch an undamaged copy or calibrate again."
         )

@@ -38,15 +38,29 @@ def judge(limits: Limits, *, residual: float, leverage: float, value: float, sta
     """
     beyond = max(limits.lowest - value, value - limits.highest)
     criteria = (
-        (residual > limits.residual_warn, residual > limits.residual_stop, _times("residual spectrum", residual, limits.residual_warn)),
-        (leverage > limits.leverage_warn, leverage > limits.leverage_stop, _times("leverage", leverage, limits.leverage_warn)),
+        (
+            residual > limits.residual_warn,
+            residual > limits.residual_stop,
+            _times("residual spectrum", residual, limits.residual_warn),
+        ),
+        (
+            leverage > limits.leverage_warn,
+            leverage > limits.leverage_stop,
+            _times("leverage", leverage, limits.leverage_warn),
+        ),
         (
             beyond > 0,
             beyond > limits.margin_t * standard_error,
             f"value outside the calibrated range {limits.lowest:g} to {limits.highest:g}",
         ),
     )
-    verdict = NOT_APPLICABLE if any(stop for _, stop, _ in criteria) else WARNING if any(warn for warn, _, _ in criteria) else APPLICABLE
+    verdict = (
+        NOT_APPLICABLE
+        if any(stop for _, stop, _ in criteria)
+        else WARNING
+        if any(warn for warn, _, _ in criteria)
+        else APPLICABLE
+    )
     return Applicability(verdict=verdict, reasons=tuple(text for warn, _, text in criteria if warn))
 
 
@@ -71,8 +85,8 @@ def check_acquisition(model: Calibration, spectra: SpectraSet) -> None:
     """
     if spectra.quantity != model.quantity:
         raise QuantityError(
-            f"The spectra are {QUANTITIES[spectra.quantity]}, but the model was made from {QUANTITIES[model.quantity]}. "
-            "Export them as the calibration's were."
+            f"The spectra are {QUANTITIES[spectra.quantity]}, but the model was made from {QUANTITIES[model.quantity]}"
+            ". Export them as the calibration's were."
         )
     for note, known in model.domain.items():
         allowed = {_comparable(value) for value in known}

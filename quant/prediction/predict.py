@@ -12,9 +12,10 @@ from quant.prediction.result import Prediction, PredictionResult
 from quant.regression.band_area import BandArea
 from quant.spectra.sample_set import mean_by_sample
 from quant.spectra.spectra_set import SpectraSet
-from quant.statistics.intervals import NOT_RESOLVABLE
+from quant.statistics.intervals import NOT_RESOLVABLE, standard_error, true_value_share
 
 NOT_STATED = "no laboratory error stated"
+
 
 @dataclass(frozen=True, eq=False)
 class Evaluation:
@@ -78,10 +79,11 @@ def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_sampl
     if isinstance(method, BandArea):
         inverted = method.inverse_interval(method.signals(mean), known.t)
         error, low, high = inverted.standard_error, inverted.low, inverted.high
-        widen = np.sqrt(1 + extra / error**2)
-        low, high, error = value - (value - low) * widen, value + (high - value) * widen, error * widen
+        total = np.sqrt(error**2 + extra)
+        widen = np.divide(total, error, out=np.ones_like(error), where=error > 0)
+        low, high, error = value - (value - low) * widen, value + (high - value) * widen, total
     else:
-        error = np.sqrt(known.s0**2 * (1 + leverage) + extra)
+        error = standard_error(known.s0, leverage, extra)
         low, high = value - known.t * error, value + known.t * error
     deviation = (method.predict(processed) - value[index]) ** 2
     with np.errstate(invalid="ignore", divide="ignore"):
@@ -97,19 +99,20 @@ def _fewer_replicates(model: Calibration, count: IntArray) -> FloatArray:
     return known.replicate_sd**2 * np.maximum(1 / count - 1 / known.replicates, 0.0)
 
 
-def true_value_interval(model: Calibration, value: float, error: float, low: float, high: float) -> tuple[float, float] | str:
+def true_value_interval(
+    model: Calibration, value: float, error: float, low: float, high: float
+) -> tuple[float, float] | str:
     """Return the 95 % interval of the true value, or why there is none.
 
-    The laboratory variance is subtracted only if it is at most half of the variance s0² it is part of (for band area, of
-    the squared standard error): beyond that the difference of two estimates says nothing.
+    The base variance is s0², for band area the squared standard error; see `quant.statistics.intervals`.
     """
     laboratory = model.uncertainty.laboratory_error
     if laboratory is None:
         return NOT_STATED
-    base = error**2 if isinstance(model.method, BandArea) else model.uncertainty.s0**2
-    if laboratory**2 > base / 2:
+    base = error if isinstance(model.method, BandArea) else model.uncertainty.s0
+    share = true_value_share(error, base, laboratory)
+    if share is None:
         return NOT_RESOLVABLE
-    share = float(np.sqrt(1 - laboratory**2 / error**2))
     return value - (value - low) * share, value + (high - value) * share
 
 

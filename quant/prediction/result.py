@@ -2,6 +2,7 @@
 
 import csv
 import io
+import math
 from dataclasses import dataclass
 
 from quant.prediction.applicability import NOT_APPLICABLE
@@ -17,10 +18,14 @@ class Prediction(Result):
     analyte: str = documented("Name of the analyte")
     value: float = documented("Predicted value, mean over replicates", "unit of the analyte")
     unit: str = documented("Unit of value, standard error and intervals")
-    standard_error: float = documented("Standard error of the value against a new reference result", "unit of the analyte")
+    standard_error: float = documented(
+        "Standard error of the value against a new reference result", "unit of the analyte"
+    )
     low: float = documented("Lower end of the 95 % interval for a new reference result", "unit of the analyte")
     high: float = documented("Upper end of it", "unit of the analyte")
-    true_low: float | None = documented("Lower end of the 95 % interval for the true value, where it can be told", "unit of the analyte")
+    true_low: float | None = documented(
+        "Lower end of the 95 % interval for the true value, where it can be told", "unit of the analyte"
+    )
     true_high: float | None = documented("Upper end of it", "unit of the analyte")
     true_note: str = documented("Why there is no interval for the true value, or empty")
     applicability: str = documented("applicable, warning, or not applicable: then the value must not be used")
@@ -55,13 +60,23 @@ class PredictionResult(Result):
     def __str__(self) -> str:
         """A table: sample, value, standard error, 95 % interval, applicability; then the reasons."""
         header = ("sample", "value", "unit", "std error", "95 % from", "to", "applies?")
+        digits = max(map(_decimals, self.predictions), default=0)
         table = [
-            (row.sample, _shown(row.value, row), row.unit, _shown(row.standard_error, row), _shown(row.low, row), _shown(row.high, row),
-             row.applicability)
+            (
+                row.sample,
+                f"{row.value:.{digits}f}",
+                row.unit,
+                *(f"{number:.{digits}f}" for number in (row.standard_error, row.low, row.high)),
+                row.applicability,
+            )
             for row in self.predictions
         ]
         lines = [self.model, format_columns(header, table)]
-        lines += [f"{row.sample}: {'; '.join(row.reasons + row.remarks)}" for row in self.predictions if row.reasons or row.remarks]
+        lines += [
+            f"{row.sample}: {'; '.join(row.reasons + row.remarks)}"
+            for row in self.predictions
+            if row.reasons or row.remarks
+        ]
         return "\n".join(lines)
 
     def to_csv(self) -> str:
@@ -69,7 +84,9 @@ class PredictionResult(Result):
         stream = io.StringIO()
         writer: csv.DictWriter[str] | None = None
         for row in self.predictions:
-            cells = {key: "; ".join(value) if isinstance(value, list) else value for key, value in row.to_dict().items()}
+            cells = {
+                key: "; ".join(value) if isinstance(value, list) else value for key, value in row.to_dict().items()
+            }
             if writer is None:
                 writer = csv.DictWriter(stream, list(cells), lineterminator="\n")
                 writer.writeheader()
@@ -77,10 +94,7 @@ class PredictionResult(Result):
         return stream.getvalue()
 
 
-def _shown(value: float, row: Prediction) -> str:
-    """Round to a tenth of the standard error's leading digit: digits beyond that say nothing."""
-    digits = 0
-    error = abs(row.standard_error)
-    while 0 < error * 10**digits < 10 and digits < 12:  # two significant digits of the standard error
-        digits += 1
-    return f"{value:.{digits}f}"
+def _decimals(row: Prediction) -> int:
+    """Decimals that show two significant digits of the standard error: more say nothing."""
+    error = row.standard_error
+    return min(max(1 - math.floor(math.log10(error)), 0), 12) if 0 < error < math.inf else 0

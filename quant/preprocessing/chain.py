@@ -74,7 +74,7 @@ def fit_chain(
     fitted : list of Step
     spectra : array of shape (spectra, points after the last step)
     """
-    matrix, fitted = check_spectra(X), []
+    matrix, fitted = check_spectra(X, allow_nan=True), []  # each step refuses what it cannot take
     for step in steps:
         copy = unfitted_copy(step)
         matrix = copy.fit_transform(matrix, y, **({"sample_weight": sample_weight} if step.learns else {}))
@@ -84,7 +84,7 @@ def fit_chain(
 
 def apply_chain(steps: Sequence[Step], X: ArrayLike) -> FloatArray:
     """Apply fitted steps in turn to spectra of shape (spectra, points)."""
-    matrix = check_spectra(X)
+    matrix = check_spectra(X, allow_nan=True)
     for step in steps:
         matrix = step.transform(matrix)
     return matrix

@@ -1,4 +1,4 @@
-"""Keep ranges of the axis, or leave them out."""
+"""Keep ranges of the axis, or leave them out; missing points (NaN) may come in, and go out where they are kept."""
 
 from typing import ClassVar, Self
 
@@ -37,8 +37,8 @@ def inside_ranges(axis: FloatArray, ranges: list[tuple[float, float]]) -> BoolAr
         ends = np.asarray(pair, dtype=np.float64)
         if ends.shape != (2,) or not np.isfinite(ends).all():
             raise ParameterError(
-                f"ranges holds {pair!r}; expected the two ends of a range, finite axis values. Write each range as a pair, "
-                "as in [[1800, 1700], [1500, 1450]]."
+                f"ranges holds {pair!r}; expected the two ends of a range, finite axis values. Write each range as a "
+                "pair, as in [[1800, 1700], [1500, 1450]]."
             )
         held = (axis >= ends.min()) & (axis <= ends.max())
         if not held.any():
@@ -56,6 +56,7 @@ class _Ranges(Step):
     """What keeping and leaving out have in common."""
 
     fitted = ("kept_",)
+    allow_nan = True
     leave_out: ClassVar[bool]
 
     def __init__(self, ranges: list[tuple[float, float]] | None = None, axis: ArrayLike | None = None) -> None:

@@ -14,6 +14,9 @@ from quant.estimator import Step
 from quant.spectra.segments import axis_values, describe_segment, equal_spacing, segments
 
 HIGHEST_DERIVATIVE = 4
+BLOCK = (
+    32  # neighbouring windows in one matrix product: measured fastest on 100 spectra of 2000 points, windows 5 to 101
+)
 
 
 def window_coefficients(window: int, polynomial: int, derivative: int = 0) -> FloatArray:
@@ -134,17 +137,27 @@ def _plan(axis: FloatArray, window: int, polynomial: int, derivative: int) -> tu
 
 def _slide(X: FloatArray, coefficients: FloatArray, runs: list[slice]) -> FloatArray:
     """Apply coefficients of shape (window, window) to each segment of spectra of shape (spectra, points)."""
-    window = coefficients.shape[0]
-    half = window // 2
+    window, half = coefficients.shape[0], coefficients.shape[0] // 2
+    band = _band(coefficients[half], BLOCK)
     result = np.empty_like(X)
     for run in runs:
-        part = X[:, run]
-        # One correlation over all spectra end to end; the windows that straddle two spectra are overwritten below.
-        smooth = np.correlate(part.ravel(), coefficients[half], mode="same").reshape(part.shape)
-        smooth[:, :half] = part[:, :window] @ coefficients[:half].T
-        smooth[:, part.shape[1] - half :] = part[:, part.shape[1] - window :] @ coefficients[half + 1 :].T
-        result[:, run] = smooth
+        part, filled = X[:, run], result[:, run]
+        points = part.shape[1]
+        filled[:, :half] = part[:, :window] @ coefficients[:half].T
+        filled[:, points - half :] = part[:, points - window :] @ coefficients[half + 1 :].T
+        for first in range(0, points - 2 * half, BLOCK):
+            width = min(BLOCK, points - 2 * half - first)
+            reach = width + window - 1
+            filled[:, half + first : half + first + width] = part[:, first : first + reach] @ band[:reach, :width]
     return result
+
+
+def _band(coefficients: FloatArray, width: int) -> FloatArray:
+    """Return the banded matrix, shape (width + window − 1, width), that convolves `width` neighbouring windows."""
+    band = np.zeros((width + coefficients.size - 1, width))
+    for k in range(width):
+        band[k : k + coefficients.size, k] = coefficients
+    return band
 
 
 class SavitzkyGolay(Step):

@@ -21,7 +21,7 @@ _SIGNS = {"tab": "\t", "space": " "}
 
 
 def separator_of(line: str, decimal: str, given: str | None = None) -> str:
-    r"""Return the sign between the cells: the one given, else tab, semicolon, comma, blank, whichever `line` holds first.
+    """Return the sign between cells: the one given, else the first of tab, semicolon, comma, blank that `line` holds.
 
     >>> separator_of("a;b,c", "."), separator_of("1,5 2,5", ",")
     (';', ' ')

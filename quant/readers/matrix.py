@@ -48,6 +48,8 @@ def read_matrix(path: Path, content: bytes, options: ReadingOptions) -> SpectraS
     ------
     FileFormatError
         A damaged row or header; file and line, what was found and what was expected.
+    ParameterError
+        A way of finding the sample ID that is made for one spectrum a file.
     """
     if options.sample_pattern is not None or options.sample_label is not None:
         raise ParameterError(
@@ -152,10 +154,13 @@ def _axis(path: Path, headings: Sequence[str], options: ReadingOptions) -> tuple
     found = [delimited.position_from(heading, options.decimal) for heading in headings]
     positions = [position for position in found if position is not None]
     if len(positions) < 2:
+        other = "," if options.decimal == "." else "."
+        swapped = sum(delimited.position_from(heading, other) is not None for heading in headings)
+        advice = f"Set decimal = {other!r}." if swapped >= 2 else "Check separator and decimal."
         raise FileFormatError(
             path,
-            f"{len(positions)} of {len(headings)} column headings are axis positions ({name_some(map(repr, headings))}); "
-            "expected at least 2 plain numbers, with or without a unit. Check separator and decimal.",
+            f"{len(positions)} of {len(headings)} column headings are axis positions "
+            f"({name_some(map(repr, headings))}); expected at least 2 plain numbers, with or without a unit. {advice}",
             line=1,
         )
     units = {unit for _, unit in positions}
@@ -189,9 +194,9 @@ def _ordinates(
     points = list(compress(cells, is_point))
     together = "".join(points)
     plain = together.isascii() and "_" not in together and "n" not in together.lower()  # no 1_000, nan, inf
-    if plain and decimal == ".":
+    if plain and (decimal == "." or "." not in together):
         try:
-            return list(map(float, points))
+            return list(map(float, points if decimal == "." else (cell.replace(",", ".") for cell in points)))
         except ValueError:
             pass  # read again below, cell by cell, to name the one that is wrong
     return delimited.numbers_from(path, line, points, list(compress(headings, is_point)), decimal)

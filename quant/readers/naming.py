@@ -85,7 +85,7 @@ def agreed_axis_unit(path: Path, found: str | None, options: ReadingOptions) -> 
 
 
 def agreed_quantity(path: Path, found: str | None, options: ReadingOptions) -> str | None:
-    """Return the ordinate: the one stated, else the file's own, else None; percent and fraction may override each other.
+    """Return the ordinate: the one stated, else the file's own, else None; percent and fraction may replace each other.
 
     Raises
     ------

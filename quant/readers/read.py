@@ -61,6 +61,8 @@ def find_files(paths: PathLike | Iterable[PathLike], file_format: str = "auto") 
     ------
     FileFormatError
         A path, pattern or folder that gives no file.
+    ParameterError
+        No path at all.
     """
     listed = [paths] if isinstance(paths, str | os.PathLike) else list(paths)
     if not listed:
@@ -88,7 +90,8 @@ def _matches(path: str, file_format: str) -> Sequence[Path]:
         return _in_folder(target, file_format)
     if target.exists() or not glob.has_magic(path):
         return [target]  # a file that is not there is refused when it is read
-    files = [Path(name) for name in glob.glob(path, recursive=True) if Path(name).is_file()]
+    found = glob.glob(path, recursive=True)  # noqa: PTH207  leaves hidden files out, unlike Path.glob
+    files = [Path(name) for name in found if Path(name).is_file()]
     if not files:
         raise FileFormatError(path, f"no file matches this pattern; {_inventory(target.parent)}")
     return files
@@ -136,7 +139,7 @@ def _read_file(file: Path, options: ReadingOptions) -> SpectraSet:
             "Name it as format to learn what is wrong with it.",
         )
     spectra = reader.read(file, content, options)
-    notes = [{**options.notes, **row, "file": file.name} for row in spectra.notes]
+    notes = tuple({**options.notes, **row, "file": file.name} for row in spectra.notes)
     return replace(spectra, notes=notes)
 
 

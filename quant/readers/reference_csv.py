@@ -59,6 +59,8 @@ def read_reference(
         A column that is not there, a damaged row, a cell that is neither a number nor a word for "no value".
     SampleMismatchError
         A sample with two rows.
+    ParameterError
+        No analyte, or one sign for two purposes.
     """
     if separator is not None:
         one_of("separator", separator, SEPARATORS)

@@ -1,9 +1,12 @@
 """Reader and writer of one spectrum a file: two columns of numbers, position and ordinate."""
 
+import re
+from itertools import chain
 from pathlib import Path
 
 import numpy as np
 
+from quant.arrays import FloatArray
 from quant.checks import one_of
 from quant.errors import FileFormatError, ParameterError
 from quant.files import decode_text, write_text
@@ -13,6 +16,8 @@ from quant.readers.options import DECIMALS, SEPARATORS, ReadingOptions
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.provenance import source_of
 from quant.spectra.spectra_set import SpectraSet
+
+_NOT_PLAIN = re.compile(r"[^0-9+\-.eE \t]")
 
 
 def recognises_two_columns(head: bytes, file_name: str) -> bool:  # noqa: ARG001  the table of readers calls all alike
@@ -35,6 +40,8 @@ def read_two_columns(path: Path, content: bytes, options: ReadingOptions) -> Spe
     ------
     FileFormatError
         A line that is not two numbers; file and line, what was found and what was expected.
+    ParameterError
+        A way of finding the sample ID that is made for other formats.
     """
     if options.sample_column is not None or options.sample_label is not None:
         raise ParameterError(
@@ -46,12 +53,7 @@ def read_two_columns(path: Path, content: bytes, options: ReadingOptions) -> Spe
     if start is None:
         raise FileFormatError(path, _no_pairs(lines, options))
     separator = delimited.separator_of(lines[start], options.decimal, options.separator)
-    numbers = [
-        _pair(path, number, line, separator, options.decimal)
-        for number, line in enumerate(lines[start:], start + 1)
-        if line.strip()
-    ]
-    positions, ordinates = np.array(numbers).T
+    positions, ordinates = _numbers(path, lines, start, separator, options.decimal)
     unit, quantity = _names(next((line for line in reversed(lines[:start]) if line.strip()), ""), separator)
     try:
         axis = SpectralAxis(positions, naming.agreed_axis_unit(path, unit, options))
@@ -107,6 +109,19 @@ def _is_pair(line: str, separator: str, decimal: str) -> bool:
 def _number(cell: str, decimal: str) -> float | None:
     number = delimited.number_from(cell, decimal)
     return float("nan") if number is None and cell.lower() == "nan" else number
+
+
+def _numbers(path: Path, lines: list[str], start: int, separator: str, decimal: str) -> FloatArray:
+    """Return the two columns from line `start` on, shape (2, n_points)."""
+    rows = [line.split(None if separator == " " else separator) for line in lines[start:] if line.strip()]
+    together = "".join(chain.from_iterable(rows))
+    if decimal == "." and not _NOT_PLAIN.search(together) and all(len(row) == 2 for row in rows):
+        try:
+            return np.array(list(map(float, chain.from_iterable(rows)))).reshape(-1, 2).T
+        except ValueError:
+            pass  # read again below, line by line, to name the one that is wrong
+    kept = [(number, line) for number, line in enumerate(lines[start:], start + 1) if line.strip()]
+    return np.array([_pair(path, number, line, separator, decimal) for number, line in kept]).T
 
 
 def _pair(path: Path, number: int, line: str, separator: str, decimal: str) -> tuple[float, float]:

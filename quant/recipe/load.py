@@ -47,14 +47,15 @@ def recipe_from_text(text: str, *, name: str = "recipe", folder: str | Path = ".
         recipe = Recipe.model_validate(content)
     except ValidationError as error:
         raise RecipeError(problems(error, name, Recipe)) from None
-    recipe._folder, recipe._text, recipe._name = str(folder), text, name  # noqa: SLF001
+    recipe._folder, recipe._text, recipe._name = str(folder), text, name
     return recipe
 
 
 def analytes_of(recipe: Recipe) -> list[ColumnOf]:
     """Return the recipe's analytes with the columns that hold their values."""
     return [
-        ColumnOf(Analyte(table.name, table.unit, table.laboratory_error), table.column or "") for table in recipe.analyte
+        ColumnOf(Analyte(table.name, table.unit, table.laboratory_error), table.column or "")
+        for table in recipe.analyte
     ]
 
 

@@ -48,7 +48,9 @@ def _where(path: tuple[Any, ...], place: str) -> str:
 
 def _is_alternative(part: Any) -> bool:
     """Pydantic names the branch of a union in the path: ``literal['auto']``, ``constrained-int``, ``int``."""
-    return isinstance(part, str) and (part in {"int", "str", "float", "constrained-int"} or part.startswith(("literal[", "list[", "constrained")))
+    return isinstance(part, str) and (
+        part in {"int", "str", "float", "constrained-int"} or part.startswith(("literal[", "list[", "constrained"))
+    )
 
 
 def _keys_at(model: type[BaseModel], path: tuple[Any, ...]) -> list[str]:

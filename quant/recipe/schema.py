@@ -24,18 +24,25 @@ class Table(BaseModel):
 class SpectraTable(Table):
     """[spectra]: which files, and how to read them."""
 
-    files: list[Text] = Field(min_length=1, description="Files, globs or folders, counted from the recipe's own folder.")
+    files: list[Text] = Field(
+        min_length=1, description="Files, globs or folders, counted from the recipe's own folder."
+    )
     format: Literal["auto", "jcamp_dx", "matrix", "two_columns"] = Field(
         DEFAULTS["spectra"]["format"], description="File format; auto judges by content."
     )
     sample_column: Text | None = Field(None, description="matrix: the column that holds the sample ID.")
     sample_label: Text | None = Field(None, description="JCAMP-DX: the label that holds the sample ID. Default TITLE.")
     sample_pattern: Text | None = Field(
-        None, description="Regular expression on the file name; its group (?P<sample>...) is the sample ID, others are notes."
+        None,
+        description="Regular expression on the file name; its group (?P<sample>...) is the sample ID, others notes.",
     )
-    separator: Literal[",", ";", "tab", "space"] | None = Field(None, description="Delimited text: what parts the cells.")
+    separator: Literal[",", ";", "tab", "space"] | None = Field(
+        None, description="Delimited text: what parts the cells."
+    )
     decimal: Literal[".", ","] = Field(DEFAULTS["spectra"]["decimal"], description="Delimited text: decimal sign.")
-    axis_unit: Literal["cm-1", "nm", "um", "point"] | None = Field(None, description="Unit of the axis where the file has none.")
+    axis_unit: Literal["cm-1", "nm", "um", "point"] | None = Field(
+        None, description="Unit of the axis where the file has none."
+    )
     quantity: (
         Literal[
             "absorbance",
@@ -51,7 +58,9 @@ class SpectraTable(Table):
     notes: dict[str, str] = Field(
         default_factory=dict, description="Notes that all spectra share: technique, resolution [cm⁻¹], accessory ..."
     )
-    resample: bool = Field(DEFAULTS["spectra"]["resample"], description="Interpolate differing axes onto the first one.")
+    resample: bool = Field(
+        DEFAULTS["spectra"]["resample"], description="Interpolate differing axes onto the first one."
+    )
 
     def options(self) -> ReadingOptions:
         """Return the options for the readers."""
@@ -94,11 +103,16 @@ class ExcludeTable(Table):
 class BandTable(Table):
     """A band: where its signal is taken, and above which baseline."""
 
-    signal: Literal["area", "height", "height_at"] = Field("area", description="Area, greatest height, or height at a position.")
+    signal: Literal["area", "height", "height_at"] = Field(
+        "area", description="Area, greatest height, or height at a position."
+    )
     range: list[float] | None = Field(None, min_length=2, max_length=2, description="From, to. [axis unit]")
     position: float | None = Field(None, description="height_at: the position. [axis unit]")
     baseline: list[float] | None = Field(
-        None, min_length=2, max_length=2, description="Two positions that carry the straight baseline; none: no baseline. [axis unit]"
+        None,
+        min_length=2,
+        max_length=2,
+        description="Two positions that carry the straight baseline; none: no baseline. [axis unit]",
     )
 
 
@@ -110,20 +124,27 @@ class RegressionTable(Table):
         DEFAULTS["regression"]["max_factors"], description="pls: largest number of factors looked at."
     )
     factors: Positive | Literal["one_standard_error", "minimum", "f_ratio"] = Field(
-        DEFAULTS["regression"]["factors"], description="pls: the rule that chooses the number of factors, or the number."
+        DEFAULTS["regression"]["factors"],
+        description="pls: the rule that chooses the number of factors, or the number.",
     )
     bands: list[BandTable] | None = Field(None, description="band_area: bands whose signals are summed.")
-    reference_band: BandTable | None = Field(None, description="band_area: band whose signal divides (internal standard, path).")
-    through_origin: bool = Field(DEFAULTS["regression"]["through_origin"], description="band_area: line through the origin.")
+    reference_band: BandTable | None = Field(
+        None, description="band_area: band whose signal divides (internal standard, path)."
+    )
+    through_origin: bool = Field(
+        DEFAULTS["regression"]["through_origin"], description="band_area: line through the origin."
+    )
 
     @model_validator(mode="after")
     def _belongs_together(self) -> "RegressionTable":
         given = self.model_fields_set
         if self.method == "band_area" and not self.bands:
-            raise ValueError("method = \"band_area\" needs bands = [{ signal = \"area\", range = [from, to] }]")
-        foreign = given & ({"bands", "reference_band", "through_origin"} if self.method == "pls" else {"max_factors", "factors"})
+            raise ValueError('method = "band_area" needs bands = [{ signal = "area", range = [from, to] }]')
+        foreign = given & (
+            {"bands", "reference_band", "through_origin"} if self.method == "pls" else {"max_factors", "factors"}
+        )
         if foreign:
-            raise ValueError(f"{', '.join(sorted(foreign))} does not belong to method = \"{self.method}\"; remove it")
+            raise ValueError(f'{", ".join(sorted(foreign))} does not belong to method = "{self.method}"; remove it')
         return self
 
 
@@ -134,8 +155,12 @@ class CrossValidationTable(Table):
         "auto", "leave_one_out", "random_folds", "contiguous_blocks", "interleaved", "leave_one_group_out"
     ] = Field(DEFAULTS["cross_validation"]["scheme"], description="How the folds are made.")
     folds: int = Field(DEFAULTS["cross_validation"]["folds"], ge=2, description="Number of folds.")
-    repeats: Positive = Field(DEFAULTS["cross_validation"]["repeats"], description="random_folds: how often, drawn anew.")
-    group: Text | None = Field(None, description="Note whose equal values are never split between folds (batch, duplicate).")
+    repeats: Positive = Field(
+        DEFAULTS["cross_validation"]["repeats"], description="random_folds: how often, drawn anew."
+    )
+    group: Text | None = Field(
+        None, description="Note whose equal values are never split between folds (batch, duplicate)."
+    )
     seed: int = Field(DEFAULTS["cross_validation"]["seed"], ge=0, description="Seed of random folds and random splits.")
 
 
@@ -150,15 +175,19 @@ class ValidationTable(Table):
     split: Literal["kennard_stone", "random"] | None = Field(
         None, description="Set aside a share of one set (an internal test, not an independent validation)."
     )
-    fraction: float = Field(DEFAULTS["validation"]["fraction"], gt=0, lt=1, description="Share that a split sets aside.")
+    fraction: float = Field(
+        DEFAULTS["validation"]["fraction"], gt=0, lt=1, description="Share that a split sets aside."
+    )
 
     @model_validator(mode="after")
     def _one_way(self) -> "ValidationTable":
         ways = [key for key in ("samples", "note", "files", "split") if getattr(self, key) is not None]
         if len(ways) != 1:
-            raise ValueError(f"{' and '.join(ways) or 'nothing'} given; expected exactly one of samples, note, files, split")
+            raise ValueError(
+                f"{' and '.join(ways) or 'nothing'} given; expected exactly one of samples, note, files, split"
+            )
         if (self.note is None) != (self.values is None):
-            raise ValueError("note and values go together: note = \"subset\", values = [\"T\"]")
+            raise ValueError('note and values go together: note = "subset", values = ["T"]')
         if self.reference_file is not None and self.files is None:
             raise ValueError("reference_file goes with files")
         if "fraction" in self.model_fields_set and self.split is None:
@@ -175,7 +204,8 @@ class Recipe(Table):
     analyte: list[AnalyteTable] = Field(min_length=1)
     exclude: list[ExcludeTable] = Field(default_factory=list)
     preprocessing: list[dict[str, Any]] = Field(
-        default_factory=list, description=f"Steps in order, each with step = one of {', '.join(STEPS)}, and its options."
+        default_factory=list,
+        description=f"Steps in order, each with step = one of {', '.join(STEPS)}, and its options.",
     )
     regression: RegressionTable = Field(default_factory=lambda: RegressionTable.model_validate({}))
     cross_validation: CrossValidationTable = Field(default_factory=lambda: CrossValidationTable.model_validate({}))

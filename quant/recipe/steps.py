@@ -7,8 +7,8 @@ from typing import Any
 from pydantic import ConfigDict, Field, ValidationError, create_model
 
 from quant.errors import RecipeError
-from quant.preprocessing.registry import STEPS
 from quant.estimator import Step
+from quant.preprocessing.registry import STEPS
 from quant.recipe.messages import did_you_mean, problems
 
 

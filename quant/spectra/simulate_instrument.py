@@ -93,7 +93,8 @@ def measure(absorbance: ArrayLike, axis: ArrayLike, rng: np.random.Generator, st
     axis : array of shape (n_points,)
         Wavenumbers, evenly spaced, rising or falling. [cm⁻¹]
     rng : numpy.random.Generator
-        Source of everything random; the same state of it gives the same result.
+        Source of everything random. Two states given equal generators draw equal random numbers, so that only what
+        differs between the states differs between the results.
     state : InstrumentState
 
     Returns
@@ -113,8 +114,9 @@ def measure(absorbance: ArrayLike, axis: ArrayLike, rng: np.random.Generator, st
     rows = effects.path_variation(rows * state.gain, rng, state.path_variation)
     light = transmittance_from_absorbance(rows)
     light = effects.gaussian_line_shape(light, spacing, state.resolution)
+    gases = _gases(len(rows), points, rng, state)
     if state.water_vapour or state.carbon_dioxide:
-        light = light * transmittance_from_absorbance(_gases(len(rows), points, rng, state))
+        light = light * transmittance_from_absorbance(gases)
     if state.shift or state.stretch:
         light = effects.shift_axis(light, points, state.shift, state.stretch)
     if state.stray_light:

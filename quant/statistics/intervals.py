@@ -47,68 +47,61 @@ def base_variance(errors: ArrayLike, leverages: ArrayLike) -> float:
     return float(np.mean(error**2 / (1 + leverage)))
 
 
-def prediction_interval(value: ArrayLike, s0: float, leverage: ArrayLike, t: float) -> tuple[FloatArray, FloatArray]:
-    """Lower and upper end of value ± t·s0·sqrt(1 + h): where a new *reference result* of the sample is expected.
+def standard_error(s0: float, leverage: ArrayLike, added: ArrayLike = 0.0) -> FloatArray:
+    """Standard error sqrt(s0²(1 + h) + added) of a prediction against a new *reference result*.
 
     Parameters
     ----------
-    value : float or array of shape (n_samples,)
-        Predictions. [unit of the analyte]
     s0 : float
         Square root of `base_variance`. [unit of the analyte]
     leverage : float or array of shape (n_samples,)
         Leverages of the new samples, 1/n included.
-    t : float
-        Quantile of Student's t, t(0.975, n - A - 1) for 95 %.
+    added : float or array of shape (n_samples,)
+        Variance that the left-out samples did not have, such as that of fewer replicates. [unit of the analyte, squared]
 
     Returns
     -------
-    tuple of two arrays
-        Lower and upper ends, in the shape of `value`; numbers where that is a number. [unit of the analyte]
+    array in the shape of `leverage`
+        [unit of the analyte]
 
     Raises
     ------
     ParameterError
         A negative or non-finite leverage or s0.
     """
-    centre = np.asarray(value, dtype=np.float64)
-    half_width = t * _standard_deviation("s0", s0) * np.sqrt(1 + _leverage(leverage))
-    return centre - half_width, centre + half_width
+    return np.asarray(np.sqrt(_standard_deviation("s0", s0) ** 2 * (1 + _leverage(leverage)) + added))
 
 
-def true_value_variance(s0: float, leverage: ArrayLike, s_ref: float) -> FloatArray | None:
-    """Variance of a prediction about the *true value*: s0²(1 + h) - s_ref², or None.
+def true_value_share(error: float, base: float, laboratory: float) -> float | None:
+    """Share of an interval's half-width that is left when it is to hold the *true value*, or None.
 
-    s0² holds the laboratory's own variance s_ref². Where that is more than half of it, the difference is mostly chance:
-    None is returned, and the text to print is `NOT_RESOLVABLE`.
+    The variance of a result holds the laboratory's own variance; without it the half-width is smaller by
+    sqrt(1 - laboratory²/error²). Where the laboratory's variance is more than half of the base variance, the difference
+    is mostly chance: None is returned, and the text to print is `NOT_RESOLVABLE`.
 
     Parameters
     ----------
-    s0, s_ref : float
-        Square root of `base_variance`; standard deviation of the laboratory value of one sample. [unit of the analyte]
-    leverage : float or array of shape (n_samples,)
-        Leverages of the new samples, 1/n included.
-
-    Returns
-    -------
-    array or None
-        In the shape of `leverage`. [unit of the analyte, squared]
+    error : float
+        Standard error against a new reference result. [unit of the analyte]
+    base : float
+        Square root of `base_variance`, never above `error`. [unit of the analyte]
+    laboratory : float
+        Standard error of one laboratory value. [unit of the analyte]
 
     Raises
     ------
     ParameterError
-        A negative or non-finite leverage or standard deviation.
+        A negative or non-finite standard error.
 
     References
     ----------
     .. [1] N.M. Faber, R. Bro, Chemom. Intell. Lab. Syst. 61 (2002) 133-149, whose estimate subtracts the reference
        variance in the same way (from memory; the bound of one half is this program's own).
     """
-    total, laboratory = _standard_deviation("s0", s0) ** 2, _standard_deviation("s_ref", s_ref) ** 2
-    h = _leverage(leverage)
-    if laboratory > total / 2:
+    total, part = _standard_deviation("error", error), _standard_deviation("laboratory", laboratory)
+    if part**2 > _standard_deviation("base", base) ** 2 / 2:
         return None
-    return total * (1 + h) - laboratory
+    return float(np.sqrt(1 - (part / total) ** 2)) if total > 0 else 1.0
 
 
 def _leverage(values: ArrayLike) -> FloatArray:

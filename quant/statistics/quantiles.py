@@ -6,7 +6,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 from scipy import special
 
-from quant.checks import as_vector, name_some
+from quant.checks import as_vector, name_some, one_of
 from quant.errors import NotEnoughDataError, ParameterError
 
 
@@ -109,47 +109,51 @@ def rmse_confidence_interval(value: float, n_samples: int, probability: float = 
     return value * math.sqrt(n_samples / below), value * math.sqrt(n_samples / above)
 
 
-def upper_limit(values: ArrayLike, n_samples: int, probability: float) -> float:
+def upper_limit(values: ArrayLike, n_units: int, probability: float, scale: str = "cube_root") -> float:
     """Limit that a new value of a skewed, non-negative quantity stays under with the given probability.
 
-    The cube root of a chi-square-like quantity is nearly normal [1]_; the limit is the one-sided prediction limit
-    (m + t(probability, n_samples - 1)·s·sqrt(1 + 1/n_samples))³, with m and s mean and standard deviation (divided by
-    the number of values less one) of the cube roots.
+    On a scale where the values are nearly normal the limit is the one-sided prediction limit
+    m + t(probability, n_units - 1)·s·sqrt(1 + 1/n_units), with m and s mean and standard deviation (divided by the
+    number of values less one). The cube root makes a chi-square-like quantity nearly normal [1]_; the logarithm is for
+    sums of a few effects of very different size, whose upper tail is longer (common practice).
 
     Parameters
     ----------
     values : array of shape (n_values,)
-        Leverages or spectral residuals of left-out samples, not negative; repeats of the same samples may be pooled.
-    n_samples : int
-        Number of different samples behind the values, at least 2.
+        Leverages or spectral residuals of left-out samples, not negative.
+    n_units : int
+        Number of independent units behind the values (samples, or batches of samples that are alike), at least 2.
     probability : float
         Inside (0, 1), such as 0.95.
+    scale : {"cube_root", "logarithm"}
 
     Raises
     ------
     ParameterError
-        A negative value, or a probability outside (0, 1).
+        A negative value (or zero, for the logarithm), another scale, or a probability outside (0, 1).
     NotEnoughDataError
-        Fewer than two values or samples.
+        Fewer than two values or units.
 
     References
     ----------
     .. [1] E.B. Wilson, M.M. Hilferty, The distribution of chi-square, PNAS 17 (1931) 684-688 (from memory).
     """
     vector = as_vector("values", values)
-    negative = np.flatnonzero(vector < 0)
-    if negative.size:
+    logarithm = one_of("scale", scale, ("cube_root", "logarithm")) == "logarithm"
+    wrong = np.flatnonzero(vector <= 0 if logarithm else vector < 0)
+    if wrong.size:
         raise ParameterError(
-            f"{negative.size} value(s) are below zero, at position(s) {name_some(negative)}; a limit by cube roots "
-            "is for leverages, squared residuals and the like."
+            f"{wrong.size} value(s) are {'not above' if logarithm else 'below'} zero, at position(s) {name_some(wrong)}; "
+            "the limit is for leverages, squared residuals and the like."
         )
-    if min(vector.size, n_samples) < 2:
+    if min(vector.size, n_units) < 2:
         raise NotEnoughDataError(
-            f"{vector.size} value(s) of {n_samples} sample(s); at least 2 samples are needed for a limit."
+            f"{vector.size} value(s) of {n_units} unit(s); at least 2 independent units are needed for a limit."
         )
-    roots = np.cbrt(vector)
-    reach = t_quantile(probability, n_samples - 1) * np.sqrt(1 + 1 / n_samples)
-    return float((roots.mean() + reach * roots.std(ddof=1)) ** 3)
+    scaled = np.log(vector) if logarithm else np.cbrt(vector)
+    reach = t_quantile(probability, n_units - 1) * np.sqrt(1 + 1 / n_units)
+    limit = float(scaled.mean() + reach * scaled.std(ddof=1))
+    return float(np.exp(limit)) if logarithm else limit**3
 
 
 def _check_probability(p: float) -> None:

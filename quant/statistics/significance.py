@@ -7,7 +7,6 @@ from typing import NamedTuple
 import numpy as np
 from numpy.typing import ArrayLike
 
-from quant.arrays import FloatArray
 from quant.checks import one_of, paired_vectors
 from quant.errors import NotEnoughDataError
 from quant.result import Result, documented
@@ -92,7 +91,6 @@ class Line(NamedTuple):
 
     slope: float
     intercept: float
-    excess_slope: float  # slope - 1, computed without taking the difference of two nearly equal numbers
     mean_x: float
     sum_xx: float  # sum of (x - mean)²
     sum_residuals: float  # sum of squared residuals
@@ -187,7 +185,7 @@ def slope_intercept_test(
         )
     slope_sd = residual_sd / math.sqrt(line.sum_xx)
     intercept_sd = residual_sd * math.sqrt(1 / n + line.mean_x**2 / line.sum_xx)
-    slope_t, intercept_t = abs(line.excess_slope) / slope_sd, abs(line.intercept) / intercept_sd
+    slope_t, intercept_t = abs(line.slope - 1) / slope_sd, abs(line.intercept) / intercept_sd
     critical = t_quantile(0.5 + probability / 2, dof)
     return SlopeInterceptTest(
         direction=direction,
@@ -230,21 +228,14 @@ def fit_line(predicted: ArrayLike, reference: ArrayLike, direction: str = REFERE
     x, y = paired_vectors("predicted values", predicted, "reference values", reference, least=2)
     if one_of("direction", direction, DIRECTIONS) == PREDICTED_ON_REFERENCE:
         x, y = y, x
-    dx, dy = _centred(x), _centred(y)
+    mean_x, mean_y = float(x.mean()), float(y.mean())
+    dx, dy = x - mean_x, y - mean_y
     sum_xx = float(dx @ dx)
     if no_spread(x, np.abs(x).max()):
         raise NotEnoughDataError(
             f"the {x.size} {direction.split(' on ')[1]} values are all {x[0]:.6g}; a line needs values that differ."
         )
-    excess = float(dx @ (dy - dx)) / sum_xx
     slope = float(dx @ dy) / sum_xx
     residual = dy - slope * dx
-    mean_x, mean_y = float(x.mean()), float(y.mean())
     exact = no_spread(residual, max(np.abs(x).max(), np.abs(y).max()))
-    return Line(slope, mean_y - slope * mean_x, excess, mean_x, sum_xx, float(residual @ residual), exact)
-
-
-def _centred(values: FloatArray) -> FloatArray:
-    centred: FloatArray = values - values.mean()
-    centred -= centred.mean()  # twice: the first mean is rounded to the size of the values, not of their spread
-    return centred
+    return Line(slope, mean_y - slope * mean_x, mean_x, sum_xx, float(residual @ residual), exact)

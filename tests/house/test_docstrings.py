@@ -2,7 +2,8 @@
 
 Public is what no underscore in the path to it hides. A `raise` of an error by its class has to be met by that class
 under "Raises" of the function it stands in; `raise` alone (the same error again) and NotImplementedError are left out,
-and so is what called functions raise: that cannot be told from the text of one file.
+and so is what called functions raise: that cannot be told from the text of one file. Commands are left out too, since
+their docstring is what --help prints.
 """
 
 import ast
@@ -11,6 +12,7 @@ from collections.abc import Iterator
 from pathlib import Path
 
 FunctionNode = ast.FunctionDef | ast.AsyncFunctionDef
+COMMANDS = {"command", "group"}
 REPEATS = {"overload", "override", "setter", "deleter"}  # the docstring stands at what they repeat
 
 
@@ -23,7 +25,7 @@ def docstring_faults(source: str, file: str) -> list[str]:
         docstring = ast.get_docstring(node)
         if not docstring:
             faults.append(f"{place} has no docstring")
-        elif isinstance(node, FunctionNode):
+        elif isinstance(node, FunctionNode) and COMMANDS.isdisjoint(map(_last_name, node.decorator_list)):
             section = re.search(r"^Raises\n-{6}\n((?:.*\n?)+?)(?=^\S.*\n-{3,}$|\Z)", docstring, re.MULTILINE)
             listed = set(re.findall(r"\w+", section[1])) if section else set()
             faults += [f"{place} raises {error}; not listed under Raises" for error in sorted(raised(node) - listed)]
@@ -118,6 +120,12 @@ def test_an_unlisted_error_is_seen() -> None:
 def test_a_missing_raises_section_is_seen() -> None:
     source = '"""M."""\ndef f():\n    """Raise ValueError."""\n    raise ValueError\n'
     assert docstring_faults(source, "a.py") == ["a.py:2: f raises ValueError; not listed under Raises"]
+
+
+def test_a_command_explains_itself_to_its_user() -> None:
+    source = '"""M."""\n@click.command("x")\ndef f():\n    """Do."""\n    raise click.UsageError("no")\n'
+    assert docstring_faults(source, "a.py") == []
+    assert docstring_faults(source.replace("command", "other"), "a.py") != []
 
 
 def test_the_same_error_again_needs_no_mention() -> None:

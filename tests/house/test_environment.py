@@ -164,7 +164,7 @@ def test_the_last_lines_of_a_failure_are_shown(environment: ModuleType, tmp_path
     script = "import sys; print(*range(100, 200), sep='\\n'); print('no such package', file=sys.stderr); sys.exit(3)"
     with pytest.raises(environment.CannotPrepare, match=r"pip failed \(exit code 3\)") as caught:
         environment.call([sys.executable, "-c", script], "pip failed", tmp_path, None)
-    shown = [line.strip() for line in str(caught.value).splitlines()[1:]]
+    shown = [line.strip() for line in str(caught.value).splitlines()[1:-1]]
     assert len(shown) == environment.LINES_SHOWN
     assert {"199", "no such package"} <= set(shown)
 
@@ -218,6 +218,7 @@ def test_the_demo_stops_at_an_unexpected_exit_code(
 
     class Place:
         root = project
+        programs = project / ".venv" / "bin"
 
         def run(self, words: list[str]) -> int:
             ran.append(words)

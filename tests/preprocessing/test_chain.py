@@ -79,6 +79,16 @@ def test_fitting_leaves_the_given_steps_alone():
     assert not hasattr(step, "reference_")
 
 
+def test_missing_points_that_a_range_leaves_out_do_no_harm():
+    spectra = SPECTRA.copy()
+    spectra[2, AXIS > 1990] = np.nan
+    fitted, result = fit_chain(place_on_axis(STEPS_IN_ORDER, AXIS), spectra)
+    np.testing.assert_array_equal(result, fit_chain(place_on_axis(STEPS_IN_ORDER, AXIS), SPECTRA)[1])
+    np.testing.assert_array_equal(apply_chain(fitted, spectra), result)
+    with pytest.raises(ParameterError, match="Input X contains NaN"):
+        fit_chain(place_on_axis(STEPS_IN_ORDER[1:], AXIS), spectra)
+
+
 def test_an_empty_chain_changes_nothing():
     fitted, result = fit_chain([], SPECTRA)
     assert fitted == []

@@ -35,6 +35,21 @@ def test_refuses_spectra_without_slope():
         msc([R, orthogonal, np.full(5, 0.1)], R)
 
 
+def test_refuses_a_slope_that_is_only_noise():
+    rng = np.random.default_rng(4)
+    reference = rng.normal(size=500)
+    stranger = rng.normal(size=500)
+    slope, offset = np.polyfit(reference, stranger, 1)
+    residual = stranger - slope * reference - offset
+    for share, refused in [(1e-8, True), (1e-3, False)]:
+        spectrum = residual + share * reference
+        if refused:
+            with pytest.raises(QuantityError, match="slope about 0"):
+                msc([spectrum], reference)
+        else:
+            assert np.abs(msc([spectrum], reference)).max() > 100  # harmful perhaps, but defined
+
+
 def test_refuses_a_flat_reference():
     with pytest.raises(QuantityError, match=r"reference spectrum .* is flat"):
         MSC().fit(np.array([R, 0.6 - R]))  # their mean is 0.3 everywhere

@@ -5,6 +5,7 @@ import pytest
 
 from quant.errors import ParameterError
 from quant.preprocessing.ranges import KeepRanges, LeaveOutRanges
+from quant.preprocessing.snv import SNV
 
 AXIS = np.arange(2000.0, 1000.0, -100.0)  # falling: 2000, 1900, ..., 1100
 SPECTRA = np.vstack([AXIS, AXIS / 10])
@@ -53,6 +54,20 @@ def test_refuses_ranges_that_cannot_be_meant(step, ranges, message):
 def test_something_has_to_stay(step):
     with pytest.raises(ParameterError, match=r"no point of the axis, 2000 to 1100 .*At least one has to stay"):
         step.fit(SPECTRA)
+
+
+def test_missing_points_may_be_left_out():
+    spectra = SPECTRA.copy()
+    spectra[1, 2:4] = np.nan
+    left = LeaveOutRanges([[1800, 1700]], AXIS).fit_transform(spectra)
+    np.testing.assert_array_equal(left[1], [200, 190, 160, 150, 140, 130, 120, 110])
+    kept = KeepRanges([[1900, 1800]], AXIS).fit_transform(spectra)
+    assert np.isnan(kept[1, 1])
+    with pytest.raises(ParameterError, match=r"NaN: 1 value\(s\)"):
+        SNV().fit(kept)
+    spectra[0, 0] = np.inf
+    with pytest.raises(ParameterError, match=r"infinity .* 1 value\(s\) in 1 row\(s\), the first of them \[0\]"):
+        KeepRanges().fit(spectra)
 
 
 def test_the_axis_has_to_fit_the_spectra():

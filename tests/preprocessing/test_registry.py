@@ -39,7 +39,7 @@ CONFIGURED = [
 # Checks that scikit-learn runs on a step with these parameters, and that meet a refusal we intend:
 # - Absorbance: the checks' spectra are random numbers from zero or below to above 1.5, which is no transmittance.
 # - SavitzkyGolay with its default window of 11: the checks' spectra have 1 to 10 points.
-# - SNV, MSC: `check_estimators_dtypes` cuts random numbers down to integers, which leaves one spectrum all zero, and flat.
+# - SNV, MSC: `check_estimators_dtypes` cuts random numbers down to integers, which makes one spectrum all zero: flat.
 TOO_WIDE = {
     "check_fit_score_takes_y",
     "check_estimators_overwrite_params",

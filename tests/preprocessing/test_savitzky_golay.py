@@ -95,6 +95,14 @@ def test_agrees_with_an_independent_implementation(window, polynomial, derivativ
     np.testing.assert_allclose(ours, expected, rtol=1e-9, atol=1e-9 * np.abs(expected).max())
 
 
+@pytest.mark.parametrize("points", [11, 12, 41, 42, 43, 74, 75, 106])
+def test_spectra_that_end_anywhere_in_a_block(points):
+    """Inner windows are taken 32 at a time: none, one, a block less or more one."""
+    spectra = np.random.default_rng(points).normal(size=(2, points))
+    expected = savgol_filter(spectra, 11, 2, mode="interp")
+    np.testing.assert_allclose(savitzky_golay(spectra, 11, 2), expected, atol=1e-13)
+
+
 def test_window_as_long_as_the_spectrum():
     spectra = np.random.default_rng(21).normal(size=(3, 9))
     fits = np.array([np.polyval(np.polyfit(range(9), row, 2), range(9)) for row in spectra])

@@ -49,6 +49,7 @@ def test_ends_of_a_range_survive_rounding_of_the_axis():
     axis = 0.1 * np.arange(11)  # holds 0.30000000000000004 for 0.3
     assert axis[3] > 0.3
     assert signal(np.ones(11), axis, {"signal": "area", "range": [0.1, 0.3]}) == pytest.approx(0.2)
+    assert signal(np.ones(11), -axis, {"signal": "area", "range": [-0.3, -0.1]}) == pytest.approx(0.2)
 
 
 def test_height_is_the_vertex_of_the_parabola_even_between_uneven_points():

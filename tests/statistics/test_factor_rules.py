@@ -49,7 +49,7 @@ def test_the_f_ratio_case():
     assert minimum(squares) == 5
     assert f_ratio(squares, alpha=0.05) == 2  # F(0.95; 24, 24) = 1.984
     assert f_ratio(squares[:, :8] * 3) == 3  # of eight samples F is 1.640
-    assert f_ratio(_with_press(1.0, 0.0, 0.0)) == 1
+    assert f_ratio(_with_press(1.0, 0.5, 0.0)) == 2  # no ratio to a PRESS of zero
 
 
 def test_one_standard_error_by_hand():
@@ -58,6 +58,7 @@ def test_one_standard_error_by_hand():
     assert one_standard_error([[9.0] * 4, [2.81] * 4, best]) == 1
     assert one_standard_error([[9.0] * 4, [2.82] * 4, best]) == 2
     # Divided by n the standard error would be 0.7071, and 2.81 beyond it.
+    assert one_standard_error(_with_press(60.0, 40.0, 12.0, 6.0)) == 3  # samples all alike: no standard error
 
 
 def test_no_rule_answers_with_the_mean():

@@ -8,7 +8,7 @@ import pytest
 from scipy import stats
 
 from quant.errors import NotEnoughDataError, ParameterError, SampleMismatchError
-from quant.statistics.intervals import NOT_RESOLVABLE, base_variance, prediction_interval, true_value_variance
+from quant.statistics.intervals import NOT_RESOLVABLE, base_variance, standard_error, true_value_share
 
 
 def test_the_base_variance_by_hand_and_pooled_over_repeats():
@@ -16,25 +16,17 @@ def test_the_base_variance_by_hand_and_pooled_over_repeats():
     assert base_variance([[1.0, -2.0], [3.0, 0.0]], [[0.0, 1.0], [0.5, 0.5]]) == (1 + 2 + 6 + 0) / 4
 
 
-def test_the_interval_by_hand():
-    low, high = prediction_interval(5.0, 0.2, 0.44, 2.0)  # sqrt(1.44) = 1.2
-    assert (low, high) == pytest.approx((5.0 - 0.48, 5.0 + 0.48))
-
-
-def test_intervals_of_many_samples_are_those_of_each_and_may_reach_below_zero():
-    values, leverages = np.array([0.1, 4.0, 9.0]), np.array([0.05, 0.2, 1.5])
-    low, high = prediction_interval(values, 0.3, leverages, 2.1)
-    assert low[0] < 0
-    for i in range(3):
-        assert (low[i], high[i]) == prediction_interval(values[i], 0.3, leverages[i], 2.1)
+def test_the_standard_error_by_hand():
+    assert standard_error(0.2, 0.44) == pytest.approx(0.2 * 1.2)
+    assert standard_error(0.2, np.array([0.44, 0.0]), np.array([0.0, 0.05])) == pytest.approx([0.24, 0.3])
 
 
 def test_the_true_value_by_hand_and_where_it_cannot_be_told():
-    assert true_value_variance(0.2, 0.5, 0.1) == pytest.approx(0.04 * 1.5 - 0.01)
-    assert true_value_variance(2.0, 0.5, 1.4) == pytest.approx(6.0 - 1.96)  # 1.96 of 2 allowed
-    assert true_value_variance(2.0, 0.5, 1.42) is None  # 2.0164
-    assert true_value_variance(2.0, np.array([0.0, 0.5]), 1.0) == pytest.approx([3.0, 5.0])
-    assert true_value_variance(2.0, 0.5, 0.0) == 6.0
+    assert true_value_share(0.5, 0.5, 0.3) == pytest.approx(0.8)  # 0.5² - 0.3² = 0.4²
+    assert true_value_share(2.5, 2.0, 1.4) == pytest.approx(np.sqrt(6.25 - 1.96) / 2.5)  # 1.96 of 2 allowed
+    assert true_value_share(2.5, 2.0, 1.42) is None  # 2.0164
+    assert true_value_share(2.5, 2.0, 0.0) == 1.0
+    assert true_value_share(0.0, 0.0, 0.0) == 1.0
     assert NOT_RESOLVABLE == "not resolvable from laboratory error"
 
 
@@ -51,8 +43,8 @@ def test_intervals_of_left_out_straight_lines_cover_new_reference_results():
         left_out = (design @ inverse @ design.T @ y - y) / (1 - h)
         s0 = np.sqrt(base_variance(left_out, h / (1 - h)))  # leverage in the line through the other eleven
         row = np.array([1.0, new])
-        low, high = prediction_interval(row @ inverse @ design.T @ y, s0, row @ inverse @ row, 2.228139)
-        covered += low <= 1 + 2 * new + rng.normal(0, 0.5) <= high
+        half_width = 2.228139 * standard_error(s0, row @ inverse @ row)
+        covered += abs(1 + 2 * new + rng.normal(0, 0.5) - row @ inverse @ design.T @ y) <= half_width
     assert stats.binom.ppf(0.0005, 1000, 0.95) <= covered <= stats.binom.ppf(0.9995, 1000, 0.95)
 
 
@@ -64,11 +56,11 @@ def test_impossible_questions_are_refused():
     with pytest.raises(ParameterError, match="not finite"):
         base_variance([np.nan], [0.1])
     with pytest.raises(ParameterError, match="leverage is negative"):
-        prediction_interval(1.0, 0.1, -0.1, 2.0)
+        standard_error(0.1, -0.1)
     with pytest.raises(ParameterError, match="s0 = -1"):
-        prediction_interval(1.0, -1.0, 0.1, 2.0)
-    with pytest.raises(ParameterError, match="s_ref = nan"):
-        true_value_variance(1.0, 0.1, float("nan"))
+        standard_error(-1.0, 0.1)
+    with pytest.raises(ParameterError, match="laboratory = nan"):
+        true_value_share(1.0, 0.1, float("nan"))
 
 
 def test_the_prediction_path_loads_no_scipy():

@@ -39,6 +39,13 @@ def test_points_that_coincide_are_taken_in_order():
     assert kennard_stone(np.ones((4, 3)), 4).tolist() == [0, 1, 2, 3]
 
 
+def test_points_that_coincide_but_for_rounding_are_taken_in_order():
+    different = 1000 + np.random.default_rng(10).normal(size=(40, 300))
+    order = kennard_stone(np.vstack([different, different * (1 + 2e-16), different]), 120)
+    assert sorted(order[:40] % 40) == list(range(40))
+    assert order[40:].tolist() == sorted(order[40:])
+
+
 def test_small_differences_count_beside_a_far_point():
     X = column(0, 1e-6, 3e-6, 1e6)
     assert kennard_stone(X, 4).tolist() == [0, 3, 2, 1]

@@ -57,6 +57,12 @@ def test_the_upper_limit_by_hand():
     assert upper_limit([1.0, 8.0, 27.0], 3, 0.95) == pytest.approx((2 + 2.919986 * np.sqrt(4 / 3)) ** 3, rel=1e-6)
 
 
+def test_the_upper_limit_on_logarithms_by_hand():
+    # Logarithms 0, 1, 2: mean 1, SD 1.
+    found = upper_limit(np.exp([0.0, 1.0, 2.0]), 3, 0.95, "logarithm")
+    assert found == pytest.approx(np.exp(1 + 2.919986 * np.sqrt(4 / 3)), rel=1e-6)
+
+
 def test_pooled_repeats_count_samples_not_values():
     values = np.array([1.0, 8.0, 27.0])
     pooled = upper_limit(np.tile(values, 4), 3, 0.95)
@@ -85,5 +91,9 @@ def test_impossible_questions_are_refused():
         rmse_confidence_interval(-1.0, 5)
     with pytest.raises(ParameterError, match=r"1 value\(s\) are below zero, at position\(s\) 1"):
         upper_limit([1.0, -0.1], 2, 0.95)
-    with pytest.raises(NotEnoughDataError, match=r"2 value\(s\) of 1 sample"):
+    with pytest.raises(ParameterError, match=r"1 value\(s\) are not above zero, at position\(s\) 1"):
+        upper_limit([1.0, 0.0], 2, 0.95, "logarithm")
+    with pytest.raises(ParameterError, match="scale = 'root'"):
+        upper_limit([1.0, 2.0], 2, 0.95, "root")
+    with pytest.raises(NotEnoughDataError, match=r"2 value\(s\) of 1 unit"):
         upper_limit([1.0, 2.0], 1, 0.95)

@@ -66,9 +66,9 @@ def test_kennard_stone_keeps_the_extremes():
 
 
 def test_kennard_stone_takes_groups_by_their_means():
-    X = np.array([0, 20, 1, 6, 3, 5.0])[:, np.newaxis]  # means of groups a, b, c: 10, 1, 6 -> 4.667
-    kept, left_out = kennard_stone_split(X, 0.4, ["a", "a", "b", "c", "c", "c"])
-    assert (kept.tolist(), left_out.tolist()) == ([0, 1, 2], [3, 4, 5])
+    X = np.array([0, 20, 1, 4, 4, 4, 4, 4, 4.0])[:, np.newaxis]  # means of a, b, c: 10, 1, 4; c has the largest sum
+    kept, left_out = kennard_stone_split(X, 0.4, ["a", "a", "b", "c", "c", "c", "c", "c", "c"])
+    assert (kept.tolist(), left_out.tolist()) == ([0, 1, 2], [3, 4, 5, 6, 7, 8])
 
 
 def test_kennard_stone_keeps_two_at_least():

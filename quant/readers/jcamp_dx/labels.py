@@ -59,7 +59,7 @@ class Block:
                 if other.value != found[0].value:
                     raise FileFormatError(
                         self.path,
-                        f"##{label}= comes again with another value; expected one (the first is in line {found[0].line}).",
+                        f"##{label}= comes again with another value; expected one (the first: line {found[0].line}).",
                         line=other.line,
                     )
             if found:

@@ -60,6 +60,8 @@ def read_jcamp_dx(path: Path, content: bytes, options: ReadingOptions) -> Spectr
     ------
     FileFormatError
         Damage, or a kind of content that is not read.
+    ParameterError
+        A way of finding the sample ID that is made for tables.
     """
     if options.sample_column is not None:
         raise ParameterError(
@@ -91,7 +93,7 @@ def _refuse_compound(blocks: list[Block]) -> None:
     if len(blocks) > 1 or block.find("BLOCKS") or (kind and plain_label(kind.value) == "LINK"):
         raise FileFormatError(
             block.path,
-            f"a compound file of {len(blocks)} block(s) (LINK); expected one spectrum. Export each spectrum to its own file.",
+            f"a compound file of {len(blocks)} block(s) (LINK); expected one spectrum. Export each to its own file.",
         )
     for label in _NOT_READ:
         record = block.find(label)
@@ -175,7 +177,7 @@ def _axis_unit(block: Block, options: ReadingOptions) -> str:
     if record is not None and found is None and options.axis_unit is None:
         raise FileFormatError(
             block.path,
-            f"##XUNITS= {record.value[:40]!r}; expected 1/CM, NANOMETERS or MICROMETERS. State axis_unit if it means one.",
+            f"##XUNITS= {record.value[:40]!r}; expected 1/CM, NANOMETERS or MICROMETERS. State axis_unit if it is one.",
             line=record.line,
         )
     if found is None:

@@ -14,8 +14,9 @@ from quant.readers.jcamp_dx.tokens import Ordinates, TokenError, decode_compress
 _AFFN = r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[Ee][+-]\d+)?"
 _ABSCISSA = re.compile(rf"\s*({_AFFN})", re.ASCII)
 _PLAIN_NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[Ee][+-]?\d+)?|\?", re.ASCII)
-_COMPRESSED = re.compile(r"[@%A-DF-Za-df-s]|[Ee](?![+-])")  # E and a sign is an exponent, any other E the digit 5
-_SIGN = re.compile(r"(?<=[\d.?])([+-])")  # in PAC form a sign stands for the blank before it
+_EXPONENTS = ("E+", "E-", "e+", "e-")  # before anything but a sign, E is a pseudo-digit
+_NOT_PLAIN = re.compile(r"[^0-9+\-.Ee,; \t]")
+_BLANK_LEFT_OUT = re.compile(r"(?<=[\d.?])(?=[+-])", re.ASCII)  # in PAC form a sign stands for the blank before it
 _UNCERTAIN_STEP = 0.5  # share of the point spacing by which an abscissa may be off
 _WORTH_A_NOTE = 0.1
 
@@ -104,32 +105,37 @@ def _decode(block: Block, numbers: list[int], lines: list[str]) -> tuple[list[st
         abscissae.append(match[1])
         rests.append(line[match.end() :])
     together = "".join(rests)
-    if _COMPRESSED.search(together) and "." not in together:
-        try:
-            return abscissae, decode_compressed(rests)
-        except TokenError as problem:
-            raise FileFormatError(
-                block.path,
-                f"found {problem}; expected ordinates in ASDF form. Copy or export the file again.",
-                line=numbers[problem.row],
-            ) from problem
-    rows = [_plain_values(block, number, rest) for number, rest in zip(numbers, rests, strict=True)]
+    if "." in together or any(mark in together for mark in _EXPONENTS):
+        return abscissae, _decode_plain(block, numbers, rests)
+    try:
+        return abscissae, decode_compressed(rests)
+    except TokenError as problem:
+        raise FileFormatError(
+            block.path,
+            f"found {problem}; expected ordinates in AFFN or ASDF form. Copy or export the file again.",
+            line=numbers[problem.row],
+        ) from problem
+
+
+def _decode_plain(block: Block, numbers: list[int], lines: list[str]) -> Ordinates:
+    """Decode ordinates that are decimal numbers."""
+    rows = [_plain_values(block, number, line) for number, line in zip(numbers, lines, strict=True)]
     counts = np.array([len(row) for row in rows])
     if not counts.all():
         number = numbers[int((counts == 0).argmax())]
         raise FileFormatError(block.path, "found an abscissa without ordinates; expected at least one.", line=number)
-    return abscissae, Ordinates(np.array(list(chain.from_iterable(rows))), np.cumsum(counts) - counts)
+    return Ordinates(np.array(list(chain.from_iterable(rows))), np.cumsum(counts) - counts)
 
 
 def _plain_values(block: Block, number: int, line: str) -> list[float]:
     """Return the numbers of a line in AFFN or PAC form, NaN for "?"."""
     text = line.replace(",", " ").replace(";", " ")
-    words = (_SIGN.sub(r" \1", text) if "+" in text or "-" in text else text).replace("?", " ? ").split()
-    try:
-        if "_" not in line and not _COMPRESSED.search(line):  # float() would take 1_000, nan, inf
-            return [float("nan") if word == "?" else float(word) for word in words]
-    except ValueError:
-        pass  # named below
+    if not _NOT_PLAIN.search(text):  # float() would take 1_000, nan, inf
+        try:
+            return list(map(float, text.split()))
+        except ValueError:
+            pass  # blanks left out, or damage: looked at below
+    words = _BLANK_LEFT_OUT.sub(" ", text).replace("?", " ? ").split()
     wrong = next((word for word in words if not _PLAIN_NUMBER.fullmatch(word)), None)
     if wrong is not None:
         raise FileFormatError(block.path, f"found {wrong[:40]!r}; expected numbers in AFFN or PAC form.", line=number)
@@ -147,7 +153,7 @@ def _agreed_count(block: Block, found: int, scale: Scale, last_line: int) -> int
         if abs(found - expected) > 1 or not block.ended or _step_speaks_against(found, scale):
             raise FileFormatError(
                 block.path,
-                f"found {found} ordinates; expected {expected} (##NPOINTS=). The file is cut or damaged: export it again.",
+                f"found {found} ordinates; expected {expected} (##NPOINTS=). The file is cut or damaged.",
                 line=last_line,
             )
         block.deviates(f"##NPOINTS= is {expected} where {found} ordinates are")
@@ -209,8 +215,8 @@ def _check_abscissae(
         first = int((off > _UNCERTAIN_STEP * step).argmax())
         raise FileFormatError(
             block.path,
-            f"found the abscissa {found[first]:.10g}; expected {expected[first]:.10g} from FIRSTX, LASTX and the number of "
-            "points. Ordinates are missing or damaged before this line, or the axis is not evenly spaced.",
+            f"found the abscissa {found[first]:.10g}; expected {expected[first]:.10g} from FIRSTX, LASTX and the "
+            "number of points. Ordinates are missing or damaged before this line, or the axis is not evenly spaced.",
             line=numbers[first],
         )
     if off[worst] > _WORTH_A_NOTE * step:
@@ -218,5 +224,8 @@ def _check_abscissae(
 
 
 def _decimals(number: str) -> int:
+    """Return how many decimals a number is written with."""
+    if "e" not in number and "E" not in number:
+        return len(number) - 1 - number.find(".") if "." in number else 0
     mantissa, _, exponent = number.lower().partition("e")
-    return len(mantissa.partition(".")[2]) - int(exponent or 0)
+    return _decimals(mantissa) - int(exponent)

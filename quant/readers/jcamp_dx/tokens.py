@@ -79,7 +79,7 @@ class Ordinates:
 
 
 def decode_compressed(lines: list[str]) -> Ordinates:
-    """Decode the ordinates of the lines of a table, their abscissae already cut off.
+    """Decode the ordinates of the lines of a table that holds integers in any form, abscissae already cut off.
 
     Parameters
     ----------
@@ -93,10 +93,10 @@ def decode_compressed(lines: list[str]) -> Ordinates:
     """
     codes = np.frombuffer("\n".join(lines).encode("ascii"), np.uint8)
     kind = _KIND[codes]
-    starts, row = _token_starts(codes, kind)
+    starts, length, row = _tokens(codes, kind)
     what = kind[starts]
     what[what == _DIGIT] = _VALUE
-    number = _token_values(codes, kind, starts, row)
+    number = _token_values(codes, starts, length, row)
 
     repeats = what == _REPEAT
     first_in_row = np.flatnonzero(np.diff(row, prepend=-1))
@@ -107,7 +107,7 @@ def decode_compressed(lines: list[str]) -> Ordinates:
     if counts.sum() > MOST_POINTS:
         raise TokenError(int(row[starts.size - 1]), f"counts of repetition that give {counts.sum()} ordinates")
 
-    # A value repeated stays what it is, a difference repeated is added again: running sums from the last absolute value.
+    # A value repeated stays, a difference repeated is added again: running sums from the last absolute value.
     what, row, steps = (np.repeat(array, counts) for array in (what[item], row[item], number[item]))
     absolute = np.flatnonzero(what != _DIFFERENCE)
     base = np.repeat(absolute, np.diff(absolute, append=what.size))
@@ -124,37 +124,37 @@ def decode_compressed(lines: list[str]) -> Ordinates:
     return Ordinates(ordinates, kept[line_starts], rounded, bool(what[-1] != _DIFFERENCE))
 
 
-def _token_starts(codes: AnyArray, kind: AnyArray) -> tuple[IntArray, IntArray]:
-    """Return where tokens start and the line of each."""
-    inside = (kind == _DIGIT) | ((kind >= _VALUE) & (kind != _MISSING))  # a digit after one of these continues it
-    begins = kind >= _VALUE
-    begins[1:] |= (kind[1:] == _DIGIT) & ~inside[:-1]
-    begins[0] |= kind[0] == _DIGIT
-    starts = np.flatnonzero(begins)
-    row = np.searchsorted(np.flatnonzero(kind == _LINE_END), starts)
+def _tokens(codes: AnyArray, kind: AnyArray) -> tuple[IntArray, IntArray, IntArray]:
+    """Return where tokens start, how many characters they have, and the line of each."""
+    line_ends = np.flatnonzero(kind == _LINE_END)
     bad = np.flatnonzero(kind == _BAD)
     if bad.size:
-        line = int(np.count_nonzero(kind[: bad[0]] == _LINE_END))
-        raise TokenError(line, f"the character {chr(codes[bad[0]])!r} among compressed ordinates")
-    return starts, row
+        line = int(np.searchsorted(line_ends, bad[0]))
+        raise TokenError(line, f"the character {chr(codes[bad[0]])!r} among the ordinates")
+    is_digit = kind == _DIGIT
+    goes_on = np.zeros(codes.size + 1, bool)  # a digit behind a digit or behind a sign that takes digits
+    goes_on[1:-1] = is_digit[1:] & (is_digit | ((kind >= _VALUE) & (kind != _MISSING)))[:-1]
+    belongs = is_digit | (kind >= _VALUE)
+    starts = np.flatnonzero(belongs & ~goes_on[:-1])
+    length = np.flatnonzero(belongs & ~goes_on[1:]) + 1 - starts
+    per_line = np.diff(np.searchsorted(starts, line_ends), prepend=0, append=starts.size)
+    return starts, length, np.repeat(np.arange(per_line.size), per_line)
 
 
-def _token_values(codes: AnyArray, kind: AnyArray, starts: IntArray, row: IntArray) -> IntArray:
+def _token_values(codes: AnyArray, starts: IntArray, length: IntArray, row: IntArray) -> IntArray:
     """Return the signed integer of each token."""
-    digit = _DIGIT_OF[codes]
-    breaks = np.append(np.flatnonzero(kind != _DIGIT), codes.size)  # sorted places where no token can go on
-    length = breaks[np.searchsorted(breaks, starts + 1)] - starts
-    longest = int(length.max())
+    leading = codes[starts]
+    longest = int(length.max(initial=0))
     if longest > LONGEST + 1:
         raise TokenError(int(row[length.argmax()]), f"a number of {longest} digits")
-    value = digit[starts]
-    for place in range(1, longest):
-        going_on = np.flatnonzero(length > place)
-        value[going_on] = 10 * value[going_on] + digit[starts[going_on] + place]
-    bare = (length == 1) & ((codes[starts] == ord("+")) | (codes[starts] == ord("-")))
+    bare = (length == 1) & ((leading == ord("+")) | (leading == ord("-")))
     if bare.any():
         raise TokenError(int(row[bare.argmax()]), "a sign without a number")
-    return np.asarray(value * _SIGN_OF[codes[starts]])
+    value = _DIGIT_OF[leading]
+    for place in range(1, longest):
+        going_on = np.flatnonzero(length > place)
+        value[going_on] = 10 * value[going_on] + (codes[starts[going_on] + place] - ord("0"))
+    return np.asarray(value * _SIGN_OF[leading])
 
 
 def _check_grammar(what: AnyArray, number: IntArray, row: IntArray, first_in_row: IntArray, n_lines: int) -> None:
@@ -188,6 +188,6 @@ def _check_sums(values: IntArray, what: AnyArray, row: IntArray, check: AnyArray
         place = places[int((off > 1).argmax())]
         raise TokenError(
             int(row[place]),
-            f"the check value {values[place]} where the line before ends at {values[place - 1]}: one of them is damaged",
+            f"the check value {values[place]} where the line before ends at {values[place - 1]} (one is damaged)",
         )
     return bool((off == 1).any())

@@ -58,7 +58,7 @@ def write_jcamp_dx(spectra: SpectraSet, path: str | Path, form: str = "DIFDUP", 
     scaled = np.rint(spectra.values[0] / factor)
     if np.nanmax(np.abs(scaled), initial=0) > LARGEST_ORDINATE:
         raise ParameterError(
-            f"y_factor = {factor:g} gives ordinates beyond {LARGEST_ORDINATE}; expected a larger factor, or None to choose it."
+            f"y_factor = {factor:g} gives ordinates beyond {LARGEST_ORDINATE}; expected a larger factor, or None."
         )
     ordinates = [None if math.isnan(value) else int(value) for value in scaled.tolist()]
     lines = encode_lines(_abscissae(axis), ordinates, form)
@@ -72,7 +72,8 @@ def write_jcamp_dx(spectra: SpectraSet, path: str | Path, form: str = "DIFDUP", 
 def _check_axis(axis: SpectralAxis) -> None:
     if axis.unit not in _X_UNITS:
         raise ParameterError(
-            f"The axis is in {axis.unit!r}; JCAMP-DX expects one of {', '.join(_X_UNITS)}. Use write_matrix or write_two_columns."
+            f"The axis is in {axis.unit!r}; JCAMP-DX expects one of {', '.join(_X_UNITS)}. "
+            "Use write_matrix or write_two_columns."
         )
     even = np.linspace(axis.values[0], axis.values[-1], len(axis))
     if len(axis) < 2 or np.abs(axis.values - even).max() > SAME_POSITION * axis.spacing:
@@ -140,6 +141,6 @@ def _check_label(label: str, text: str) -> None:
         or not plain_label(label)
     ):
         raise ParameterError(
-            f"##{label}= {text[:40]!r} cannot be written in JCAMP-DX; expected text without '$$' and without lines that start "
-            "with '##', and a name without '='. Change the note or the sample ID, or use write_matrix."
+            f"##{label}= {text[:40]!r} cannot be written in JCAMP-DX; expected text without '$$' and without lines "
+            "that start with '##', and a name without '='. Change the note or the sample ID, or use write_matrix."
         )
