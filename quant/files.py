@@ -8,7 +8,7 @@ from contextlib import contextmanager
 from pathlib import Path
 from typing import BinaryIO, cast
 
-from quant.errors import FileFormatError
+from quant.errors import FileFormatError, UsageError
 
 LARGEST_FILE = 512 * 2**20  # bytes; a spectra file beyond this is a mistake, not a measurement
 
@@ -71,19 +71,31 @@ def whole_file(path: str | Path) -> Iterator[BinaryIO]:
     """Write a file whole or not at all: to a neighbour first, then renamed over the target.
 
     Whatever goes wrong before the end leaves the old file as it was.
+
+    Raises
+    ------
+    UsageError
+        The file cannot be written there.
     """
     target = Path(path)
-    target.parent.mkdir(parents=True, exist_ok=True)
-    descriptor, name = tempfile.mkstemp(prefix=f".{target.name}.", dir=target.parent)
+    name = None
     try:
+        target.parent.mkdir(parents=True, exist_ok=True)
+        descriptor, name = tempfile.mkstemp(prefix=f".{target.name}.", dir=target.parent)
         with os.fdopen(descriptor, "wb") as stream:
             yield cast(BinaryIO, stream)
             stream.flush()
             os.fsync(stream.fileno())
         Path(name).chmod(0o666 & ~_umask())
         Path(name).replace(target)
-    except BaseException:
-        Path(name).unlink(missing_ok=True)
+    except BaseException as problem:
+        if name is not None:
+            Path(name).unlink(missing_ok=True)
+        if isinstance(problem, OSError):
+            raise UsageError(
+                f"{target} cannot be written ({problem.strerror}); expected a folder that may be written to. "
+                "Choose another place."
+            ) from problem
         raise
 
 

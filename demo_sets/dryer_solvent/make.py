@@ -169,7 +169,7 @@ def foreign_spectra(
     composition = _compositions(rng, np.arange(n_spectra), np.ones(n_spectra, dtype=bool))
     spectra = true_absorbances(composition)
     pure = CONTACT * atr_depth(pure_spectra((ACETONE, IMPURITY, WATER), AXIS.values), AXIS.values)
-    amount = rng.uniform(1.5, 4.0, (n_spectra, 1))  # % m/m
+    amount = rng.uniform(4.0, 8.0, (n_spectra, 1))  # % m/m: plainly another material
     if kind == "other_solvent":
         spectra += amount * pure[0]
     elif kind == "other_product":

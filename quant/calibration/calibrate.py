@@ -1,8 +1,5 @@
 """The whole way from a recipe to calibrations, cross-validated and, where samples were set apart, validated."""
 
-import platform
-from importlib.metadata import PackageNotFoundError, version
-
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
@@ -16,6 +13,7 @@ from quant.calibration.split import split_samples
 from quant.calibration.validate import regression_direction, validate
 from quant.estimator import Step
 from quant.model.calibration import Calibration
+from quant.model.versions import program_versions
 from quant.prediction.applicability import acquisition_domain
 from quant.recipe.load import load_samples, load_validation_samples
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
@@ -150,7 +148,7 @@ def _model(
         figures={"RMSECV": float(crossed.rmsecv[position])},
         recipe=recipe.text,
         training=spectra.sources,
-        versions=_versions(),
+        versions=program_versions(),
     )
 
 
@@ -159,11 +157,3 @@ def _test_rows(training: SampleSet, values: FloatArray) -> IntArray:
     order = np.argsort(values, kind="stable")
     samples = order[np.linspace(0, order.size - 1, TEST_SPECTRA).round().astype(int)]
     return np.array([int(np.flatnonzero(training.sample_index == sample)[0]) for sample in samples])
-
-
-def _versions() -> dict[str, str]:
-    try:
-        own = version("quant")
-    except PackageNotFoundError:  # run from a checkout that is not installed
-        own = "not installed"
-    return {"quant": own, "numpy": np.__version__, "python": platform.python_version()}

@@ -24,8 +24,9 @@ def applicability_limits(
     """Return the limits of a model with a number of factors.
 
     Residuals and leverages of calibration samples are smaller than those of good new ones, because the model was fitted
-    to them; left-out samples are as new ones are. Leverages are near to chi-square, so that their limit is found on cube
-    roots; residuals are sums of a few effects of very different size (noise, vapour, baseline) and take logarithms.
+    to them; left-out samples are as new ones are. Leverages are near to chi-square, so that their limit is found on
+    cube roots; residuals are sums of a few effects of very different size (noise, vapour, baseline) and take
+    logarithms.
 
     Parameters
     ----------

@@ -80,13 +80,13 @@ def _check_ways(recipe: Recipe, separate: SampleSet | None) -> None:
     table = recipe.validation
     if separate is None and table is not None and table.files is not None:
         raise ParameterError(
-            "The recipe names separate validation files, but only calibration samples were given; expected both. "
-            "Give validation=..., too, or let the recipe read all its files."
+            "The recipe names separate validation files, but only calibration samples were given; expected "
+            "both. Give validation=..., too, or let the recipe read all its files."
         )
     if separate is not None and table is not None and table.files is None:
         raise ParameterError(
-            "Separate validation samples were given, but [validation] of the recipe picks others; expected one of the two. "
-            "Remove [validation] from the recipe, or do not give them."
+            "Separate validation samples were given, but [validation] of the recipe picks others; expected one of "
+            "the two. Remove [validation] from the recipe, or do not give them."
         )
 
 

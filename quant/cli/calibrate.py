@@ -4,10 +4,8 @@ from pathlib import Path
 
 import click
 
-from quant.calibration.calibrate import calibrate
-from quant.model.storage import save_model
-from quant.recipe.load import load_recipe
-from quant.reports.report import write_report
+from quant.checks import name_some
+from quant.errors import RecipeError
 
 
 @click.command("calibrate")
@@ -21,8 +19,15 @@ from quant.reports.report import write_report
 )
 def command(recipe: Path, folder: Path) -> None:
     """Make the calibrations of RECIPE; leave model, report.html and calibration.json in a folder."""
-    result = calibrate(load_recipe(recipe))
-    models = [save_model(entry.model, folder / f"{file_name(entry.analyte)}.model") for entry in result.analytes]
+    from quant.calibration.calibrate import calibrate  # deferred, as those below: --help needs none of it
+    from quant.model.storage import save_model
+    from quant.recipe.load import load_recipe
+    from quant.reports.report import write_report
+
+    wanted = load_recipe(recipe)
+    names = model_files([table.name for table in wanted.analyte])
+    result = calibrate(wanted)
+    models = [save_model(entry.model, folder / names[entry.analyte]) for entry in result.analytes]
     report = write_report(result, folder)
     click.echo(str(result))
     click.echo()
@@ -30,6 +35,25 @@ def command(recipe: Path, folder: Path) -> None:
         click.echo(f"model   {path}")
     click.echo(f"report  {report.html}")
     click.echo(f"figures {report.json}")
+
+
+def model_files(analytes: list[str]) -> dict[str, str]:
+    """Return the name of each analyte's model file.
+
+    Raises
+    ------
+    RecipeError
+        Two names that would give one file.
+    """
+    names = {analyte: f"{file_name(analyte)}.model" for analyte in analytes}
+    folded = [name.casefold() for name in names.values()]  # some file systems know no capitals
+    alike = [analyte for analyte, name in names.items() if folded.count(name.casefold()) > 1]
+    if alike:
+        raise RecipeError(
+            f"The models of {name_some(map(repr, alike))} would have one file name ({names[alike[0]]}); expected names "
+            "that differ in letters or digits. Rename one [[analyte]]."
+        )
+    return names
 
 
 def file_name(analyte: str) -> str:

@@ -5,8 +5,6 @@ from pathlib import Path
 import click
 
 from quant.files import write_text
-from quant.inspection.inspect import inspect
-from quant.recipe.load import load_recipe
 
 
 @click.command("inspect")
@@ -14,6 +12,9 @@ from quant.recipe.load import load_recipe
 @click.option("--json", "json_file", type=click.Path(path_type=Path), help="Write what was found as JSON, too.")
 def command(recipe: Path, json_file: Path | None) -> None:
     """Look over the spectra and reference values that RECIPE names: what was read, paired, left unpaired."""
+    from quant.inspection.inspect import inspect  # deferred, as the next: --help needs none of it
+    from quant.recipe.load import load_recipe
+
     result = inspect(load_recipe(recipe))
     click.echo(str(result))
     if json_file is not None:

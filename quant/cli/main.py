@@ -1,5 +1,6 @@
 """The command ``quant``: a table of commands, each loaded when it is called."""
 
+import io
 import sys
 from importlib import import_module
 from typing import Any
@@ -48,8 +49,18 @@ class LazyGroup(click.Group):
             ctx.exit(int(error.exit_code))
 
 
+def _tell_version(ctx: click.Context, _: click.Parameter, asked: bool) -> None:  # noqa: FBT001 (click's signature)
+    if asked:
+        from quant.model.versions import own_version  # deferred: start-up
+
+        click.echo(f"quant {own_version()}")
+        ctx.exit()
+
+
 @click.group(cls=LazyGroup, context_settings={"help_option_names": ["-h", "--help"]})
-@click.version_option(package_name="quant", message="quant %(version)s")
+@click.option(
+    "--version", is_flag=True, expose_value=False, is_eager=True, callback=_tell_version, help="Tell the version."
+)
 def cli() -> None:
     """Make, defend and use a quantitative infrared calibration.
 
@@ -59,7 +70,7 @@ def cli() -> None:
 
 def main() -> None:
     """Run the command line."""
-    if hasattr(sys.stdout, "reconfigure"):  # cm⁻¹ and ± on consoles that default to another code page
-        sys.stdout.reconfigure(encoding="utf-8", errors="replace")
-        sys.stderr.reconfigure(encoding="utf-8", errors="replace")
+    for stream in (sys.stdout, sys.stderr):
+        if isinstance(stream, io.TextIOWrapper):  # cm⁻¹ and ± on consoles that default to another code page
+            stream.reconfigure(encoding="utf-8", errors="replace")
     cli(prog_name="quant")

@@ -5,8 +5,6 @@ from importlib.resources import files
 
 import click
 
-from quant.recipe.schema import Recipe
-
 
 @click.command("recipe")
 @click.option(
@@ -18,4 +16,6 @@ def command(what: str) -> None:
     if what == "defaults":
         click.echo(files("quant.recipe").joinpath("defaults.toml").read_text("utf-8").rstrip())
     else:
+        from quant.recipe.schema import Recipe  # deferred: --help does not need pydantic
+
         click.echo(json.dumps(Recipe.model_json_schema(), indent=2, ensure_ascii=False))

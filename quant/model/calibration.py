@@ -7,7 +7,7 @@ from typing import Any
 import numpy as np
 
 from quant.arrays import FloatArray
-from quant.errors import ParameterError, QuantityError
+from quant.errors import QuantityError
 from quant.estimator import Step
 from quant.regression.method import Method
 from quant.spectra.axis import SpectralAxis
@@ -155,6 +155,6 @@ def _refuse_missing(values: FloatArray) -> None:
     lacking = int(np.isnan(values).any(axis=1).sum())
     if lacking:
         raise QuantityError(
-            f"{lacking} of {len(values)} spectra have missing points; expected a number at every point that the model uses. "
-            "Measure again."
+            f"{lacking} of {len(values)} spectra have missing points; expected a number at every point that the "
+            "model uses. Measure again."
         )

@@ -2,6 +2,7 @@
 
 import io
 import json
+import struct
 import zipfile
 import zlib
 from pathlib import Path
@@ -20,15 +21,8 @@ LARGEST_ENTRY = 256 * 2**20  # bytes of one unpacked entry
 REPRODUCES = 1e-9  # share of the calibrated range within which a loaded model repeats its own predictions
 # What zipfile, json, NumPy and the constructors raise when they meet bytes that are not theirs.
 _DAMAGE = (
-    zipfile.BadZipFile,
-    zlib.error,
-    ValueError,
-    KeyError,
-    TypeError,
-    AttributeError,
-    EOFError,
-    OSError,
-    RuntimeError,
+    *(zipfile.BadZipFile, zlib.error, struct.error, EOFError, OSError),
+    *(ValueError, LookupError, TypeError, AttributeError, ArithmeticError, MemoryError, RuntimeError),
 )
 _EPOCH = (1980, 1, 1, 0, 0, 0)  # the same model gives the same bytes
 
@@ -117,7 +111,7 @@ def _prove(model: Calibration, path: str | Path) -> None:
     """Predict the kept test spectra again."""
     try:
         off = np.abs(model.predict_values(model.test_spectra) - model.test_predictions)
-    except (ValueError, AttributeError, TypeError, IndexError) as problem:
+    except _DAMAGE as problem:
         raise ModelFileError(
             f"{path}: the model cannot predict its own test spectra ({problem}). Do not use it."
         ) from problem
@@ -125,5 +119,6 @@ def _prove(model: Calibration, path: str | Path) -> None:
     if not (off <= allowed).all():
         raise ModelFileError(
             f"{path}: the model no longer reproduces its own test predictions (off by up to "
-            f"{np.max(off, initial=0):.3g} {model.analyte.unit}, allowed {allowed:.3g}). Do not use it; fetch an undamaged copy or calibrate again."
+            f"{np.max(off, initial=0):.3g} {model.analyte.unit}, allowed {allowed:.3g}). Do not use it; "
+            "fetch an undamaged copy or calibrate again."
         )

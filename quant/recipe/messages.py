@@ -18,32 +18,42 @@ def problems(error: ValidationError, place: str, model: type[BaseModel]) -> str:
 
     Alternatives of one key (a number or one of some words) are told as one problem.
     """
-    lines: dict[tuple[Any, ...], list[str]] = {}
+    found: dict[tuple[Any, ...], list[Any]] = {}
     for item in error.errors(include_url=False):
         path = tuple(part for part in item["loc"] if not _is_alternative(part))
-        lines.setdefault(path, []).append(_one(item, path, model))
-    return "\n".join(f"{_where(path, place)}: {' or '.join(dict.fromkeys(texts))}" for path, texts in lines.items())
+        found.setdefault(path, []).append(item)
+    return "\n".join(_told(items, path, place, model) for path, items in found.items())
 
 
-def _one(item: Any, path: tuple[Any, ...], model: type[BaseModel]) -> str:
-    key, found = path[-1] if path else "", item.get("input")
-    if item["type"] == "extra_forbidden":
-        known = _keys_at(model, path[:-1])
-        guess = did_you_mean(str(key), known) or f" Keys there are: {', '.join(known)}."
-        return f"unknown key {key!r}.{guess}"
-    if item["type"] == "missing":
-        return f"the key {key!r} is missing."
-    message = item["msg"].removeprefix("Value error, ")
-    shown = "" if isinstance(found, dict | BaseModel) else f" (found {found!r})"
-    return f"{key}: {message}{shown}." if path else f"{message}{shown}."
+def _told(items: list[Any], path: tuple[Any, ...], place: str, model: type[BaseModel]) -> str:
+    first, expected = items[0], [item["msg"].removeprefix("Input should be ") for item in items]
+    if first["type"] == "value_error":  # a table that contradicts itself
+        return f"{_where(path, place)}: {first['msg'].removeprefix('Value error, ')}."
+    table, key = _table_of(path)
+    where = _where(table, place)
+    if first["type"] == "extra_forbidden":
+        known = _keys_at(model, table)
+        there = f" Keys there are: {', '.join(known)}." if known else " There are no keys here."
+        return f"{where}: unknown key {key!r}.{did_you_mean(key, known) or there}"
+    if first["type"] == "missing":
+        return f"{where}: the key {key!r} is missing. Add it."
+    return f"{where}: {key} = {first.get('input')!r}; expected {' or '.join(dict.fromkeys(expected))}."
 
 
-def _where(path: tuple[Any, ...], place: str) -> str:
-    table = [str(part) for part in path[:-1] if isinstance(part, str)]
-    number = [part + 1 for part in path[:-1] if isinstance(part, int)]
-    if not table:
+def _table_of(path: tuple[Any, ...]) -> tuple[tuple[Any, ...], str]:
+    """Split a path into that of the table and the key in it, with its place in a list: ``ranges, entry 2``."""
+    keys = [place for place, part in enumerate(path) if isinstance(part, str)]
+    last = keys[-1] if keys else 0
+    entries = "".join(f", entry {part + 1}" for part in path[last + 1 :])
+    return path[:last], f"{path[last]}{entries}" if path else ""
+
+
+def _where(table: tuple[Any, ...], place: str) -> str:
+    names = [part for part in table if isinstance(part, str)]
+    number = [part + 1 for part in table if isinstance(part, int)]
+    if not names:
         return place
-    return f"{place}, [{'.'.join(table)}]" + (f" number {number[0]}" if number else "")
+    return f"{place}, [{'.'.join(names)}]" + (f" number {number[0]}" if number else "")
 
 
 def _is_alternative(part: Any) -> bool:

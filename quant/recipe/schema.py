@@ -211,6 +211,14 @@ class Recipe(Table):
     cross_validation: CrossValidationTable = Field(default_factory=lambda: CrossValidationTable.model_validate({}))
     validation: ValidationTable | None = None
 
+    @model_validator(mode="after")
+    def _names_differ(self) -> "Recipe":
+        names = [table.name for table in self.analyte]
+        twice = sorted({name for name in names if names.count(name) > 1})
+        if twice:
+            raise ValueError(f"more than one [[analyte]] is called {', '.join(twice)}; expected one each")
+        return self
+
     _folder: str = PrivateAttr(default=".")
     _text: str = PrivateAttr(default="")
     _name: str = PrivateAttr(default="recipe")

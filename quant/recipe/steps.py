@@ -1,6 +1,7 @@
 """Recipe options of a preprocessing step, derived from the signature of its class."""
 
 import inspect
+import json
 from functools import cache
 from typing import Any
 
@@ -39,11 +40,12 @@ def make_step(table: dict[str, Any], place: str) -> Step:
     """
     options = dict(table)
     name = options.pop("step", None)
-    if name not in STEPS:
+    if not isinstance(name, str) or name not in STEPS:
         found = "no key 'step'" if name is None else f"unknown step {name!r}"
         raise RecipeError(f"{place}: {found}.{did_you_mean(str(name), STEPS)} Steps there are: {', '.join(STEPS)}.")
     model = options_model(name)
     try:
-        return STEPS[name](**dict(model.model_validate(options)))
+        # By way of JSON: strict there lets a list be a tuple, as TOML has no other, but no text or truth be a number.
+        return STEPS[name](**dict(model.model_validate_json(json.dumps(options, default=str), strict=True)))
     except ValidationError as error:
         raise RecipeError(problems(error, f"{place}, step {name!r}", model)) from None

@@ -40,7 +40,11 @@ class SpectralAxis:
         if numbers.size == 0:
             raise ParameterError("The axis holds no values; expected one for every point.")
         steps = np.diff(numbers)
-        wrong = np.flatnonzero(np.sign(steps) != np.sign(steps[0])) if steps.size and steps[0] else np.flatnonzero(steps == 0)
+        wrong = (
+            np.flatnonzero(np.sign(steps) != np.sign(steps[0]))
+            if steps.size and steps[0]
+            else np.flatnonzero(steps == 0)
+        )
         if wrong.size:
             place = int(wrong[0]) + 1
             raise ParameterError(

@@ -32,7 +32,9 @@ class Analyte:
     laboratory_error: float | None = None
 
     def __post_init__(self) -> None:
-        if self.laboratory_error is not None and not (np.isfinite(self.laboratory_error) and self.laboratory_error >= 0):
+        if self.laboratory_error is not None and not (
+            np.isfinite(self.laboratory_error) and self.laboratory_error >= 0
+        ):
             raise ParameterError(
                 f"laboratory_error of {self.name} is {self.laboratory_error}; expected a standard error of 0 or more."
             )

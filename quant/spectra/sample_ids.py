@@ -32,15 +32,15 @@ def expand_ids(items: Iterable[object]) -> list[str]:
 
 
 def notes_from_name(path: str | PurePath, pattern: str) -> dict[str, str]:
-    """Return the named groups that a pattern finds in a file's name; the group ``sample`` is the sample ID.
+    r"""Return the named groups that a pattern finds in a file's name; the group ``sample`` is the sample ID.
 
     Parameters
     ----------
     path : str or path
         The file; only its name counts.
     pattern : str
-        Regular expression with named groups, such as ``(?P<sample>[A-Z]+\\d+)_(?P<replicate>\\d+)``. It has to match from
-        the start of the name.
+        Regular expression with named groups, such as ``(?P<sample>[A-Z]+\d+)_(?P<replicate>\d+)``. It has to match
+        from the start of the name.
 
     Raises
     ------
@@ -52,11 +52,14 @@ def notes_from_name(path: str | PurePath, pattern: str) -> dict[str, str]:
     except re.error as problem:
         raise ParameterError(f"sample_pattern {pattern!r} is no regular expression: {problem}.") from problem
     if "sample" not in compiled.groupindex:
-        raise ParameterError(f"sample_pattern {pattern!r} has no group (?P<sample>...); expected one that marks the ID.")
+        raise ParameterError(
+            f"sample_pattern {pattern!r} has no group (?P<sample>...); expected one that marks the ID."
+        )
     name = PurePath(path).name
     match = compiled.match(name)
     if match is None or not match["sample"]:
         raise ParameterError(
-            f"sample_pattern {pattern!r} does not match the file name {name!r}; widen the pattern or leave the file out."
+            f"sample_pattern {pattern!r} does not match the file name {name!r}; widen the pattern or leave the "
+            "file out."
         )
     return {key: value for key, value in match.groupdict().items() if value is not None}

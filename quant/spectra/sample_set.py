@@ -7,7 +7,7 @@ from types import MappingProxyType
 import numpy as np
 from numpy.typing import ArrayLike
 
-from quant.arrays import FloatArray, IntArray
+from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.checks import name_some, one_of
 from quant.errors import ParameterError, SampleMismatchError
 from quant.spectra.reference_table import Analyte, ReferenceTable
@@ -91,7 +91,7 @@ class SampleSet:
         """Average rows that belong to spectra, shape (n_spectra, ...), over each sample, shape (n_samples, ...)."""
         return mean_by_sample(np.asarray(rows, dtype=np.float64), self.sample_index, len(self))
 
-    def subset(self, samples: ArrayLike) -> "SampleSet":
+    def subset(self, samples: IntArray | BoolArray) -> "SampleSet":
         """Return the samples at the positions given (or where true), in the set's own order."""
         chosen = np.unique(np.arange(len(self))[samples])
         place = np.full(len(self), -1)
@@ -214,7 +214,8 @@ def _refuse_missing(analytes: Sequence[Analyte], values: FloatArray, samples: Se
         without = [sample for sample, value in zip(samples, column, strict=True) if np.isnan(value)]
         if without:
             raise SampleMismatchError(
-                f"{len(without)} of {len(samples)} samples have no reference value of {analyte.name}: {name_some(without)}. "
+                f"{len(without)} of {len(samples)} samples have no reference value of {analyte.name}: "
+                f"{name_some(without)}. "
                 'Supply the values, or set missing = "drop" under [reference].'
             )
 

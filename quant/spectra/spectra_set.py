@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING
 import numpy as np
 from numpy.typing import ArrayLike
 
-from quant.arrays import FloatArray
+from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.checks import name_some, one_of
 from quant.errors import AxisMismatchError, ParameterError, QuantityError, SampleMismatchError
 from quant.spectra.axis import SpectralAxis
@@ -67,12 +67,14 @@ class SpectraSet:
         rows = [{}] * len(sample_ids) if notes is None else notes
         if matrix.ndim != 2 or matrix.shape != (len(sample_ids), len(axis)) or len(rows) != len(sample_ids):
             raise ParameterError(
-                f"Spectra of shape {matrix.shape} with {len(sample_ids)} sample IDs, {len(rows)} rows of notes and an axis "
-                f"of {len(axis)} points; expected one ID and one row of notes a spectrum, one column a point."
+                f"Spectra of shape {matrix.shape} with {len(sample_ids)} sample IDs, {len(rows)} rows of notes and an "
+                f"axis of {len(axis)} points; expected one ID and one row of notes a spectrum, one column a point."
             )
         infinite = np.flatnonzero(np.isinf(matrix).any(axis=1))
         if infinite.size:
-            raise ParameterError(f"Infinite ordinates in {name_some(sample_ids[i] for i in infinite)}; expected numbers.")
+            raise ParameterError(
+                f"Infinite ordinates in {name_some(sample_ids[i] for i in infinite.tolist())}; expected numbers."
+            )
         matrix.flags.writeable = False
         object.__setattr__(self, "values", matrix)
         object.__setattr__(self, "axis", axis)
@@ -84,7 +86,7 @@ class SpectraSet:
     def __len__(self) -> int:
         return len(self.sample_ids)
 
-    def __getitem__(self, rows: slice | ArrayLike) -> "SpectraSet":
+    def __getitem__(self, rows: slice | IntArray | BoolArray) -> "SpectraSet":
         """Select spectra by a slice, an array of positions, or an array of truth values."""
         chosen = np.atleast_1d(np.arange(len(self))[rows])
         return SpectraSet(
@@ -149,18 +151,20 @@ class SpectraSet:
             values = interpolate(self.values, self.axis.values, axis.values)
         except ParameterError as reason:
             raise AxisMismatchError(f"{problem} They cannot be resampled: {reason}") from reason
-        notes = [{**row, "resampled": f"from {self.axis}"} for row in self.notes]
+        notes = tuple({**row, "resampled": f"from {self.axis}"} for row in self.notes)
         return replace(self, values=values, axis=axis, notes=notes)
 
     def with_notes(self, notes: Notes) -> "SpectraSet":
         """Return the set with notes added to every spectrum where the spectrum does not state them itself."""
-        return replace(self, notes=[{**notes, **row} for row in self.notes])
+        return replace(self, notes=tuple({**notes, **row} for row in self.notes))
 
     def to_frame(self) -> "pd.DataFrame":
         """Return a pandas table: one row a spectrum, first the sample ID and the notes, then one column a point."""
         import pandas as pd  # deferred: start-up
 
-        left = pd.DataFrame([{"sample": sample, **row} for sample, row in zip(self.sample_ids, self.notes, strict=True)])
+        left = pd.DataFrame(
+            [{"sample": sample, **row} for sample, row in zip(self.sample_ids, self.notes, strict=True)]
+        )
         right = pd.DataFrame(self.values, columns=pd.Index(self.axis.values))
         return pd.concat([left, right], axis=1)
 
@@ -184,8 +188,8 @@ def join_spectra(sets: Sequence[SpectraSet], *, resample: bool = False) -> Spect
         if other.quantity != first.quantity:
             raise QuantityError(
                 f"{name_some(dict.fromkeys(other.sample_ids))} is {QUANTITIES[other.quantity]} but "
-                f"{name_some(dict.fromkeys(first.sample_ids), 1)} is {QUANTITIES[first.quantity]}; expected one quantity. "
-                "Export all spectra alike."
+                f"{name_some(dict.fromkeys(first.sample_ids), 1)} is {QUANTITIES[first.quantity]}; expected one "
+                "quantity. Export all spectra alike."
             )
     aligned = [spectra.on_axis(first.axis, resample=resample) for spectra in sets]
     return SpectraSet(

@@ -47,7 +47,7 @@ def base_variance(errors: ArrayLike, leverages: ArrayLike) -> float:
     return float(np.mean(error**2 / (1 + leverage)))
 
 
-def standard_error(s0: float, leverage: ArrayLike, added: ArrayLike = 0.0) -> FloatArray:
+def standard_error(s0: float, leverage: ArrayLike, added: float | FloatArray = 0.0) -> FloatArray:
     """Standard error sqrt(s0²(1 + h) + added) of a prediction against a new *reference result*.
 
     Parameters
@@ -57,7 +57,7 @@ def standard_error(s0: float, leverage: ArrayLike, added: ArrayLike = 0.0) -> Fl
     leverage : float or array of shape (n_samples,)
         Leverages of the new samples, 1/n included.
     added : float or array of shape (n_samples,)
-        Variance that the left-out samples did not have, such as that of fewer replicates. [unit of the analyte, squared]
+        Variance that left-out samples did not have, such as that of fewer replicates. [unit of the analyte, squared]
 
     Returns
     -------

@@ -143,8 +143,8 @@ def upper_limit(values: ArrayLike, n_units: int, probability: float, scale: str 
     wrong = np.flatnonzero(vector <= 0 if logarithm else vector < 0)
     if wrong.size:
         raise ParameterError(
-            f"{wrong.size} value(s) are {'not above' if logarithm else 'below'} zero, at position(s) {name_some(wrong)}; "
-            "the limit is for leverages, squared residuals and the like."
+            f"{wrong.size} value(s) are {'not above' if logarithm else 'below'} zero, at position(s) "
+            f"{name_some(wrong)}; the limit is for leverages, squared residuals and the like."
         )
     if min(vector.size, n_units) < 2:
         raise NotEnoughDataError(

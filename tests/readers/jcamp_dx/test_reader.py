@@ -134,7 +134,7 @@ def test_labels_become_notes(tmp_path: Path) -> None:
         "$Lot No": "9",
     }
     notes = dict(read_text(tmp_path, text_of(labels)).notes[0])
-    assert "line 13 is left out" in notes.pop("reader")  # the short date
+    assert "line 14 is left out" in notes.pop("reader")  # the short date
     assert notes == {
         "title": "S 1",
         "origin_of_file": "laboratory 2",
