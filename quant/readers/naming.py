@@ -52,20 +52,22 @@ def quantity_named(text: str) -> str | None:
 
 def axis_unit_in(heading: str) -> str | None:
     """Return the axis unit in a column's heading such as ``wavelength (nm)``, or None."""
-    return next(filter(None, map(axis_unit_named, _parts(heading))), None)
+    words = re.split(r"[\s,_/]+", heading)
+    return next(filter(None, map(axis_unit_named, [*_parts(heading), *words])), None)
 
 
 def quantity_in(heading: str) -> str | None:
     """Return the ordinate named in a column's heading such as ``Transmittance [%]``, or None."""
-    return next(filter(None, map(quantity_named, _parts(heading))), None)
+    found = next(filter(None, map(quantity_named, _parts(heading))), None)
+    is_percent = "%" in heading or "percent" in heading.lower()
+    return found if found is None or is_percent == found.startswith("percent_") else None
 
 
 def _parts(heading: str) -> Iterator[str]:
-    """Yield the whole heading, what is inside its brackets, what is outside, and its single words."""
+    """Yield the whole heading, what is inside its brackets, and what is outside."""
     yield heading
     yield from re.findall(r"[(\[]([^)\]]*)[)\]]", heading)
     yield re.sub(r"[(\[][^)\]]*[)\]]", "", heading)
-    yield from re.split(r"[\s,_]+", heading)
 
 
 def agreed_axis_unit(path: Path, found: str | None, options: ReadingOptions) -> str:

@@ -48,8 +48,8 @@ class SpectralAxis:
         if wrong.size:
             place = int(wrong[0]) + 1
             raise ParameterError(
-                f"The axis turns or repeats at point {place + 1} ({numbers[place - 1]:g}, then {numbers[place]:g} {unit}); "
-                "expected values that rise or fall throughout."
+                f"The axis turns or repeats at point {place + 1} ({numbers[place - 1]:g}, then {numbers[place]:g} "
+                f"{unit}); expected values that rise or fall throughout."
             )
         numbers.flags.writeable = False
         object.__setattr__(self, "values", numbers)

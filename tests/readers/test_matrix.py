@@ -52,7 +52,10 @@ def test_a_small_table(tmp_path: Path) -> None:
 )
 def test_layouts_that_mean_the_same(tmp_path: Path, text: str, options: dict[str, object]) -> None:
     spectra = read_text(tmp_path, text, **options)
-    assert sorted(zip(spectra.axis.values.tolist(), spectra.values[0].tolist(), strict=True)) == [(900, 0.1), (902, 0.2)]
+    assert sorted(zip(spectra.axis.values.tolist(), spectra.values[0].tolist(), strict=True)) == [
+        (900, 0.1),
+        (902, 0.2),
+    ]
     assert spectra.sample_ids == ("S1",)
 
 

@@ -14,7 +14,14 @@ FILE = Path("a.csv")
 
 @pytest.mark.parametrize(
     ("heading", "unit"),
-    [("Wavenumber (cm-1)", "cm-1"), ("wavelength [nm]", "nm"), ("nm", "nm"), ("wavelength nm", "nm"), ("x", None)],
+    [
+        ("Wavenumber (cm-1)", "cm-1"),
+        ("wavelength [nm]", "nm"),
+        ("nm", "nm"),
+        ("wavelength nm", "nm"),
+        ("Wavenumber/cm-1", "cm-1"),
+        ("x", None),
+    ],
 )
 def test_axis_units_in_headings(heading: str, unit: str | None) -> None:
     assert axis_unit_in(heading) == unit
@@ -31,6 +38,8 @@ def test_axis_units_in_headings(heading: str, unit: str | None) -> None:
         ("transmission", "transmittance"),
         ("log(1/R)", "log_reflectance"),
         ("% absorbance", None),
+        ("Transmittance [%T]", "percent_transmittance"),
+        ("sample A", None),
         ("y", None),
     ],
 )

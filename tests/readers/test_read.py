@@ -67,7 +67,10 @@ def test_damaged_files_with_the_name_of_spectra_are_not_passed_over(folder: Path
 @pytest.mark.parametrize(
     ("path", "words"),
     [
-        ("*.dx", "no file matches this pattern; the folder holds README.md, S1.txt, S10.txt, S2.txt, deeper and 1 more"),
+        (
+            "*.dx",
+            "no file matches this pattern; the folder holds README.md, S1.txt, S10.txt, S2.txt, deeper and 1 more",
+        ),
         ("deeper", "no file in this folder is recognised as spectra; the folder holds nothing"),
         ("nowhere/*.dx", "there is no folder"),
         ("S4.txt", "no such file"),

@@ -1,0 +1,1 @@
+"""One section, one file: what a section shows, as plain values for its template."""

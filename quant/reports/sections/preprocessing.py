@@ -1,0 +1,40 @@
+"""What is done to the spectra before the regression."""
+
+from typing import Any
+
+import numpy as np
+
+from quant.calibration.result import AnalyteResult, CalibrationResult
+from quant.estimator import Step
+from quant.plots.spectra import plot_spectra
+from quant.reports.pictures import picture
+
+
+def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> dict[str, Any]:  # noqa: ARG001
+    """Return the steps in words, and the spectra before and after."""
+    steps = analyte.model.steps
+    before = picture(plot_spectra, analyte, f"{place}-read", "Spectra as read, mean of each sample; ranges in use shaded.")
+    after = "Spectra after preprocessing; shaded gaps have been cut out."
+    return {
+        "steps": [describe_step(step) for step in steps],
+        "pictures": [before, *([picture(plot_spectra, analyte, f"{place}-after", after, processed=True)] if steps else [])],
+    }
+
+
+def describe_step(step: Step) -> str:
+    """Return a step and its options in words: "savitzky golay: derivative 2, polynomial 2, window 9"."""
+    options = [
+        f"{name.replace('_', ' ')} {_text(value)}"
+        for name, value in step.get_params().items()
+        if name != "axis" and value is not None and not isinstance(value, np.ndarray)
+    ]
+    name = step.name.upper() if step.name in ("snv", "msc") else step.name.replace("_", " ")
+    return f"{name}: {', '.join(options)}" if options else name
+
+
+def _text(value: object) -> str:
+    if isinstance(value, list | tuple):
+        if len(value) == 2 and not isinstance(value[0], list | tuple):
+            return f"{value[0]:g} to {value[1]:g}"
+        return " and ".join(_text(entry) for entry in value)
+    return f"{value:g}" if isinstance(value, float) else str(value)

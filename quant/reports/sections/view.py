@@ -1,0 +1,56 @@
+"""What the model looks at in the spectra."""
+
+from typing import Any
+
+from quant.calibration.result import AnalyteResult, CalibrationResult
+from quant.plots.agreement import plot_calibration_line
+from quant.plots.spectra import plot_bands, plot_regression_vector
+from quant.regression.bands import BandSpec
+from quant.regression.band_area import BandArea
+from quant.reports.pictures import Picture, picture
+from quant.text_table import Row
+from quant.units import AXIS_UNITS
+
+
+def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> dict[str, Any]:  # noqa: ARG001
+    """Return the regression vector, or bands and calibration line."""
+    method = analyte.model.method
+    if not isinstance(method, BandArea):
+        caption = "Regression vector: ordinates that raise the prediction lie above the line, those that lower it below."
+        return {"bands": [], "rows": [], "pictures": [picture(plot_regression_vector, analyte, f"{place}-vector", caption)]}
+    unit = AXIS_UNITS[analyte.picture.axis_unit]
+    bands = [("band", describe_band(band, unit)) for band in method.bands or ()]
+    if method.reference_band:
+        bands.append(("reference band", describe_band(method.reference_band, unit)))
+    return {"bands": bands or [("band", "the whole axis")], "rows": _line(analyte, method), "pictures": _pictures(analyte, place)}
+
+
+def describe_band(band: BandSpec, unit: str) -> str:
+    """Return a band in words: "area from 2212 to 2240 cm⁻¹ above the straight line through 2196 and 2256"."""
+    if band.get("range"):
+        first, last = band["range"]
+        text = f"{band.get('signal', 'area')} from {first:g} to {last:g} {unit}"
+    else:
+        text = f"height at {band['position']:g} {unit}"
+    line = band.get("baseline")
+    return f"{text}, above the straight line through {line[0]:g} and {line[1]:g} {unit}" if line else f"{text}, no baseline"
+
+
+def _line(result: AnalyteResult, method: BandArea) -> list[Row]:
+    line = method.line_
+    return [
+        ("slope of signal on value", line.slope, f"per {result.unit}" if result.unit else ""),
+        ("its standard deviation", line.slope_sd, f"per {result.unit}" if result.unit else ""),
+        ("intercept", line.intercept, "fixed at zero" if line.through_origin else ""),
+        ("its standard deviation", None if line.through_origin else line.intercept_sd, ""),
+        ("residual standard deviation", line.residual_sd, ""),
+        ("degrees of freedom", line.degrees_of_freedom, ""),
+        ("correlation", line.correlation, ""),
+    ]
+
+
+def _pictures(result: AnalyteResult, place: str) -> list[Picture]:
+    line = picture(plot_calibration_line, result, f"{place}-line", "Calibration line with its samples.", narrow=True)
+    if not result.picture.bands:
+        return [line]
+    return [picture(plot_bands, result, f"{place}-bands", "The bands on the preprocessed spectra."), line]

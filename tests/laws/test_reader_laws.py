@@ -1,0 +1,144 @@
+"""Laws of readers and writers: what is written comes back, whatever the numbers."""
+
+import tempfile
+from pathlib import Path
+
+import numpy as np
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+from quant.errors import QuantError
+from quant.readers.jcamp_dx.encode import FORMS, LINE_LENGTH, encode_lines
+from quant.readers.jcamp_dx.tokens import decode_compressed
+from quant.readers.jcamp_dx.writer import write_jcamp_dx
+from quant.readers.matrix import write_matrix
+from quant.readers.read import read_spectra
+from quant.readers.two_columns import write_two_columns
+from quant.spectra.axis import SpectralAxis
+from quant.spectra.spectra_set import SpectraSet
+
+# Runs of equal steps are frequent, so that counts of repetition and their limits are met.
+steps = st.lists(st.tuples(st.integers(-1200, 1200), st.integers(1, 130)), min_size=1, max_size=12)
+ordinates = st.lists(st.one_of(st.none(), st.integers(-(10**6), 10**6), st.integers(-2, 2)), min_size=1, max_size=150)
+doubles = st.floats(-4, 4, allow_subnormal=False)
+
+
+def decoded(lines: list[str]) -> list[float]:
+    """Decode lines whose abscissa is always "0"."""
+    return decode_compressed([line[1:] for line in lines]).values.tolist()
+
+
+@given(values=ordinates, form=st.sampled_from(FORMS))
+def test_every_form_decodes_to_what_was_encoded(values: list[int | None], form: str) -> None:
+    lines = encode_lines(["0"] * len(values), values, form)
+    expected = [np.nan if value is None else value for value in values]
+    assert np.array_equal(decoded(lines), expected, equal_nan=True)
+    assert max(map(len, lines)) <= LINE_LENGTH
+
+
+@given(runs=steps)
+def test_runs_of_equal_steps_decode_alike_with_and_without_counts(runs: list[tuple[int, int]]) -> None:
+    values = np.cumsum([step for step, times in runs for _ in range(times)]).tolist()
+    with_counts, without = (encode_lines(["0"] * len(values), values, form) for form in ("DIFDUP", "DIF"))
+    assert decoded(with_counts) == decoded(without) == values
+    assert len(with_counts) <= len(without)
+
+
+@st.composite
+def spectra_sets(draw: st.DrawFn, most: int = 4) -> SpectraSet:
+    """Spectra on rising or falling axes, evenly spaced, some points missing."""
+    n_points, n_spectra = draw(st.integers(2, 60)), draw(st.integers(1, most))
+    first, step = draw(st.floats(100, 5000)), draw(st.floats(0.01, 20)) * draw(st.sampled_from([-1, 1]))
+    rows = st.lists(st.one_of(doubles, st.just(np.nan)), min_size=n_points, max_size=n_points)
+    return SpectraSet(
+        draw(st.lists(rows, min_size=n_spectra, max_size=n_spectra)),
+        SpectralAxis(
+            np.linspace(first, first + step * (n_points - 1), n_points), draw(st.sampled_from(["cm-1", "nm", "um"]))
+        ),
+        draw(
+            st.lists(
+                st.from_regex(r"[A-Za-z0-9][\w ;,.\"-]{0,6}[A-Za-z0-9]", fullmatch=True),
+                min_size=n_spectra,
+                max_size=n_spectra,
+            )
+        ),
+        draw(st.sampled_from(["absorbance", "log_reflectance", "arbitrary"])),
+    )
+
+
+def same(before: SpectraSet, after: SpectraSet, tolerance: float = 0.0) -> bool:
+    """Tell whether numbers, axis and quantity came back."""
+    return (
+        np.allclose(before.values, after.values, rtol=0, atol=tolerance, equal_nan=True)
+        and before.axis.same_positions(after.axis)
+        and before.quantity == after.quantity
+    )
+
+
+@settings(max_examples=60)
+@given(spectra=spectra_sets(most=1), form=st.sampled_from(FORMS))
+def test_jcamp_dx_round_trip(spectra: SpectraSet, form: str) -> None:
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "a.dx"
+        write_jcamp_dx(spectra, file, form)
+        after = read_spectra(file)
+    assert same(spectra, after, tolerance=5e-10 * max(1.0, float(np.nanmax(np.abs(spectra.values), initial=0))) * 10)
+    assert after.sample_ids == spectra.sample_ids
+    assert "reader" not in after.notes[0]
+
+
+@settings(max_examples=60)
+@given(spectra=spectra_sets(), layout=st.sampled_from([(",", "."), (";", ","), (";", "."), ("tab", ",")]))
+def test_matrix_round_trip(spectra: SpectraSet, layout: tuple[str, str]) -> None:
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "a.csv"
+        write_matrix(spectra, file, *layout)
+        after = read_spectra(file, separator=layout[0], decimal=layout[1])
+    assert same(spectra, after)
+    assert after.sample_ids == spectra.sample_ids
+
+
+@settings(max_examples=60)
+@given(spectra=spectra_sets(most=1), layout=st.sampled_from([(",", "."), (";", ","), ("tab", "."), ("space", ",")]))
+def test_two_columns_round_trip(spectra: SpectraSet, layout: tuple[str, str]) -> None:
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "a.txt"
+        write_two_columns(spectra, file, *layout)
+        assert same(spectra, read_spectra(file, decimal=layout[1]))
+
+
+@settings(max_examples=150)
+@given(
+    content=st.binary(min_size=1, max_size=200),
+    start=st.sampled_from([b"", b"##TITLE= a\n", b"id,1,2\nS,", b"1,2\n3,4\n"]),
+)
+@pytest.mark.parametrize("file_format", ["auto", "jcamp_dx", "matrix", "two_columns"])
+def test_any_bytes_are_read_or_refused(content: bytes, start: bytes, file_format: str) -> None:
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "a"
+        file.write_bytes(start + content)
+        try:
+            assert np.isfinite(read_spectra(file, format=file_format).axis.values).all()
+        except QuantError:
+            pass
+
+
+@given(
+    place=st.integers(0, 10_000),
+    character=st.sampled_from("0123456789@ABCabcJKLjklSTs%?.+-E \n#"),
+    form=st.sampled_from(["DIFDUP", "FIX"]),
+)
+def test_a_character_changed_in_a_file_gives_spectra_or_a_refusal(place: int, character: str, form: str) -> None:
+    values = np.round(np.sin(np.arange(40) / 5), 3)
+    spectra = SpectraSet([values], SpectralAxis(np.linspace(400, 439, 40), "nm"), ["S"])
+    with tempfile.TemporaryDirectory() as folder:
+        file = Path(folder) / "a.dx"
+        write_jcamp_dx(spectra, file, form, 0.001)
+        text = file.read_text()
+        cut = place % len(text)
+        file.write_text(text[:cut] + character + text[cut + 1 :])
+        try:
+            assert len(read_spectra(file)) == 1
+        except QuantError:
+            pass
