@@ -2,11 +2,11 @@
 
 import hashlib
 import os
-import tempfile
+import time
 from collections.abc import Iterator
 from contextlib import contextmanager
 from pathlib import Path
-from typing import BinaryIO, cast
+from typing import BinaryIO
 
 from quant.errors import FileFormatError, UsageError
 
@@ -38,7 +38,7 @@ def read_bytes(path: str | Path, limit: int = LARGEST_FILE) -> bytes:
     except OSError as problem:
         raise FileFormatError(file, f"cannot be read ({problem.strerror}); expected a readable file.") from problem
     if not content:
-        raise FileFormatError(file, "the file is empty; expected spectra or values. Export it again.")
+        raise FileFormatError(file, "the file is empty; expected content. Fetch or export it again.")
     return content
 
 
@@ -78,19 +78,16 @@ def whole_file(path: str | Path) -> Iterator[BinaryIO]:
         The file cannot be written there.
     """
     target = Path(path)
-    name = None
+    neighbour = target.with_name(f".{target.name}.{os.getpid()}-{time.monotonic_ns()}")
     try:
         target.parent.mkdir(parents=True, exist_ok=True)
-        descriptor, name = tempfile.mkstemp(prefix=f".{target.name}.", dir=target.parent)
-        with os.fdopen(descriptor, "wb") as stream:
-            yield cast(BinaryIO, stream)
+        with neighbour.open("xb") as stream:
+            yield stream
             stream.flush()
             os.fsync(stream.fileno())
-        Path(name).chmod(0o666 & ~_umask())
-        Path(name).replace(target)
+        neighbour.replace(target)
     except BaseException as problem:
-        if name is not None:
-            Path(name).unlink(missing_ok=True)
+        neighbour.unlink(missing_ok=True)
         if isinstance(problem, OSError):
             raise UsageError(
                 f"{target} cannot be written ({problem.strerror}); expected a folder that may be written to. "
@@ -103,9 +100,3 @@ def write_text(path: str | Path, text: str) -> None:
     """Write UTF-8 text whole or not at all."""
     with whole_file(path) as stream:
         stream.write(text.encode("utf-8"))
-
-
-def _umask() -> int:
-    current = os.umask(0)
-    os.umask(current)
-    return current

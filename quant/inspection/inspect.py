@@ -1,5 +1,6 @@
 """A first look: what was read, how it pairs, which range it spans."""
 
+from collections.abc import Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -9,6 +10,7 @@ from quant.recipe.pipeline import axis_behind, build_steps
 from quant.recipe.schema import Recipe
 from quant.result import Result, documented
 from quant.spectra.sample_set import SampleSet, pair_samples
+from quant.spectra.spectra_set import SpectraSet
 from quant.text_table import Row, format_columns, format_rows
 from quant.units import QUANTITIES
 
@@ -49,7 +51,8 @@ class SetInspection(Result):
         """What was read and paired."""
         return [
             ("files", self.n_files, ""),
-            ("spectra", self.n_spectra, f"of {self.n_samples} paired samples ({self.replicates} each)"),
+            ("spectra", self.n_spectra, ""),
+            ("paired samples", self.n_samples, f"({self.replicates} spectra each)"),
             ("axis", self.axis, ""),
             ("ordinate", f"{self.quantity}, {self.ordinate_lowest:.4g} to {self.ordinate_highest:.4g}", ""),
             ("origins", ", ".join(f"{count} {origin}" for origin, count in self.origins.items()), ""),
@@ -92,12 +95,17 @@ def inspect(recipe: Recipe) -> InspectionResult:
     QuantError
         A file cannot be read, axes differ, nothing pairs, or a step does not fit the axis.
     """
-    samples, n_files = _read(recipe, None, None)
-    sets = [_inspect_set("calibration", samples, n_files)]
+    samples, spectra = _read(recipe, None, None)
     table = recipe.validation
-    if table is not None and table.files is not None:
-        separate, more = _read(recipe, table.files, table.reference_file)
-        sets.append(_inspect_set("validation", separate, more))
+    if table is None or table.files is None:
+        sets = [_inspect_set("calibration", samples, spectra, ())]
+    else:
+        separate, others = _read(recipe, table.files, table.reference_file)
+        # One reference table may serve both sets: what the other set has a spectrum of is not without one.
+        sets = [
+            _inspect_set("calibration", samples, spectra, others.sample_ids),
+            _inspect_set("validation", separate, others, spectra.sample_ids),
+        ]
     steps = build_steps(recipe, samples.spectra.axis, samples.spectra.quantity)
     after = axis_behind(steps, samples.spectra.axis).size
     return InspectionResult(
@@ -108,19 +116,20 @@ def inspect(recipe: Recipe) -> InspectionResult:
     )
 
 
-def _read(recipe: Recipe, files: list[str] | None, reference: str | None) -> tuple[SampleSet, int]:
+def _read(recipe: Recipe, files: list[str] | None, reference: str | None) -> tuple[SampleSet, SpectraSet]:
     spectra = read_recipe_spectra(recipe, files)
     samples = pair_samples(spectra, read_recipe_reference(recipe, reference), unmatched="drop", missing="drop")
-    return samples, len(spectra.sources)
+    return samples, spectra
 
 
-def _inspect_set(name: str, samples: SampleSet, n_files: int) -> SetInspection:
-    spectra, count = samples.spectra, samples.replicates
+def _inspect_set(name: str, samples: SampleSet, spectra: SpectraSet, elsewhere: Sequence[str]) -> SetInspection:
+    """Inspect what was read and what paired of it; `elsewhere` are sample IDs that the other set has spectra of."""
+    count = samples.replicates
     few, many = int(count.min()), int(count.max())
     notes = [f"{row.get('file', '')}: {row['reader']}" for row in spectra.notes if row.get("reader")]
     return SetInspection(
         name=name,
-        n_files=n_files,
+        n_files=len(spectra.sources),
         n_spectra=len(spectra),
         n_samples=len(samples),
         replicates=str(few) if few == many else f"{few} to {many}",
@@ -130,7 +139,9 @@ def _inspect_set(name: str, samples: SampleSet, n_files: int) -> SetInspection:
         ordinate_highest=float(np.nanmax(spectra.values)),
         origins={origin: samples.origins.count(origin) for origin in dict.fromkeys(samples.origins)},
         spectra_without_values=samples.spectra_without_values,
-        values_without_spectra=samples.values_without_spectra,
+        values_without_spectra=tuple(
+            sample for sample in samples.values_without_spectra if sample not in set(elsewhere)
+        ),
         reader_notes=tuple(dict.fromkeys(notes)),
         analytes=tuple(_range(samples, analyte.name) for analyte in samples.analytes),
     )

@@ -50,7 +50,9 @@ def plot_predicted(result: AnalyteResult, ax: Axes | None = None) -> Axes:
     ax.set(xlim=(low - margin, high + margin), ylim=(low - margin, high + margin), aspect="equal")
     ax.axline((low, low), slope=1.0, color=INK, linewidth=THIN, zorder=1)
     ax.yaxis.set_major_locator(ax.xaxis.get_major_locator())
-    label_axes(ax, with_unit(f"reference {result.analyte}", result.unit), with_unit(f"predicted {result.analyte}", result.unit))
+    label_axes(
+        ax, with_unit(f"reference {result.analyte}", result.unit), with_unit(f"predicted {result.analyte}", result.unit)
+    )
     legend(ax, loc="upper left")
     return ax
 
@@ -71,9 +73,11 @@ def plot_errors(result: AnalyteResult, ax: Axes | None = None) -> Axes:
         ax.vlines(checked.reference, low, high, color=VERMILION, linewidth=THIN, zorder=2)
         ax.plot(checked.reference, checked.predicted - checked.reference, **VALIDATION.options(), zorder=3)
         bias = checked.figures.bias
-        text = with_unit(f"bias {format_number(bias, 3)}", result.unit)
-        ax.axhline(bias, color=RULE, linewidth=LINE, linestyle=(0, (4, 2)), zorder=1).set_label(text)
-    label_axes(ax, with_unit(f"reference {result.analyte}", result.unit), with_unit("predicted − reference", result.unit))
+        line = ax.axhline(bias, color=RULE, linewidth=LINE, linestyle=(0, (4, 2)), zorder=1)
+        line.set_label(f"bias {format_number(bias, 3)} {result.unit}".rstrip())
+    label_axes(
+        ax, with_unit(f"reference {result.analyte}", result.unit), with_unit("predicted − reference", result.unit)
+    )
     ax.margins(y=0.14)
     legend(ax, loc="upper left", ncols=2)
     return ax

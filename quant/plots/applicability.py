@@ -4,6 +4,7 @@ from typing import NamedTuple
 
 import numpy as np
 from matplotlib.axes import Axes
+from matplotlib.transforms import Bbox
 
 from quant.arrays import FloatArray
 from quant.calibration.result import AnalyteResult
@@ -17,14 +18,23 @@ from quant.plots.style import (
     VALIDATION,
     Mark,
     axes_or_new,
+    figure_of,
     label_axes,
     legend,
     logarithmic,
     short,
-    write,
 )
 
 MOST_NAMED = 8
+NAME_SIZE = 6.5  # [point]
+OFFSETS = (
+    (5.0, 2.0),
+    (-5.0, 2.0),
+    (5.0, -8.0),
+    (-5.0, -8.0),
+    (5.0, 10.0),
+    (-5.0, 10.0),
+)  # of a name from its point [point]
 SIZE = (7.6, 3.9)  # [inch]
 
 
@@ -60,9 +70,7 @@ def plot_applicability(result: AnalyteResult, ax: Axes | None = None) -> Axes:
     if all((group.leverage > 0).all() for group in groups):
         ax.set_xscale("log")
         logarithmic(ax.xaxis)
-    for sample, leverage, residual in outside(groups, result):
-        ax.annotate(short(sample), (leverage, residual), xytext=(5, 3), textcoords="offset points",
-                    fontsize=6.5, color=INK, parse_math=False)  # fmt: skip
+    _name(ax, outside(groups, result))
     label_axes(ax, "leverage (1/n included)", "sum of squares of the residual spectrum")
     legend(ax, ncols=5, **ABOVE)
     return ax
@@ -94,3 +102,22 @@ def outside(groups: list[Group], result: AnalyteResult) -> list[tuple[str, float
                 found.append((float(over), sample, float(leverage), float(residual)))
     found.sort(key=lambda item: (-item[0], item[1]))
     return [item[1:] for item in found[:MOST_NAMED]]
+
+
+def _name(ax: Axes, samples: list[tuple[str, float, float]]) -> None:
+    """Write sample IDs beside their points, each where no earlier one stands, if there is such a place."""
+    ax.autoscale_view()
+    taken: list[Bbox] = []
+    for sample, leverage, residual in samples:
+        text = short(sample)
+        x, y = ax.transData.transform((leverage, residual))
+        scale = figure_of(ax).dpi / 72
+        width, height = scale * 0.62 * NAME_SIZE * len(text), scale * 1.25 * NAME_SIZE
+        places = [Bbox.from_bounds(x + scale * dx - (width if dx < 0 else 0), y + scale * dy, width, height)
+                  for dx, dy in OFFSETS]  # fmt: skip
+        free = [i for i, box in enumerate(places) if not box.count_overlaps(taken)]
+        choice = free[0] if free else 0
+        taken.append(places[choice])
+        dx, dy = OFFSETS[choice]
+        ax.annotate(text, (leverage, residual), xytext=(dx, dy), textcoords="offset points", fontsize=NAME_SIZE,
+                    color=INK, ha="right" if dx < 0 else "left", parse_math=False)  # fmt: skip

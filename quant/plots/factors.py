@@ -11,13 +11,13 @@ from quant.plots.style import (
     INK,
     LINE,
     RULE,
+    SMALL,
     THIN,
     axes_or_new,
     label_axes,
     legend,
     logarithmic,
     with_unit,
-    write,
 )
 
 LOGARITHMIC_FROM = 8.0  # ratio of the largest error to the smallest
@@ -48,8 +48,8 @@ def plot_factors(result: AnalyteResult, ax: Axes | None = None) -> Axes:
     for row, (rule, count) in enumerate(crossed.choices.items()):
         height = 0.96 - 0.075 * row
         ax.plot([count], [height], marker="v", markersize=4, color=INK, transform=ax.get_xaxis_transform())
-        write(ax, f"  {rule.replace('_', ' ')}: {count}", (count, height), transform=ax.get_xaxis_transform(),
-              va="center")  # fmt: skip
+        ax.annotate(f"{rule.replace('_', ' ')}: {count}", (count, height), xycoords=ax.get_xaxis_transform(),
+                    xytext=(6, 0), textcoords="offset points", va="center", fontsize=SMALL, color=INK)  # fmt: skip
     label_axes(ax, "number of factors", with_unit("error", result.unit))
     legend(ax, ncols=3, **ABOVE)
     return ax
@@ -57,7 +57,7 @@ def plot_factors(result: AnalyteResult, ax: Axes | None = None) -> Axes:
 
 def _scale(ax: Axes) -> None:
     """Whole numbers below; errors from zero, or on a logarithmic scale where they differ much."""
-    ax.xaxis.set_major_locator(MaxNLocator(integer=True))
+    ax.xaxis.set_major_locator(MaxNLocator(nbins=16, integer=True))
     heights = np.concatenate([np.asarray(line.get_ydata(), dtype=np.float64) for line in ax.get_lines()[:2]])
     positive = heights[heights > 0]
     if positive.size and positive.max() > LOGARITHMIC_FROM * positive.min():

@@ -11,12 +11,14 @@ from matplotlib.ticker import MaxNLocator
 from quant.arrays import FloatArray
 from quant.calibration.result import AnalyteResult
 from quant.plots.style import (
+    HALF,
     INK,
     LINE,
     NORMAL,
     OCHRE,
     RULE,
     SHADE,
+    SIZE,
     SMALL,
     THIN,
     VALUES,
@@ -25,7 +27,7 @@ from quant.plots.style import (
     label_axes,
     spectral_axis,
     with_unit,
-    write,
+    wrapped,
     zero_line,
 )
 from quant.regression.band_area import BandArea
@@ -60,29 +62,35 @@ def plot_spectra(result: AnalyteResult, ax: Axes | None = None, *, processed: bo
     return ax
 
 
-def plot_bands(result: AnalyteResult, ax: Axes | None = None) -> Axes:
+def plot_bands(result: AnalyteResult, ax: Axes | None = None, *, number: int | None = None) -> Axes:
     """Draw the preprocessed spectra about the bands of a band-area calibration, the bands shaded.
 
-    Bands are shaded plainly, the reference band that they are divided by is hatched.
+    Bands are shaded plainly; the reference band that they are divided by is hatched; dotted lines carry the baseline.
+
+    Parameters
+    ----------
+    result : AnalyteResult
+    ax : Axes, optional
+        Where to draw; default: a new figure.
+    number : int, optional
+        Show the surroundings of one band, counted from 0, the reference band last; default: all.
     """
     picture = result.picture
-    ax = axes_or_new(ax)
+    ax = axes_or_new(ax, SIZE if number is None else HALF)
     _draw(ax, picture.processed_axis, picture.processed, picture.shown_values, with_unit(result.analyte, result.unit))
-    spans = picture.bands
-    divided = isinstance(result.model.method, BandArea) and result.model.method.reference_band is not None
-    for number, (low, high) in enumerate(spans):
-        reference = divided and number == len(spans) - 1
+    bands = _bands(result)
+    for i, (low, high, _, reference) in enumerate(bands):
         style = {"hatch": "////", "facecolor": "none", "edgecolor": RULE} if reference else {"facecolor": SHADE}
         ax.axvspan(low, high, linewidth=0 if low < high else LINE, zorder=0, **style)
-        write(
-            ax,
-            "reference band" if reference else "band",
-            ((low + high) / 2, 1.01),
-            transform=ax.get_xaxis_transform(),
-            ha="center",
-            va="bottom",
-        )
-    window = _window(picture.processed_axis, spans)
+        if number in (None, i):
+            ax.annotate("reference band" if reference else "band", ((low + high) / 2, 1.0), (0, 3), ha="center",
+                        xycoords=ax.get_xaxis_transform(), textcoords="offset points", fontsize=SMALL, color=INK)  # fmt: skip
+    shown = bands if number is None else bands[number : number + 1]
+    if number is not None:
+        for position in shown[0][2]:
+            ax.axvline(position, color=INK, linewidth=THIN, linestyle=(0, (1, 2)), zorder=1)
+    ends = [end for low, high, line, _ in shown for end in (low, high, *line)]
+    window = _window(picture.processed_axis, min(ends), max(ends))
     inside = (picture.processed_axis >= window.min()) & (picture.processed_axis <= window.max())
     seen = picture.processed[:, inside]
     if seen.size and seen.max() > seen.min():
@@ -151,7 +159,7 @@ def _draw(ax: Axes, axis: FloatArray, spectra: FloatArray, values: FloatArray, l
     bar = figure_of(ax).colorbar(collection, ax=ax, pad=0.015, aspect=28, ticks=MaxNLocator(5))
     bar.outline.set_visible(False)  # type: ignore[operator]  # a spine, whatever the stubs say
     bar.ax.tick_params(colors=INK, labelsize=SMALL, width=THIN, length=2, color=RULE)
-    bar.set_label(label, fontsize=NORMAL, color=INK, parse_math=False)
+    bar.set_label(wrapped(label, figure_of(ax).get_size_inches()[1]), fontsize=NORMAL, color=INK, parse_math=False)
 
 
 def _cuts(axis: FloatArray, runs: list[slice]) -> list[tuple[float, float]]:
@@ -159,8 +167,19 @@ def _cuts(axis: FloatArray, runs: list[slice]) -> list[tuple[float, float]]:
     return [(float(axis[before.stop - 1]), float(axis[after.start])) for before, after in pairwise(runs)]
 
 
-def _window(axis: FloatArray, spans: tuple[tuple[float, float], ...]) -> FloatArray:
+def _bands(result: AnalyteResult) -> list[tuple[float, float, tuple[float, ...], bool]]:
+    """Return low and high end, positions of the baseline, and whether it is the reference band. [axis unit]"""
+    method, spans = result.model.method, result.picture.bands
+    if not isinstance(method, BandArea):
+        return []
+    specs = [*(method.bands or ()), *([method.reference_band] if method.reference_band else [])]
+    return [
+        (*span, tuple(float(end) for end in spec.get("baseline") or ()), spec is method.reference_band)
+        for span, spec in zip(spans, specs, strict=True)
+    ]
+
+
+def _window(axis: FloatArray, low: float, high: float) -> FloatArray:
     """Return the two ends of what is shown about bands, within the axis. [axis unit]"""
-    low, high = min(span[0] for span in spans), max(span[1] for span in spans)
     margin = max(AROUND_BANDS * (high - low), 10 * float(np.median(np.abs(np.diff(axis)))))
     return np.array([max(low - margin, float(axis.min())), min(high + margin, float(axis.max()))])

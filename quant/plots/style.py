@@ -5,6 +5,7 @@ for readers who do not see all colours. Vermilion and blue are those of Okabe & 
 values runs from sand over teal to navy, getting darker throughout.
 """
 
+import textwrap
 from dataclasses import dataclass
 from typing import Any
 
@@ -13,7 +14,6 @@ from matplotlib.axes import Axes
 from matplotlib.axis import Axis
 from matplotlib.colors import LinearSegmentedColormap
 from matplotlib.figure import Figure
-from matplotlib.text import Text
 from matplotlib.ticker import LogLocator, NullFormatter
 
 from quant.arrays import FloatArray
@@ -24,8 +24,10 @@ BLUE, VERMILION, OCHRE = "#0072b2", "#d55e00", "#9a6b00"
 VALUES = LinearSegmentedColormap.from_list("sand to navy", ["#d9b44a", "#4c9a8b", "#123a5c"])
 
 SIZE = (7.6, 3.1)  # of a picture as wide as the page [inch]
+HALF = (4.4, 3.0)  # of one half as wide [inch]
 SMALL, NORMAL = 7.5, 8.5  # type [point]
 THIN, LINE = 0.6, 1.1  # lines [point]
+CHARACTERS = 12.0  # of a label that fit into one inch of a picture, its margins allowed for
 LONGEST_LABEL = 24  # characters of a sample ID written into a picture
 
 
@@ -89,9 +91,15 @@ def logarithmic(axis: Axis) -> None:
 
 
 def label_axes(ax: Axes, x: str, y: str) -> None:
-    """Label both axes; names come from files, so no character in them is a formula."""
-    ax.set_xlabel(x, fontsize=NORMAL, color=INK, parse_math=False)
-    ax.set_ylabel(y, fontsize=NORMAL, color=INK, parse_math=False)
+    """Label both axes, in lines that fit; names come from files, so no character in them is a formula."""
+    width, height = figure_of(ax).get_size_inches()
+    ax.set_xlabel(wrapped(x, width), fontsize=NORMAL, color=INK, parse_math=False)
+    ax.set_ylabel(wrapped(y, height), fontsize=NORMAL, color=INK, parse_math=False)
+
+
+def wrapped(text: str, length: float) -> str:
+    """Break text, shortened to a few lines, into lines that fit into a length. [inch]"""
+    return textwrap.fill(text, max(int(CHARACTERS * length), 8), max_lines=3, placeholder=" …")
 
 
 ABOVE: dict[str, Any] = {"loc": "lower left", "bbox_to_anchor": (0.0, 1.0), "columnspacing": 1.4}
@@ -103,11 +111,6 @@ def legend(ax: Axes, **options: Any) -> None:
     box = ax.legend(frameon=False, fontsize=SMALL, labelcolor=INK, handletextpad=0.5, borderaxespad=0.3, **options)
     for text in box.get_texts():
         text.set_parse_math(False)
-
-
-def write(ax: Axes, text: str, place: tuple[float, float], **options: Any) -> Text:
-    """Write text that is no formula."""
-    return ax.text(*place, text, **{"fontsize": SMALL, "color": INK, "parse_math": False, **options})
 
 
 def zero_line(ax: Axes) -> None:

@@ -34,7 +34,9 @@ def to_svg(ax: Axes, prefix: str, description: str) -> str:
     """
     stream = io.BytesIO()
     with mpl.rc_context(_SETTINGS), warnings.catch_warnings():
-        warnings.filterwarnings("ignore", message="Glyph .* missing from", category=UserWarning)  # the reader's fonts decide
+        warnings.filterwarnings(
+            "ignore", message="Glyph .* missing from", category=UserWarning
+        )  # the reader's fonts decide
         nothing = {"Date": None, "Creator": None, "Format": None, "Type": None}
         figure_of(ax).savefig(stream, format="svg", dpi=RESOLUTION, metadata=nothing)
     root = ET.fromstring(stream.getvalue())
@@ -57,7 +59,9 @@ def _drop(parent: ET.Element, name: str) -> None:
 
 def _rename(root: ET.Element, prefix: str) -> None:
     """Put the prefix before every id that is referred to; drop the others."""
-    used = {match[2] for element in root.iter() for value in element.attrib.values() for match in _REFERENCE.finditer(value)}
+    used = {
+        match[2] for element in root.iter() for value in element.attrib.values() for match in _REFERENCE.finditer(value)
+    }
     for element in root.iter():
         for key, value in list(element.attrib.items()):
             if key != "id":

@@ -90,14 +90,15 @@ def check_acquisition(model: Calibration, spectra: SpectraSet) -> None:
         )
     for note, known in model.domain.items():
         allowed = {_comparable(value) for value in known}
-        clash = {
-            row[note]: sample
+        clash = [
+            (sample, row[note])
             for sample, row in zip(spectra.sample_ids, spectra.notes, strict=True)
             if row.get(note) and _comparable(row[note]) not in allowed
-        }
+        ]
         if clash:
+            samples, found = (dict.fromkeys(part) for part in zip(*clash, strict=True))
             raise AcquisitionMismatchError(
-                f"{note} is {name_some(clash)} for {name_some(clash.values())}, but the calibration holds for "
+                f"{note} is {name_some(found)} for {name_some(samples)}, but the calibration holds for "
                 f"{name_some(known)}. Measure as for the calibration, or make a calibration for this {note}."
             )
 

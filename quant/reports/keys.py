@@ -64,5 +64,3 @@ def _records(hint: Any) -> Iterator[tuple[type[Any], str]]:
     for argument in get_args(hint):
         for inner, further in _records(argument):
             yield inner, step + further
-
-

@@ -69,7 +69,9 @@ def _blocks(result: CalibrationResult) -> list[Block]:
                 Part(prefix + section.name, number, section.heading, render_section(section, result, i))
                 for number, section in sections
             )
-            blocks.append(Block(f"a{i + 1}" if each_analyte else "", analyte.analyte if each_analyte and several else "", parts))
+            blocks.append(
+                Block(f"a{i + 1}" if each_analyte else "", analyte.analyte if each_analyte and several else "", parts)
+            )
     return blocks
 
 

@@ -8,6 +8,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_vector, one_of
 from quant.errors import ParameterError
+from quant.spectra.segments import median_step
 from quant.units import AXIS_UNITS, convert_axis
 
 SAME_POSITION = 1e-3
@@ -83,7 +84,7 @@ class SpectralAxis:
     @property
     def spacing(self) -> float:
         """Median distance between neighbouring points. [unit]"""
-        return float(np.median(np.abs(np.diff(self.values)))) if len(self) > 1 else 0.0
+        return median_step(self.values)
 
     def same_positions(self, other: "SpectralAxis") -> bool:
         """Tell whether `other` has the same positions in the same order, up to rounding of written values."""

@@ -6,7 +6,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray, IntArray
 from quant.checks import as_matrix, as_vector, name_some
 from quant.errors import ParameterError
-from quant.spectra.segments import axis_values, describe_segment, segments
+from quant.spectra.segments import axis_values, describe_segment, median_step, segments
 
 SLACK = 1e-9  # of the median step: a position this far beyond an end is that end (rounding of grids)
 
@@ -91,7 +91,7 @@ def apply_weights(spectra: FloatArray, sources: IntArray, weights: FloatArray) -
 
 def _segment_of_each(axis: FloatArray, targets: FloatArray, runs: list[slice]) -> IntArray:
     """Number of the segment that each position lies in, shape (positions,)."""
-    slack = SLACK * float(np.median(np.abs(np.diff(axis)))) if axis.size > 1 else SLACK
+    slack = SLACK * (median_step(axis) or 1.0)
     home = np.full(targets.size, -1, dtype=np.intp)
     for number, run in enumerate(runs):
         low, high = sorted((axis[run.start], axis[run.stop - 1]))

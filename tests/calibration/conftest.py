@@ -35,7 +35,9 @@ def make_recipe() -> Callable[..., Recipe]:
 def make_samples() -> Callable[..., SampleSet]:
     """Return what makes samples with one band that follows the acid's content, on another that does not."""
 
-    def make(n: int = 12, replicates: int = 1, seed: int = 1, notes: list[dict[str, str]] | None = None, **own: Any) -> SampleSet:
+    def make(
+        n: int = 12, replicates: int = 1, seed: int = 1, notes: list[dict[str, str]] | None = None, **own: Any
+    ) -> SampleSet:
         rng = np.random.default_rng(seed)
         axis = np.linspace(1800.0, 1600.0, 41)
         values = own.get("values", np.linspace(1.0, 9.0, n))

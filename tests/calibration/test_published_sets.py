@@ -62,7 +62,10 @@ def test_gasoline_cross_validation():
     found = result_of("gasoline")["octane"].cross_validation
     assert found.factor_counts == tuple(range(11))
     assert found.rmsecv == pytest.approx(expected("gasoline")["rmsecv_loo_CV"], abs=1e-9)
-    assert found.rmsecv[2:4].round(4).tolist() == [0.2966, 0.2524]  # Mevik & Wehrens, J. Stat. Softw. 18(2), 2007 [found]
+    assert found.rmsecv[2:4].round(4).tolist() == [
+        0.2966,
+        0.2524,
+    ]  # Mevik & Wehrens, J. Stat. Softw. 18(2), 2007 [found]
     printed = expected("gasoline")["published"]["rmsecv_loo_CV"]
     assert [float(f"{value:.4g}") for value in found.rmsecv] == printed
 

@@ -1,5 +1,6 @@
 """Laws of readers and writers: what is written comes back, whatever the numbers."""
 
+import contextlib
 import tempfile
 from pathlib import Path
 
@@ -11,7 +12,7 @@ from hypothesis import strategies as st
 from quant.errors import QuantError
 from quant.readers.jcamp_dx.encode import FORMS, LINE_LENGTH, encode_lines
 from quant.readers.jcamp_dx.tokens import decode_compressed
-from quant.readers.jcamp_dx.writer import write_jcamp_dx
+from quant.readers.jcamp_dx.writer import LARGEST_ORDINATE, write_jcamp_dx
 from quant.readers.matrix import write_matrix
 from quant.readers.read import read_spectra
 from quant.readers.two_columns import write_two_columns
@@ -58,7 +59,7 @@ def spectra_sets(draw: st.DrawFn, most: int = 4) -> SpectraSet:
         ),
         draw(
             st.lists(
-                st.from_regex(r"[A-Za-z0-9][\w ;,.\"-]{0,6}[A-Za-z0-9]", fullmatch=True),
+                st.from_regex(r"[A-Za-z0-9][A-Za-z0-9_;,.\"-]{0,6}[A-Za-z0-9]", fullmatch=True),
                 min_size=n_spectra,
                 max_size=n_spectra,
             )
@@ -83,7 +84,8 @@ def test_jcamp_dx_round_trip(spectra: SpectraSet, form: str) -> None:
         file = Path(folder) / "a.dx"
         write_jcamp_dx(spectra, file, form)
         after = read_spectra(file)
-    assert same(spectra, after, tolerance=5e-10 * max(1.0, float(np.nanmax(np.abs(spectra.values), initial=0))) * 10)
+    # Half of YFACTOR, a power of ten at most ten times the largest ordinate over the largest integer.
+    assert same(spectra, after, tolerance=5.01 * float(np.nanmax(np.abs(spectra.values), initial=0)) / LARGEST_ORDINATE)
     assert after.sample_ids == spectra.sample_ids
     assert "reader" not in after.notes[0]
 
@@ -118,10 +120,8 @@ def test_any_bytes_are_read_or_refused(content: bytes, start: bytes, file_format
     with tempfile.TemporaryDirectory() as folder:
         file = Path(folder) / "a"
         file.write_bytes(start + content)
-        try:
+        with contextlib.suppress(QuantError):
             assert np.isfinite(read_spectra(file, format=file_format).axis.values).all()
-        except QuantError:
-            pass
 
 
 @given(
@@ -138,7 +138,5 @@ def test_a_character_changed_in_a_file_gives_spectra_or_a_refusal(place: int, ch
         text = file.read_text()
         cut = place % len(text)
         file.write_text(text[:cut] + character + text[cut + 1 :])
-        try:
+        with contextlib.suppress(QuantError):
             assert len(read_spectra(file)) == 1
-        except QuantError:
-            pass

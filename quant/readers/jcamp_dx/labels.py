@@ -19,16 +19,22 @@ _IGNORED = str.maketrans("", "", " \t-/_")
 
 @dataclass(frozen=True)
 class Record:
-    """One labelled data record: label as written, the text after "=" without comments, its first line from 1."""
+    """One labelled data record.
+
+    Attributes
+    ----------
+    written, label : str
+        The label as it stands in the file, and as labels are compared.
+    text : str
+        What follows "=", without comments.
+    line : int
+        Its first line, counted from 1.
+    """
 
     written: str
+    label: str
     text: str
     line: int
-
-    @property
-    def label(self) -> str:
-        """The label as labels are compared."""
-        return plain_label(self.written)
 
     @property
     def value(self) -> str:
@@ -54,7 +60,8 @@ class Block:
             The label comes again with another value.
         """
         for label in labels:
-            found = [record for record in self.records if record.label == plain_label(label) and record.value]
+            plain = plain_label(label)
+            found = [record for record in self.records if record.label == plain and record.text.strip()]
             for other in found[1:]:
                 if other.value != found[0].value:
                     raise FileFormatError(
@@ -131,5 +138,8 @@ def _records(text: str) -> tuple[list[Record], bool]:
         end = marks[number + 1].start() if number + 1 < len(marks) else len(text)
         body = text[mark.end() : end]
         if mark[2].strip():
-            records.append(Record(mark[2].strip(), _COMMENT.sub("", body) if "$$" in body else body, line))
+            written = mark[2].strip()
+            records.append(
+                Record(written, plain_label(written), _COMMENT.sub("", body) if "$$" in body else body, line)
+            )
     return records, any(mark[1] for mark in marks)

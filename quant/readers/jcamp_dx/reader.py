@@ -1,6 +1,7 @@
 """Reader of JCAMP-DX files that hold one spectrum."""
 
 import re
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -11,7 +12,7 @@ from quant.errors import FileFormatError, ParameterError
 from quant.files import decode_text
 from quant.readers import naming
 from quant.readers.delimited import number_from
-from quant.readers.jcamp_dx.labels import Block, Record, plain_label, read_blocks
+from quant.readers.jcamp_dx.labels import Block, plain_label, read_blocks
 from quant.readers.jcamp_dx.table import Scale, decode_line_table, decode_pairs
 from quant.readers.options import ReadingOptions
 from quant.spectra.axis import SpectralAxis
@@ -42,7 +43,7 @@ NOTE_OF_LABEL = {
 }
 """Labels kept as notes; of two that give the same note the first counts. User labels (##$BATCH=) are kept as well."""
 
-_NOT_READ = ("NTUPLES", "PEAK TABLE", "PEAK ASSIGNMENTS", "RADATA", "XYDATA_OLD", "DATA TABLE", "PAGE")
+_NOT_READ = ("NTUPLES", "PEAK TABLE", "PEAK ASSIGNMENTS", "RADATA", "DATA TABLE", "PAGE")
 
 
 def recognises_jcamp_dx(head: bytes, file_name: str) -> bool:
@@ -132,10 +133,10 @@ def _data(block: Block, options: ReadingOptions) -> tuple[FloatArray, FloatArray
         last=_number(block, options, "LASTX"),
         step=_number(block, options, "DELTAX"),
         n_points=None if n_points is None else int(n_points),
-        factor=_factor(block, options, "XFACTOR"),
+        factor=_x_factor(block, options),
     )
     if options.decimal == ",":
-        record = Record(record.written, record.text.replace(",", "."), record.line)
+        record = replace(record, text=record.text.replace(",", "."))
     form = re.sub(r"\s", "", record.text.partition("\n")[0]).upper()
     if form == "(X++(Y..Y))":
         table = decode_line_table(block, record, scale)
@@ -145,7 +146,7 @@ def _data(block: Block, options: ReadingOptions) -> tuple[FloatArray, FloatArray
         raise FileFormatError(
             block.path, f"##{record.written}= {form[:40]!r}; expected (X++(Y..Y)) or (XY..XY).", line=record.line
         )
-    return table.x, table.y * _factor(block, options, "YFACTOR")
+    return table.x, table.y * _y_factor(block, options, float(table.y[0]))
 
 
 def _number(block: Block, options: ReadingOptions, label: str) -> float | None:
@@ -161,14 +162,37 @@ def _number(block: Block, options: ReadingOptions, label: str) -> float | None:
     return value
 
 
-def _factor(block: Block, options: ReadingOptions, label: str) -> float:
+def _factor(block: Block, options: ReadingOptions, label: str) -> float | None:
     value = _number(block, options, label)
-    if value is None:
-        block.deviates(f"##{label}= is missing, 1 is taken")
-        return 1.0
     if value == 0:
         raise FileFormatError(block.path, f"##{label}= 0; expected a factor other than 0.")
     return value
+
+
+def _x_factor(block: Block, options: ReadingOptions) -> float:
+    value = _factor(block, options, "XFACTOR")
+    if value is None:
+        block.deviates("##XFACTOR= is missing, 1 is taken")  # a wrong guess fails at the check of the abscissae
+    return 1.0 if value is None else value
+
+
+def _y_factor(block: Block, options: ReadingOptions, first: float) -> float:
+    """Return YFACTOR, compared with what FIRSTY says of the first ordinate written."""
+    factor, stated = _factor(block, options, "YFACTOR"), _number(block, options, "FIRSTY")
+    unscaled = stated is not None and abs(first - stated) <= 1e-3 * abs(stated)
+    if factor is None:
+        if not unscaled:
+            raise FileFormatError(
+                block.path, "no ##YFACTOR=, and no ##FIRSTY= that would show it to be 1. Export it again."
+            )
+        block.deviates("##YFACTOR= is missing, 1 is taken as FIRSTY has it")
+        return 1.0
+    if stated is not None and abs(first * factor - stated) > abs(factor) + 1e-3 * abs(stated):
+        remark = (
+            "is not scaled by YFACTOR" if unscaled else f"{stated:g} where the first ordinate is {first * factor:g}"
+        )
+        block.deviates(f"##FIRSTY= {remark}")
+    return factor
 
 
 def _axis_unit(block: Block, options: ReadingOptions) -> str:

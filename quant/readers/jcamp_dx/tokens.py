@@ -21,7 +21,7 @@ DUP = "\0STUVWXYZs"
 MISSING = "?"
 
 LONGEST = 15  # digits; a double holds any integer of so many
-MOST_POINTS = 50_000_000  # a count of repetitions beyond this is damage, not a spectrum
+MOST_POINTS = 10_000_000  # a count of repetitions beyond this is damage, not a spectrum
 
 _BAD, _DIGIT, _BLANK, _LINE_END, _VALUE, _DIFFERENCE, _REPEAT, _MISSING = range(8)
 

@@ -103,7 +103,9 @@ def _about_validation(result: AnalyteResult) -> list[str]:
         return ["Not validated: the errors on new material are not known. Prepare or sample validation material."]
     figures, found = checked.figures, []
     if checked.kind != INDEPENDENT:
-        found.append("Internal test, no independent validation: its samples come from the set that was calibrated with.")
+        found.append(
+            "Internal test, no independent validation: its samples come from the set that was calibrated with."
+        )
     if figures.n_samples < FEWEST_VALIDATION:
         found.append(f"{figures.n_samples} validation samples; {FEWEST_VALIDATION} or more would be usual.")
     if figures.bias_test is not None and figures.bias_test.significant:

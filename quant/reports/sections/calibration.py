@@ -5,7 +5,13 @@ from typing import Any
 
 from quant.calibration.result import AnalyteResult, CalibrationResult
 
-SHOWN = ("samples", "RMSEC", "SEC", "R² (determination)", "correlation²")  # the tests prove nothing about fitted samples
+SHOWN = (
+    "samples",
+    "RMSEC",
+    "SEC",
+    "R² (determination)",
+    "correlation²",
+)  # the tests prove nothing about fitted samples
 
 
 def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> dict[str, Any]:  # noqa: ARG001

@@ -29,6 +29,7 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
     return {
         "scheme": crossed.scheme,
         "n_samples": crossed.n_samples,
+        "n_units": crossed.n_units,
         "n_folds": crossed.n_folds,
         "unit": analyte.unit,
         "rows": rows,

@@ -31,7 +31,7 @@ def _rows(result: AnalyteResult) -> list[Row]:
     return [
         ("calibration samples", result.n_samples, ""),
         ("calibration spectra", result.n_spectra, ""),
-        ("spectra a sample (harmonic mean)", known.replicates, ""),
+        ("spectra a sample", f"{known.replicates:.3g} (harmonic mean)", ""),
         ("validation samples", 0 if checked is None else len(checked.sample_ids), ""),
         ("origins of the validation samples", "no validation samples" if checked is None else origins, ""),
         ("ordinate as read", QUANTITIES[model.quantity], ""),
@@ -39,5 +39,9 @@ def _rows(result: AnalyteResult) -> list[Row]:
         *notes,
         ("reference values from", float(result.reference.min()), result.unit),
         ("reference values to", float(result.reference.max()), result.unit),
-        ("standard error of the laboratory", known.laboratory_error or "not stated", result.unit),
+        ("standard error of the laboratory", *_or_not_stated(known.laboratory_error, result.unit)),
     ]
+
+
+def _or_not_stated(value: float | None, unit: str) -> tuple[object, str]:
+    return ("not stated", "") if value is None else (value, unit)

@@ -19,7 +19,7 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
         ("degrees of freedom", known.degrees_of_freedom, ""),
         ("standard error of the laboratory", _or("not stated", known.laboratory_error), analyte.unit),
         ("SD of predictions of replicates", _or("no replicates", known.replicate_sd), analyte.unit),
-        ("spectra a sample in the calibration", known.replicates, ""),
+        ("spectra a sample in the calibration", f"{known.replicates:.3g}", ""),
     ]
     return {
         "limits": limits,

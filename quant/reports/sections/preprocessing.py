@@ -6,19 +6,20 @@ import numpy as np
 
 from quant.calibration.result import AnalyteResult, CalibrationResult
 from quant.estimator import Step
-from quant.plots.spectra import plot_spectra
+from quant.plots.spectra import kept_ranges, plot_spectra
 from quant.reports.pictures import picture
 
 
 def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> dict[str, Any]:  # noqa: ARG001
     """Return the steps in words, and the spectra before and after."""
     steps = analyte.model.steps
-    before = picture(plot_spectra, analyte, f"{place}-read", "Spectra as read, mean of each sample; ranges in use shaded.")
-    after = "Spectra after preprocessing; shaded gaps have been cut out."
-    return {
-        "steps": [describe_step(step) for step in steps],
-        "pictures": [before, *([picture(plot_spectra, analyte, f"{place}-after", after, processed=True)] if steps else [])],
-    }
+    cut = bool(kept_ranges(analyte))
+    read = f"Spectra as read, mean of each sample{'; ranges that are kept shaded' if cut else ''}."
+    after = f"Spectra after preprocessing{'; what was cut out between them shaded' if cut else ''}."
+    pictures = [picture(plot_spectra, analyte, f"{place}-read", read)]
+    if steps:
+        pictures.append(picture(plot_spectra, analyte, f"{place}-after", after, processed=True))
+    return {"steps": [describe_step(step) for step in steps], "pictures": pictures}
 
 
 def describe_step(step: Step) -> str:

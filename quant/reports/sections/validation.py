@@ -13,13 +13,26 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
     checked = analyte.validation
     shared = {"unit": analyte.unit, "not_proven": NOT_PROVEN, "pictures": _pictures(analyte, place)}
     if checked is None:
-        return {**shared, "kind": "", "how": "", "rows": [], "origins": [], "samples": [], "held": "", "accepted": False}
+        return {
+            **shared,
+            "kind": "",
+            "how": "",
+            "rows": [],
+            "tests": [],
+            "origins": [],
+            "samples": [],
+            "held": "",
+            "accepted": False,
+        }
+    rows = checked.figures.rows()
+    half = [name for name, _, _ in rows].index("line")
     return {
         **shared,
         "kind": checked.kind,
         "how": checked.how,
         "accepted": checked.accepted,
-        "rows": checked.figures.rows(),
+        "rows": rows[:half],
+        "tests": rows[half:],
         "origins": [(origin, figures) for origin, figures in checked.by_origin.items()],
         "samples": _samples(checked),
         "held": f"{int(checked.inside.sum())} of {checked.inside.size}",

@@ -16,13 +16,23 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
     """Return the regression vector, or bands and calibration line."""
     method = analyte.model.method
     if not isinstance(method, BandArea):
-        caption = "Regression vector: ordinates that raise the prediction lie above the line, those that lower it below."
-        return {"bands": [], "rows": [], "pictures": [picture(plot_regression_vector, analyte, f"{place}-vector", caption)]}
+        caption = (
+            "Regression vector: ordinates that raise the prediction lie above the line, those that lower it below."
+        )
+        return {
+            "bands": [],
+            "rows": [],
+            "pictures": [picture(plot_regression_vector, analyte, f"{place}-vector", caption)],
+        }
     unit = AXIS_UNITS[analyte.picture.axis_unit]
     bands = [("band", describe_band(band, unit)) for band in method.bands or ()]
     if method.reference_band:
         bands.append(("reference band", describe_band(method.reference_band, unit)))
-    return {"bands": bands or [("band", "the whole axis")], "rows": _line(analyte, method), "pictures": _pictures(analyte, place)}
+    return {
+        "bands": bands or [("band", "the whole axis")],
+        "rows": _line(analyte, method),
+        "pictures": _pictures(analyte, place),
+    }
 
 
 def describe_band(band: BandSpec, unit: str) -> str:
@@ -33,7 +43,11 @@ def describe_band(band: BandSpec, unit: str) -> str:
     else:
         text = f"height at {band['position']:g} {unit}"
     line = band.get("baseline")
-    return f"{text}, above the straight line through {line[0]:g} and {line[1]:g} {unit}" if line else f"{text}, no baseline"
+    return (
+        f"{text}, above the straight line through {line[0]:g} and {line[1]:g} {unit}"
+        if line
+        else f"{text}, no baseline"
+    )
 
 
 def _line(result: AnalyteResult, method: BandArea) -> list[Row]:
@@ -53,4 +67,12 @@ def _pictures(result: AnalyteResult, place: str) -> list[Picture]:
     line = picture(plot_calibration_line, result, f"{place}-line", "Calibration line with its samples.", narrow=True)
     if not result.picture.bands:
         return [line]
-    return [picture(plot_bands, result, f"{place}-bands", "The bands on the preprocessed spectra."), line]
+    near = "Near by; dotted: where the baseline rests."
+    return [
+        picture(plot_bands, result, f"{place}-bands", "The bands on the preprocessed spectra."),
+        *(
+            picture(plot_bands, result, f"{place}-band{number}", near, narrow=True, number=number)
+            for number in range(len(result.picture.bands))
+        ),
+        line,
+    ]

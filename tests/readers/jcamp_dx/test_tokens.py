@@ -7,7 +7,7 @@ from quant.readers.jcamp_dx.tokens import TokenError, decode_compressed
 
 # McDonald R.S., Wilks P.A., Appl. Spectrosc. 42 (1988) 151-162, Table VIIb: found (public test data quoting it).
 TABLE_VII = [1, 2, 3, 3, 2, 1, 0, -1, -2, -3]
-# Same paper, Table VI.3, DIFDUP with check line: found (public test data quoting it). SQZ and DIF of the same: computed.
+# Same paper, Table VI.3, DIFDUP with check line: found (public test data quoting it). SQZ and DIF of it: computed.
 TABLE_VI = [
     *(0, 0, 0, 0, 2, 4, 4, 4, 7, 5, 4, 4, 5, 5, 7, 10, 11, 11, 6, 5, 7, 6, 9, 9, 7, 10, 10, 9, 10, 11, 12, 15, 16, 16),
     *(14, 17, 38, 38, 35, 38, 42, 47, 54, 59, 66, 75, 78, 88, 96, 104, 110, 121, 128),

@@ -1,0 +1,23 @@
+"""The README quotes what the long tests counted."""
+
+import json
+
+
+def test_the_readme_quotes_the_counts_of_the_long_tests(repository):
+    found = json.loads((repository / "tests" / "long" / "results.json").read_text("utf-8"))
+    coverage = found["coverage"]
+    rows = [
+        ("95 % interval holds a new reference result (36 standards, one new sample a set)", "covered", "sets", coverage),
+        ("95 % interval holds the true value", "covered_true", "true_intervals", coverage),
+    ]
+    for n in (30, 60):
+        counts = found[f"applicability_{n}"]
+        foreign = counts["foreign_rejected"]
+        totals = {**counts, "all_foreign": sum(foreign.values()), "asked": counts["foreign_a_kind"] * len(foreign)}
+        rows.append((f'new in-domain samples called "not applicable", {n} standards', "rejected", "new", totals))
+        rows.append(
+            (f'spectra of five foreign kinds called "not applicable", {n} standards', "all_foreign", "asked", totals)
+        )
+    readme = (repository / "README.md").read_text("utf-8")
+    for claim, part, whole, counts in rows:
+        assert f"| {claim} | {counts[part]} of {counts[whole]} |" in readme
