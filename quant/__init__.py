@@ -34,7 +34,7 @@ _HOME = {
     "read_spectra": "quant.readers.read",
     "save_model": "quant.model.storage",
     "validate": "quant.calibration.validate",
-    "write_report": "quant.reports.report",
+    "write_report": "quant.reports.write",
 }
 
 __all__ = [  # noqa: PLE0604 (the names are loaded by __getattr__)

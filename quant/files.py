@@ -4,7 +4,7 @@ import hashlib
 import os
 import time
 from collections.abc import Iterator
-from contextlib import contextmanager
+from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import BinaryIO
 
@@ -87,7 +87,8 @@ def whole_file(path: str | Path) -> Iterator[BinaryIO]:
             os.fsync(stream.fileno())
         neighbour.replace(target)
     except BaseException as problem:
-        neighbour.unlink(missing_ok=True)
+        with suppress(OSError):  # it may never have come into being
+            neighbour.unlink()
         if isinstance(problem, OSError):
             raise UsageError(
                 f"{target} cannot be written ({problem.strerror}); expected a folder that may be written to. "

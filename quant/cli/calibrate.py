@@ -22,7 +22,7 @@ def command(recipe: Path, folder: Path) -> None:
     from quant.calibration.calibrate import calibrate  # deferred, as those below: --help needs none of it
     from quant.model.storage import save_model
     from quant.recipe.load import load_recipe
-    from quant.reports.report import write_report
+    from quant.reports.write import write_report
 
     wanted = load_recipe(recipe)
     names = model_files([table.name for table in wanted.analyte])

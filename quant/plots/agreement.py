@@ -17,6 +17,7 @@ from quant.plots.style import (
     axes_or_new,
     label_axes,
     legend,
+    printable,
     with_unit,
     zero_line,
 )
@@ -74,7 +75,7 @@ def plot_errors(result: AnalyteResult, ax: Axes | None = None) -> Axes:
         ax.plot(checked.reference, checked.predicted - checked.reference, **VALIDATION.options(), zorder=3)
         bias = checked.figures.bias
         line = ax.axhline(bias, color=RULE, linewidth=LINE, linestyle=(0, (4, 2)), zorder=1)
-        line.set_label(f"bias {format_number(bias, 3)} {result.unit}".rstrip())
+        line.set_label(printable(f"bias {format_number(bias, 3)} {result.unit}".rstrip()))
     label_axes(
         ax, with_unit(f"reference {result.analyte}", result.unit), with_unit("predicted − reference", result.unit)
     )

@@ -2,7 +2,6 @@
 
 from typing import NamedTuple
 
-import numpy as np
 from matplotlib.axes import Axes
 from matplotlib.transforms import Bbox
 

@@ -35,8 +35,8 @@ def plot_factors(result: AnalyteResult, ax: Axes | None = None) -> Axes:
     fitted = {count: value for count, value in enumerate(result.picture.rmsec) if count in counts[shown]}
     if counts.size == 1:  # a straight line has no simpler self
         fitted = {int(counts[0]): float(result.picture.rmsec[-1])}
-    bars = ax.errorbar(counts[shown], crossed.rmsecv[shown], yerr=crossed.rmsecv_se[shown], color=BLUE,
-                       marker="D", markersize=3.5, linewidth=LINE, elinewidth=THIN, capsize=2.5, capthick=THIN)  # fmt: skip
+    bars = ax.errorbar(counts[shown], crossed.rmsecv[shown], yerr=crossed.rmsecv_se[shown], color=BLUE, marker="D",
+                       markersize=3.5, linewidth=LINE, elinewidth=THIN, capsize=2.5, capthick=THIN)  # fmt: skip
     bars.set_label("RMSECV ± standard error (left out)")
     ax.plot(list(fitted), list(fitted.values()), color=RULE, marker="o", markersize=4, markerfacecolor="white",
             linewidth=LINE, linestyle=(0, (4, 2)), label="RMSEC (fitted)")  # fmt: skip

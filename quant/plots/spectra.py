@@ -1,6 +1,7 @@
 """Pictures along the spectral axis: spectra, the ranges and bands in use, the regression vector."""
 
 from itertools import pairwise
+from typing import Any
 
 import numpy as np
 from matplotlib.axes import Axes
@@ -12,6 +13,7 @@ from quant.arrays import FloatArray
 from quant.calibration.result import AnalyteResult
 from quant.plots.style import (
     HALF,
+    HATCH,
     INK,
     LINE,
     NORMAL,
@@ -36,6 +38,7 @@ from quant.units import AXIS_UNITS, QUANTITIES
 
 MOST_AS_LINES = 20_000  # points drawn as lines of an SVG; beyond, the lines (not the lettering) become an image
 SILENT = ("absorbance", "keep_ranges", "leave_out_ranges", "resample", "mean_centre")  # leave the ordinate's meaning
+REFERENCE_BAND: dict[str, Any] = {"hatch": "////", "facecolor": "none", "edgecolor": HATCH}
 AROUND_BANDS = 0.35  # of the width of what is shown, to either side of the bands
 
 
@@ -80,11 +83,11 @@ def plot_bands(result: AnalyteResult, ax: Axes | None = None, *, number: int | N
     _draw(ax, picture.processed_axis, picture.processed, picture.shown_values, with_unit(result.analyte, result.unit))
     bands = _bands(result)
     for i, (low, high, _, reference) in enumerate(bands):
-        style = {"hatch": "////", "facecolor": "none", "edgecolor": RULE} if reference else {"facecolor": SHADE}
+        style = REFERENCE_BAND if reference else {"facecolor": SHADE}
         ax.axvspan(low, high, linewidth=0 if low < high else LINE, zorder=0, **style)
         if number in (None, i):
-            ax.annotate("reference band" if reference else "band", ((low + high) / 2, 1.0), (0, 3), ha="center",
-                        xycoords=ax.get_xaxis_transform(), textcoords="offset points", fontsize=SMALL, color=INK)  # fmt: skip
+            text, place = "reference band" if reference else "band", ((low + high) / 2, 1.01)
+            ax.text(*place, text, transform=ax.get_xaxis_transform(), ha="center", fontsize=SMALL, color=INK)
     shown = bands if number is None else bands[number : number + 1]
     if number is not None:
         for position in shown[0][2]:
@@ -107,7 +110,7 @@ def plot_regression_vector(result: AnalyteResult, ax: Axes | None = None) -> Axe
     if picture.regression_vector is not None:
         for run in segments(picture.processed_axis):
             ax.plot(picture.processed_axis[run], picture.regression_vector[run], color=OCHRE, linewidth=LINE)
-    unit = f"[{result.unit or result.analyte} / ordinate]"
+    unit = f"[{result.unit or result.analyte} per unit of the ordinate]"
     label_axes(ax, spectral_axis(ax, picture.processed_axis, picture.axis_unit), f"regression vector\n{unit}")
     return ax
 
@@ -157,7 +160,7 @@ def _draw(ax: Axes, axis: FloatArray, spectra: FloatArray, values: FloatArray, l
         ax.axvspan(*end, color=SHADE, alpha=0.45, linewidth=0, zorder=0)
     ax.autoscale_view(scalex=False)
     bar = figure_of(ax).colorbar(collection, ax=ax, pad=0.015, aspect=28, ticks=MaxNLocator(5))
-    bar.outline.set_visible(False)  # type: ignore[operator]  # a spine, whatever the stubs say
+    bar.outline.set_visible(False)
     bar.ax.tick_params(colors=INK, labelsize=SMALL, width=THIN, length=2, color=RULE)
     bar.set_label(wrapped(label, figure_of(ax).get_size_inches()[1]), fontsize=NORMAL, color=INK, parse_math=False)
 

@@ -19,7 +19,7 @@ from matplotlib.ticker import LogLocator, NullFormatter
 from quant.arrays import FloatArray
 from quant.units import AXIS_UNITS
 
-INK, RULE, SHADE = "#22303c", "#8b98a5", "#e9eef2"
+INK, RULE, SHADE, HATCH = "#22303c", "#8b98a5", "#e9eef2", "#c4ced6"
 BLUE, VERMILION, OCHRE = "#0072b2", "#d55e00", "#9a6b00"
 VALUES = LinearSegmentedColormap.from_list("sand to navy", ["#d9b44a", "#4c9a8b", "#123a5c"])
 
@@ -98,8 +98,9 @@ def label_axes(ax: Axes, x: str, y: str) -> None:
 
 
 def wrapped(text: str, length: float) -> str:
-    """Break text, shortened to a few lines, into lines that fit into a length. [inch]"""
-    return textwrap.fill(text, max(int(CHARACTERS * length), 8), max_lines=3, placeholder=" …")
+    """Break text into lines that fit into a length, three at most of each line it has. [inch]"""
+    width = max(int(CHARACTERS * length), 8)
+    return "\n".join(textwrap.fill(printable(line), width, max_lines=3, placeholder=" …") for line in text.splitlines())
 
 
 ABOVE: dict[str, Any] = {"loc": "lower left", "bbox_to_anchor": (0.0, 1.0), "columnspacing": 1.4}
@@ -123,9 +124,14 @@ def with_unit(name: str, unit: str) -> str:
     return f"{name} [{unit}]" if unit else name
 
 
+def printable(text: str) -> str:
+    """Return text with a sign in place of everything that cannot be printed or stand in an SVG."""
+    return "".join(c if c.isprintable() else "\N{REPLACEMENT CHARACTER}" for c in text)
+
+
 def short(sample: str) -> str:
     """Return a sample ID on one line, short enough for a picture."""
-    line = "".join(c if c.isprintable() else "\N{REPLACEMENT CHARACTER}" for c in sample)
+    line = printable(sample)
     return line if len(line) <= LONGEST_LABEL else f"{line[: LONGEST_LABEL - 1]}…"
 
 

@@ -3,6 +3,7 @@
 import io
 import re
 import warnings
+from typing import Any
 from xml.etree import ElementTree as ET
 
 import matplotlib as mpl
@@ -12,9 +13,8 @@ from quant.plots.style import figure_of
 
 SVG, XLINK = "http://www.w3.org/2000/svg", "http://www.w3.org/1999/xlink"
 RESOLUTION = 220  # of the parts that are drawn as images [dots per inch]
-FONTS = ["DejaVu Sans", "Verdana", "sans-serif"]  # the first two are equally wide
+FONTS = ["DejaVu Sans", "Verdana"]  # equally wide
 
-_SETTINGS = {"svg.hashsalt": "quant", "svg.fonttype": "none", "font.family": FONTS, "font.size": 8.5}
 _REFERENCE = re.compile(r"(url\(#|^#)([^)]+)")
 
 ET.register_namespace("", SVG)
@@ -33,7 +33,8 @@ def to_svg(ax: Axes, prefix: str, description: str) -> str:
         What a reader who cannot see the picture is told.
     """
     stream = io.BytesIO()
-    with mpl.rc_context(_SETTINGS), warnings.catch_warnings():
+    settings: Any = {"svg.hashsalt": "quant", "svg.fonttype": "none", "font.sans-serif": FONTS}
+    with mpl.rc_context(settings), warnings.catch_warnings():
         warnings.filterwarnings(
             "ignore", message="Glyph .* missing from", category=UserWarning
         )  # the reader's fonts decide

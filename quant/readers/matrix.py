@@ -156,7 +156,7 @@ def _axis(path: Path, headings: Sequence[str], options: ReadingOptions) -> tuple
     if len(positions) < 2:
         other = "," if options.decimal == "." else "."
         swapped = sum(delimited.position_from(heading, other) is not None for heading in headings)
-        advice = f"Set decimal = {other!r}." if swapped >= 2 else "Check separator and decimal."
+        advice = f'Set decimal = "{other}".' if swapped >= 2 else "Check separator and decimal."
         raise FileFormatError(
             path,
             f"{len(positions)} of {len(headings)} column headings are axis positions "

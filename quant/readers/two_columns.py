@@ -145,7 +145,7 @@ def _no_pairs(lines: list[str], options: ReadingOptions) -> str:
     given = None if options.separator == other else options.separator
     start = _first_pair(lines, other, given)
     if start is not None:
-        return f"line {start + 1} is {lines[start].strip()[:40]!r}: set decimal = {other!r}."
+        return f'line {start + 1} is {lines[start].strip()[:40]!r}: set decimal = "{other}".'
     return (
         "no two lines of two numbers each; expected position and ordinate a line. Check the separator and the export."
     )

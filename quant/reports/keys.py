@@ -33,7 +33,7 @@ PLAIN: dict[type[Any], dict[str, str]] = {
 
 
 def key_docs(cls: type[Result] = CalibrationResult) -> dict[str, str]:
-    """Return the meaning of every key by its path: "analytes[].limits.lowest", "analytes[].validation.by_origin.*.bias".
+    """Return the meaning of every key by its path: "analytes[].limits.lowest".
 
     Raises
     ------
@@ -60,7 +60,7 @@ def _records(hint: Any) -> Iterator[tuple[type[Any], str]]:
     if isinstance(hint, type) and is_dataclass(hint):
         yield hint, ""
         return
-    step = {tuple: "[]", list: "[]", dict: ".*"}.get(get_origin(hint), "")  # type: ignore[call-overload]
+    step = {tuple: "[]", list: "[]", dict: ".*"}.get(get_origin(hint), "")
     for argument in get_args(hint):
         for inner, further in _records(argument):
             yield inner, step + further

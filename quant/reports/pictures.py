@@ -39,4 +39,4 @@ def picture(
         Passed on to `plot`.
     """
     svg = to_svg(plot(result, **options), place, caption)
-    return Picture(Markup(svg), caption, narrow)  # noqa: S704 (made by us; XML has escaped every text in it)
+    return Picture(Markup(svg), caption, narrow)

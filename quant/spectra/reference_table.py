@@ -1,5 +1,6 @@
 """Reference values from the laboratory."""
 
+from collections import Counter
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from types import MappingProxyType
@@ -86,7 +87,7 @@ class ReferenceTable:
                 f"Reference values of shape {matrix.shape} for {len(sample_ids)} samples and {len(analytes)} analytes; "
                 "expected one row a sample and one column an analyte."
             )
-        twice = sorted({sample for sample in sample_ids if list(sample_ids).count(sample) > 1})
+        twice = sorted(sample for sample, times in Counter(sample_ids).items() if times > 1)
         if twice:
             raise SampleMismatchError(
                 f"The reference table has more than one row for {name_some(twice)}; expected one. "

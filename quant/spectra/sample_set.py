@@ -167,6 +167,8 @@ def pair_samples(
     ------
     SampleMismatchError
         Spectra without a row or without a value (unless "drop"), or no pair at all.
+    ParameterError
+        A word that is not among those listed, or an origin that is not one of `ORIGINS`.
     """
     one_of("unmatched", unmatched, ("refuse", "drop"))
     one_of("missing", missing, ("refuse", "drop"))

@@ -16,7 +16,8 @@ def test_no_recipe(project) -> None:
     result = project.calibrate("other.toml")
     assert result.exit_code == DATA
     assert result.stderr == (
-        f"Error: {project.folder}/other.toml: no such file. Check the path (recipes count paths from their own folder).\n"
+        f"Error: {project.folder}/other.toml: no such file. "
+        "Check the path (recipes count paths from their own folder).\n"
     )
 
 

@@ -70,7 +70,7 @@ def test_a_missing_ordinate_is_nan(tmp_path: Path) -> None:
         ("900,0.1\n902,0.2\n901,0.2\n", "turns or repeats at point 3"),
         ("900,0.1\n900,0.2\n", "turns or repeats"),
         ("900,0.1\n", "no two lines of two numbers"),
-        ("900;0,1\n902;0,2\n", "line 1 is '900;0,1': set decimal = ','"),
+        ("900;0,1\n902;0,2\n", "line 1 is '900;0,1': set decimal = \",\""),
         ("900,50\n902,60\n", "percent_transmittance"),
     ],
 )

@@ -90,7 +90,7 @@ def read_jcamp_dx(path: Path, content: bytes, options: ReadingOptions) -> Spectr
 def _refuse_compound(blocks: list[Block]) -> None:
     """Refuse what is not one spectrum, by its name."""
     block = blocks[0]
-    kind = block.find("DATA TYPE", "DATATYPE")
+    kind = block.find("DATA TYPE")
     if len(blocks) > 1 or block.find("BLOCKS") or (kind and plain_label(kind.value) == "LINK"):
         raise FileFormatError(
             block.path,

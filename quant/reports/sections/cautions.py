@@ -11,8 +11,8 @@ CAUTIONS = (
     "ordinate and axis.",
     "They hold within the calibrated range, for the matrix that the samples came from. A new raw material, supplier, "
     "solvent or process step calls for new validation samples.",
-    "Every result needs its interval and its statement of applicability beside it. A value that the calibration does not "
-    "apply to must not be used.",
+    "Every result needs its interval and its statement of applicability beside it. A value that the calibration does "
+    "not apply to must not be used.",
     "Check the spectrometer and re-validate after each service, repair or change of accessory, and at fixed intervals.",
     "Preparing standards means handling solvents: work under ventilation, keep flammable ones away from ignition "
     "sources, earth metal containers, wear gloves and goggles, and read the safety data sheets first.",

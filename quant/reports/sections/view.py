@@ -5,8 +5,8 @@ from typing import Any
 from quant.calibration.result import AnalyteResult, CalibrationResult
 from quant.plots.agreement import plot_calibration_line
 from quant.plots.spectra import plot_bands, plot_regression_vector
-from quant.regression.bands import BandSpec
 from quant.regression.band_area import BandArea
+from quant.regression.bands import BandSpec
 from quant.reports.pictures import Picture, picture
 from quant.text_table import Row
 from quant.units import AXIS_UNITS

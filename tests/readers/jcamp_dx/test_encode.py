@@ -4,7 +4,7 @@ import pytest
 
 from quant.readers.jcamp_dx.encode import LINE_LENGTH, encode_lines
 
-# Appl. Spectrosc. 42 (1988) 151-162, Table VIIb: found (public test data quoting it); there the first ordinate is plain.
+# Appl. Spectrosc. 42 (1988) 151-162, Table VIIb: found (public test data quoting it); the first is plain there.
 VALUES = [1, 2, 3, 3, 2, 1, 0, -1, -2, -3]
 
 

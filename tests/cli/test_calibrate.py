@@ -1,0 +1,101 @@
+"""``quant calibrate``: what it prints, what it leaves, and that the published sets come out of it."""
+
+import json
+from pathlib import Path
+
+import pytest
+
+from quant.cli.calibrate import file_name, model_files
+from quant.errors import RecipeError
+from quant.model.storage import load_model
+
+ROOT = Path(__file__).resolve().parents[2]
+VALUES = ROOT / "tests" / "reference_values"
+
+
+def test_tecator(project) -> None:
+    out = project.folder / "made" / "here"
+    result = project.run("calibrate", ROOT / "configs" / "tecator.toml", "--out", out)
+    assert result.exit_code == 0
+    assert result.stderr == ""
+    names = ["fat.model", "moisture.model", "protein.model", "report.html", "calibration.json"]
+    assert sorted(path.name for path in out.iterdir()) == sorted(names)
+    for name in names:
+        assert str(out / name) in result.stdout
+    written = json.loads((out / "calibration.json").read_text(encoding="utf-8"))
+    expected = json.loads((VALUES / "tecator.json").read_text(encoding="utf-8"))["results"]
+    for entry in written["analytes"]:
+        figures = expected[entry["analyte"]]["sg_d2_w9p2__snv"]
+        assert entry["cross_validation"]["rmsecv"] == pytest.approx(figures["rmsecv_interleaved"], abs=1e-8)
+        model = load_model(out / f"{entry['analyte']}.model")
+        assert model.factors == entry["factors"]
+        assert model.figures["RMSECV"] == entry["cross_validation"]["rmsecv"][entry["factors"]]
+    assert [entry["analyte"] for entry in written["analytes"]] == ["fat", "moisture", "protein"]
+
+
+def test_gasoline(project) -> None:
+    result = project.run("calibrate", ROOT / "configs" / "gasoline.toml", "--out", project.folder / "out")
+    assert result.exit_code == 0
+    written = json.loads((project.folder / "out" / "calibration.json").read_text(encoding="utf-8"))
+    expected = json.loads((VALUES / "gasoline.json").read_text(encoding="utf-8"))
+    [entry] = written["analytes"]
+    assert entry["cross_validation"]["rmsecv"] == pytest.approx(expected["rmsecv_loo_CV"], abs=1e-9)
+    assert "0.2524 octane number" in result.stdout  # Mevik & Wehrens 2007, three factors [found]
+    assert "independent validation" in result.stdout
+
+
+def test_the_model_knows_where_it_came_from(project) -> None:
+    assert project.calibrate().exit_code == 0
+    model = load_model(project.folder / "out" / "acid.model")
+    assert model.recipe == (project.folder / "recipe.toml").read_text(encoding="utf-8")
+    assert model.training[0].name == "spectra.csv"
+    assert dict(model.domain) == {"technique": ("ATR",), "resolution": ("4",)}
+    assert str(model.state) == "draft"
+    assert set(model.versions) == {"quant", "numpy", "python"}
+
+
+def test_without_validation_nothing_is_claimed(project) -> None:
+    assert "no validation samples: how it does on new material is not proven" in project.calibrate().stdout
+
+
+def test_samples_left_out_are_told(project) -> None:
+    project.replace("recipe.toml", "[regression]", '[[exclude]]\nsamples = ["S03"]\nreason = "spilt"\n\n[regression]')
+    result = project.calibrate()
+    assert result.exit_code == 0
+    assert "left out: S03 (spilt)" in result.stdout
+
+
+def test_a_folder_is_asked_for(project) -> None:
+    result = project.run("calibrate", project.folder / "recipe.toml")
+    assert result.exit_code == 2
+    assert "Missing option '--out'" in result.stderr
+
+
+def test_a_place_that_cannot_be_written(project) -> None:
+    (project.folder / "file").write_text("in the way", encoding="utf-8")
+    result = project.run("calibrate", project.folder / "recipe.toml", "--out", project.folder / "file" / "out")
+    assert result.exit_code == 2
+    assert result.stderr == (
+        f"Error: {project.folder}/file/out/acid.model cannot be written (Not a directory); expected a folder that may "
+        "be written to. Choose another place.\n"
+    )
+
+
+@pytest.mark.parametrize(
+    ("analyte", "expected"),
+    [
+        ("ethyl acetate", "ethyl-acetate"),
+        ("../../etc", "etc"),
+        ("a/b\\c", "a-b-c"),
+        ("Säure 1,2", "Säure-1-2"),
+        ("%", "analyte"),
+    ],
+)
+def test_file_names(analyte: str, expected: str) -> None:
+    assert file_name(analyte) == expected
+
+
+def test_names_that_differ_in_capitals_only_are_refused() -> None:
+    assert model_files(["acid", "ester"]) == {"acid": "acid.model", "ester": "ester.model"}
+    with pytest.raises(RecipeError, match=r"'acid', 'ACID' would have one file name \(acid\.model\)"):
+        model_files(["acid", "ester", "ACID"])
