@@ -1,6 +1,5 @@
 """Cross-validation with the whole pipeline fitted anew in every fold."""
 
-from collections import Counter
 from collections.abc import Sequence
 from dataclasses import dataclass
 
@@ -185,7 +184,6 @@ def _collect(
     se = squared.std(axis=1, ddof=1) / np.sqrt(len(samples)) / (2 * np.where(rmsecv > 0, rmsecv, 1.0))
     freedom = (len(samples.spectra) - len(samples)) * len(folds.repeats)
     within = np.sum([_padded(part.within[:, None], len(counts))[:, 0] for _, part in parts], axis=0)
-    stops = Counter(part.note for _, part in parts if part.note)
     return CrossValidationResult(
         analyte=analyte.name,
         unit=analyte.unit,
@@ -204,7 +202,19 @@ def _collect(
         rmsecv_se=se,
         q2=1 - squared.sum(axis=1) / np.sum((values - values.mean()) ** 2),
         choices={name: rule(squared) for name, rule in RULES.items()} if len(counts) > 1 else {},
-        guard_notes=tuple(f"{count} of {len(parts)} folds: {note}" for note, count in stops.items()),
+        guard_notes=_guard_notes([part for _, part in parts]),
+    )
+
+
+def _guard_notes(parts: Sequence[_LeftOut]) -> tuple[str, ...]:
+    """Tell once for each number of factors how many folds ended with it; the notes differ in their numbers."""
+    stops: dict[int, list[str]] = {}
+    for part in parts:
+        if part.note:
+            stops.setdefault(part.predicted.shape[0] - 1, []).append(part.note)
+    return tuple(
+        f"{len(notes)} of {len(parts)} folds ended with {count} factor(s); the first of them: {notes[0]}"
+        for count, notes in sorted(stops.items())
     )
 
 

@@ -48,8 +48,10 @@ def plot_factors(result: AnalyteResult, ax: Axes | None = None) -> Axes:
     for row, (rule, count) in enumerate(crossed.choices.items()):
         height = 0.96 - 0.075 * row
         ax.plot([count], [height], marker="v", markersize=4, color=INK, transform=ax.get_xaxis_transform())
+        left = count > 0.7 * counts[-1]  # of its mark, where there is no room to the right
         ax.annotate(f"{rule.replace('_', ' ')}: {count}", (count, height), xycoords=ax.get_xaxis_transform(),
-                    xytext=(6, 0), textcoords="offset points", va="center", fontsize=SMALL, color=INK)  # fmt: skip
+                    xytext=(-6 if left else 6, 0), textcoords="offset points", ha="right" if left else "left",
+                    va="center", fontsize=SMALL, color=INK)  # fmt: skip
     label_axes(ax, "number of factors", with_unit("error", result.unit))
     legend(ax, ncols=3, **ABOVE)
     return ax

@@ -84,15 +84,18 @@ def plot_bands(result: AnalyteResult, ax: Axes | None = None, *, number: int | N
     bands = _bands(result)
     for i, (low, high, _, reference) in enumerate(bands):
         style = REFERENCE_BAND if reference else {"facecolor": SHADE}
-        ax.axvspan(low, high, linewidth=0 if low < high else LINE, zorder=0, **style)
+        if low < high:
+            ax.axvspan(low, high, linewidth=0, zorder=0, **style)
+        else:  # a height at one position
+            ax.axvline(low, color=RULE, linewidth=LINE, zorder=0)
         if number in (None, i):
             text, place = "reference band" if reference else "band", ((low + high) / 2, 1.01)
             ax.text(*place, text, transform=ax.get_xaxis_transform(), ha="center", fontsize=SMALL, color=INK)
     shown = bands if number is None else bands[number : number + 1]
     if number is not None:
         for position in shown[0][2]:
-            ax.axvline(position, color=INK, linewidth=THIN, linestyle=(0, (1, 2)), zorder=1)
-    ends = [end for low, high, line, _ in shown for end in (low, high, *line)]
+            ax.axvline(position, color=INK, linewidth=LINE, linestyle=(0, (1, 2)), zorder=1)
+    ends = [end for low, high, line, _ in shown for end in (low, high, *line)] or [*picture.processed_axis[[0, -1]]]
     window = _window(picture.processed_axis, min(ends), max(ends))
     inside = (picture.processed_axis >= window.min()) & (picture.processed_axis <= window.max())
     seen = picture.processed[:, inside]

@@ -1,8 +1,8 @@
 """The common look of all pictures: colours, marks, lines, labels.
 
 Every kind of sample differs in colour, in mark and in lightness, so that the pictures hold in print without colour and
-for readers who do not see all colours. Vermilion and blue are those of Okabe & Ito (2008); the scale for reference
-values runs from sand over teal to navy, getting darker throughout.
+for readers who do not see all colours. Vermilion and (darkened) blue are those of Okabe & Ito (2008); the scale for
+reference values runs from sand over teal to navy, getting darker throughout.
 """
 
 import textwrap
@@ -20,7 +20,7 @@ from quant.arrays import FloatArray
 from quant.units import AXIS_UNITS
 
 INK, RULE, SHADE, HATCH = "#22303c", "#8b98a5", "#e9eef2", "#c4ced6"
-BLUE, VERMILION, OCHRE = "#0072b2", "#d55e00", "#9a6b00"
+BLUE, VERMILION, OCHRE = "#005b96", "#d55e00", "#9a6b00"
 VALUES = LinearSegmentedColormap.from_list("sand to navy", ["#d9b44a", "#4c9a8b", "#123a5c"])
 
 SIZE = (7.6, 3.1)  # of a picture as wide as the page [inch]

@@ -97,4 +97,4 @@ class PredictionResult(Result):
 def _decimals(row: Prediction) -> int:
     """Decimals that show two significant digits of the standard error: more say nothing."""
     error = row.standard_error
-    return min(max(1 - math.floor(math.log10(error)), 0), 12) if 0 < error < math.inf else 0
+    return min(max(1 - math.floor(math.log10(error)), 0), 12) if 0 < error < math.inf else 3

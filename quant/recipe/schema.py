@@ -199,17 +199,21 @@ class Recipe(Table):
     """A whole recipe."""
 
     title: Text = Field(description="What the calibration is for.")
-    spectra: SpectraTable
-    reference: ReferenceSection
-    analyte: list[AnalyteTable] = Field(min_length=1)
-    exclude: list[ExcludeTable] = Field(default_factory=list)
+    spectra: SpectraTable = Field(description="Which files, and how to read them.")
+    reference: ReferenceSection = Field(description="The table of laboratory values.")
+    analyte: list[AnalyteTable] = Field(min_length=1, description="What to predict; each gets a model of its own.")
+    exclude: list[ExcludeTable] = Field(default_factory=list, description="Samples left out by name, and why.")
     preprocessing: list[dict[str, Any]] = Field(
         default_factory=list,
         description=f"Steps in order, each with step = one of {', '.join(STEPS)}, and its options.",
     )
-    regression: RegressionTable = Field(default_factory=lambda: RegressionTable.model_validate({}))
-    cross_validation: CrossValidationTable = Field(default_factory=lambda: CrossValidationTable.model_validate({}))
-    validation: ValidationTable | None = None
+    regression: RegressionTable = Field(
+        default_factory=lambda: RegressionTable.model_validate({}), description="The method and its size."
+    )
+    cross_validation: CrossValidationTable = Field(
+        default_factory=lambda: CrossValidationTable.model_validate({}), description="How samples are left out in turn."
+    )
+    validation: ValidationTable | None = Field(None, description="Samples that take no part in the calibration.")
 
     @model_validator(mode="after")
     def _names_differ(self) -> "Recipe":

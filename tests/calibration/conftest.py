@@ -47,6 +47,8 @@ def make_samples() -> Callable[..., SampleSet]:
         spectra = (content @ np.stack([acid, matrix]))[rows] * 0.1 + rng.normal(0, 0.002, (rows.size, axis.size))
         ids = [f"S{i + 1:02d}" for i in range(n)]
         table = ReferenceTable(ids, [Analyte("acid", "% m/m", own.get("laboratory_error"))], values[:, None], notes)
-        return pair_samples(SpectraSet(spectra, SpectralAxis(axis, "cm-1"), [ids[i] for i in rows]), table)
+        return pair_samples(
+            SpectraSet(spectra, SpectralAxis(axis, "cm-1"), [ids[i] for i in rows]), table, missing="drop"
+        )
 
     return make

@@ -103,7 +103,7 @@ def test_separate_samples(make_samples, make_recipe):
 
 
 def test_a_sample_on_both_sides_is_refused(make_samples, make_recipe):
-    with pytest.raises(SampleMismatchError, match="Both among .*: S01, S02, S03; expected different ones"):
+    with pytest.raises(SampleMismatchError, match=r"Both among .*: S01, S02, S03; expected different ones"):
         split_of(make_samples(n=6), make_recipe(), make_samples(n=3))
     out = make_recipe('[[exclude]]\nsamples = ["S01..S03"]\nreason = "of the other set"')
     with pytest.raises(ParameterError):

@@ -3,7 +3,7 @@
 import numpy as np
 import pytest
 
-from quant.plots.applicability import MOST_NAMED, applicability_groups, outside, plot_applicability
+from quant.plots.applicability import MOST_NAMED, _name, applicability_groups, outside, plot_applicability
 from quant.plots.style import short
 
 VALIDATED = '[validation]\nsamples = ["S21..S28"]\n'
@@ -45,16 +45,10 @@ def test_at_most_eight_are_named_the_farthest_first(make):
 def test_names_do_not_stand_on_each_other(make):
     ax = plot_applicability(make(VALIDATED, odd=True))
     before = len(ax.texts)
-    from quant.plots.applicability import _name
-
-    point = (0.1, result_residual(ax))
+    point = (0.1, float(np.mean(ax.get_ylim())))
     _name(ax, [(sample, *point) for sample in ("A", "B", "C")])
     offsets = {text.xyann for text in ax.texts[before:]}
     assert len(offsets) == 3
-
-
-def result_residual(ax) -> float:
-    return float(np.mean(ax.get_ylim()))
 
 
 @pytest.mark.parametrize(("sample", "shown"), [("A", "A"), ("A\nB", "A�B"), ("x" * 30, "x" * 23 + "…")])

@@ -89,6 +89,13 @@ def test_one_band_from_near_by_with_its_baseline(band):
     assert 1600 <= right < 1650
 
 
+def test_a_height_at_one_position_is_a_line_and_the_whole_axis_needs_no_band(make):
+    height = '[regression]\nmethod = "band_area"\nbands = [{ signal = "height_at", position = 1715 }]\n'
+    ax = plot_bands(make(height))
+    assert len(ax.patches) == 0
+    assert [line.get_xdata()[0] for line in ax.get_lines()] == [1715]
+
+
 def test_axes_given_are_used(pls):
     ax = Figure().add_subplot()
     assert plot_spectra(pls, ax) is ax

@@ -6,6 +6,7 @@ from quant.calibration.result import NOT_PROVEN, AnalyteResult, CalibrationResul
 from quant.calibration.split import INDEPENDENT
 from quant.checks import name_some
 from quant.prediction.applicability import NOT_APPLICABLE
+from quant.regression.band_area import BandArea
 from quant.regression.pls import PLS
 from quant.text_table import format_number
 
@@ -63,8 +64,9 @@ def answer_rows(result: AnalyteResult) -> list[tuple[str, str]]:
 
 def method(result: AnalyteResult) -> str:
     """Name the regression and its size."""
-    if not isinstance(result.model.method, PLS):
-        return "band area, straight line"
+    regression = result.model.method
+    if isinstance(regression, BandArea):
+        return f"band area, straight line{' through the origin' if regression.through_origin else ''}"
     return f"PLS, {result.factors} factor{'s' if result.factors != 1 else ''} ({result.rule})"
 
 

@@ -35,7 +35,7 @@ def _rows(result: AnalyteResult) -> list[Row]:
         ("validation samples", 0 if checked is None else len(checked.sample_ids), ""),
         ("origins of the validation samples", "no validation samples" if checked is None else origins, ""),
         ("ordinate as read", QUANTITIES[model.quantity], ""),
-        ("axis", f"{axis[0]:g} to {axis[-1]:g}, {axis.size} points", unit),
+        ("axis", f"{axis[0]:g} to {axis[-1]:g} {unit}, {axis.size} points", ""),
         *notes,
         ("reference values from", float(result.reference.min()), result.unit),
         ("reference values to", float(result.reference.max()), result.unit),

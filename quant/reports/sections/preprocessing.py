@@ -13,9 +13,9 @@ from quant.reports.pictures import picture
 def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> dict[str, Any]:  # noqa: ARG001
     """Return the steps in words, and the spectra before and after."""
     steps = analyte.model.steps
-    cut = bool(kept_ranges(analyte))
-    read = f"Spectra as read, mean of each sample{'; ranges that are kept shaded' if cut else ''}."
-    after = f"Spectra after preprocessing{'; what was cut out between them shaded' if cut else ''}."
+    kept = kept_ranges(analyte)
+    read = f"Spectra as read, mean of each sample{'; ranges that are kept shaded' if kept else ''}."
+    after = f"Spectra after preprocessing{'; the gaps between ranges shaded' if len(kept) > 1 else ''}."
     pictures = [picture(plot_spectra, analyte, f"{place}-read", read)]
     if steps:
         pictures.append(picture(plot_spectra, analyte, f"{place}-after", after, processed=True))
@@ -25,7 +25,7 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
 def describe_step(step: Step) -> str:
     """Return a step and its options in words: "savitzky golay: derivative 2, polynomial 2, window 9"."""
     options = [
-        f"{name.replace('_', ' ')} {_text(value)}"
+        _text(value) if step.name.endswith(name) else f"{name.replace('_', ' ')} {_text(value)}"
         for name, value in step.get_params().items()
         if name != "axis" and value is not None and not isinstance(value, np.ndarray)
     ]

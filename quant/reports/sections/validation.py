@@ -55,11 +55,13 @@ def _samples(checked: ValidationResult) -> list[dict[str, Any]]:
 
 
 def _pictures(result: AnalyteResult, place: str) -> list[Picture]:
+    agreement = "Predicted against reference values, and the line of perfect agreement"
     if result.validation is None:
+        agreement += "."
         errors = "Errors of left-out samples of the cross-validation; there are no validation samples."
     else:
+        agreement += "; bars: 95 % intervals."
         errors = "Errors (predicted − reference) of the validation samples with their 95 % intervals."
-    agreement = "Predicted against reference values, and the line of perfect agreement; bars: 95 % intervals."
     return [
         picture(plot_predicted, result, f"{place}-agreement", agreement, narrow=True),
         picture(plot_errors, result, f"{place}-errors", errors, narrow=True),

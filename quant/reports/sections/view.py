@@ -7,6 +7,7 @@ from quant.plots.agreement import plot_calibration_line
 from quant.plots.spectra import plot_bands, plot_regression_vector
 from quant.regression.band_area import BandArea
 from quant.regression.bands import BandSpec
+from quant.regression.method import Method
 from quant.reports.pictures import Picture, picture
 from quant.text_table import Row
 from quant.units import AXIS_UNITS
@@ -67,12 +68,22 @@ def _pictures(result: AnalyteResult, place: str) -> list[Picture]:
     line = picture(plot_calibration_line, result, f"{place}-line", "Calibration line with its samples.", narrow=True)
     if not result.picture.bands:
         return [line]
-    near = "Near by; dotted: where the baseline rests."
     return [
         picture(plot_bands, result, f"{place}-bands", "The bands on the preprocessed spectra."),
         *(
-            picture(plot_bands, result, f"{place}-band{number}", near, narrow=True, number=number)
-            for number in range(len(result.picture.bands))
+            picture(plot_bands, result, f"{place}-band{number}", caption, narrow=True, number=number)
+            for number, caption in enumerate(_near_by(result.model.method))
         ),
         line,
     ]
+
+
+def _near_by(method: Method) -> list[str]:
+    """Return the captions of the pictures of each band from near by."""
+    if not isinstance(method, BandArea):
+        return []
+    bands = [("band", band) for band in method.bands or ()]
+    if method.reference_band:
+        bands.append(("reference band", method.reference_band))
+    rests = "; dotted: where its baseline rests"
+    return [f"The {name} near by{rests if band.get('baseline') else ''}." for name, band in bands]
