@@ -3,8 +3,8 @@
 Every name is loaded when it is first used, so that ``import quant`` costs next to nothing.
 """
 
-from importlib import import_module
-from typing import Any
+from importlib import import_module as _import_module
+from typing import Any as _Any
 
 _HOME = {
     "Analyte": "quant.spectra.reference_table",
@@ -37,7 +37,7 @@ _HOME = {
     "write_report": "quant.reports.write",
 }
 
-__all__ = [  # noqa: PLE0604 (the names are loaded by __getattr__)
+__all__ = [
     "Analyte",
     "Calibration",
     "CalibrationResult",
@@ -69,10 +69,10 @@ __all__ = [  # noqa: PLE0604 (the names are loaded by __getattr__)
 ]
 
 
-def __getattr__(name: str) -> Any:
+def __getattr__(name: str) -> _Any:
     if name not in _HOME:
         raise AttributeError(f"module 'quant' has no attribute {name!r}; it has {', '.join(__all__)}")
-    value = getattr(import_module(_HOME[name]), name)
+    value = getattr(_import_module(_HOME[name]), name)
     globals()[name] = value
     return value
 

@@ -44,7 +44,7 @@ def test_pairs():
         paired_vectors("a", [1], "b", [3, 4])
     with pytest.raises(NotEnoughDataError, match=r"^1 pair\(s\) of a and b; at least 2 are needed\.$"):
         paired_vectors("a", [1], "b", [3], least=2)
-    with pytest.raises(ParameterError, match="^b holds"):
+    with pytest.raises(ParameterError, match=r"^b holds"):
         paired_vectors("a", [1], "b", [np.nan])
 
 

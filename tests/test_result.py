@@ -42,7 +42,7 @@ class Outer(Result):
         (np.True_, True),
         (float("-inf"), None),
         ((1, "a", None), [1, "a", None]),
-        ({Verdict.PASS: {2: Path("/home/somebody/model.quant")}}, {"pass": {"2": "model.quant"}}),
+        ({Verdict.PASS: {2: Path("/models/octane.model")}}, {"pass": {"2": "octane.model"}}),
         (Code.DONE, 0),
         (frozenset({"b", "a"}), ["a", "b"]),
         (datetime(2024, 2, 29, 12, tzinfo=UTC), "2024-02-29T12:00:00+00:00"),

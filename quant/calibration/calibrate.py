@@ -1,5 +1,7 @@
 """The whole way from a recipe to calibrations, cross-validated and, where samples were set apart, validated."""
 
+from collections.abc import Sequence
+
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
@@ -19,7 +21,7 @@ from quant.recipe.load import load_samples, load_validation_samples
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
 from quant.recipe.schema import Recipe
 from quant.regression.method import Method
-from quant.spectra.sample_set import SampleSet
+from quant.spectra.sample_set import NOT_STATED, SampleSet
 from quant.statistics.figures import figures_of_merit
 
 TEST_SPECTRA = 3  # kept in the model: the samples with the lowest, middle and highest value
@@ -94,16 +96,27 @@ def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | Non
         limits=model.limits,
         uncertainty=model.uncertainty,
         sample_ids=training.sample_ids,
+        origins=training.origins,
         reference=values,
         fitted=fitted,
         calibration=figures_of_merit(
             fitted, values, direction=regression_direction(model), unit=analyte.unit, kind="RMSEC", n_factors=factors
         ),
         cross_validation=crossed,
+        rmsecv_by_origin=_rmsecv_by_origin(training.origins, crossed, factors),
         validation=validated,
         left_out=split.left_out,
         picture=picture_of(model, training, full, axis_after, processed, values),
     )
+
+
+def _rmsecv_by_origin(origins: Sequence[str], crossed: CrossValidationResult, factors: int) -> dict[str, float]:
+    """Return the RMSECV of each stated origin, if there is more than one."""
+    squared = np.mean((crossed.at(factors)[0] - crossed.reference) ** 2, axis=0)
+    stated = [origin for origin in dict.fromkeys(origins) if origin != NOT_STATED]
+    if len(stated) < 2:
+        return {}
+    return {origin: float(np.sqrt(squared[np.array(origins) == origin].mean())) for origin in stated}
 
 
 def _chosen(recipe: Recipe, crossed: CrossValidationResult) -> tuple[int, str]:

@@ -29,10 +29,14 @@ class AnalyteResult(Result):
     limits: Limits = documented("Limits of applicability")
     uncertainty: Uncertainty = documented("What the intervals are made of")
     sample_ids: tuple[str, ...] = documented("Calibration samples")
+    origins: tuple[str, ...] = documented("Their origins: process, spiked, blended, or not stated")
     reference: FloatArray = documented("Their reference values", "unit of the analyte")
     fitted: FloatArray = documented("Their fitted values", "unit of the analyte")
     calibration: Figures = documented("Figures of merit of the fit")
     cross_validation: CrossValidationResult = documented("Left-out predictions with every number of factors")
+    rmsecv_by_origin: dict[str, float] = documented(
+        "RMSECV of the samples of each origin, where more than one is stated", "unit of the analyte"
+    )
     validation: ValidationResult | None = documented("Predictions of samples that took no part, or none")
     left_out: tuple[LeftOut, ...] = documented("Samples left out, and why")
     picture: Picture = documented("The numbers behind the pictures")

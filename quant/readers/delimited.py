@@ -15,9 +15,18 @@ Row: TypeAlias = tuple[int, list[str]]  # line counted from 1, cells
 
 SAMPLE_COLUMNS = ("sample", "sample_id", "sample id", "id")
 _NUMBER = re.compile(r"[+-]?(?:\d+\.?\d*|\.\d+)(?:[eE][+-]?\d+)?", re.ASCII)
+_BLANKS = re.compile(r"[ \t]+")  # a protected blank parts thousands, never cells
 _COMMA_NUMBER = re.compile(r"[+-]?\d*,\d+(?:[eE][+-]?\d+)?", re.ASCII)
 _POSITION = re.compile(rf"(?P<number>{_NUMBER.pattern})\s*(?P<unit>\D.*)?", re.ASCII)
 _SIGNS = {"tab": "\t", "space": " "}
+SIGN_WORDS = {"\t": "tab", " ": "space"}
+"""Separators as recipes name them, where the sign itself is hard to see."""
+
+_GROUP_SIGNS = {",": ",", ".": ".", "'": "'’", "space": " \u00a0\u2009\u202f"}
+_GROUPED = {
+    word: re.compile(rf"[+-]?[1-9]\d{{0,2}}(?:[{re.escape(signs)}]\d{{3}})+(?=\D|$)", re.ASCII)
+    for word, signs in _GROUP_SIGNS.items()
+}
 
 
 def separator_of(line: str, decimal: str, given: str | None = None) -> str:
@@ -33,7 +42,7 @@ def separator_of(line: str, decimal: str, given: str | None = None) -> str:
 
 def split_line(line: str, separator: str) -> list[str]:
     """Return the cells of a line without quotes, stripped."""
-    return line.split() if separator == " " else [cell.strip() for cell in line.split(separator)]
+    return _BLANKS.split(line.strip(" \t")) if separator == " " else [cell.strip() for cell in line.split(separator)]
 
 
 def read_rows(path: Path, text: str, separator: str) -> list[Row]:
@@ -45,8 +54,10 @@ def read_rows(path: Path, text: str, separator: str) -> list[Row]:
         A quote that is never closed.
     """
     lines = text.replace("\r\n", "\n").replace("\r", "\n").split("\n")
-    if separator == " " and '"' not in text:
-        return [(number, cells) for number, line in enumerate(lines, 1) if (cells := line.split())]
+    if separator == " ":
+        lines = [_BLANKS.sub(" ", line.strip(" \t")) for line in lines]
+        if '"' not in text:
+            return [(number, line.split(" ")) for number, line in enumerate(lines, 1) if line]
     rows: list[Row] = []
     table = csv.reader((f"{line}\n" for line in lines), delimiter=separator, strict=True, skipinitialspace=True)
     start = 1
@@ -62,30 +73,55 @@ def read_rows(path: Path, text: str, separator: str) -> list[Row]:
     return rows
 
 
-def number_from(cell: str, decimal: str = ".") -> float | None:
+def number_from(cell: str, decimal: str = ".", thousands: str | None = None) -> float | None:
     """Return the number that a cell holds, or None if it holds none.
 
-    >>> number_from("1,5", ","), number_from("1_000"), number_from("-2e3")
-    (1.5, None, -2000.0)
+    Parameters
+    ----------
+    cell : str
+    decimal : {".", ","}
+    thousands : {",", ".", "'", "space"}, optional
+        The sign that may part groups of three digits; where it stands between other numbers of digits, the cell is
+        no number.
+
+    >>> number_from("1,5", ","), number_from("1_000"), number_from("-2e3"), number_from("1.234,5", ",", ".")
+    (1.5, None, -2000.0, 1234.5)
     """
-    text = cell.strip()
+    text = _ungrouped(cell.strip(), thousands)
     if decimal == ",":
         text = text.replace(".", "_").replace(",", ".")
     return float(text) if _NUMBER.fullmatch(text) else None
 
 
-def position_from(heading: str, decimal: str = ".") -> tuple[float, str | None] | None:
+def groups_in(text: str) -> list[str]:
+    """Return the signs that part three digits from others somewhere in a text: each may be a sign of thousands."""
+    return [word for word, pattern in _GROUPED.items() if re.search(r"(?<![\d.,])" + pattern.pattern, text)]
+
+
+def position_from(heading: str, decimal: str = ".", thousands: str | None = None) -> tuple[float, str | None] | None:
     """Return axis position and unit that a column's heading gives, or None if it is no position.
 
     >>> position_from("1650.2 nm"), position_from("900"), position_from("X900")
     ((1650.2, 'nm'), (900.0, None), None)
     """
-    text = heading.strip()
-    match = _POSITION.fullmatch(text.replace(",", ".") if decimal == "," else text)
+    text = _ungrouped(heading.strip(), thousands)
+    if decimal == ",":
+        text = text.replace(".", "_").replace(",", ".")
+    match = _POSITION.fullmatch(text)
     if match is None:
         return None
-    unit = axis_unit_named(match["unit"]) if match["unit"] else None
-    return None if match["unit"] and unit is None else (float(match["number"]), unit)
+    value = float(match["number"])
+    if not match["unit"]:
+        return value, None
+    unit = axis_unit_named(match["unit"])
+    return None if unit is None else (value, unit)
+
+
+def _ungrouped(text: str, thousands: str | None) -> str:
+    """Return a number without the signs between its groups of three digits."""
+    if thousands is None or (match := _GROUPED[thousands].match(text)) is None:
+        return text
+    return "".join(c for c in match[0] if c not in _GROUP_SIGNS[thousands]) + text[match.end() :]
 
 
 def numbers_from(
@@ -95,6 +131,7 @@ def numbers_from(
     headings: Sequence[str],
     decimal: str,
     missing: Sequence[str] = ("", "nan"),
+    thousands: str | None = None,
 ) -> list[float]:
     """Return the numbers of a row, NaN where a cell holds a word for a missing value.
 
@@ -105,7 +142,7 @@ def numbers_from(
     """
     numbers = []
     for cell, heading in zip(cells, headings, strict=True):
-        number = number_from(cell, decimal)
+        number = number_from(cell, decimal, thousands)
         if number is None:
             if cell.strip().lower() not in missing:
                 raise FileFormatError(path, not_a_number(cell, decimal, f"in column {heading!r}"), line=line)
@@ -115,9 +152,13 @@ def numbers_from(
 
 
 def not_a_number(cell: str, decimal: str, place: str) -> str:
-    """Return what to say of a cell that should hold a number; numbers with a decimal comma get the remedy."""
-    advice = 'Set decimal = ",".' if decimal == "." and _COMMA_NUMBER.fullmatch(cell.strip()) else "Mend the cell."
-    return f"found {cell.strip()[:40]!r} {place}; expected a number with {decimal!r} as decimal sign. {advice}"
+    """Return what to say of a cell that should hold a number; numbers with other signs get the remedy."""
+    text = cell.strip()
+    groups = [word for word in groups_in(text) if word != decimal and number_from(text, decimal, word) is not None]
+    advice = ['Set decimal = ",".'] if decimal == "." and _COMMA_NUMBER.fullmatch(text) else []
+    advice += [f'Set thousands = "{word}".' for word in groups]
+    remedy = " Or: ".join(advice) or "Mend the cell."
+    return f"found {text[:40]!r} {place}; expected a number with {decimal!r} as decimal sign. {remedy}"
 
 
 def find_column(path: Path, headings: Sequence[str], column: str, purpose: str) -> int:

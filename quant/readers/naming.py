@@ -31,6 +31,7 @@ _QUANTITY_WORDS = {
     "arbitraryunits": "arbitrary",
     "kubelka-munk": "arbitrary",
 }
+_AXIS_NAMES = ("wavelength", "wavenumber", "wellenlänge", "wellenzahl", "lambda", "frequency", "axis", "x")
 _FRACTIONS = ("transmittance", "reflectance")
 LARGEST_FRACTION = 1.5  # a transmittance above this can only be percent
 LARGEST_MEAN_ABSORBANCE = 5.0  # no spectrometer measures this on average
@@ -54,6 +55,12 @@ def axis_unit_in(heading: str) -> str | None:
     """Return the axis unit in a column's heading such as ``wavelength (nm)``, or None."""
     words = re.split(r"[\s,_/]+", heading)
     return next(filter(None, map(axis_unit_named, [*_parts(heading), *words])), None)
+
+
+def names_an_axis(heading: str) -> bool:
+    """Tell whether a heading names an axis or its unit: ``Wavelength``, ``nm``, ``x``."""
+    words = re.findall(r"[^\W\d_]+", heading.lower())
+    return axis_unit_in(heading) is not None or any(word.removesuffix("s") in _AXIS_NAMES for word in words)
 
 
 def quantity_in(heading: str) -> str | None:

@@ -8,10 +8,21 @@ from quant.checks import name_some, one_of
 from quant.errors import ParameterError
 from quant.units import AXIS_UNITS, QUANTITIES
 
-FORMATS = ("auto", "jcamp_dx", "matrix", "two_columns")
+FORMATS = ("auto", "jcamp_dx", "matrix", "two_columns", "spreadsheet")
 SEPARATORS = (",", ";", "tab", "space")
 DECIMALS = (".", ",")
+THOUSANDS = (",", ".", "'", "space")
+ORIENTATIONS = ("spectra_in_rows", "spectra_in_columns")
 STATED_QUANTITIES = (*QUANTITIES, "percent_transmittance", "percent_reflectance")
+
+_CHOICES = {
+    "decimal": DECIMALS,
+    "thousands": THOUSANDS,
+    "separator": SEPARATORS,
+    "orientation": ORIENTATIONS,
+    "axis_unit": tuple(AXIS_UNITS),
+    "quantity": STATED_QUANTITIES,
+}
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -22,7 +33,7 @@ class ReadingOptions:
 
     Parameters
     ----------
-    format : {"auto", "jcamp_dx", "matrix", "two_columns"}
+    format : {"auto", "jcamp_dx", "matrix", "two_columns", "spreadsheet"}
         "auto": the first reader that recognises the file.
     sample_column : str, optional
         Column of a matrix that holds the sample IDs (else the column called sample, sample_id or id).
@@ -33,8 +44,14 @@ class ReadingOptions:
         At most one of these three.
     separator : {",", ";", "tab", "space"}, optional
         Between the cells of a text file; found out when it is not given.
-    decimal : {".", ","}
-        The decimal sign of the numbers.
+    decimal : {".", ","}, optional
+        The decimal sign of the numbers; found out when it is not given.
+    thousands : {",", ".", "'", "space"}, optional
+        The sign between groups of three digits; found out when it is not given.
+    orientation : {"spectra_in_rows", "spectra_in_columns"}, optional
+        How a table lies: axis in the header, or axis in the first column; found out when it is not given.
+    sheet : str, optional
+        The sheet of a workbook; else the first.
     axis_unit : {"cm-1", "nm", "um", "point"}, optional
         Unit of the axis where the file gives none. A file that gives another one is refused.
     quantity : str, optional
@@ -56,7 +73,10 @@ class ReadingOptions:
     sample_label: str | None = None
     sample_pattern: str | None = None
     separator: str | None = None
-    decimal: str = "."
+    decimal: str | None = None
+    thousands: str | None = None
+    orientation: str | None = None
+    sheet: str | None = None
     axis_unit: str | None = None
     quantity: str | None = None
     notes: Mapping[str, str] = field(default_factory=dict, hash=False)
@@ -64,15 +84,12 @@ class ReadingOptions:
 
     def __post_init__(self) -> None:
         one_of("format", self.format, FORMATS)
-        one_of("decimal", self.decimal, DECIMALS)
-        if self.separator is not None:
-            one_of("separator", self.separator, SEPARATORS)
-        if self.axis_unit is not None:
-            one_of("axis_unit", self.axis_unit, tuple(AXIS_UNITS))
-        if self.quantity is not None:
-            one_of("quantity", self.quantity, STATED_QUANTITIES)
-        if self.separator == self.decimal:
-            raise ParameterError(f"separator and decimal are both {self.decimal!r}; expected two different signs.")
+        for name, allowed in _CHOICES.items():
+            if (value := getattr(self, name)) is not None:
+                one_of(name, value, allowed)
+        for one, other in (("separator", "decimal"), ("separator", "thousands"), ("decimal", "thousands")):
+            if (sign := getattr(self, one)) is not None and sign == getattr(self, other):
+                raise ParameterError(f"{one} and {other} are both {sign!r}; expected two different signs.")
         if not isinstance(self.resample, bool):
             raise ParameterError(f"resample = {self.resample!r}; expected true or false.")
         if not isinstance(self.notes, Mapping):

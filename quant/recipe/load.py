@@ -38,7 +38,13 @@ def load_recipe(path: str | Path) -> Recipe:
 
 
 def recipe_from_text(text: str, *, name: str = "recipe", folder: str | Path = ".") -> Recipe:
-    """Return the recipe that TOML text describes; see `load_recipe`."""
+    """Return the recipe that TOML text describes.
+
+    Raises
+    ------
+    RecipeError
+        As `load_recipe`.
+    """
     try:
         content: dict[str, Any] = tomllib.loads(text)
     except tomllib.TOMLDecodeError as problem:

@@ -71,6 +71,12 @@ class PlanValidationTable(Table):
         30.0, description="How well RMSEP should be known: 95 % limits within ± so much of it. [%]"
     )
 
+    @model_validator(mode="after")
+    def _is_a_set(self) -> "PlanValidationTable":
+        if self.samples == 1:
+            raise ValueError("samples = 1; expected 0 for none, or at least 2. One sample proves nothing")
+        return self
+
 
 class PureSpectraTable(SpectraTable):
     """[pure_spectra]: one spectrum of each component, and the noise, from which the prediction error is foreseen."""

@@ -27,7 +27,7 @@ class SpectraTable(Table):
     files: list[Text] = Field(
         min_length=1, description="Files, globs or folders, counted from the recipe's own folder."
     )
-    format: Literal["auto", "jcamp_dx", "matrix", "two_columns"] = Field(
+    format: Literal["auto", "jcamp_dx", "matrix", "two_columns", "spreadsheet"] = Field(
         DEFAULTS["spectra"]["format"], description="File format; auto judges by content."
     )
     sample_column: Text | None = Field(None, description="matrix: the column that holds the sample ID.")
@@ -37,9 +37,18 @@ class SpectraTable(Table):
         description="Regular expression on the file name; its group (?P<sample>...) is the sample ID, others notes.",
     )
     separator: Literal[",", ";", "tab", "space"] | None = Field(
-        None, description="Delimited text: what parts the cells."
+        None, description="Delimited text: what parts the cells; found out when not given."
     )
-    decimal: Literal[".", ","] = Field(DEFAULTS["spectra"]["decimal"], description="Delimited text: decimal sign.")
+    decimal: Literal[".", ","] | None = Field(
+        None, description="Delimited text: decimal sign; found out when not given."
+    )
+    thousands: Literal[",", ".", "'", "space"] | None = Field(
+        None, description="Delimited text: sign between groups of three digits; found out when not given."
+    )
+    orientation: Literal["spectra_in_rows", "spectra_in_columns"] | None = Field(
+        None, description="Tables: axis in the header, or in the first column; found out when not given."
+    )
+    sheet: Text | None = Field(None, description="Workbooks: the sheet; default: the first.")
     axis_unit: Literal["cm-1", "nm", "um", "point"] | None = Field(
         None, description="Unit of the axis where the file has none."
     )

@@ -82,7 +82,8 @@ def _count_new(counts: Counts, model: Calibration, new: object, wanted: int, cal
     result = predict(model, new.spectra.select(names))
     counts.new += wanted
     counts.rejected += sum(row.applicability == NOT_APPLICABLE for row in result.predictions)
-    counts.beyond_calibration += sum(row.residual * limits.residual_warn > calibration_limit for row in result.predictions)
+    residuals = [row.residual * limits.residual_warn for row in result.predictions]
+    counts.beyond_calibration += sum(residual > calibration_limit for residual in residuals)
     first, value, truth = result.predictions[0], new.reference.values[inside[0], 0], new.truth[inside[0]]
     counts.covered += int(first.low <= value <= first.high)
     counts.covered_at_half_width += int(abs(value - first.value) <= (first.high - first.low) / 4)

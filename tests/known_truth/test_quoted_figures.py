@@ -7,7 +7,10 @@ def test_the_readme_quotes_the_counts_of_the_long_tests(repository):
     found = json.loads((repository / "tests" / "long" / "results.json").read_text("utf-8"))
     coverage = found["coverage"]
     rows = [
-        ("95 % interval holds a new reference result (36 standards, one new sample a set)", "covered", "sets", coverage),
+        (
+            "95 % interval holds a new reference result (36 standards, one new sample a set)",
+            *("covered", "sets", coverage),
+        ),
         ("95 % interval holds the true value", "covered_true", "true_intervals", coverage),
     ]
     for n in (30, 60):

@@ -3,7 +3,7 @@
 from collections.abc import Sequence
 from dataclasses import dataclass
 
-from quant.readers.jcamp_dx.tokens import DIF_MINUS, DIF_PLUS, DUP, MISSING, SQZ_MINUS, SQZ_PLUS
+from quant.readers.jcamp_dx.alphabet import DIF_MINUS, DIF_PLUS, DUP, MISSING_MARK, SQZ_MINUS, SQZ_PLUS
 
 FORMS = ("DIFDUP", "DIF", "SQZ", "PAC", "FIX")
 LINE_LENGTH = 80  # characters, the standard's limit
@@ -63,9 +63,9 @@ def _item(ordinates: Sequence[int | None], point: int, form: str) -> _Item:
 
 def _absolute(value: int | None, form: str) -> _Item:
     if form == "FIX":
-        return _Item(f" {MISSING if value is None else value}")
+        return _Item(f" {MISSING_MARK if value is None else value}")
     if value is None:
-        return _Item(MISSING)
+        return _Item(MISSING_MARK)
     return _Item(f"{value:+d}" if form == "PAC" else _pseudo_digits(value, SQZ_PLUS, SQZ_MINUS))
 
 

@@ -1,59 +1,31 @@
 """Compressed ordinates of JCAMP-DX (SQZ, DIF, DUP, and PAC or plain integers among them), decoded as arrays.
 
-Every character is looked up once in tables that say what it begins, its leading digit and its sign; tokens, repetitions
-and running sums are then whole-array operations.
-
-References
-----------
-.. [1] McDonald R.S., Wilks P.A., Appl. Spectrosc. 42 (1988) 151-162, tables of pseudo-digits (from memory; the worked
-   lines in the tests name their source).
+Every byte is looked up once in tables that say what it is; tokens, their digits, repetitions and running sums are then
+whole-array operations.
 """
 
 from dataclasses import dataclass
 
 import numpy as np
 
-from quant.arrays import AnyArray, FloatArray, IntArray
+from quant.arrays import AnyArray, BoolArray, FloatArray, IntArray
+from quant.readers.jcamp_dx.alphabet import (
+    DIFFERENCE,
+    DIGIT,
+    DIGITS,
+    LEADING,
+    MINUS,
+    MISSING,
+    NEGATIVE,
+    PLUS,
+    POINT,
+    REPEAT,
+    TOKEN_KINDS,
+)
+from quant.readers.jcamp_dx.scan import EXACT_DIGITS, Lines, TokenError
 
-SQZ_PLUS, SQZ_MINUS = "@ABCDEFGHI", "\0abcdefghi"
-DIF_PLUS, DIF_MINUS = "%JKLMNOPQR", "\0jklmnopqr"
-DUP = "\0STUVWXYZs"
-MISSING = "?"
-
-LONGEST = 15  # digits; a double holds any integer of so many
 MOST_POINTS = 10_000_000  # a count of repetitions beyond this is damage, not a spectrum
-
-_BAD, _DIGIT, _BLANK, _LINE_END, _VALUE, _DIFFERENCE, _REPEAT, _MISSING = range(8)
-
-
-def _tables() -> tuple[AnyArray, AnyArray, AnyArray]:
-    kind, digit, sign = np.zeros(256, np.uint8), np.zeros(256, np.int64), np.ones(256, np.int64)
-    for signs, what, factor in (
-        ("0123456789", _DIGIT, 1),
-        (SQZ_PLUS, _VALUE, 1),
-        (SQZ_MINUS, _VALUE, -1),
-        (DIF_PLUS, _DIFFERENCE, 1),
-        (DIF_MINUS, _DIFFERENCE, -1),
-        (DUP, _REPEAT, 1),
-    ):
-        for value, character in enumerate(signs):
-            if character != "\0":
-                kind[ord(character)], digit[ord(character)], sign[ord(character)] = what, value, factor
-    for characters, what in ((" \t,;", _BLANK), ("\n", _LINE_END), ("+-", _VALUE), (MISSING, _MISSING)):
-        kind[[ord(character) for character in characters]] = what
-    sign[ord("-")] = -1
-    return kind, digit, sign
-
-
-_KIND, _DIGIT_OF, _SIGN_OF = _tables()
-
-
-class TokenError(Exception):
-    """What is wrong with the ordinates, and in which line of them (counted from 0)."""
-
-    def __init__(self, row: int, problem: str) -> None:
-        self.row = row
-        super().__init__(problem)
+_LARGEST_SUM = 2**62  # of differences; beyond it 64 bits run over
 
 
 @dataclass(frozen=True)
@@ -70,124 +42,156 @@ class Ordinates:
         A check value differs by one from the running sum.
     closed : bool
         The last line does not wait for a check value.
+    checked : bool
+        The last line is a check value and nothing else.
     """
 
     values: FloatArray
     first: IntArray
     rounded: bool = False
     closed: bool = True
+    checked: bool = False
 
 
-def decode_compressed(lines: list[str]) -> Ordinates:
-    """Decode the ordinates of the lines of a table that holds integers in any form, abscissae already cut off.
-
-    Parameters
-    ----------
-    lines : list of str
-        ASCII text, one ordinate or more a line.
+def decode_compressed(lines: Lines) -> Ordinates:
+    """Decode ordinates that are integers in any form.
 
     Raises
     ------
     TokenError
-        A character, a count or a difference that has no meaning there, or a check value that is not the last ordinate.
+        A count or a difference that has no meaning there, or a check value that is not the last ordinate.
     """
-    codes = np.frombuffer("\n".join(lines).encode("ascii"), np.uint8)
-    kind = _KIND[codes]
-    starts, length, row = _tokens(codes, kind)
-    what = kind[starts]
-    what[what == _DIGIT] = _VALUE
-    number = _token_values(codes, starts, length, row)
+    starts = _token_starts(lines)
+    line_first = np.searchsorted(starts, lines.begin)  # the token behind each abscissa
+    codes = np.frombuffer(lines.data, np.uint8)[starts].tobytes()
+    what = np.frombuffer(codes.translate(TOKEN_KINDS), np.uint8)
+    _check_grammar(lines, starts, what, line_first)
+    number = _token_values(lines, starts, codes)
 
-    repeats = what == _REPEAT
-    first_in_row = np.flatnonzero(np.diff(row, prepend=-1))
-    _check_grammar(what, number, row, first_in_row, len(lines))
-    item = np.flatnonzero(~repeats)
-    counts = np.ones(item.size, np.int64)
-    counts[np.searchsorted(item, np.flatnonzero(repeats)) - 1] = number[repeats]
-    if counts.sum() > MOST_POINTS:
-        raise TokenError(int(row[starts.size - 1]), f"counts of repetition that give {counts.sum()} ordinates")
+    if (what == REPEAT).any():
+        what, number, line_first = _repeated(lines, starts, what, number, line_first)
+    is_difference = what == DIFFERENCE
+    values = _running_sums(lines, number, is_difference)
+    check = line_first[1:][is_difference[line_first[1:] - 1]]
+    rounded = _check_sums(lines, values, what, line_first, check)
 
-    # A value repeated stays, a difference repeated is added again: running sums from the last absolute value.
-    what, row, steps = (np.repeat(array, counts) for array in (what[item], row[item], number[item]))
-    absolute = np.flatnonzero(what != _DIFFERENCE)
-    base = np.repeat(absolute, np.diff(absolute, append=what.size))
-    total = np.cumsum(np.where(what == _DIFFERENCE, steps, 0))
-    values = steps[base] + total - total[base]
-
-    line_starts = np.searchsorted(row, np.arange(len(lines)))
-    check = np.zeros(what.size, bool)
-    after = line_starts[1:]
-    check[after] = what[after - 1] == _DIFFERENCE
-    rounded = _check_sums(values, what, row, check)
-    kept = np.cumsum(~check) - 1  # number of the point; a check value carries that of the point it repeats
-    ordinates = np.where(what == _MISSING, np.nan, values)[~check]
-    return Ordinates(ordinates, kept[line_starts], rounded, bool(what[-1] != _DIFFERENCE))
+    ordinates = values.astype(np.float64)
+    ordinates[what == MISSING] = np.nan
+    kept = np.ones(what.size, bool)
+    kept[check] = False
+    # A check value carries the number of the point it repeats.
+    first = line_first - np.searchsorted(check, line_first, side="right")
+    checked = bool(check.size and check[-1] == what.size - 1)
+    return Ordinates(ordinates[kept], first, rounded, not is_difference[-1], checked)
 
 
-def _tokens(codes: AnyArray, kind: AnyArray) -> tuple[IntArray, IntArray, IntArray]:
-    """Return where tokens start, how many characters they have, and the line of each."""
-    line_ends = np.flatnonzero(kind == _LINE_END)
-    bad = np.flatnonzero(kind == _BAD)
-    if bad.size:
-        line = int(np.searchsorted(line_ends, bad[0]))
-        raise TokenError(line, f"the character {chr(codes[bad[0]])!r} among the ordinates")
-    is_digit = kind == _DIGIT
-    goes_on = np.zeros(codes.size + 1, bool)  # a digit behind a digit or behind a sign that takes digits
-    goes_on[1:-1] = is_digit[1:] & (is_digit | ((kind >= _VALUE) & (kind != _MISSING)))[:-1]
-    belongs = is_digit | (kind >= _VALUE)
-    starts = np.flatnonzero(belongs & ~goes_on[:-1])
-    length = np.flatnonzero(belongs & ~goes_on[1:]) + 1 - starts
-    per_line = np.diff(np.searchsorted(starts, line_ends), prepend=0, append=starts.size)
-    return starts, length, np.repeat(np.arange(per_line.size), per_line)
 
 
-def _token_values(codes: AnyArray, starts: IntArray, length: IntArray, row: IntArray) -> IntArray:
+def _token_starts(lines: Lines) -> IntArray:
+    """Return where ordinate tokens start."""
+    kind = lines.kind
+    belongs = kind >= MISSING
+    goes_on = (kind[1:] <= DIGIT) & (kind[1:] >= POINT) & (kind[:-1] >= POINT)
+    belongs[1:] ^= goes_on
+    belongs[lines.begin] = False  # the abscissa
+    return np.flatnonzero(belongs)
+
+
+def _token_values(lines: Lines, starts: IntArray, codes: bytes) -> IntArray:
     """Return the signed integer of each token."""
-    leading = codes[starts]
-    longest = int(length.max(initial=0))
-    if longest > LONGEST + 1:
-        raise TokenError(int(row[length.argmax()]), f"a number of {longest} digits")
-    bare = (length == 1) & ((leading == ord("+")) | (leading == ord("-")))
+    digits = np.frombuffer(lines.data.translate(DIGITS), np.uint8)
+    leading = np.frombuffer(codes.translate(LEADING), np.uint8)
+    following = digits[starts + 1]
+    going_on = following < 10
+    _refuse_bare_signs(lines, starts, codes, going_on)
+    value = np.where(going_on, 10 * leading + following, leading).astype(np.int64)  # two digits fit a byte
+    among = np.flatnonzero(going_on)
+    place = starts[among] + 2
+    for _ in range(EXACT_DIGITS + 1):
+        following = digits[place]
+        going_on = following < 10
+        if not going_on.any():
+            break
+        among, place, following = among[going_on], place[going_on], following[going_on]
+        value[among] = 10 * value[among] + following
+        place += 1
+    else:
+        raise TokenError(lines.row_at(int(starts[among[0]])), f"a number of more than {EXACT_DIGITS} digits")
+    negative = np.frombuffer(codes.translate(NEGATIVE), bool)
+    return np.negative(value, out=value, where=negative)
+
+
+def _refuse_bare_signs(lines: Lines, starts: IntArray, codes: bytes, has_digit: BoolArray) -> None:
+    leading = np.frombuffer(codes, np.uint8)
+    bare = ((leading == PLUS) | (leading == MINUS)) & ~has_digit
     if bare.any():
-        raise TokenError(int(row[bare.argmax()]), "a sign without a number")
-    value = _DIGIT_OF[leading]
-    for place in range(1, longest):
-        going_on = np.flatnonzero(length > place)
-        value[going_on] = 10 * value[going_on] + (codes[starts[going_on] + place] - ord("0"))
-    return np.asarray(value * _SIGN_OF[leading])
+        raise TokenError(lines.row_at(int(starts[bare.argmax()])), "a sign without a number")
 
 
-def _check_grammar(what: AnyArray, number: IntArray, row: IntArray, first_in_row: IntArray, n_lines: int) -> None:
+def _check_grammar(lines: Lines, starts: IntArray, what: AnyArray, line_first: IntArray) -> None:
     """Refuse tokens that have no meaning where they stand."""
-    if first_in_row.size != n_lines:
-        empty = int(np.setdiff1d(np.arange(n_lines), row[first_in_row])[0])
-        raise TokenError(empty, "an abscissa without ordinates")
-    wrong = first_in_row[(what[first_in_row] == _DIFFERENCE) | (what[first_in_row] == _REPEAT)]
+    empty = np.flatnonzero(np.diff(line_first, append=starts.size) == 0)
+    if empty.size:
+        raise TokenError(int(lines.rows[empty[0]]), "an abscissa without ordinates")
+    opening = what[line_first]
+    wrong = np.flatnonzero((opening == DIFFERENCE) | (opening == REPEAT))
     if wrong.size:
-        raise TokenError(int(row[wrong[0]]), "a line that starts with a difference or a count instead of a value")
-    repeats = what == _REPEAT
-    twice = np.flatnonzero(repeats[1:] & repeats[:-1])
-    if twice.size:
-        raise TokenError(int(row[twice[0] + 1]), "two counts of repetition in a row")
-    after_missing = np.flatnonzero((what[1:] == _DIFFERENCE) & (what[:-1] == _MISSING))
-    if after_missing.size:
-        raise TokenError(int(row[after_missing[0] + 1]), "a difference to a missing ordinate")
-    empty_count = np.flatnonzero(repeats & (number < 1))
-    if empty_count.size:
-        raise TokenError(int(row[empty_count[0]]), "a count of repetition of 0")
+        raise TokenError(int(lines.rows[wrong[0]]), "a line that starts with a difference or a count instead of a value")
+    repeats = what == REPEAT
+    for fault, words in (
+        (repeats[1:] & repeats[:-1], "two counts of repetition in a row"),
+        ((what[1:] == DIFFERENCE) & (what[:-1] == MISSING), "a difference to a missing ordinate"),
+    ):
+        if fault.any():
+            raise TokenError(lines.row_at(int(starts[fault.argmax() + 1])), words)
 
 
-def _check_sums(values: IntArray, what: AnyArray, row: IntArray, check: AnyArray) -> bool:
+def _repeated(
+    lines: Lines, starts: IntArray, what: AnyArray, number: IntArray, line_first: IntArray
+) -> tuple[AnyArray, IntArray, IntArray]:
+    """Write out what is repeated; a difference repeated is added again."""
+    repeats = np.flatnonzero(what == REPEAT)
+    none = repeats[number[repeats] < 1]
+    if none.size:
+        raise TokenError(lines.row_at(int(starts[none[0]])), "a count of repetition of 0")
+    counts = np.ones(what.size, np.int64)
+    counts[repeats - 1] = np.minimum(number[repeats], MOST_POINTS + 1)
+    counts[repeats] = 0
+    position = np.cumsum(counts)
+    if position[-1] > MOST_POINTS:
+        place = int(starts[int((position > MOST_POINTS).argmax())])
+        raise TokenError(lines.row_at(place), f"a count of repetition that gives more than {MOST_POINTS} ordinates")
+    return np.repeat(what, counts), np.repeat(number, counts), (position - counts)[line_first]
+
+
+def _running_sums(lines: Lines, number: IntArray, is_difference: BoolArray) -> IntArray:
+    """Return ordinates: values as they are, differences summed up from the value before."""
+    absolute = np.flatnonzero(~is_difference)
+    if absolute.size == number.size:
+        return number
+    start = number[absolute]
+    steps = number
+    steps[absolute] = 0
+    if float(np.abs(steps).max()) * steps.size > _LARGEST_SUM:
+        raise TokenError(int(lines.rows[0]), "differences too large to be summed")
+    total = np.cumsum(steps)
+    total += np.repeat(start - total[absolute], np.diff(absolute, append=number.size))
+    return total
+
+
+def _check_sums(lines: Lines, values: IntArray, what: AnyArray, line_first: IntArray, check: IntArray) -> bool:
     """Compare each check value with the ordinate before it; return whether one is off by one."""
-    places = np.flatnonzero(check)
-    missing = places[what[places] == _MISSING]
-    if missing.size:
-        raise TokenError(int(row[missing[0]]), "a missing ordinate where the last one should be repeated as a check")
-    off = np.abs(values[places] - values[places - 1])
+    rows = lines.rows[np.searchsorted(line_first, check)]
+    missing = what[check] == MISSING
+    if missing.any():
+        row = int(rows[missing.argmax()])
+        raise TokenError(row, "a missing ordinate where the last one should be repeated as a check")
+    off = np.abs(values[check] - values[check - 1])
     if (off > 1).any():
-        place = places[int((off > 1).argmax())]
+        worst = int((off > 1).argmax())
         raise TokenError(
-            int(row[place]),
-            f"the check value {values[place]} where the line before ends at {values[place - 1]} (one is damaged)",
+            int(rows[worst]),
+            f"the check value {values[check[worst]]} where the line before ends at {values[check[worst] - 1]} "
+            "(one is damaged)",
         )
     return bool((off == 1).any())

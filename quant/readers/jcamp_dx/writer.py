@@ -11,7 +11,7 @@ from quant.errors import ParameterError
 from quant.files import write_text
 from quant.readers.jcamp_dx.encode import FORMS, encode_lines
 from quant.readers.jcamp_dx.labels import plain_label
-from quant.readers.jcamp_dx.reader import NOTE_OF_LABEL
+from quant.readers.jcamp_dx.notes import NOTE_OF_LABEL
 from quant.spectra.axis import SAME_POSITION, SpectralAxis
 from quant.spectra.spectra_set import SpectraSet
 

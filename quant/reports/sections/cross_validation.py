@@ -37,5 +37,6 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
         "rule": analyte.rule,
         "chose": bool(crossed.choices),
         "notes": crossed.guard_notes,
+        "origins": list(analyte.rmsecv_by_origin.items()),
         "pictures": [picture(plot_factors, analyte, f"{place}-factors", caption)] if crossed.choices else [],
     }

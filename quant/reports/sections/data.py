@@ -1,5 +1,6 @@
 """The data: samples, spectra, axis, and who was left out."""
 
+from collections import Counter
 from typing import Any
 
 from quant.calibration.result import AnalyteResult, CalibrationResult
@@ -27,13 +28,13 @@ def _rows(result: AnalyteResult) -> list[Row]:
     model, checked, known = result.model, result.validation, result.uncertainty
     axis, unit = model.axis.values, AXIS_UNITS[model.axis.unit]
     notes = [(note, ", ".join(values), "") for note, values in model.domain.items()]
-    origins = ", ".join(checked.by_origin) if checked is not None and checked.by_origin else "one, or not stated"
+    counted = Counter(result.origins)
     return [
         ("calibration samples", result.n_samples, ""),
         ("calibration spectra", result.n_spectra, ""),
         ("spectra a sample", f"{known.replicates:.3g} (harmonic mean)", ""),
         ("validation samples", 0 if checked is None else len(checked.sample_ids), ""),
-        ("origins of the validation samples", "no validation samples" if checked is None else origins, ""),
+        ("origins of the calibration samples", ", ".join(f"{n} {origin}" for origin, n in counted.items()), ""),
         ("ordinate as read", QUANTITIES[model.quantity], ""),
         ("axis", f"{axis[0]:g} to {axis[-1]:g} {unit}, {axis.size} points", ""),
         *notes,
