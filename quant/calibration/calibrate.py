@@ -1,18 +1,22 @@
 """The whole way from a recipe to calibrations, cross-validated and, where samples were set apart, validated."""
 
 from collections.abc import Sequence
+from dataclasses import replace
 
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
+from quant.calibration.below_limit import check_below_limit
 from quant.calibration.cross_validation import cross_validate, factor_limit, fit_pipeline
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.folds import make_folds
+from quant.calibration.laboratory import laboratory_of
 from quant.calibration.limits import applicability_limits, degrees_of_freedom, interval_parts
 from quant.calibration.picture import picture_of
 from quant.calibration.result import AnalyteResult, CalibrationResult
 from quant.calibration.split import split_samples
 from quant.calibration.validate import regression_direction, validate
+from quant.errors import NotEnoughDataError
 from quant.estimator import Step
 from quant.model.calibration import Calibration
 from quant.model.versions import program_versions
@@ -77,9 +81,10 @@ def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | Non
     most = factor_limit(recipe, make_folds(training, recipe.cross_validation), axis_after.size)
     analyte, values = training.analyte(name)
     steps, full, processed = fit_pipeline(training, values, unfitted, build_method(recipe, axis_after, most))
-    if factors > full.factor_counts_[-1]:
-        factors, rule = full.factor_counts_[-1], f"{rule}, but {getattr(full, 'guard_note_', '')}"
+    factors, rule = _found(full, factors, rule)
     model = _model(recipe, training, crossed, steps, full.with_factors(factors), factors, processed, name)
+    _, _, laboratory = laboratory_of(training, name)
+    below = check_below_limit(model, split.below_limit)
     mean = training.mean_by_sample(processed)
     fitted = model.method.predict(mean)
     validated = (
@@ -87,7 +92,7 @@ def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | Non
     )
     return AnalyteResult(
         analyte=analyte.name,
-        unit=analyte.unit,
+        unit=analyte.printed_unit,
         model=model,
         factors=factors,
         rule=rule,
@@ -100,12 +105,22 @@ def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | Non
         reference=values,
         fitted=fitted,
         calibration=figures_of_merit(
-            fitted, values, direction=regression_direction(model), unit=analyte.unit, kind="RMSEC", n_factors=factors
+            fitted,
+            values,
+            direction=regression_direction(model),
+            unit=analyte.printed_unit,
+            kind="RMSEC",
+            n_factors=factors,
         ),
         cross_validation=crossed,
         rmsecv_by_origin=_rmsecv_by_origin(training.origins, crossed, factors),
         validation=validated,
         left_out=split.left_out,
+        laboratory=laboratory,
+        below_limit=below,
+        remarks=tuple(
+            remark for found in (laboratory, below, split) if found is not None for remark in found.remarks()
+        ),
         picture=picture_of(model, training, full, axis_after, processed, values),
     )
 
@@ -129,6 +144,19 @@ def _chosen(recipe: Recipe, crossed: CrossValidationResult) -> tuple[int, str]:
     return crossed.choices[asked], asked.replace("_", " ")
 
 
+def _found(full: Method, factors: int, rule: str) -> tuple[int, str]:
+    """Return the number of factors that the fit could find of those chosen, and why."""
+    most, note = full.factor_counts_[-1], getattr(full, "guard_note_", "")
+    if factors <= most:
+        return factors, rule
+    if most == 0:
+        raise NotEnoughDataError(
+            f"No factor can be found: {note}. Expected spectra that vary with the reference values; check the files "
+            "and the ranges kept."
+        )
+    return most, f"{rule}, but {note}"
+
+
 def _model(
     recipe: Recipe,
     training: SampleSet,
@@ -139,7 +167,8 @@ def _model(
     processed: FloatArray,
     name: str,
 ) -> Calibration:
-    analyte, values = training.analyte(name)
+    analyte, source, _ = laboratory_of(training, name)
+    _, values = training.analyte(name)
     freedom = degrees_of_freedom(method, len(training), factors)
     spectra = training.spectra
     rows = _test_rows(training, values)
@@ -148,14 +177,17 @@ def _model(
         analyte=analyte,
         axis=spectra.axis,
         quantity=spectra.quantity,
-        reading=recipe.spectra.options().to_dict(),
+        # Notes of the calibration's spectra are no statement about new ones.
+        reading={key: value for key, value in recipe.spectra.options().to_dict().items() if key != "notes"},
         domain=acquisition_domain(spectra.notes),
         steps=tuple(steps),
         method=method,
         factors=factors,
         n_samples=len(training),
         limits=applicability_limits(crossed, factors, processed, freedom),
-        uncertainty=interval_parts(crossed, factors, training, analyte, freedom),
+        uncertainty=replace(
+            interval_parts(crossed, factors, training, analyte, freedom), laboratory_error_source=source
+        ),
         test_spectra=spectra.values[rows],
         test_predictions=method.predict(processed[rows]),
         figures={"RMSECV": float(crossed.rmsecv[position])},

@@ -2,13 +2,15 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from itertools import takewhile
 
 import numpy as np
 
 from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.folds import Folds, make_folds
-from quant.errors import NotEnoughDataError, ParameterError
+from quant.checks import name_some
+from quant.errors import NotEnoughDataError, ParameterError, QuantityError
 from quant.estimator import Step, unfitted_copy
 from quant.parallel import progress
 from quant.preprocessing.chain import apply_chain, fit_chain
@@ -51,12 +53,15 @@ def cross_validate(samples: SampleSet, recipe: Recipe, analyte: str | None = Non
         Fewer than four samples, or reference values that do not differ.
     ParameterError
         More factors asked for than the training sets can carry.
+    QuantityError
+        Spectra with missing points where they are needed.
     """
     substance, values = samples.analyte(analyte or samples.analytes[0].name)
     check_calibration_values(substance.name, values)
     folds = make_folds(samples, recipe.cross_validation)
     steps = build_steps(recipe, samples.spectra.axis, samples.spectra.quantity)
     axis = axis_behind(steps, samples.spectra.axis)
+    check_missing_points(samples, steps)
     most = factor_limit(recipe, folds, axis.size)
     tasks = [(repeat, labels == fold) for repeat, labels in enumerate(folds.repeats) for fold in np.unique(labels)]
     parts = [
@@ -82,6 +87,27 @@ def check_calibration_values(name: str, values: FloatArray) -> None:
         raise NotEnoughDataError(
             f"All {values.size} reference values of {name} are {values[0]:g}; expected values that span the range to "
             "predict. Check the column, or add standards."
+        )
+
+
+def check_missing_points(samples: SampleSet, steps: Sequence[Step]) -> None:
+    """Refuse spectra that lack points where a step or the regression needs them.
+
+    Raises
+    ------
+    QuantityError
+        Points are missing that no step leaves out first.
+    """
+    values = samples.spectra.values
+    for step in takewhile(lambda step: step.allow_nan, steps):
+        values = unfitted_copy(step).fit_transform(values)
+    lacking = np.isnan(values).any(axis=1)
+    if lacking.any():
+        named = dict.fromkeys(samples.sample_ids[i] for i in samples.sample_index[lacking])
+        raise QuantityError(
+            f"{int(lacking.sum())} of {lacking.size} spectra have missing points: {name_some(named)}; expected a "
+            "number at every point that is used. Leave those points out by keep_ranges or leave_out_ranges first, or "
+            "measure again."
         )
 
 
@@ -186,7 +212,7 @@ def _collect(
     within = np.sum([_padded(part.within[:, None], len(counts))[:, 0] for _, part in parts], axis=0)
     return CrossValidationResult(
         analyte=analyte.name,
-        unit=analyte.unit,
+        unit=analyte.printed_unit,
         scheme=folds.scheme,
         n_samples=len(samples),
         n_units=folds.n_units,

@@ -3,7 +3,9 @@
 from dataclasses import dataclass, field
 
 from quant.arrays import FloatArray
+from quant.calibration.below_limit import BelowLimitResult
 from quant.calibration.cross_validation_result import CrossValidationResult
+from quant.calibration.laboratory import LaboratoryResult
 from quant.calibration.picture import Picture
 from quant.calibration.split import LeftOut
 from quant.calibration.validate import ValidationResult
@@ -39,6 +41,9 @@ class AnalyteResult(Result):
     )
     validation: ValidationResult | None = documented("Predictions of samples that took no part, or none")
     left_out: tuple[LeftOut, ...] = documented("Samples left out, and why")
+    laboratory: LaboratoryResult | None = documented("What repeated determinations say, or none")
+    below_limit: BelowLimitResult | None = documented("Check of samples below a detection limit, or none")
+    remarks: tuple[str, ...] = documented("What else should be known of the samples")
     picture: Picture = documented("The numbers behind the pictures")
 
     def rows(self) -> list[Row]:
@@ -70,7 +75,13 @@ class AnalyteResult(Result):
         """Heading, the main figures, what was left out."""
         left_out = [f"left out: {item.sample} ({item.reason})" for item in self.left_out]
         return "\n".join(
-            [f"Calibration of {self.analyte}", format_rows(self.rows()), *self.cross_validation.guard_notes, *left_out]
+            [
+                f"Calibration of {self.analyte}",
+                format_rows(self.rows()),
+                *self.cross_validation.guard_notes,
+                *left_out,
+                *self.remarks,
+            ]
         )
 
 

@@ -5,11 +5,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from quant.arrays import BoolArray
+from quant.calibration.folds import groups_together
 from quant.checks import name_some
 from quant.errors import ParameterError, SampleMismatchError
 from quant.preprocessing.chain import fit_chain
 from quant.recipe.pipeline import build_steps
 from quant.recipe.schema import Recipe
+from quant.spectra.reference_table import refuse_other_scale
 from quant.spectra.sample_ids import expand_ids
 from quant.spectra.sample_set import SampleSet
 from quant.statistics import splits
@@ -35,6 +37,22 @@ class Split:
     kind: str  # INDEPENDENT, INTERNAL, or "" without validation
     how: str
     left_out: tuple[LeftOut, ...]
+    below_limit: tuple[SampleSet, ...] = ()  # those of them that only have an upper limit, from either set
+
+    def remarks(self) -> tuple[str, ...]:
+        """Name validation samples whose spectrum is also among the calibration's: their errors come out too small."""
+        if self.validation is None:
+            return ()
+        known = {spectrum.tobytes() for spectrum in self.calibration.spectra.values}
+        spectra = self.validation.spectra
+        pairs = zip(spectra.sample_ids, spectra.values, strict=True)
+        twins = list(dict.fromkeys(sample for sample, spectrum in pairs if spectrum.tobytes() in known))
+        if not twins:
+            return ()
+        return (
+            f"{len(twins)} of {len(self.validation)} validation samples have a spectrum that is also among the "
+            f"calibration's, equal to the last bit ({name_some(twins)}): RMSEP is a little too good",
+        )
 
 
 def split_samples(recipe: Recipe, samples: SampleSet, separate: SampleSet | None, analyte: str) -> Split:
@@ -53,16 +71,17 @@ def split_samples(recipe: Recipe, samples: SampleSet, separate: SampleSet | None
     Raises
     ------
     SampleMismatchError
-        A sample named in the recipe does not exist, nothing is left, or a separate validation sample is also among the
-        calibration's.
+        A sample named in the recipe does not exist, nothing is left, a separate validation sample is also among the
+        calibration's, or the two tables differ in unit or basis.
     """
     _check_ways(recipe, separate)
     kept, left_out = _excluded(recipe, samples, separate)
-    kept, without = _with_values(kept, analyte)
+    kept, without, below = _with_values(kept, analyte)
     if separate is not None:
+        refuse_other_scale(samples.analyte(analyte)[0], separate.analyte(analyte)[0])
         named = {item.sample for item in left_out}
         separate = separate.subset(np.array([sample not in named for sample in separate.sample_ids], dtype=bool))
-        separate, more = _with_values(separate, analyte)
+        separate, more, further = _with_values(separate, analyte)
         both = [sample for sample in separate.sample_ids if sample in set(kept.sample_ids)]
         if both:
             raise SampleMismatchError(
@@ -70,9 +89,10 @@ def split_samples(recipe: Recipe, samples: SampleSet, separate: SampleSet | None
                 "ones. Give separately prepared material its own sample IDs."
             )
         how = f"{len(separate)} samples from separate files"
-        return Split(kept, separate, INDEPENDENT, how, (*left_out, *without, *more))
+        return Split(kept, separate, INDEPENDENT, how, (*left_out, *without, *more), _filled(below, further))
     mask, kind, how = _validation_mask(recipe, samples, kept)
-    return Split(kept.subset(~mask), kept.subset(mask) if mask.any() else None, kind, how, (*left_out, *without))
+    validation = kept.subset(mask) if mask.any() else None
+    return Split(kept.subset(~mask), validation, kind, how, (*left_out, *without), _filled(below))
 
 
 def _check_ways(recipe: Recipe, separate: SampleSet | None) -> None:
@@ -103,11 +123,22 @@ def _excluded(recipe: Recipe, samples: SampleSet, separate: SampleSet | None) ->
     return samples.subset(np.array([sample not in named for sample in samples.sample_ids], dtype=bool)), items
 
 
-def _with_values(samples: SampleSet, analyte: str) -> tuple[SampleSet, list[LeftOut]]:
-    _, values = samples.analyte(analyte)
-    absent = np.isnan(values)
-    reason = f"no reference value of {analyte}"
-    return samples.subset(~absent), [LeftOut(samples.sample_ids[i], reason) for i in np.flatnonzero(absent)]
+def _with_values(samples: SampleSet, name: str) -> tuple[SampleSet, list[LeftOut], SampleSet]:
+    """Return the samples with a value, why the others are left out, and those of them that have an upper limit."""
+    analyte, values = samples.analyte(name)
+    limits, absent = samples.upper_limits(name), np.isnan(values)
+    reasons = [
+        f"no reference value of {name}"
+        if np.isnan(limit)
+        else f"{name} below the detection limit of {limit:g} {analyte.printed_unit}".rstrip()
+        for limit in limits
+    ]
+    left_out = [LeftOut(samples.sample_ids[i], reasons[i]) for i in np.flatnonzero(absent)]
+    return samples.subset(~absent), left_out, samples.subset(absent & np.isfinite(limits))
+
+
+def _filled(*sets: SampleSet) -> tuple[SampleSet, ...]:
+    return tuple(each for each in sets if len(each))
 
 
 def _validation_mask(recipe: Recipe, everything: SampleSet, samples: SampleSet) -> tuple[BoolArray, str, str]:
@@ -126,8 +157,8 @@ def _validation_mask(recipe: Recipe, everything: SampleSet, samples: SampleSet) 
         mask = np.array([value in wanted for value in samples.groups(table.note)], dtype=bool)
         kind, how = INDEPENDENT, f"{int(mask.sum())} samples whose {table.note} is {', '.join(sorted(wanted))}"
     else:
-        group = recipe.cross_validation.group
-        groups = samples.groups(group) if group else None
+        ties = recipe.cross_validation
+        groups = groups_together(samples, ties.group, duplicates=ties.duplicates_together)
         if table.split == "kennard_stone":
             _, processed = fit_chain(
                 build_steps(recipe, samples.spectra.axis, samples.spectra.quantity), samples.spectra.values
@@ -135,8 +166,8 @@ def _validation_mask(recipe: Recipe, everything: SampleSet, samples: SampleSet) 
             _, out = splits.kennard_stone_split(samples.mean_by_sample(processed), table.fraction, groups)
             how = "Kennard-Stone on the processed spectra keeps the others for calibration"
         else:
-            _, out = splits.random_split(n, table.fraction, recipe.cross_validation.seed, groups)
-            how = f"drawn at random, seed {recipe.cross_validation.seed}"
+            _, out = splits.random_split(n, table.fraction, ties.seed, groups)
+            how = f"drawn at random, seed {ties.seed}"
         mask[out] = True
         kind, how = INTERNAL, f"{int(mask.sum())} samples of one set: {how}"
     if not mask.any() or mask.all():

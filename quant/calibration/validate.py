@@ -11,6 +11,7 @@ from quant.prediction.applicability import check_acquisition, judge
 from quant.prediction.predict import evaluate
 from quant.regression.band_area import BandArea
 from quant.result import Result, documented
+from quant.spectra.reference_table import refuse_other_scale
 from quant.spectra.sample_set import NOT_STATED, SampleSet
 from quant.statistics.figures import Figures, figures_of_merit
 from quant.statistics.significance import PREDICTED_ON_REFERENCE, REFERENCE_ON_PREDICTED
@@ -69,8 +70,12 @@ def validate(model: Calibration, samples: SampleSet, *, kind: str = INDEPENDENT,
     ------
     AxisMismatchError, QuantityError, AcquisitionMismatchError
         The spectra were not recorded as the calibration's were.
+    SampleMismatchError
+        The values are in another unit or on another basis than the calibration's.
     """
     analyte, values = samples.analyte(model.analyte.name)
+    refuse_other_scale(model.analyte, analyte)
+    unit = model.analyte.printed_unit
     check_acquisition(model, samples.spectra)
     aligned = samples.spectra.on_axis(model.axis, resample=bool(model.reading.get("resample", False)))
     found = evaluate(model, model.process(aligned.values), samples.sample_index, len(samples))
@@ -83,7 +88,7 @@ def validate(model: Calibration, samples: SampleSet, *, kind: str = INDEPENDENT,
     rows = {origin: np.flatnonzero(np.array(samples.origins) == origin) for origin in origins}
     return ValidationResult(
         analyte=analyte.name,
-        unit=analyte.unit,
+        unit=unit,
         kind=kind,
         how=how or f"{len(samples)} samples",
         sample_ids=samples.sample_ids,
@@ -95,9 +100,9 @@ def validate(model: Calibration, samples: SampleSet, *, kind: str = INDEPENDENT,
         residual=found.residual,
         applicability=verdicts,
         inside=(found.low <= values) & (values <= found.high),
-        figures=figures_of_merit(found.value, values, direction=direction, unit=analyte.unit, kind="RMSEP"),
+        figures=figures_of_merit(found.value, values, direction=direction, unit=unit, kind="RMSEP"),
         by_origin={
-            origin: figures_of_merit(found.value[i], values[i], direction=direction, unit=analyte.unit, kind="RMSEP")
+            origin: figures_of_merit(found.value[i], values[i], direction=direction, unit=unit, kind="RMSEP")
             for origin, i in rows.items()
         }
         if len(rows) > 1

@@ -4,18 +4,32 @@ from pathlib import Path
 
 import click
 
-from quant.files import write_text
+from quant.errors import ExitCode
 
 
 @click.command("inspect")
 @click.argument("recipe", type=click.Path(path_type=Path))
-@click.option("--json", "json_file", type=click.Path(path_type=Path), help="Write what was found as JSON, too.")
-def command(recipe: Path, json_file: Path | None) -> None:
-    """Look over the spectra and reference values that RECIPE names: what was read, paired, left unpaired."""
-    from quant.inspection.inspect import inspect  # deferred, as the next: --help needs none of it
+@click.option(
+    "--out",
+    "folder",
+    type=click.Path(path_type=Path, file_okay=False),
+    help="Folder for inspection.html (with pictures) and inspection.json.",
+)
+@click.pass_context
+def command(ctx: click.Context, recipe: Path, folder: Path | None) -> None:
+    """Look over the spectra and reference values that RECIPE names, and say what is wrong with them.
+
+    Findings are told by gravity: stop (a calibration from this would be wrong), doubt (look before you go on), note.
+    The exit code is 1 if there is a stop.
+    """
+    from quant.inspection.inspect import inspect  # deferred, as those below: --help needs none of it
     from quant.recipe.load import load_recipe
 
     result = inspect(load_recipe(recipe))
     click.echo(str(result))
-    if json_file is not None:
-        write_text(json_file, result.to_json() + "\n")
+    if folder is not None:
+        from quant.reports.write import write_inspection
+
+        report = write_inspection(result, folder)
+        click.echo(f"\npage    {report.html}\nfigures {report.json}")
+    ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))

@@ -11,6 +11,7 @@ from quant.errors import QuantError
 
 # Name, module, and the line that --help shows without loading the module.
 COMMANDS = {
+    "plan": ("quant.cli.plan", "Design the standards to prepare, or judge those that exist."),
     "inspect": ("quant.cli.inspect", "Look over the spectra and reference values that a recipe names."),
     "calibrate": (
         "quant.cli.calibrate",

@@ -18,8 +18,27 @@ from quant.spectra.sample_ids import expand_ids
 @click.argument("files", nargs=-1, required=True)
 @click.option("--out", "table", type=click.Path(path_type=Path), help="Table to write: .csv, or .json.")
 @click.option("--samples", help='Only these samples: IDs and ranges, such as "51..60" or "A3, A7".')
+@click.option("--sample-column", help="Text tables: the column of the sample ID, if not as in the calibration.")
+@click.option("--sample-label", help="JCAMP-DX: the label that holds the sample ID, if not as in the calibration.")
+@click.option("--sample-pattern", help="The pattern of the file names, if not as in the calibration.")
+@click.option(
+    "--note",
+    "notes",
+    multiple=True,
+    metavar="NAME=VALUE",
+    help='How the spectra were recorded, where the files do not say: "technique=ATR". Compared with the calibration.',
+)
 @click.pass_context
-def command(ctx: click.Context, model: Path, files: tuple[str, ...], table: Path | None, samples: str | None) -> None:
+def command(
+    ctx: click.Context,
+    /,
+    model: Path,
+    files: tuple[str, ...],
+    table: Path | None,
+    samples: str | None,
+    notes: tuple[str, ...],
+    **naming: str | None,
+) -> None:
     """Predict the spectra in FILES with a saved MODEL.
 
     FILES are read as the calibration's own files were. The exit code is 1 if the model does not apply to a sample.
@@ -27,7 +46,11 @@ def command(ctx: click.Context, model: Path, files: tuple[str, ...], table: Path
     if table is not None and table.suffix.lower() not in (".csv", ".json"):
         raise click.UsageError(f"--out {table}: expected a name that ends in .csv or .json.")
     calibration = load_model(model)
-    spectra = read_spectra(list(files), ReadingOptions.from_dict(calibration.reading))
+    reading = dict(calibration.reading)
+    if any(naming.values()):
+        reading |= naming
+    reading["notes"] = _notes(notes)
+    spectra = read_spectra(list(files), ReadingOptions.from_dict(reading))
     if samples is not None:
         spectra = spectra.select(expand_ids(samples.split(",")))
     result = predict(calibration, spectra)
@@ -36,3 +59,11 @@ def command(ctx: click.Context, model: Path, files: tuple[str, ...], table: Path
         write_text(table, result.to_json() + "\n" if table.suffix.lower() == ".json" else result.to_csv())
         click.echo(f"\ntable   {table}")
     ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))
+
+
+def _notes(texts: tuple[str, ...]) -> dict[str, str]:
+    parts = [text.partition("=") for text in texts]
+    wrong = [text for text, (name, _, value) in zip(texts, parts, strict=True) if not name.strip() or not value.strip()]
+    if wrong:
+        raise click.UsageError(f"--note {wrong[0]}: expected a name, =, and a value, such as technique=ATR.")
+    return {name.strip(): value.strip() for name, _, value in parts}

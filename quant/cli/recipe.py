@@ -17,5 +17,8 @@ def command(what: str) -> None:
         click.echo(files("quant.recipe").joinpath("defaults.toml").read_text("utf-8").rstrip())
     else:
         from quant.recipe.schema import Recipe  # deferred: --help does not need pydantic
+        from quant.recipe.steps import steps_schema
 
-        click.echo(json.dumps(Recipe.model_json_schema(), indent=2, ensure_ascii=False))
+        schema = Recipe.model_json_schema()
+        schema["properties"]["preprocessing"]["items"] = steps_schema()
+        click.echo(json.dumps(schema, indent=2, ensure_ascii=False))

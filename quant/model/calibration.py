@@ -61,6 +61,7 @@ class Uncertainty:
     laboratory_error: float | None  # standard error of one reference value [unit of the analyte]
     replicate_sd: float | None  # SD of predictions of replicate spectra about their mean [unit of the analyte]
     replicates: float  # spectra a sample in the calibration (harmonic mean)
+    laboratory_error_source: str = ""  # where the laboratory error comes from, in words
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -124,7 +125,7 @@ class Calibration:
 
     def __str__(self) -> str:
         """Analyte, method, size, calibrated range, state."""
-        unit, limits = self.analyte.unit, self.limits
+        unit, limits = self.analyte.printed_unit, self.limits
         kind = f"PLS, {self.factors} factors" if self.factors > 1 else type(self.method).__name__
         return (
             f"{self.analyte.name}: {kind}, {self.n_samples} samples, "

@@ -2,11 +2,12 @@
 
 The score of a design, to be made small, is
 
-    ln(E)/(2q) + 10·Σ max(0, |r| − 0.03) + 10·Σ missing,   E = Σ (d² + ε)^(−q) over pairs,   q = 5.
+    ln(E)/(2q) + 10·Σ max(0, |r| − 0.05) + 10·Σ missing + 2·Σ uneven,   E = Σ (d² + ε)^(−q) over pairs,   q = 5.
 
 The first term is the logarithm of the φ_p criterion of Morris and Mitchell (p = 2q = 10): a tenth less means distances
 about 10 % larger. Distances d are Euclidean with every range scaled to 1; ε keeps equal mixtures finite. The second
-sums over pairs of components, the third over components (share of the reachable range that is not spanned).
+sums over pairs of components, the others over components: the share of the reachable range that is not spanned, and
+the mean distance of the sorted values from evenly spaced ones (else inequalities would drive mixtures to the borders).
 """
 
 from dataclasses import dataclass
@@ -15,8 +16,9 @@ import numpy as np
 
 from quant.arrays import FloatArray, IntArray
 
-GOAL = 0.03  # correlations below this are left alone: space filling matters more
+GOAL = 0.05  # correlations below this are left alone: space filling matters more
 WEIGHT = 10.0
+_UNEVEN = 0.2  # relative to WEIGHT
 _EPSILON = 1e-3  # squared distance, (3 % of a range)²; much less would drown all others in one pair's rounding
 
 
@@ -60,13 +62,14 @@ class State:
         Scaled mixtures, changed in place.
     fixed : array of shape (m, k)
         Mixtures to keep away from that do not change.
-    reach : array of shape (2, k), optional
-        Ends of the ranges to be spanned; None where the moves cannot lose them.
+    targets : array of shape (n, k), optional
+        Evenly spaced values of each component over the range to be spanned, sorted; None where the moves cannot lose
+        them.
     """
 
     points: FloatArray
     fixed: FloatArray
-    reach: FloatArray | None = None
+    targets: FloatArray | None = None
 
     def __post_init__(self) -> None:
         self.squared = squared_distances(self.points, self.points)
@@ -78,11 +81,8 @@ class State:
     @property
     def score(self) -> float:
         """The score, to be made small."""
-        missing = 0.0
-        if self.reach is not None:
-            missing = float(self._missing(self.points, self.reach[0], self.reach[1]).sum())
-        pairs = float(np.triu(self.excess, 1).sum())
-        return float(np.log(self.total) / 10) + WEIGHT * (pairs + missing)
+        spread = sum(self._unspread(self.points[None, :, c], c)[0] for c in range(self.points.shape[1]))
+        return float(np.log(self.total) / 10 + WEIGHT * (np.triu(self.excess, 1).sum() + spread))
 
     def swap_changes(self, i: int, c: int, partners: IntArray) -> tuple[FloatArray, FloatArray]:
         """Energy and correlation excess if row `i` exchanges its value in column `c` with each of some rows.
@@ -117,7 +117,7 @@ class State:
         return total, _excess(products, size[c] * size, c)
 
     def value_changes(self, i: int, c: int, values: FloatArray) -> tuple[FloatArray, FloatArray]:
-        """Energy, and excess correlation plus missing range of column `c`, if row `i` took each of some values there."""
+        """Energy, and penalty of column `c`, if row `i` took each of some values there; both of shape (n_values,)."""
         column = self.points[:, c]
         moved = self.squared[i] - (column[i] - column) ** 2 + (values[:, None] - column) ** 2  # (v, n)
         total = self.total + (energy(np.maximum(moved, 0.0)) - energy(self.squared[i])).sum(axis=1)
@@ -130,17 +130,11 @@ class State:
         centred = self.points - self.points.mean(axis=0)
         shifted = columns - columns.mean(axis=1, keepdims=True)
         size = np.linalg.norm(shifted, axis=1)[:, None] * np.linalg.norm(centred, axis=0)
-        penalty = _excess(shifted @ centred, size, c)
-        if self.reach is not None:
-            penalty += self._missing(columns.T, self.reach[0, c], self.reach[1, c])
-        return total, penalty
+        return total, _excess(shifted @ centred, size, c) + self._unspread(columns, c)
 
     def column_penalty(self, c: int) -> float:
-        """Excess correlations plus missing range of column `c` as it stands."""
-        penalty = float(self.excess[c].sum())
-        if self.reach is not None:
-            penalty += float(self._missing(self.points[:, [c]], self.reach[0, c], self.reach[1, c])[0])
-        return penalty
+        """Excess correlations of column `c` with the others, and how badly it spans and fills its range."""
+        return float(self.excess[c].sum() + self._unspread(self.points[None, :, c], c)[0])
 
     def update(self, rows: list[int]) -> None:
         """Follow a change of some rows of `points`."""
@@ -160,9 +154,13 @@ class State:
         np.fill_diagonal(excess, 0.0)
         return np.asarray(excess)
 
-    @staticmethod
-    def _missing(columns: FloatArray, low: FloatArray | float, high: FloatArray | float) -> FloatArray:
-        return np.asarray(np.maximum(columns.min(axis=0) - low, 0.0) + np.maximum(high - columns.max(axis=0), 0.0))
+    def _unspread(self, columns: FloatArray, c: int) -> FloatArray:
+        """Missing and uneven range for versions of column `c`, one a row."""
+        if self.targets is None:
+            return np.zeros(len(columns))
+        target, ordered = self.targets[:, c], np.sort(columns, axis=1)
+        missing = np.maximum(ordered[:, 0] - target[0], 0.0) + np.maximum(target[-1] - ordered[:, -1], 0.0)
+        return np.asarray(missing + _UNEVEN * np.abs(ordered - target).mean(axis=1))
 
 
 def _excess(products: FloatArray, sizes: FloatArray, c: int) -> FloatArray:

@@ -20,10 +20,10 @@ from quant.arrays import FloatArray
 from quant.planning.criterion import WEIGHT, State, squared_distances
 from quant.planning.region import Region, extreme_points
 
-_BUDGET = 2.0e6  # microseconds or so, counted in work and not in time, so that results do not depend on the machine
+_BUDGET = 8e5  # microseconds or so, counted in work and not in time, so that results do not depend on the machine
 _MOST_PARTNERS = 100
 _VALUES = 12  # values tried for one component of one mixture
-_CANDIDATES = 40  # random mixtures for each one wanted
+_CANDIDATES = 20  # random mixtures for each one wanted; a start looks at a quarter of them
 _GAIN = 1e-7  # smaller gains of the score are rounding
 
 Start = Callable[[], FloatArray]
@@ -52,7 +52,7 @@ def latin_design(
     array of shape (n, k)
         Scaled points.
     """
-    columns = [_equal_shares(n, n if count is None else count) * (1 - 2 * margin) + margin for count in counts]
+    columns = [equal_shares(n, n if count is None else count) * (1 - 2 * margin) + margin for count in counts]
 
     def start() -> FloatArray:
         return np.column_stack([rng.permutation(column) for column in columns])
@@ -72,7 +72,7 @@ def latin_design(
         state.update([i, j])
         return True
 
-    return _search(start, move, fixed, None, min(n, _MOST_PARTNERS), rng)
+    return _search(start, move, fixed, None, 130.0 + 0.04 * min(n, _MOST_PARTNERS) * (n + len(fixed)), rng)
 
 
 def inner_design(region: Region, n: int, margin: float, fixed: FloatArray, rng: np.random.Generator) -> FloatArray:
@@ -97,10 +97,14 @@ def inner_design(region: Region, n: int, margin: float, fixed: FloatArray, rng: 
     corners = extreme_points(region)
     middle = corners.mean(axis=0)
     corners = np.unique(_rounded(region, middle + (1 - 2 * margin) * (corners - middle)), axis=0)
-    reach = region.reach + margin * (region.reach[1] - region.reach[0]) * np.array([[1.0], [-1.0]])
+    width = (1 - 2 * margin) * (region.reach[1] - region.reach[0])
+    shares = np.column_stack([equal_shares(n, n if count is None else count) for count in region.levels])
+    targets = shares * width + region.reach[0] + margin * (region.reach[1] - region.reach[0])
+
+    pool = random_mixtures(region, n * _CANDIDATES, rng)
 
     def start() -> FloatArray:
-        return _far_apart(random_mixtures(region, n * _CANDIDATES, rng), n, corners, fixed)
+        return _far_apart(pool[rng.random(len(pool)) < 0.25], n, corners, fixed)
 
     def move(state: State, i: int, c: int) -> bool:
         values = region.values_between(c, *region.segment(state.points[i], c), _VALUES)
@@ -115,7 +119,7 @@ def inner_design(region: Region, n: int, margin: float, fixed: FloatArray, rng: 
         state.update([i])
         return True
 
-    return _search(start, move, fixed, reach, _VALUES, rng)
+    return _search(start, move, fixed, targets, 150.0, rng)
 
 
 def random_mixtures(region: Region, n: int, rng: np.random.Generator) -> FloatArray:
@@ -135,13 +139,13 @@ def random_mixtures(region: Region, n: int, rng: np.random.Generator) -> FloatAr
 
 
 def _search(
-    start: Start, move: Move, fixed: FloatArray, reach: FloatArray | None, tried: int, rng: np.random.Generator
+    start: Start, move: Move, fixed: FloatArray, targets: FloatArray | None, cost: float, rng: np.random.Generator
 ) -> FloatArray:
+    """Return the best of as many starts as the budget allows; `cost` is the work of one visit to one position."""
     best, lowest, spent = np.empty(0), np.inf, 0.0
     while spent < _BUDGET:
-        state = State(start(), fixed, reach)
+        state = State(start(), fixed, targets)
         n, k = state.points.shape
-        cost = 130.0 + 0.04 * tried * (n + len(fixed))  # of one position, measured
         improving = True
         while improving and spent < 2 * _BUDGET:
             improving = False
@@ -160,8 +164,12 @@ def _best(state: State, c: int, total: FloatArray, penalty: FloatArray) -> int |
     return best if change[best] < -_GAIN else None
 
 
-def _equal_shares(n: int, count: int) -> FloatArray:
-    """Return n values on `count` levels from 0 to 1, as equally often as can be; what is over goes to the ends."""
+def equal_shares(n: int, count: int) -> FloatArray:
+    """Return n values on `count` levels from 0 to 1, sorted, each as often as can be; what is over goes to the ends.
+
+    >>> equal_shares(5, 3).tolist()
+    [0.0, 0.0, 0.5, 1.0, 1.0]
+    """
     often = np.full(count, n // count)
     outside_in = np.argsort(-np.abs(np.arange(count) - (count - 1) / 2), kind="stable")
     often[outside_in[: n % count]] += 1

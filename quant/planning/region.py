@@ -185,8 +185,8 @@ def _with_reach(region: Region, plan: Plan) -> Region:
         lowest = ", ".join(f"{name} {low:g}" for name, low in zip(region.names, region.low, strict=True))
         raise ParameterError(
             f"No mixture obeys everything asked for: {limits}; with ranges that begin at {lowest} (sum "
-            f"{region.low.sum():g}) and end at a sum of {region.high.sum():g} {plan.unit}. Expected at least one mixture; "
-            "widen a range, or change the total or a constraint."
+            f"{region.low.sum():g}) and end at a sum of {region.high.sum():g} {plan.unit}. Expected at least one "
+            "mixture; widen a range, or change the total or a constraint."
         )
     short = np.flatnonzero((ends[0] > 1 - COVERED) | (ends[1] < COVERED))
     if short.size:
@@ -234,7 +234,7 @@ def _solve(region: Region, cost: FloatArray, rows: FloatArray, low: FloatArray, 
     """Solve a mixed-integer linear programme: levels are whole numbers of steps."""
     steps = np.ones(cost.size)
     steps[: len(region.names)] = [1 if count is None else count - 1 for count in region.levels]
-    whole = np.zeros(cost.size)
+    whole = np.zeros(cost.size, dtype=np.int64)
     whole[: len(region.names)] = [count is not None for count in region.levels]
     limits = LinearConstraint(rows / steps, -np.inf, region.b + TOLERANCE / 10)
     found = milp(cost / steps, integrality=whole, bounds=Bounds(low * steps, high * steps), constraints=limits)

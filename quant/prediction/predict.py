@@ -126,7 +126,7 @@ def _row(model: Calibration, sample: str, found: Evaluation, i: int, remarks: tu
         sample=sample,
         analyte=model.analyte.name,
         value=value,
-        unit=model.analyte.unit,
+        unit=model.analyte.printed_unit,
         standard_error=error,
         low=low,
         high=high,

@@ -72,12 +72,14 @@ class PredictionResult(Result):
             for row in self.predictions
         ]
         lines = [self.model, format_columns(header, table)]
-        lines += [
-            f"{row.sample}: {'; '.join(row.reasons + row.remarks)}"
-            for row in self.predictions
-            if row.reasons or row.remarks
-        ]
-        return "\n".join(lines)
+        common = [text for text in self._remarks() if all(text in row.remarks for row in self.predictions)]
+        for row in self.predictions:
+            told = [*row.reasons, *(text for text in row.remarks if text not in common)]
+            lines += [f"{row.sample}: {'; '.join(told)}"] if told else []
+        return "\n".join([*lines, *(f"all samples: {text}" for text in common)])
+
+    def _remarks(self) -> list[str]:
+        return list(dict.fromkeys(text for row in self.predictions for text in row.remarks))
 
     def to_csv(self) -> str:
         """Return CSV text: a header of the documented keys, one line a sample."""

@@ -36,8 +36,13 @@ def separator_of(line: str, decimal: str, given: str | None = None) -> str:
     (';', ' ')
     """
     if given is not None:
-        return _SIGNS.get(given, given)
+        return separator_sign(given)
     return next((sign for sign in "\t;," if sign in line and sign != decimal), " ")
+
+
+def separator_sign(word: str) -> str:
+    """Return the sign that a recipe's word for a separator means, such as a tabulator for "tab"."""
+    return _SIGNS.get(word, word)
 
 
 def split_line(line: str, separator: str) -> list[str]:

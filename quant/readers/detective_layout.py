@@ -140,16 +140,21 @@ def _in_columns(rows: Sequence[Row], signs: Signs, *, stated: bool) -> Layout | 
         )
 
     if width == 2 and not stated:
-        heads = (start - 1,) if len(head) == 2 else ()
-        return _counted(Layout("two_columns", heads, start, 2, 0, 0), rows, fits)
+        above = (start - 1,) if len(head) == 2 else ()
+        return _counted(Layout("two_columns", above, start, 2, 0, 0), rows, fits)
     top = start
-    while top and len(above := clipped(rows[top - 1][1])) == width and all(above[1:]) and not is_data(rows[top - 1][1]):
+    while top and _heads_columns(rows[top - 1][1], width) and not is_data(rows[top - 1][1]):
         top -= 1
     if top == start:
         return None  # without headings there are no sample IDs
     heads = tuple(range(top, start))
     evidence = "as stated" if stated else _axis_evidence([clipped(rows[i][1])[0] for i in heads], rows, start, signs)
     return _counted(Layout("spectra_in_columns", heads, start, width, 0, 0, evidence), rows, fits)
+
+
+def _heads_columns(cells: list[str], width: int) -> bool:
+    names = clipped(cells)
+    return len(names) == width and all(names[1:])
 
 
 def _first_of_two(rows: Sequence[Row], is_data: Callable[[list[str]], bool]) -> int | None:
@@ -192,5 +197,6 @@ def sample_row(heads: Sequence[Sequence[str]], column: str | None) -> int:
     """
     firsts = [head[0].lower() for head in heads]
     wanted = [column.lower()] if column is not None else list(SAMPLE_COLUMNS)
-    rules = (lambda name: name in wanted, lambda name: not name or names_an_axis(name))
-    return next((i for rule in rules for i, name in enumerate(firsts) if rule(name)), len(heads) - 1)
+    by_name = [i for i, name in enumerate(firsts) if name in wanted]
+    by_axis = [i for i, name in enumerate(firsts) if not name or names_an_axis(name)]
+    return (*by_name, *by_axis, len(heads) - 1)[0]

@@ -1,7 +1,7 @@
 """What a file calls its axis and its ordinate, and what the reading options add."""
 
 import re
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator, Sequence
 from pathlib import Path
 
 import numpy as np
@@ -33,6 +33,28 @@ _QUANTITY_WORDS = {
 }
 _AXIS_NAMES = ("wavelength", "wavenumber", "wellenlänge", "wellenzahl", "lambda", "frequency", "axis", "x")
 _FRACTIONS = ("transmittance", "reflectance")
+_NOTE_ALIASES = {
+    "pathlength": "path_length",
+    "cell_path_length": "path_length",
+    "optical_path_length": "path_length",
+    "layer_thickness": "path_length",
+    "temp": "temperature",
+    "temp.": "temperature",
+    "batch_id": "batch",
+    "batch_no": "batch",
+    "batch_no.": "batch",
+    "batch_number": "batch",
+    "spectral_resolution": "resolution",
+    "spectrometer": "instrument",
+    "analyst": "operator",
+    "measured_by": "operator",
+    "measurement_date": "date",
+    "date_measured": "date",
+}
+"""Other names of the notes path_length, temperature, batch, resolution, instrument, operator and date."""
+
+_X_LABEL = re.compile(r"^\W*x[\s_-]*(?:units?|axis|label)\b\W*(?P<rest>.*)$", re.IGNORECASE)
+_Y_LABEL = re.compile(r"^\W*y[\s_-]*(?:units?|axis|label)\b\W*?(?P<rest>[\w%].*)$", re.IGNORECASE)
 LARGEST_FRACTION = 1.5  # a transmittance above this can only be percent
 LARGEST_MEAN_ABSORBANCE = 5.0  # no spectrometer measures this on average
 
@@ -68,6 +90,67 @@ def quantity_in(heading: str) -> str | None:
     found = next(filter(None, map(quantity_named, _parts(heading))), None)
     is_percent = "%" in heading or "percent" in heading.lower()
     return found if found is None or is_percent == found.startswith("percent_") else None
+
+
+def words_above(rows: Sequence[Sequence[str]]) -> tuple[str | None, str | None]:
+    """Return axis unit and ordinate that lines above a table name, such as ``X units: cm-1`` or ``Y axis;%T``."""
+    unit, quantity = None, None
+    for cells in rows:
+        line = " ".join(cells)
+        if match := _X_LABEL.match(line):
+            unit = unit or axis_unit_in(match["rest"])
+        elif match := _Y_LABEL.match(line):
+            quantity = quantity or quantity_in(match["rest"].strip())
+    return unit, quantity
+
+
+def only_word(path: Path, what: str, words: Iterable[str | None]) -> str | None:
+    """Return the one word that a file says for something in several places, or None if it says none.
+
+    Raises
+    ------
+    FileFormatError
+        It says two.
+    """
+    said = list(dict.fromkeys(filter(None, words)))
+    if len(said) > 1:
+        raise FileFormatError(
+            path, f"its words name the {what} {' and '.join(map(repr, said[:3]))}; expected one. Correct the file."
+        )
+    return said[0] if said else None
+
+
+def note_name(heading: str) -> tuple[str, str]:
+    """Return name and unit of a note: lower case, blanks as ``_``, what stands in brackets as unit, aliases replaced.
+
+    >>> note_name("Path Length (mm)"), note_name("Batch No."), note_name("Day")
+    (('path_length', 'mm'), ('batch', ''), ('day', ''))
+    """
+    match = re.fullmatch(r"(?P<name>.*?)\s*[(\[](?P<unit>[^()\[\]]*)[)\]]", heading.strip())
+    name, unit = (match["name"], match["unit"].strip()) if match and match["name"] else (heading, "")
+    plain = re.sub(r"\s+", "_", name.strip().lower())
+    return _NOTE_ALIASES.get(plain, plain), unit
+
+
+def note_of(heading: str, cell: str) -> dict[str, str]:
+    """Return the note in a cell, or nothing if it is empty; a number gets the unit of its heading.
+
+    The resolution stays a plain number, since it is always in cm⁻¹.
+
+    >>> note_of("Path Length (mm)", "0.5"), note_of("Resolution [cm-1]", "4")
+    ({'path_length': '0.5 mm'}, {'resolution': '4'})
+    """
+    name, unit = note_name(heading)
+    text = cell.strip()
+    if not text:
+        return {}
+    bare = name == "resolution" and axis_unit_named(unit) == "cm-1"
+    return {name: f"{text} {unit}" if unit and not bare and text[-1].isdigit() else text}
+
+
+def first_nonempty(*texts: str) -> str:
+    """Return the first text that is not empty."""
+    return next(filter(None, texts), "")
 
 
 def _parts(heading: str) -> Iterator[str]:
@@ -136,4 +219,6 @@ def as_quantity(path: Path, values: FloatArray, quantity: str | None) -> tuple[F
 
 def from_file_name(path: Path, options: ReadingOptions) -> dict[str, str]:
     """Return what sample_pattern finds in the file's name (``sample`` and others), or nothing without a pattern."""
-    return notes_from_name(path, options.sample_pattern) if options.sample_pattern is not None else {}
+    if options.sample_pattern is None:
+        return {}
+    return {note_name(key)[0]: text for key, text in notes_from_name(path, options.sample_pattern).items()}

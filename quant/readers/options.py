@@ -42,6 +42,8 @@ class ReadingOptions:
     sample_pattern : str, optional
         Regular expression that finds the sample ID in the file's name, see `quant.spectra.sample_ids.notes_from_name`.
         At most one of these three.
+    block : str or int, optional
+        Title or number of the block (or page) to read where a JCAMP-DX file holds several; all of them without it.
     separator : {",", ";", "tab", "space"}, optional
         Between the cells of a text file; found out when it is not given.
     decimal : {".", ","}, optional
@@ -72,6 +74,7 @@ class ReadingOptions:
     sample_column: str | None = None
     sample_label: str | None = None
     sample_pattern: str | None = None
+    block: str | int | None = None
     separator: str | None = None
     decimal: str | None = None
     thousands: str | None = None

@@ -3,7 +3,7 @@
 import glob
 import os
 import re
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import replace
 from pathlib import Path
 from typing import Any
@@ -11,8 +11,10 @@ from typing import Any
 from quant.checks import name_some
 from quant.errors import AxisMismatchError, FileFormatError, ParameterError, QuantityError
 from quant.files import read_bytes
+from quant.readers.archive import is_zip, members_of
+from quant.readers.detective import HEAD
 from quant.readers.options import ReadingOptions
-from quant.readers.registry import HEAD, READERS, Reader
+from quant.readers.registry import READERS, Reader
 from quant.spectra.spectra_set import SpectraSet, join_spectra
 
 PathLike = str | os.PathLike[str]
@@ -26,8 +28,9 @@ def read_spectra(
     Parameters
     ----------
     paths : str, path, or sequence of them
-        Files, patterns (``spectra/*.dx``), or folders. Of a folder every file is read that a reader recognises; hidden
-        files are left out. Files are read in natural order (2 before 10), each once.
+        Files, patterns (``spectra/*.dx``), folders, or zip archives. Of a folder or an archive every file is read that
+        a reader recognises; hidden files, workbooks and archives in it are left out. Files are read in natural order
+        (2 before 10), each once.
     options : ReadingOptions, optional
         What the files leave unsaid.
     **keywords
@@ -36,8 +39,8 @@ def read_spectra(
     Returns
     -------
     SpectraSet
-        Every spectrum has a note ``file``. Where a file departs from its format in a way whose meaning is certain, the
-        note ``reader`` says how it was understood.
+        Every spectrum has a note ``file`` (a member of an archive as ``archive.zip/folder/member``). The note
+        ``reader`` says how a table was understood and why, or where a file departs from its format.
 
     Raises
     ------
@@ -49,9 +52,8 @@ def read_spectra(
         Options that are wrong.
     """
     chosen = _options(options, keywords)
-    files = find_files(paths, chosen.format)
-    sets = [_read_file(file, chosen) for file in files]
-    return _join(files, sets, chosen.resample)
+    read = [pair for file in find_files(paths, chosen.format) for pair in _read_file(file, chosen)]
+    return _join([file for file, _ in read], [spectra for _, spectra in read], chosen.resample)
 
 
 def find_files(paths: PathLike | Iterable[PathLike], file_format: str = "auto") -> list[Path]:
@@ -99,7 +101,7 @@ def _matches(path: str, file_format: str) -> Sequence[Path]:
 
 def _in_folder(folder: Path, file_format: str) -> list[Path]:
     present = [file for file in folder.iterdir() if file.is_file() and not file.name.startswith(".")]
-    files = [file for file in present if _reader_of(file, _head(file), file_format) is not None]
+    files = [file for file in present if _reader_inside(file.name, _head(file), file_format) is not None]
     if not files:
         raise FileFormatError(folder, f"no file in this folder is recognised as spectra; {_inventory(folder)}")
     return files
@@ -121,26 +123,57 @@ def _head(file: Path) -> bytes:
         return b""  # recognised by its name if at all; reading it then says what is wrong
 
 
-def _reader_of(file: Path, head: bytes, file_format: str) -> Reader | None:
+def _reader_of(name: str, head: bytes, file_format: str) -> Reader | None:
     candidates = [reader for reader in READERS if file_format in ("auto", reader.name)]
-    return next((reader for reader in candidates if reader.recognises(head, file.name)), None)
+    return next((reader for reader in candidates if reader.recognises(head, name)), None)
 
 
-def _read_file(file: Path, options: ReadingOptions) -> SpectraSet:
+def _reader_inside(name: str, head: bytes, file_format: str) -> Reader | None:
+    """Return the reader of a file in a folder or archive, or None if it is left out."""
+    reader = _reader_of(name, head, file_format)
+    return None if reader is None or (file_format == "auto" and not reader.in_folders) else reader
+
+
+def _read_file(file: Path, options: ReadingOptions) -> Iterator[tuple[Path, SpectraSet]]:
+    """Yield the spectra of a file, or of every member of an archive."""
     content = read_bytes(file)
-    if options.format == "auto":
-        reader = _reader_of(file, content[:HEAD], "auto")
-    else:
-        reader = next(reader for reader in READERS if reader.name == options.format)
+    reader = _reader_of(file.name, content[:HEAD], options.format)
+    if reader is None and is_zip(content):
+        yield from _read_archive(file, content, options)
+        return
+    if reader is None and options.format != "auto":
+        reader = next(each for each in READERS if each.name == options.format)
     if reader is None:
         raise FileFormatError(
             file,
             f"of no known format; expected one of {', '.join(reader.name for reader in READERS)}. "
             "Name it as format to learn what is wrong with it.",
         )
-    spectra = reader.read(file, content, options)
-    notes = tuple({**options.notes, **row, "file": file.name} for row in spectra.notes)
-    return replace(spectra, notes=notes)
+    yield file, _named(reader.read(file, content, options), options, file.name)
+
+
+def _read_archive(file: Path, content: bytes, options: ReadingOptions) -> Iterator[tuple[Path, SpectraSet]]:
+    left_out, n_read = [], 0
+    for name, data in sorted(members_of(file, content), key=lambda member: _natural(Path(member[0]))):
+        reader = _reader_inside(Path(name).name, data[:HEAD], options.format)
+        if reader is None:
+            left_out.append(name)
+            continue
+        place = file / name
+        if not data:
+            raise FileFormatError(place, "the file is empty; expected content. Fetch or export it again.")
+        spectra = reader.read(place, data, options)
+        shown = f"{file.name}/{name}"
+        sources = tuple(replace(source, name=shown) for source in spectra.sources)
+        yield place, _named(replace(spectra, sources=sources), options, shown)
+        n_read += 1
+    if not n_read:
+        holds = name_some(left_out) if left_out else "nothing"
+        raise FileFormatError(file, f"no file in this archive is recognised as spectra; it holds {holds}.")
+
+
+def _named(spectra: SpectraSet, options: ReadingOptions, name: str) -> SpectraSet:
+    return replace(spectra, notes=tuple({**options.notes, **row, "file": name} for row in spectra.notes))
 
 
 def _join(files: Sequence[Path], sets: Sequence[SpectraSet], resample: bool) -> SpectraSet:  # noqa: FBT001

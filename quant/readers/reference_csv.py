@@ -1,32 +1,26 @@
-"""Reader of reference values: one row a sample, one column an analyte."""
+"""Reader of reference values: one row a determination, one column an analyte."""
 
-from collections.abc import Sequence
-from dataclasses import dataclass
+from collections.abc import Iterable, Sequence
+from dataclasses import replace
 from pathlib import Path
+
+import numpy as np
 
 from quant.checks import name_some, one_of
 from quant.errors import FileFormatError, ParameterError
 from quant.files import decode_text, read_bytes
 from quant.readers import delimited
+from quant.readers.dates import ORDERS, iso_dates
 from quant.readers.options import DECIMALS, SEPARATORS
+from quant.readers.reference_column import ColumnOf
+from quant.readers.repeats import average_repeats
+from quant.spectra.concentration import BASES
 from quant.spectra.provenance import source_of
-from quant.spectra.reference_table import Analyte, ReferenceTable
+from quant.spectra.reference_table import ReferenceTable
 
-MISSING = ("", "-", "n/a", "nan")
-"""Cells that say that the laboratory gave no value (in any case)."""
-
-
-@dataclass(frozen=True)
-class ColumnOf:
-    """Where the values of an analyte stand: in the column of that heading, else of the analyte's name."""
-
-    analyte: Analyte
-    column: str = ""
-
-    @property
-    def heading(self) -> str:
-        """Heading of the column."""
-        return self.column or self.analyte.name
+REPLICATES = ("refuse", "average")
+DATE, BASIS = "date", "basis"
+"""Headings (in any case) of columns with a meaning of their own."""
 
 
 def read_reference(
@@ -37,14 +31,20 @@ def read_reference(
     separator: str | None = None,
     decimal: str = ".",
     note_columns: Sequence[str] | None = None,
+    replicates: str = "refuse",
+    date_column: str | None = None,
+    date_order: str | None = None,
 ) -> ReferenceTable:
     """Read reference values from delimited text.
+
+    A cell may hold an upper limit instead of a value ("<0.05", "n.d. <0.05"); it is kept as such. A column called
+    "basis" that says wet or dry states the basis of all values, and must not contradict `analytes`.
 
     Parameters
     ----------
     path : str or path
     analytes : sequence of ColumnOf
-        Which columns are read, and what they are.
+        Which columns are read, what they are, and what they are converted from.
     sample_column : str, optional
         Heading of the sample IDs; else the column called sample, sample_id or id.
     separator : {",", ";", "tab", "space"}, optional
@@ -52,49 +52,145 @@ def read_reference(
     decimal : {".", ","}
     note_columns : sequence of str, optional
         The columns kept as notes; when not given, all others whose heading is not a number (those are spectra).
+    replicates : {"refuse", "average"}
+        What to do with several rows of one sample: an error, or repeated determinations whose mean is taken.
+    date_column : str, optional
+        Heading of a column of dates, which becomes the note ``date`` in ISO form; else the column called date.
+    date_order : {"dmy", "mdy", "ymd"}, optional
+        Order of dates such as 03/04/2026; see `quant.readers.dates.iso_dates`.
 
     Raises
     ------
     FileFormatError
-        A column that is not there, a damaged row, a cell that is neither a number nor a word for "no value".
+        A column that is not there, a damaged row, a cell that is neither a number nor a limit nor a word for "no
+        value", an ambiguous date, or another basis than that of `analytes`.
     SampleMismatchError
-        A sample with two rows.
+        A sample with two rows, unless they are averaged.
     ParameterError
-        No analyte, or one sign for two purposes.
+        No analyte, one sign for two purposes, or a word that is not among those listed.
     """
-    if separator is not None:
-        one_of("separator", separator, SEPARATORS)
-    one_of("decimal", decimal, DECIMALS)
-    if separator == decimal:
-        raise ParameterError(f"separator and decimal are both {decimal!r}; expected two different signs.")
+    _check_words(separator, decimal, replicates, date_order)
     if not analytes:
         raise ParameterError("No analyte named; expected at least one column of reference values.")
     file = Path(path)
     content = read_bytes(file)
-    text = decode_text(file, content)
-    sign = delimited.separator_of(text.lstrip().partition("\n")[0], decimal, separator)
-    rows = delimited.read_rows(file, text, sign)
+    rows = _table_rows(file, content, separator, decimal)
     if len(rows) < 2:
         raise FileFormatError(file, f"{len(rows)} line(s); expected a header and at least one sample.")
     headings = [cell.strip() for cell in rows[0][1]]
-    sample = delimited.sample_column_of(file, headings, sample_column)
-    columns = [
-        delimited.find_column(file, headings, each.heading, f"values of {each.analyte.name}") for each in analytes
-    ]
-    noted = _note_places(file, headings, {sample, *columns}, note_columns, decimal)
-    names = [headings[place] for place in columns]
-    ids, values, notes = [], [], []
     for row in rows[1:]:
         delimited.check_width(file, row, len(headings))
-        line, cells = row
-        if not cells[sample].strip():
-            raise FileFormatError(
-                file, f"no sample ID in column {headings[sample]!r}; expected one in every row.", line=line
-            )
-        ids.append(cells[sample].strip())
-        values.append(delimited.numbers_from(file, line, [cells[place] for place in columns], names, decimal, MISSING))
-        notes.append(delimited.note_cells(cells, headings, noted))
-    return ReferenceTable(ids, [each.analyte for each in analytes], values, notes, [source_of(file, content)])
+    columns = _on_stated_basis(file, headings, rows[1:], analytes)
+    sample = delimited.sample_column_of(file, headings, sample_column)
+    places = [delimited.find_column(file, headings, each.heading, f"values of {each.analyte.name}") for each in columns]
+    wet = [_moisture_place(file, headings, each) for each in columns]
+    date = _date_place(file, headings, date_column, note_columns)
+    taken = {sample, *places, *({date} if date is not None else ())}
+    noted = _note_places(file, headings, taken, note_columns, decimal)
+    ids = [_sample_id(file, row, sample, headings) for row in rows[1:]]
+    read = [
+        [
+            each.read(file, line, cells[place], "" if moist is None else cells[moist], decimal)
+            for each, place, moist in zip(columns, places, wet, strict=True)
+        ]
+        for line, cells in rows[1:]
+    ]
+    notes = [
+        delimited.note_cells(cells, headings, [place for place in noted if place != date]) for _, cells in rows[1:]
+    ]
+    if date is not None:
+        days = iso_dates(file, [(line, cells[date]) for line, cells in rows[1:]], headings[date], date_order)
+        notes = [{**row, DATE: day} if day else row for row, day in zip(notes, days, strict=True)]
+    values, limits = np.moveaxis(np.array(read), 2, 0)
+    kinds, source = [each.analyte for each in columns], [source_of(file, content)]
+    if replicates == "refuse":
+        return ReferenceTable(ids, kinds, values, notes, source, limits)
+    mean = average_repeats(ids, kinds, values, limits, notes)
+    return ReferenceTable(
+        mean.sample_ids, kinds, mean.values, mean.notes, source, mean.limits, mean.determinations, mean.repeatability
+    )
+
+
+def _check_words(separator: str | None, decimal: str, replicates: str, date_order: str | None) -> None:
+    if separator is not None:
+        one_of("separator", separator, SEPARATORS)
+    one_of("decimal", decimal, DECIMALS)
+    one_of("replicates", replicates, REPLICATES)
+    if date_order is not None:
+        one_of("date_order", date_order, ORDERS)
+    if separator == decimal:
+        raise ParameterError(f"separator and decimal are both {decimal!r}; expected two different signs.")
+
+
+def _table_rows(path: Path, content: bytes, separator: str | None, decimal: str) -> list[delimited.Row]:
+    """Return the rows of a table as text cells, whatever kind of file it stands in."""
+    text = decode_text(path, content)
+    sign = delimited.separator_of(text.lstrip().partition("\n")[0], decimal, separator)
+    return delimited.read_rows(path, text, sign)
+
+
+def _sample_id(path: Path, row: delimited.Row, place: int, headings: Sequence[str]) -> str:
+    line, cells = row
+    if not (name := cells[place].strip()):
+        raise FileFormatError(
+            path, f"no sample ID in column {headings[place]!r}; expected one in every row.", line=line
+        )
+    return name
+
+
+def _moisture_place(path: Path, headings: Sequence[str], column: ColumnOf) -> int | None:
+    if not column.changes_basis:
+        return None
+    return delimited.find_column(path, headings, column.moisture_column, f"moisture_column of {column.analyte.name}")
+
+
+def _on_stated_basis(
+    path: Path, headings: Sequence[str], rows: Iterable[delimited.Row], columns: Sequence[ColumnOf]
+) -> list[ColumnOf]:
+    """Return the columns with the basis that the table itself states, if it does."""
+    place = _own_column(path, headings, BASIS)
+    words = {cells[place].strip().lower() for _, cells in rows} if place is not None else set()
+    if not words & set(BASES):
+        return list(columns)  # a column called "basis" may speak of something else
+    if len(words) > 1:
+        raise FileFormatError(
+            path,
+            f"column {headings[place or 0]!r} holds {name_some(map(repr, sorted(words)))}; expected wet in every row, "
+            "or dry. Bring all values to one basis.",
+        )
+    stated = words.pop()
+    return [_with_basis(path, column, stated) for column in columns]
+
+
+def _with_basis(path: Path, column: ColumnOf, stated: str) -> ColumnOf:
+    expected = column.basis or column.analyte.basis
+    if expected and expected != stated:
+        raise FileFormatError(
+            path,
+            f"the table says {stated} basis; expected {expected} basis, as the recipe says of {column.analyte.name}. "
+            f'Mend the table, or set column_basis = "{stated}" under [[analyte]].',
+        )
+    return column if expected else replace(column, analyte=replace(column.analyte, basis=stated))
+
+
+def _own_column(path: Path, headings: Sequence[str], word: str) -> int | None:
+    """Return the place of the column called `word` in any case, if there is one."""
+    named = [heading for heading in headings if heading.lower() == word]
+    return delimited.find_column(path, headings, named[0], f"{word} of the values") if named else None
+
+
+def _date_place(
+    path: Path, headings: Sequence[str], given: str | None, note_columns: Sequence[str] | None
+) -> int | None:
+    own = _own_column(path, headings, DATE)
+    if given is None:
+        return own if note_columns is None or (own is not None and headings[own] in note_columns) else None
+    place = delimited.find_column(path, headings, given, "date_column")
+    if own is not None and own != place:
+        raise FileFormatError(
+            path, f"columns {given!r} and {headings[own]!r} would both become the note date. Rename one.", line=1
+        )
+    return place
 
 
 def _note_places(

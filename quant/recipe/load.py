@@ -9,10 +9,11 @@ from pydantic import ValidationError
 from quant.errors import RecipeError
 from quant.files import decode_text, read_bytes
 from quant.readers.read import read_spectra
-from quant.readers.reference_csv import ColumnOf, read_reference
+from quant.readers.reference_column import ColumnOf
+from quant.readers.reference_csv import read_reference
 from quant.recipe.messages import problems
 from quant.recipe.schema import Recipe
-from quant.spectra.reference_table import Analyte, ReferenceTable
+from quant.spectra.reference_table import ReferenceTable
 from quant.spectra.sample_set import SampleSet, pair_samples
 from quant.spectra.spectra_set import SpectraSet
 
@@ -59,10 +60,7 @@ def recipe_from_text(text: str, *, name: str = "recipe", folder: str | Path = ".
 
 def analytes_of(recipe: Recipe) -> list[ColumnOf]:
     """Return the recipe's analytes with the columns that hold their values."""
-    return [
-        ColumnOf(Analyte(table.name, table.unit, table.laboratory_error), table.column or "")
-        for table in recipe.analyte
-    ]
+    return [table.column_of() for table in recipe.analyte]
 
 
 def read_recipe_spectra(recipe: Recipe, files: list[str] | None = None) -> SpectraSet:
@@ -80,6 +78,9 @@ def read_recipe_reference(recipe: Recipe, file: str | None = None) -> ReferenceT
         sample_column=table.sample_column,
         separator=table.separator,
         decimal=table.decimal,
+        replicates=table.replicates,
+        date_column=table.date_column,
+        date_order=table.date_order,
     )
 
 

@@ -6,8 +6,11 @@ from typing import Annotated, Any, Literal
 
 from pydantic import BaseModel, ConfigDict, Field, PrivateAttr, model_validator
 
+from quant.errors import ParameterError
 from quant.preprocessing.registry import STEPS
 from quant.readers.options import ReadingOptions
+from quant.readers.reference_column import MOISTURE_UNIT, ColumnOf
+from quant.spectra.reference_table import Analyte
 
 DEFAULTS: dict[str, dict[str, Any]] = tomllib.loads(files("quant.recipe").joinpath("defaults.toml").read_text("utf-8"))
 
@@ -35,6 +38,9 @@ class SpectraTable(Table):
     sample_pattern: Text | None = Field(
         None,
         description="Regular expression on the file name; its group (?P<sample>...) is the sample ID, others notes.",
+    )
+    block: Text | Positive | None = Field(
+        None, description="JCAMP-DX: title or number of the block to read where a file holds several. Default: all."
     )
     separator: Literal[",", ";", "tab", "space"] | None = Field(
         None, description="Delimited text: what parts the cells; found out when not given."
@@ -89,6 +95,16 @@ class ReferenceSection(Table):
     missing: Literal["refuse", "drop"] = Field(
         DEFAULTS["reference"]["missing"], description="Rows without a value: an error, or left out for that analyte."
     )
+    replicates: Literal["refuse", "average"] = Field(
+        DEFAULTS["reference"]["replicates"],
+        description="Several rows of one sample: an error, or repeated determinations whose mean is taken.",
+    )
+    date_column: Text | None = Field(
+        None, description="Column of dates, which becomes the note date in ISO form; default: the one called date."
+    )
+    date_order: Literal["dmy", "mdy", "ymd"] | None = Field(
+        None, description="Order of day, month and year in dates such as 03/04/2026, where the column does not tell."
+    )
 
 
 class AnalyteTable(Table):
@@ -96,10 +112,59 @@ class AnalyteTable(Table):
 
     name: Text = Field(description="As printed and as the model's file is called.")
     column: Text | None = Field(None, description="Column of the reference table; default: the name.")
-    unit: str = Field("", description="Unit of the values, as printed: % m/m, mg/kg ...")
-    laboratory_error: float | None = Field(
-        None, ge=0, description="Standard error of one reported reference value. [unit of the analyte]"
+    unit: str = Field("", description="Unit of the results, as printed: % m/m, mg/kg ...")
+    column_unit: Text | None = Field(
+        None, description="Unit of the column, if another: its values are converted. ppm and ppb are by mass."
     )
+    density: float | None = Field(
+        None, gt=0, description="Density of the samples, to convert between % m/m or mg/kg and g/L or mol/L. [g/mL]"
+    )
+    molar_mass: float | None = Field(
+        None, gt=0, description="Molar mass of the analyte, to convert from or to mol/L. [g/mol]"
+    )
+    basis: Literal["wet", "dry"] | None = Field(
+        None, description="What a mass fraction is a fraction of: the sample as it is, or its dry matter."
+    )
+    column_basis: Literal["wet", "dry"] | None = Field(
+        None, description="Basis of the column, if another: its values are converted by moisture_column."
+    )
+    moisture_column: Text | None = Field(
+        None, description="Column of the moisture of each wet sample, to convert from one basis to the other."
+    )
+    moisture_unit: Text | None = Field(None, description="Unit of moisture_column; default: % m/m.")
+    detection_limit: float | None = Field(
+        None, gt=0, description='What "nd" in the column means: below this limit. [unit of the column]'
+    )
+    laboratory_error: float | None = Field(
+        None,
+        ge=0,
+        description="Standard error of one reported reference value; default: from repeated determinations, if there "
+        "are any. [unit of the analyte]",
+    )
+
+    @model_validator(mode="after")
+    def _can_be_converted(self) -> "AnalyteTable":
+        try:
+            self.column_of()
+        except ParameterError as problem:
+            raise ValueError(str(problem).removesuffix(".")) from None
+        if self.moisture_unit is not None and self.moisture_column is None:
+            raise ValueError("moisture_unit goes with moisture_column")
+        return self
+
+    def column_of(self) -> ColumnOf:
+        """Return where the analyte's values stand, and what they are converted from."""
+        return ColumnOf(
+            Analyte(self.name, self.unit, self.laboratory_error, self.basis or ""),
+            self.column or "",
+            unit=self.column_unit or "",
+            basis=self.column_basis or "",
+            density=self.density,
+            molar_mass=self.molar_mass,
+            moisture_column=self.moisture_column or "",
+            moisture_unit=self.moisture_unit or MOISTURE_UNIT,
+            detection_limit=self.detection_limit,
+        )
 
 
 class ExcludeTable(Table):
@@ -132,7 +197,7 @@ class RegressionTable(Table):
     max_factors: Positive | Literal["auto"] = Field(
         DEFAULTS["regression"]["max_factors"], description="pls: largest number of factors looked at."
     )
-    factors: Positive | Literal["one_standard_error", "minimum", "f_ratio"] = Field(
+    factors: Positive | Literal["one_standard_error", "minimum", "f_ratio", "randomisation"] = Field(
         DEFAULTS["regression"]["factors"],
         description="pls: the rule that chooses the number of factors, or the number.",
     )
@@ -169,6 +234,10 @@ class CrossValidationTable(Table):
     )
     group: Text | None = Field(
         None, description="Note whose equal values are never split between folds (batch, duplicate)."
+    )
+    duplicates_together: bool = Field(
+        DEFAULTS["cross_validation"]["duplicates_together"],
+        description="Samples with exactly equal spectra are never split between folds, nor by a split.",
     )
     seed: int = Field(DEFAULTS["cross_validation"]["seed"], ge=0, description="Seed of random folds and random splits.")
 

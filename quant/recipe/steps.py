@@ -2,6 +2,7 @@
 
 import inspect
 import json
+import re
 from functools import cache
 from typing import Any
 
@@ -13,13 +14,37 @@ from quant.preprocessing.registry import STEPS
 from quant.recipe.messages import did_you_mean, problems
 
 
+def parameter_docs(cls: type) -> dict[str, str]:
+    """Return what a class's docstring says of each parameter, on one line."""
+    text = inspect.getdoc(cls) or ""
+    section = text.partition("Parameters\n----------\n")[2].partition("\n\n")[0]
+    found: dict[str, str] = {}
+    for entry in re.split(r"\n(?=\S)", section):
+        head, _, body = entry.partition("\n")
+        for key in head.partition(":")[0].split(","):
+            found[key.strip()] = " ".join(body.split())
+    return found
+
+
+def steps_schema() -> dict[str, Any]:
+    """Return the JSON schema of one ``[[preprocessing]]`` table: one of the steps, with its options."""
+    schemas = []
+    for name, cls in STEPS.items():
+        schema = options_model(name).model_json_schema()
+        summary = (inspect.getdoc(cls) or "").partition("\n")[0]
+        schema["properties"] = {"step": {"const": name, "description": summary}, **schema.get("properties", {})}
+        schemas.append({**schema, "title": name, "required": ["step"]})
+    return {"oneOf": schemas}
+
+
 @cache
 def options_model(name: str) -> Any:
     """Return the pydantic model of a step's options: its constructor's parameters but the axis."""
     fields: dict[str, Any] = {}
+    explained = parameter_docs(STEPS[name])
     for key, parameter in inspect.signature(STEPS[name]).parameters.items():
         if key != "axis":
-            fields[key] = (parameter.annotation, Field(parameter.default))
+            fields[key] = (parameter.annotation, Field(parameter.default, description=explained.get(key)))
     return create_model(f"{name}_options", __config__=ConfigDict(extra="forbid"), **fields)
 
 

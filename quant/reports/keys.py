@@ -28,6 +28,7 @@ PLAIN: dict[type[Any], dict[str, str]] = {
         "laboratory_error": "Standard error of one reference value, or null [unit of the analyte]",
         "replicate_sd": "SD of predictions of replicate spectra about their mean, or null [unit of the analyte]",
         "replicates": "Spectra a sample in the calibration (harmonic mean)",
+        "laboratory_error_source": "Where the laboratory error comes from, in words; empty where there is none",
     },
 }
 

@@ -1,6 +1,7 @@
 """The spectral axis: values, unit, direction."""
 
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -8,6 +9,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_vector, one_of
 from quant.errors import ParameterError
+from quant.spectra.frozen import restore
 from quant.spectra.segments import median_step
 from quant.units import AXIS_UNITS, convert_axis
 
@@ -41,11 +43,8 @@ class SpectralAxis:
         if numbers.size == 0:
             raise ParameterError("The axis holds no values; expected one for every point.")
         steps = np.diff(numbers)
-        wrong = (
-            np.flatnonzero(np.sign(steps) != np.sign(steps[0]))
-            if steps.size and steps[0]
-            else np.flatnonzero(steps == 0)
-        )
+        onward = steps > 0 if steps.size and steps[0] > 0 else steps < 0
+        wrong = np.flatnonzero(~onward)
         if wrong.size:
             place = int(wrong[0]) + 1
             raise ParameterError(
@@ -55,6 +54,9 @@ class SpectralAxis:
         numbers.flags.writeable = False
         object.__setattr__(self, "values", numbers)
         object.__setattr__(self, "unit", unit)
+
+    def __setstate__(self, state: dict[str, Any]) -> None:
+        restore(self, state)
 
     def __len__(self) -> int:
         return int(self.values.size)

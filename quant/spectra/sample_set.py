@@ -1,8 +1,7 @@
 """Samples: spectra and reference values joined by sample ID."""
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
-from types import MappingProxyType
+from dataclasses import dataclass, field
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -10,7 +9,8 @@ from numpy.typing import ArrayLike
 from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.checks import name_some, one_of
 from quant.errors import ParameterError, SampleMismatchError
-from quant.spectra.reference_table import Analyte, ReferenceTable
+from quant.spectra.frozen import FrozenMapping
+from quant.spectra.reference_table import NO_LIMIT, Analyte, ReferenceTable, Repeatability
 from quant.spectra.spectra_set import SpectraSet
 
 ORIGINS = ("process", "spiked", "blended")
@@ -40,6 +40,12 @@ class SampleSet:
         One row a sample: what the reference table says, and what all its spectra agree in.
     spectra_without_values, values_without_spectra : tuple of str
         Sample IDs that found no partner.
+    censored : array of shape (n_samples, n_analytes)
+        Upper limits of values that are only known to lie below one, NaN for all others. [unit of each analyte]
+    determinations : array of int, shape (n_samples, n_analytes)
+        How many laboratory determinations each value is the mean of.
+    repeatability : mapping of str to Repeatability
+        By the analyte's name, where the reference table holds repeated determinations.
     """
 
     spectra: SpectraSet
@@ -50,6 +56,13 @@ class SampleSet:
     notes: tuple[Mapping[str, str], ...]
     spectra_without_values: tuple[str, ...] = ()
     values_without_spectra: tuple[str, ...] = ()
+    censored: FloatArray = field(default_factory=lambda: np.array(NO_LIMIT))
+    determinations: IntArray = field(default_factory=lambda: np.array(1))
+    repeatability: Mapping[str, Repeatability] = field(default_factory=dict)
+
+    def __post_init__(self) -> None:
+        for name in ("censored", "determinations"):  # one number stands for all
+            object.__setattr__(self, name, np.broadcast_to(getattr(self, name), self.values.shape))
 
     def __len__(self) -> int:
         return len(self.sample_ids)
@@ -82,9 +95,21 @@ class SampleSet:
         ParameterError
             No analyte of that name.
         """
+        column = self._column(name)
+        return self.analytes[column], self.values[:, column]
+
+    def upper_limits(self, name: str) -> FloatArray:
+        """Return the limits of an analyte's values below a detection limit, NaN for all others, shape (n_samples,)."""
+        return self.censored[:, self._column(name)]
+
+    def determinations_of(self, name: str) -> IntArray:
+        """Return how many determinations each value of an analyte is the mean of, shape (n_samples,)."""
+        return self.determinations[:, self._column(name)]
+
+    def _column(self, name: str) -> int:
         for position, analyte in enumerate(self.analytes):
             if analyte.name == name:
-                return analyte, self.values[:, position]
+                return position
         raise ParameterError(f"No analyte {name!r}; expected one of {name_some(a.name for a in self.analytes)}.")
 
     def mean_by_sample(self, rows: ArrayLike) -> FloatArray:
@@ -104,6 +129,9 @@ class SampleSet:
             self.analytes,
             self.values[chosen],
             tuple(self.notes[i] for i in chosen),
+            censored=self.censored[chosen],
+            determinations=self.determinations[chosen],
+            repeatability=self.repeatability,
         )
 
     def positions(self, sample_ids: Sequence[str]) -> IntArray:
@@ -166,7 +194,7 @@ def pair_samples(
     Raises
     ------
     SampleMismatchError
-        Spectra without a row or without a value (unless "drop"), or no pair at all.
+        Spectra without a row, or with neither value nor upper limit (unless "drop"), or no pair at all.
     ParameterError
         A word that is not among those listed, or an origin that is not one of `ORIGINS`.
     """
@@ -187,9 +215,10 @@ def pair_samples(
             f"{len(alone)} of {len(ids)} samples with spectra have no row in the reference table: {name_some(alone)}. "
             'Add the rows, or set unmatched = "drop" under [reference].'
         )
-    values = reference.values[[place[sample] for sample in paired]]
+    chosen = [place[sample] for sample in paired]
+    values, limits = reference.values[chosen], reference.censored[chosen]
     if missing == "refuse":
-        _refuse_missing(reference.analytes, values, paired)
+        _refuse_missing(reference.analytes, np.where(np.isnan(values), limits, values), paired)
     keep = np.array([sample in place for sample in spectra.sample_ids])
     kept = spectra[keep]
     number = {sample: i for i, sample in enumerate(paired)}
@@ -205,9 +234,12 @@ def pair_samples(
         index,
         reference.analytes,
         values,
-        tuple(MappingProxyType(row) for row in rows),
+        tuple(FrozenMapping(row) for row in rows),
         tuple(alone),
         tuple(sample for sample in reference.sample_ids if sample not in set(ids)),
+        limits,
+        reference.determinations[chosen],
+        reference.repeatability,
     )
 
 

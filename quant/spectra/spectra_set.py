@@ -2,8 +2,7 @@
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
-from types import MappingProxyType
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any, TypeGuard
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -12,6 +11,7 @@ from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.checks import name_some, one_of
 from quant.errors import AxisMismatchError, ParameterError, QuantityError, SampleMismatchError
 from quant.spectra.axis import SpectralAxis
+from quant.spectra.frozen import FrozenMapping, restore
 from quant.spectra.provenance import Source
 from quant.spectra.resampling import interpolate
 from quant.units import QUANTITIES
@@ -63,7 +63,7 @@ class SpectraSet:
         notes: Sequence[Notes] | None = None,
         sources: Sequence[Source] = (),
     ) -> None:
-        matrix = np.array(values, dtype=np.float64)
+        matrix = values if _is_frozen(values) else np.array(values, dtype=np.float64)
         rows = [{}] * len(sample_ids) if notes is None else notes
         if matrix.ndim != 2 or matrix.shape != (len(sample_ids), len(axis)) or len(rows) != len(sample_ids):
             raise ParameterError(
@@ -80,8 +80,11 @@ class SpectraSet:
         object.__setattr__(self, "axis", axis)
         object.__setattr__(self, "sample_ids", tuple(str(sample) for sample in sample_ids))
         object.__setattr__(self, "quantity", one_of("quantity", quantity, tuple(QUANTITIES)))
-        object.__setattr__(self, "notes", tuple(MappingProxyType(dict(row)) for row in rows))
+        object.__setattr__(self, "notes", tuple(FrozenMapping(row) for row in rows))
         object.__setattr__(self, "sources", tuple(sources))
+
+    def __setstate__(self, state: dict[str, Any]) -> None:
+        restore(self, state)
 
     def __len__(self) -> int:
         return len(self.sample_ids)
@@ -138,6 +141,8 @@ class SpectraSet:
         AxisMismatchError
             Units differ, positions differ and `resample` is false, or the measured axis does not cover the one wanted.
         """
+        if axis is self.axis:
+            return self
         if self.axis.same_positions(axis):
             return replace(self, axis=axis)
         if self.axis.reversed().same_positions(axis):
@@ -169,6 +174,16 @@ class SpectraSet:
         return pd.concat([left, right], axis=1)
 
 
+def _is_frozen(values: ArrayLike) -> TypeGuard[FloatArray]:
+    """Tell whether an array is one that nobody can change any more, so that it need not be copied."""
+    return (
+        isinstance(values, np.ndarray)
+        and values.dtype == np.float64
+        and not values.flags.writeable
+        and values.flags.owndata
+    )
+
+
 def join_spectra(sets: Sequence[SpectraSet], *, resample: bool = False) -> SpectraSet:
     """Put sets together on the axis of the first.
 
@@ -184,6 +199,8 @@ def join_spectra(sets: Sequence[SpectraSet], *, resample: bool = False) -> Spect
     if not sets:
         raise ParameterError("No spectra to put together; expected at least one set.")
     first = sets[0]
+    if len(sets) == 1:
+        return first
     for other in sets[1:]:
         if other.quantity != first.quantity:
             raise QuantityError(

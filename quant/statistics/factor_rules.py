@@ -14,6 +14,7 @@ from quant.arrays import FloatArray
 from quant.checks import as_matrix
 from quant.errors import NotEnoughDataError, ParameterError
 from quant.statistics.quantiles import f_quantile
+from quant.statistics.randomisation import randomisation_test
 
 
 def minimum(squared_errors: ArrayLike) -> int:
@@ -94,10 +95,42 @@ def f_ratio(squared_errors: ArrayLike, alpha: float = 0.25) -> int:
     return _first(acceptable)
 
 
+def randomisation(squared_errors: ArrayLike, alpha: float = 0.1) -> int:
+    """Return the fewest factors whose squared errors are not significantly above those at the lowest mean.
+
+    Van der Voet's one-sided test of each smaller number against the minimum; p above alpha is "not significantly".
+
+    Parameters
+    ----------
+    squared_errors : array of shape (n_counts, n_samples)
+        Row a: squared left-out errors with a factors, a = 0 ... A. [unit of the analyte, squared]
+    alpha : float
+        Inside (0, 1); 0.1 is customary. A smaller alpha takes fewer factors.
+
+    Raises
+    ------
+    ParameterError
+        Not such an array: another shape, negative or non-finite numbers; alpha outside (0, 1).
+    NotEnoughDataError
+        No row for one factor, or fewer than two samples.
+
+    References
+    ----------
+    .. [1] H. van der Voet, Chemom. Intell. Lab. Syst. 25 (1994) 313-323 (from memory).
+    """
+    if not 0 < alpha < 1:
+        raise ParameterError(f"alpha = {alpha}; expected a probability inside (0, 1), such as 0.1.")
+    squares = _checked(squared_errors)
+    best = _lowest(squares.mean(axis=1))
+    fewer = (a for a in range(1, best) if randomisation_test(squares[a], squares[best]).p > alpha)
+    return next(fewer, best)
+
+
 RULES: Mapping[str, Callable[[ArrayLike], int]] = {
     "one_standard_error": one_standard_error,
     "minimum": minimum,
     "f_ratio": f_ratio,
+    "randomisation": randomisation,
 }
 
 

@@ -2,20 +2,26 @@
 
 import json
 import math
+from dataclasses import replace
 
 import numpy as np
 import pytest
 
 from quant.calibration.calibrate import calibrate
 from quant.calibration.result import NOT_PROVEN
-from quant.errors import ParameterError, QuantityError
+from quant.errors import NotEnoughDataError, ParameterError, QuantityError
 from quant.recipe.load import recipe_from_text
+from quant.spectra.reference_table import Analyte
+from quant.statistics.factor_rules import RULES
+
+
+def with_ordinates(samples, values):
+    return replace(samples, spectra=replace(samples.spectra, values=values))
 
 
 def test_the_rule_chooses_and_is_told(make_samples, make_recipe):
     found = {
-        rule: calibrate(make_recipe(f'[regression]\nfactors = "{rule}"'), make_samples(n=16))["acid"]
-        for rule in ("one_standard_error", "minimum", "f_ratio")
+        rule: calibrate(make_recipe(f'[regression]\nfactors = "{rule}"'), make_samples(n=16))["acid"] for rule in RULES
     }
     for rule, result in found.items():
         assert result.factors == result.model.factors == result.cross_validation.choices[rule]
@@ -44,21 +50,36 @@ def test_test_spectra_span_the_range(make_samples, make_recipe):
 def test_factors_that_are_noise_are_not_kept(make_samples, make_recipe):
     samples = make_samples(n=12)
     exact = np.outer(samples.values[:, 0], np.linspace(1, 2, 41))
-    spectra = type(samples.spectra)(exact, samples.spectra.axis, samples.sample_ids)
-    names = ("sample_ids", "sample_index", "analytes", "values", "notes")
-    made = type(samples)(spectra, *(getattr(samples, name) for name in names))
+    made = with_ordinates(samples, exact)
     found = calibrate(make_recipe("[regression]\nfactors = 3"), made)["acid"]
     assert found.factors == 1
     assert found.rule.startswith("fixed in the recipe, but factor 2 would be numerical noise")
+
+
+@pytest.mark.parametrize("level", [0.0, 1.0])
+def test_flat_spectra_are_refused(make_samples, make_recipe, level):
+    samples = make_samples(n=8)
+    flat = with_ordinates(samples, np.full((8, 41), level))
+    with pytest.raises(NotEnoughDataError, match=r"No factor can be found: .* Expected spectra that vary with"):
+        calibrate(make_recipe(), flat)
+
+
+def test_missing_points_are_told_by_sample(make_samples, make_recipe):
+    samples = make_samples(n=8, replicates=2)
+    values = samples.spectra.values.copy()
+    values[[4, 5, 9], 7] = np.nan
+    holed = with_ordinates(samples, values)
+    with pytest.raises(
+        QuantityError, match="3 of 16 spectra have missing points: S03, S05; expected a number at every"
+    ):
+        calibrate(make_recipe('[[preprocessing]]\nstep = "snv"'), holed)
 
 
 def test_points_missing_outside_the_ranges_kept_do_no_harm(make_samples, make_recipe):
     samples = make_samples(n=12)
     values = samples.spectra.values.copy()
     values[3, 0] = np.nan
-    names = ("sample_ids", "sample_index", "analytes", "values", "notes")
-    rest = [getattr(samples, name) for name in names]
-    holed = type(samples)(type(samples.spectra)(values, samples.spectra.axis, samples.sample_ids), *rest)
+    holed = with_ordinates(samples, values)
     kept = '[[preprocessing]]\nstep = "keep_ranges"\nranges = [[1780, 1620]]\n'
     model = calibrate(make_recipe(kept), holed).model
     assert model.predict_values(values) == pytest.approx(model.predict_values(samples.spectra.values))
@@ -82,8 +103,7 @@ def test_each_analyte_has_its_own_model(make_samples):
     samples = make_samples(n=12)
     values = np.column_stack([samples.values[:, 0], samples.values[::-1, 0]])
     values[4, 1] = np.nan
-    analytes = (samples.analytes[0], type(samples.analytes[0])("water", "%"))
-    both = type(samples)(samples.spectra, samples.sample_ids, samples.sample_index, analytes, values, samples.notes)
+    both = replace(samples, analytes=(*samples.analytes, Analyte("water", "%")), values=values)
     text = 'title = "t"\n[spectra]\nfiles = ["x"]\n[reference]\nfile = "x"\n'
     result = calibrate(recipe_from_text(f'{text}[[analyte]]\nname = "acid"\n[[analyte]]\nname = "water"\n'), both)
     assert [entry.analyte for entry in result.analytes] == ["acid", "water"]

@@ -1,5 +1,7 @@
 """Which samples calibrate: exclusion, missing values, and every way to set validation samples apart."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -88,9 +90,8 @@ def test_samples_without_a_value_are_left_out(make_samples, make_recipe):
 
 def renamed(samples, letter):
     ids = tuple(name.replace("S", letter) for name in samples.sample_ids)
-    spectra = samples.spectra
-    named = type(spectra)(spectra.values, spectra.axis, [ids[i] for i in samples.sample_index], spectra.quantity)
-    return type(samples)(named, ids, samples.sample_index, samples.analytes, samples.values, samples.notes)
+    named = replace(samples.spectra, sample_ids=[ids[i] for i in samples.sample_index])
+    return replace(samples, spectra=named, sample_ids=ids)
 
 
 def test_separate_samples(make_samples, make_recipe):

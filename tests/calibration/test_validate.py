@@ -1,5 +1,7 @@
 """Validation: predictions of samples that took no part, beside their values."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -54,27 +56,23 @@ def test_an_internal_test_proves_nothing(model, make_samples):
 def test_a_reversed_axis_is_turned(model, make_samples):
     samples = make_samples(n=6, seed=2)
     spectra = samples.spectra
-    mirrored = type(spectra)(spectra.values[:, ::-1], spectra.axis.reversed(), spectra.sample_ids)
-    turned = type(samples)(
-        mirrored, *(getattr(samples, name) for name in ("sample_ids", "sample_index", "analytes", "values", "notes"))
-    )
+    mirrored = replace(spectra, values=spectra.values[:, ::-1], axis=spectra.axis.reversed())
+    turned = replace(samples, spectra=mirrored)
     assert validate(model, turned).predicted.tolist() == validate(model, samples).predicted.tolist()
 
 
 def test_spectra_recorded_otherwise_are_refused(make_samples, make_recipe):
     samples = make_samples(n=12)
-    names = ("sample_ids", "sample_index", "analytes", "values", "notes")
-    rest = [getattr(samples, name) for name in names]
-    stated = type(samples)(samples.spectra.with_notes({"technique": "ATR"}), *rest)
+    stated = replace(samples, spectra=samples.spectra.with_notes({"technique": "ATR"}))
     model = calibrate(make_recipe(), stated).model
-    other = type(samples)(samples.spectra.with_notes({"technique": "transmission"}), *rest)
+    other = replace(samples, spectra=samples.spectra.with_notes({"technique": "transmission"}))
     with pytest.raises(
         AcquisitionMismatchError, match="technique is transmission for S01, S02, S03, S04, S05 and 7 more"
     ):
         validate(model, other)
-    spectra = type(samples.spectra)(samples.spectra.values, samples.spectra.axis, samples.sample_ids, "reflectance")
+    reflectance = replace(samples, spectra=replace(samples.spectra, quantity="reflectance"))
     with pytest.raises(QuantityError, match="The spectra are reflectance, but the model was made from absorbance"):
-        validate(model, type(samples)(spectra, *rest))
+        validate(model, reflectance)
 
 
 def test_direction_of_the_line(model, make_samples, make_recipe):

@@ -8,8 +8,11 @@ import numpy as np
 import pytest
 from click.testing import CliRunner, Result
 
+from quant.calibration.calibrate import calibrate
 from quant.cli.main import cli
+from quant.model.storage import save_model
 from quant.readers.matrix import write_matrix
+from quant.recipe.load import load_recipe
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.spectra_set import SpectraSet
 
@@ -51,6 +54,11 @@ class Project:
     def calibrate(self, recipe: str = "recipe.toml") -> Result:
         """Calibrate by a recipe of the folder into its folder ``out``."""
         return self.run("calibrate", self.folder / recipe, "--out", self.folder / "out")
+
+    def make_model(self) -> Path:
+        """Leave the model that `calibrate` would leave, without its report, which takes a second to draw."""
+        model = calibrate(load_recipe(self.folder / "recipe.toml")).model
+        return save_model(model, self.folder / "out" / "acid.model")
 
     def replace(self, file: str, old: str, new: str) -> None:
         """Replace a text in a file, which has to be there."""

@@ -87,8 +87,7 @@ DAMAGE = {
 
 @pytest.mark.parametrize("damage", DAMAGE, ids=lambda damage: damage.__name__)
 def test_damaged_models(project, damage: Callable[[Path], None]) -> None:
-    assert project.calibrate().exit_code == 0
-    file = project.folder / "out" / "acid.model"
+    file = project.make_model()
     damage(file)
     result = project.run("predict", file, project.folder / "spectra.csv")
     first, last = DAMAGE[damage]
@@ -143,8 +142,7 @@ OTHERWISE = {
 
 @pytest.mark.parametrize("change", OTHERWISE, ids=lambda change: change.__name__)
 def test_new_spectra_recorded_otherwise(project, make_spectra, change: Callable[[SpectraSet], SpectraSet]) -> None:
-    assert project.calibrate().exit_code == 0
-    model, new = project.folder / "out" / "acid.model", make_spectra(np.array([3.0, 5.0]), 3)
+    model, new = project.make_model(), make_spectra(np.array([3.0, 5.0]), 3)
     assert project.run("predict", model, project.write_spectra(new, "new.csv")).exit_code == 0
     result = project.run("predict", model, project.write_spectra(change(new), "new.csv"))
     assert result.exit_code == DATA

@@ -15,7 +15,7 @@ from quant.spectra.spectra_set import SpectraSet
 @pytest.fixture
 def calibrated(project):
     """Return a project whose model is made."""
-    assert project.calibrate().exit_code == 0
+    project.make_model()
     return project
 
 
@@ -111,7 +111,7 @@ def test_new_files_are_read_as_the_calibrations_own(project, make_spectra) -> No
     project.replace(
         "recipe.toml", '["spectra.csv"]', '["spectra.csv"]\nseparator = ";"\ndecimal = ","\naxis_unit = "cm-1"'
     )
-    assert project.calibrate().exit_code == 0
+    project.make_model()
     table = project.folder / "table.json"
     assert (
         project.run(
@@ -121,3 +121,24 @@ def test_new_files_are_read_as_the_calibrations_own(project, make_spectra) -> No
     )
     [row] = json.loads(table.read_text(encoding="utf-8"))["predictions"]
     assert row["value"] == pytest.approx(4.0, abs=0.05)
+
+
+def test_files_named_otherwise_than_the_calibrations(calibrated, make_spectra) -> None:
+    new = calibrated.write_spectra(make_spectra(np.array([3.0]), 3), "other.csv")
+    text = new.read_text(encoding="utf-8").replace("sample,", "vial,", 1)
+    new.write_text(text, encoding="utf-8")
+    model = calibrated.folder / "out" / "acid.model"
+    refused = calibrated.run("predict", model, new)
+    assert refused.exit_code == 3
+    assert "sample" in refused.stderr
+    result = calibrated.run("predict", model, new, "--sample-column", "vial")
+    assert result.exit_code == 0
+    assert result.stdout.splitlines()[2].startswith("S01")
+
+
+def test_a_note_is_compared_with_the_calibrations_and_has_a_value(calibrated) -> None:
+    model, spectra = calibrated.folder / "out" / "acid.model", calibrated.folder / "spectra.csv"
+    result = calibrated.run("predict", model, spectra, "--note", "technique")
+    assert result.exit_code == 2
+    assert "--note technique: expected a name, =, and a value, such as technique=ATR." in result.stderr
+    assert calibrated.run("predict", model, spectra, "--note", "operator=K").exit_code == 0

@@ -5,12 +5,15 @@ import tomllib
 from importlib.resources import files
 
 from quant.recipe.schema import Recipe
+from quant.recipe.steps import steps_schema
 
 
 def test_the_schema_is_printed(project) -> None:
     result = project.run("recipe")
     assert result.exit_code == 0
-    assert json.loads(result.stdout) == Recipe.model_json_schema()
+    expected = Recipe.model_json_schema()
+    expected["properties"]["preprocessing"]["items"] = steps_schema()
+    assert json.loads(result.stdout) == expected
     assert project.run("recipe", "--schema").stdout == result.stdout
 
 

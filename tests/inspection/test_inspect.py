@@ -84,8 +84,10 @@ def test_an_analyte_without_any_value(folder):
 
 def test_text_and_json(folder):
     found = inspect(recipe_from_text(RECIPE, folder=folder))
-    assert str(found) == (
-        """A look
+    read = "".join(f"{note}\n" for note in found.sets[0].reader_notes)  # how the readers understood the files
+    assert (
+        str(found)
+        == f"""A look
 
 Calibration samples
 files                      1
@@ -99,7 +101,7 @@ values without a spectrum  V, W
 analyte  unit   values   from     to   mean  without a value
 acid     % m/m       3  1.500  5.000  3.000  none
 water                2  7.000  9.000  8.000  B
-
+{read}
 Preprocessing: keep_ranges → snv
 Points: 4 read, 3 behind the preprocessing"""
     )

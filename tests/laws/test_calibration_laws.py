@@ -20,7 +20,7 @@ from quant.spectra.reference_table import Analyte, ReferenceTable
 from quant.spectra.sample_set import SampleSet, pair_samples
 from quant.spectra.spectra_set import SpectraSet
 
-laws = settings(max_examples=10, deadline=None, derandomize=True)
+laws = settings(max_examples=6, deadline=None, derandomize=True)
 
 HEAD = 'title = "t"\n[spectra]\nfiles = ["x"]\n[reference]\nfile = "x"\n[[analyte]]\nname = "acid"\n'
 STEPS = {

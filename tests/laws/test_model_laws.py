@@ -18,7 +18,7 @@ from quant.spectra.reference_table import Analyte, ReferenceTable
 from quant.spectra.sample_set import pair_samples
 from quant.spectra.spectra_set import SpectraSet
 
-laws = settings(max_examples=25, deadline=None, derandomize=True)
+laws = settings(max_examples=15, deadline=None, derandomize=True)
 
 HEAD = 'title = "{title}"\n[spectra]\nfiles = ["x"]\n[reference]\nfile = "x"\n[[analyte]]\nname = "acid"\n'
 STEPS = {

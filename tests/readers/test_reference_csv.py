@@ -6,7 +6,8 @@ import numpy as np
 import pytest
 
 from quant.errors import FileFormatError, ParameterError, SampleMismatchError
-from quant.readers.reference_csv import ColumnOf, read_reference
+from quant.readers.reference_column import ColumnOf
+from quant.readers.reference_csv import read_reference
 from quant.spectra.reference_table import Analyte, ReferenceTable
 
 ETHANOL = ColumnOf(Analyte("ethanol", "% m/m", 0.1))

@@ -50,7 +50,7 @@ def test_names_give_unit_and_quantity(tmp_path: Path) -> None:
 def test_the_pattern_gives_sample_id_and_notes(tmp_path: Path) -> None:
     spectra = read_text(tmp_path, "1,2\n3,4\n", sample_pattern=r"(?P<sample>S\d+)_(?P<replicate>\d)")
     assert spectra.sample_ids == ("S7",)
-    assert dict(spectra.notes[0]) == {"replicate": "2", "file": "S7_2.txt"}
+    assert {**spectra.notes[0], "reader": ""} == {"replicate": "2", "file": "S7_2.txt", "reader": ""}
     with pytest.raises(ParameterError, match="sample_pattern"):
         read_text(tmp_path, "1,2\n3,4\n", sample_label="TITLE")
 
@@ -70,13 +70,19 @@ def test_a_missing_ordinate_is_nan(tmp_path: Path) -> None:
         ("900,0.1\n902,0.2\n901,0.2\n", "turns or repeats at point 3"),
         ("900,0.1\n900,0.2\n", "turns or repeats"),
         ("900,0.1\n", "no two lines of two numbers"),
-        ("900;0,1\n902;0,2\n", "line 1 is '900;0,1': set decimal = \",\""),
         ("900,50\n902,60\n", "percent_transmittance"),
     ],
 )
 def test_damage_is_refused_by_line(tmp_path: Path, text: str, words: str) -> None:
     with pytest.raises(FileFormatError, match=words):
         read_text(tmp_path, text, format="two_columns")
+
+
+def test_a_decimal_comma_is_found_out_and_a_wrong_option_refused(tmp_path: Path) -> None:
+    text = "900;0,1\n902;0,2\n"
+    assert read_text(tmp_path, text).values.tolist() == [[0.1, 0.2]]
+    with pytest.raises(FileFormatError, match="cannot be read with decimal = '.'. Set decimal = \",\""):
+        read_text(tmp_path, text, decimal=".", format="two_columns")
 
 
 def test_options_that_contradict_the_names_are_refused(tmp_path: Path) -> None:

@@ -38,7 +38,11 @@ def folder(tmp_path: Path) -> Path:
     return tmp_path
 
 
-@pytest.mark.parametrize("name", sorted(path.name for path in (ROOT / "configs").glob("*.toml")))
+# Plans of standards have a form of their own.
+READY = sorted(path.name for path in (ROOT / "configs").glob("*.toml") if not path.name.startswith("plan_"))
+
+
+@pytest.mark.parametrize("name", READY)
 def test_the_ready_recipes_are_valid(name):
     recipe = load_recipe(ROOT / "configs" / name)
     assert recipe.name == name

@@ -5,7 +5,7 @@ import pytest
 from quant.errors import RecipeError
 from quant.preprocessing.registry import STEPS
 from quant.preprocessing.savitzky_golay import SavitzkyGolay
-from quant.recipe.steps import make_step, options_model
+from quant.recipe.steps import make_step, options_model, steps_schema
 
 PLACE = "a.toml, [[preprocessing]] number 1"
 
@@ -45,3 +45,11 @@ def test_what_is_refused(table, message):
         make_step(table, PLACE)
     assert str(caught.value).startswith(PLACE)
     assert message in str(caught.value)
+
+
+def test_the_schema_explains_every_option_of_every_step():
+    schema = steps_schema()["oneOf"]
+    assert [entry["title"] for entry in schema] == list(STEPS)
+    for entry in schema:
+        assert entry["properties"]["step"]["const"] == entry["title"]
+        assert all(value["description"] for value in entry["properties"].values())

@@ -10,7 +10,7 @@ from quant.calibration.result import CalibrationResult
 from quant.recipe.load import recipe_from_text
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.provenance import Source
-from quant.spectra.reference_table import Analyte, ReferenceTable
+from quant.spectra.reference_table import Analyte, ReferenceTable, Repeatability
 from quant.spectra.sample_set import pair_samples
 from quant.spectra.spectra_set import SpectraSet
 
@@ -37,9 +37,18 @@ IDS = (*(f"S{i:02d}" for i in range(1, 10)), *(f"V{i}" for i in range(1, 7)))
 
 
 def smallest(
-    regression: str = PLS, *, recipe: str = RECIPE, ids=IDS, names=("acetone",), laboratory_error: float | None = 0.02
+    regression: str = PLS,
+    *,
+    recipe: str = RECIPE,
+    ids=IDS,
+    names=("acetone",),
+    laboratory_error: float | None = 0.02,
+    repeats: bool = False,
 ) -> CalibrationResult:
-    """Calibrate on nine samples of six points, and six to validate; the disturbances are no random numbers."""
+    """Calibrate on nine samples of six points, and six to validate; the disturbances are no random numbers.
+
+    With `repeats`, every value is the mean of two determinations, and S08 lies below a detection limit.
+    """
     i = np.arange(len(ids))
     values = 1.0 + (5 * i) % 13 * 0.25
     band, matrix = np.array([0.1, 0.4, 1.0, 0.4, 0.1, 0.0]), np.array([0.3, 0.2, 0.2, 0.5, 1.0, 0.6])
@@ -47,11 +56,17 @@ def smallest(
     spectra += 0.01 * np.sin(np.outer(i + 1, np.arange(1, 7)) ** 1.5)
     axis = SpectralAxis(np.arange(1040.0, 980.0, -10.0), "cm-1")
     source = Source("paste.csv", 1234, "0123456789abcdef" * 4)
+    below = np.full((len(ids) + 1, len(names)), np.nan)
+    if repeats:
+        below[7], values[7] = 0.5, np.nan
     table = ReferenceTable(
         [*ids, "X1"],
         [Analyte(name, "% m/m", laboratory_error) for name in names],
         np.append(values, 1.0)[:, None].repeat(len(names), axis=1),
         [{"origin": "process" if k % 2 else "spiked"} for k in range(len(ids) + 1)],
+        censored=below,
+        determinations=2 if repeats else 1,
+        repeatability=dict.fromkeys(names, Repeatability(0.03, 14, 14)) if repeats else {},
     )
     samples = pair_samples(SpectraSet(spectra, axis, ids, notes=[NOTES] * len(ids), sources=[source]), table)
     result = calibrate(recipe_from_text(recipe.replace("{regression}", regression)), samples=samples)

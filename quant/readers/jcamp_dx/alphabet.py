@@ -26,21 +26,21 @@ _LEADING = (
 
 
 def _tables() -> tuple[bytes, bytes, bytes, bytes]:
-    kinds, digits, leading, negative = (bytearray([fill]) * 256 for fill in (255, 255, 0, 0))
+    kinds, digits, leading, signs = (bytearray([fill]) * 256 for fill in (255, 255, 0, 1))
     for characters, kind in ((" \t,;", BLANK), ("\n", LINE_END), (MISSING_MARK, MISSING), (".", POINT), ("+-", VALUE)):
         for character in characters:
             kinds[ord(character)] = kind
     for characters, kind, sign in _LEADING:
         for value, character in enumerate(characters):
             if character != "\0":
-                kinds[ord(character)], leading[ord(character)], negative[ord(character)] = kind, value, sign < 0
-    negative[MINUS] = 1
+                kinds[ord(character)], leading[ord(character)], signs[ord(character)] = kind, value, sign % 256
+    signs[MINUS] = 255
     digits[ord("0") : ord("9") + 1] = range(10)
-    return bytes(kinds), bytes(digits), bytes(leading), bytes(negative)
+    return bytes(kinds), bytes(digits), bytes(leading), bytes(signs)
 
 
-KINDS, DIGITS, LEADING, NEGATIVE = _tables()
-"""For `bytes.translate`: kind (255: none), digit (255: none), leading digit of a token, whether its number is negative."""
+KINDS, DIGITS, LEADING, SIGNS = _tables()
+"""For `bytes.translate`: kind (255: none), digit (255: none), leading digit of a token, sign of its number (int8)."""
 
 TOKEN_KINDS = bytes(VALUE if kind in (DIGIT, POINT) else kind for kind in KINDS)
 """For `bytes.translate`: what a token is that begins with the byte; a plain number is a value."""

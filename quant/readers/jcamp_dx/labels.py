@@ -7,13 +7,15 @@ References
 """
 
 import re
+from collections.abc import Iterator
 from dataclasses import dataclass, field
+from itertools import pairwise
 from pathlib import Path
 
 from quant.errors import FileFormatError
 
-_LABEL = re.compile(r"^([ \t]*)##([^=\n]*)=", re.MULTILINE)
 _COMMENT = re.compile(r"\$\$.*")
+_TABLES = ("XYDATA", "XYPOINTS", "PEAKTABLE", "PEAKASSIGNMENTS", "RADATA", "DATATABLE")
 _IGNORED = str.maketrans("", "", " \t-/_")
 
 
@@ -37,6 +39,11 @@ class Record:
     line: int
 
     @property
+    def is_empty(self) -> bool:
+        """No text, or only blanks."""
+        return not self.text or self.text.isspace()
+
+    @property
     def value(self) -> str:
         """The text without blanks around it and at the ends of its lines."""
         return "\n".join(line.strip() for line in self.text.strip().split("\n"))
@@ -44,12 +51,27 @@ class Record:
 
 @dataclass
 class Block:
-    """The records between TITLE and END, and how they depart from the standard (in words)."""
+    """The records between TITLE and END, and how they depart from the standard (in words).
+
+    `outer` is the LINK block around it.
+    """
 
     path: Path
     records: list[Record] = field(default_factory=list)
     ended: bool = False
     deviations: list[str] = field(default_factory=list)
+    outer: "Block | None" = None
+
+    @property
+    def title(self) -> str:
+        """Its title on one line."""
+        record = next((record for record in self.records if record.label == "TITLE"), None)
+        return "" if record is None else " ".join(record.value.split())
+
+    @property
+    def holds_data(self) -> bool:
+        """A table of any kind is among its records."""
+        return any(record.label in _TABLES for record in self.records)
 
     def find(self, *labels: str) -> Record | None:
         """Return the first record that bears one of the labels and is not empty; the labels are asked in order.
@@ -61,7 +83,7 @@ class Block:
         """
         for label in labels:
             plain = plain_label(label)
-            found = [record for record in self.records if record.label == plain and record.text.strip()]
+            found = [record for record in self.records if record.label == plain and not record.is_empty]
             for other in found[1:]:
                 if other.value != found[0].value:
                     raise FileFormatError(
@@ -69,6 +91,8 @@ class Block:
                         f"##{label}= comes again with another value; expected one (the first: line {found[0].line}).",
                         line=other.line,
                     )
+            if len(found) > 1:
+                self.deviates(f"##{found[0].written}= comes more than once")
             if found:
                 return found[0]
         return None
@@ -91,13 +115,20 @@ def plain_label(label: str) -> str:
 def read_blocks(path: Path, text: str) -> list[Block]:
     """Split a file into its blocks: each begins with TITLE and runs to its own END (inner blocks of a LINK block too).
 
+    Departures that concern the whole file are noted for every block.
+
     Raises
     ------
     FileFormatError
-        The file does not begin with TITLE.
+        The file does not begin with TITLE, goes on with labels behind its last END, or is cut within a line.
     """
-    text = text.replace("\r\n", "\n").replace("\r", "\n")
-    records, blanks = _records(text)
+    if "\r" in text:
+        text = text.replace("\r\n", "\n").replace("\r", "\n")
+    deviations = []
+    if "\x1a" in text[-200:]:
+        text = text.rstrip("\x1a \t\n") + "\n"
+        deviations.append("Ctrl-Z at the end")
+    records, odd = _records(text)
     if not records or records[0].label != "TITLE":
         found = f"##{records[0].written}=" if records else "no label at all"
         raise FileFormatError(path, f"found {found}; expected ##TITLE= first, as in every JCAMP-DX file.", line=1)
@@ -105,7 +136,9 @@ def read_blocks(path: Path, text: str) -> list[Block]:
     still_open: list[Block] = []
     for record in records:
         if record.label == "TITLE":
-            still_open.append(Block(path))
+            if still_open and still_open[-1].holds_data:  # only a LINK block, which has none, holds others
+                still_open.pop().deviates("##END= is missing")
+            still_open.append(Block(path, outer=still_open[-1] if still_open else None))
             blocks.append(still_open[-1])
         if not still_open:
             raise FileFormatError(
@@ -113,10 +146,15 @@ def read_blocks(path: Path, text: str) -> list[Block]:
             )
         if record.label == "END":
             still_open.pop().ended = True
+            if record.text.partition("\n")[2].strip():
+                deviations.append(f"text after ##END= of line {record.line} is left out")
         else:
             still_open[-1].records.append(record)
-    if blanks:
-        blocks[0].deviates("blanks before ##")
+    if sum(block.outer is None for block in blocks) > 1:
+        deviations.append("several blocks without a LINK block around them")
+    for block in blocks:
+        for how in (*odd, *deviations):
+            block.deviates(how)
     for block in still_open:
         if not text.endswith("\n"):
             line = 1 + text.count("\n")
@@ -127,19 +165,40 @@ def read_blocks(path: Path, text: str) -> list[Block]:
     return blocks
 
 
-def _records(text: str) -> tuple[list[Record], bool]:
-    """Return the records (comment records ##= left out), and whether blanks stood before a label."""
-    marks = list(_LABEL.finditer(text))
+def _marks(text: str) -> Iterator[tuple[int, int]]:
+    """Yield where each label (## with only blanks before it in its line) begins, and where its text does."""
+    place = text.find("##")
+    while place >= 0:
+        line_end = text.find("\n", place)
+        line_end = len(text) if line_end < 0 else line_end
+        before = text[text.rfind("\n", 0, place) + 1 : place]
+        equals = text.find("=", place, line_end)
+        if not before.strip(" \t\ufeff"):
+            if equals >= 0:
+                yield place, equals + 1
+            elif plain_label(text[place + 2 : line_end].partition("$$")[0]) == "END":
+                yield place, line_end
+        place = text.find("##", line_end)
+
+
+def _records(text: str) -> tuple[list[Record], list[str]]:
+    """Return the records (comment records ##= left out), and how labels are set oddly."""
+    marks = list(_marks(text))
     records: list[Record] = []
+    odd: list[str] = []
     line, counted = 1, 0
-    for number, mark in enumerate(marks):
-        line += text.count("\n", counted, mark.start())
-        counted = mark.start()
-        end = marks[number + 1].start() if number + 1 < len(marks) else len(text)
-        body = text[mark.end() : end]
-        if mark[2].strip():
-            written = mark[2].strip()
+    if marks and _COMMENT.sub("", text[: marks[0][0]]).strip("\ufeff \t\n"):
+        odd.append("text before ##TITLE= is left out")
+    if any(place and text[place - 1] in " \t" for place, _ in marks):
+        odd.append("blanks before ##")
+    for (place, start), (end, _) in pairwise([*marks, (len(text), 0)]):
+        line += text.count("\n", counted, place)
+        counted = place
+        written, body = text[place + 2 : start].removesuffix("=").strip(), text[start:end]
+        if text[start - 1] != "=":
+            odd.append("##END without =")
+        if written:
             records.append(
                 Record(written, plain_label(written), _COMMENT.sub("", body) if "$$" in body else body, line)
             )
-    return records, any(mark[1] for mark in marks)
+    return records, odd

@@ -33,6 +33,8 @@ class Lines:
         The table, closed by a line end.
     kind : array of uint8, shape (n_bytes,)
         What each character is: see `quant.readers.jcamp_dx.alphabet`.
+    digit : array of uint8, shape (n_bytes,)
+        Which digit each character is; 255 if it is none.
     begin, abscissa_end, end : array of int, shape (n_lines,)
         Where the abscissa begins and ends, and where the line ends.
     rows : array of int, shape (n_lines,)
@@ -47,6 +49,7 @@ class Lines:
 
     data: bytes
     kind: AnyArray
+    digit: AnyArray
     begin: IntArray
     abscissa_end: IntArray
     end: IntArray
@@ -58,6 +61,23 @@ class Lines:
     def row_at(self, position: int) -> int:
         """Return the number of the line that a character stands in."""
         return int(self.rows[np.searchsorted(self.begin, position, side="right") - 1])
+
+    def part(self, start: int, stop: int) -> "Lines":
+        """Return some of the lines, from `start` to before `stop`."""
+        low, high = int(self.begin[start]), int(self.end[stop - 1]) + 1
+        chosen = slice(start, stop)
+        return Lines(
+            self.data[low:high],
+            self.kind[low:high],
+            self.digit[low:high],
+            self.begin[chosen] - low,
+            self.abscissa_end[chosen] - low,
+            self.end[chosen] - low,
+            self.rows[chosen],
+            self.abscissae[chosen],
+            self.decimals,
+            self.plain,
+        )
 
     def ordinates(self) -> list[str]:
         """Return the text of each line behind its abscissa."""
@@ -81,8 +101,9 @@ def scan_lines(data: bytes) -> Lines:
         found = data[place:].decode("utf-8", errors="replace")[:1]
         raise TokenError(data.count(b"\n", 0, place), f"the character {found!r} among the ordinates")
     kind = np.frombuffer(data.translate(KINDS), np.uint8)
+    digit = np.frombuffer(data.translate(DIGITS), np.uint8)
     begin, end, rows = _line_bounds(kind)
-    values, decimals, stop, points, odd = _abscissae(data, kind, begin)
+    values, decimals, stop, points, odd = _abscissae(data, kind, digit, begin)
     exponents = 0
     if odd.size:
         kind = kind.copy()
@@ -95,9 +116,9 @@ def scan_lines(data: bytes) -> Lines:
             exponents += bool(exponent)
             kind[begin[line] : stop[line]] = DIGIT  # no character of it begins an ordinate
     plain = data.count(b".") > points.sum()
-    if not plain and (b"+" in data or b"-" in data) and any(sign in data for sign in _EXPONENT_SIGNS):
+    if not plain and (b"E" in data or b"e" in data) and any(sign in data for sign in _EXPONENT_SIGNS):
         plain = len(_EXPONENT.findall(data)) > exponents
-    return Lines(data, kind, begin, stop, end, rows, values, int(decimals.max()), plain)
+    return Lines(data, kind, digit, begin, stop, end, rows, values, int(decimals.max()), plain)
 
 
 def _line_bounds(kind: AnyArray) -> tuple[IntArray, IntArray, IntArray]:
@@ -113,13 +134,13 @@ def _line_bounds(kind: AnyArray) -> tuple[IntArray, IntArray, IntArray]:
 
 
 def _abscissae(
-    data: bytes, kind: AnyArray, begin: IntArray
+    data: bytes, kind: AnyArray, digit: AnyArray, begin: IntArray
 ) -> tuple[FloatArray, IntArray, IntArray, IntArray, IntArray]:
     """Return value, decimals and end of the number at each line's beginning, the points seen, and which lines are odd.
 
     Odd are numbers with an exponent, with more digits than are exact, or no numbers at all.
     """
-    codes, digit = np.frombuffer(data, np.uint8), np.frombuffer(data.translate(DIGITS), np.uint8)
+    codes = np.frombuffer(data, np.uint8)
     negative = codes[begin] == MINUS
     place = begin + ((codes[begin] == PLUS) | negative)
     value, digits = np.zeros(begin.size, np.int64), np.zeros(begin.size, np.int64)

@@ -4,7 +4,8 @@ Every byte is looked up once in tables that say what it is; tokens, their digits
 whole-array operations.
 """
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from itertools import pairwise
 
 import numpy as np
 
@@ -12,19 +13,19 @@ from quant.arrays import AnyArray, BoolArray, FloatArray, IntArray
 from quant.readers.jcamp_dx.alphabet import (
     DIFFERENCE,
     DIGIT,
-    DIGITS,
     LEADING,
     MINUS,
     MISSING,
-    NEGATIVE,
     PLUS,
     POINT,
     REPEAT,
+    SIGNS,
     TOKEN_KINDS,
 )
 from quant.readers.jcamp_dx.scan import EXACT_DIGITS, Lines, TokenError
 
 MOST_POINTS = 10_000_000  # a count of repetitions beyond this is damage, not a spectrum
+PORTION = 2**17  # bytes decoded at a time
 _LARGEST_SUM = 2**62  # of differences; beyond it 64 bits run over
 
 
@@ -44,6 +45,8 @@ class Ordinates:
         The last line does not wait for a check value.
     checked : bool
         The last line is a check value and nothing else.
+    second_checks : bool
+        The second line begins with a check value.
     """
 
     values: FloatArray
@@ -51,6 +54,7 @@ class Ordinates:
     rounded: bool = False
     closed: bool = True
     checked: bool = False
+    second_checks: bool = False
 
 
 def decode_compressed(lines: Lines) -> Ordinates:
@@ -61,9 +65,34 @@ def decode_compressed(lines: Lines) -> Ordinates:
     TokenError
         A count or a difference that has no meaning there, or a check value that is not the last ordinate.
     """
+    # In portions that fit the cache; each begins with the last line of the one before, which its first line may check.
+    edges = np.unique(np.searchsorted(lines.begin, np.arange(0, len(lines.data), PORTION)))
+    portions: list[Ordinates] = []
+    n_points = 0
+    for start, stop in pairwise([*edges[edges < lines.rows.size].tolist(), lines.rows.size]):
+        portion = _decode(lines.part(max(start - 1, 0), stop))
+        known = 0
+        if start:
+            known = int(portion.first[1]) + portion.second_checks
+        first = portion.first[1 if start else 0 :] + (n_points - known)
+        portions.append(replace(portion, values=portion.values[known:], first=first))
+        n_points += portions[-1].values.size
+        if n_points > MOST_POINTS:
+            raise _too_many(int(lines.rows[stop - 1]))
+    last = portions[-1]
+    return Ordinates(
+        np.concatenate([portion.values for portion in portions]),
+        np.concatenate([portion.first for portion in portions]),
+        any(portion.rounded for portion in portions),
+        last.closed,
+        last.checked,
+    )
+
+
+def _decode(lines: Lines) -> Ordinates:
     starts = _token_starts(lines)
     line_first = np.searchsorted(starts, lines.begin)  # the token behind each abscissa
-    codes = np.frombuffer(lines.data, np.uint8)[starts].tobytes()
+    codes = np.frombuffer(lines.data, np.uint8).take(starts).tobytes()
     what = np.frombuffer(codes.translate(TOKEN_KINDS), np.uint8)
     _check_grammar(lines, starts, what, line_first)
     number = _token_values(lines, starts, codes)
@@ -72,7 +101,9 @@ def decode_compressed(lines: Lines) -> Ordinates:
         what, number, line_first = _repeated(lines, starts, what, number, line_first)
     is_difference = what == DIFFERENCE
     values = _running_sums(lines, number, is_difference)
-    check = line_first[1:][is_difference[line_first[1:] - 1]]
+    checks = np.zeros(line_first.size, bool)
+    checks[1:] = is_difference[line_first[1:] - 1]
+    check = line_first[checks]
     rounded = _check_sums(lines, values, what, line_first, check)
 
     ordinates = values.astype(np.float64)
@@ -80,11 +111,13 @@ def decode_compressed(lines: Lines) -> Ordinates:
     kept = np.ones(what.size, bool)
     kept[check] = False
     # A check value carries the number of the point it repeats.
-    first = line_first - np.searchsorted(check, line_first, side="right")
+    first = line_first - np.cumsum(checks)
     checked = bool(check.size and check[-1] == what.size - 1)
-    return Ordinates(ordinates[kept], first, rounded, not is_difference[-1], checked)
+    return Ordinates(ordinates[kept], first, rounded, not is_difference[-1], checked, bool(checks[1:2].any()))
 
 
+def _too_many(row: int) -> TokenError:
+    return TokenError(row, f"counts of repetition that give more than {MOST_POINTS} ordinates")
 
 
 def _token_starts(lines: Lines) -> IntArray:
@@ -99,26 +132,25 @@ def _token_starts(lines: Lines) -> IntArray:
 
 def _token_values(lines: Lines, starts: IntArray, codes: bytes) -> IntArray:
     """Return the signed integer of each token."""
-    digits = np.frombuffer(lines.data.translate(DIGITS), np.uint8)
+    behind = lines.digit[1:]
     leading = np.frombuffer(codes.translate(LEADING), np.uint8)
-    following = digits[starts + 1]
+    following = behind.take(starts)
     going_on = following < 10
     _refuse_bare_signs(lines, starts, codes, going_on)
-    value = np.where(going_on, 10 * leading + following, leading).astype(np.int64)  # two digits fit a byte
+    value = (leading * (1 + 9 * going_on.view(np.uint8)) + following * going_on).astype(np.int64)  # at most 99
     among = np.flatnonzero(going_on)
-    place = starts[among] + 2
-    for _ in range(EXACT_DIGITS + 1):
-        following = digits[place]
-        going_on = following < 10
-        if not going_on.any():
-            break
-        among, place, following = among[going_on], place[going_on], following[going_on]
-        value[among] = 10 * value[among] + following
+    place = starts.take(among)
+    for _ in range(EXACT_DIGITS):
         place += 1
+        longer = np.flatnonzero(behind.take(place) < 10)
+        if not longer.size:
+            break
+        among, place = among.take(longer), place.take(longer)
+        value[among] = 10 * value.take(among) + behind.take(place)
     else:
         raise TokenError(lines.row_at(int(starts[among[0]])), f"a number of more than {EXACT_DIGITS} digits")
-    negative = np.frombuffer(codes.translate(NEGATIVE), bool)
-    return np.negative(value, out=value, where=negative)
+    signed: IntArray = value * np.frombuffer(codes.translate(SIGNS), np.int8)
+    return signed
 
 
 def _refuse_bare_signs(lines: Lines, starts: IntArray, codes: bytes, has_digit: BoolArray) -> None:
@@ -136,7 +168,9 @@ def _check_grammar(lines: Lines, starts: IntArray, what: AnyArray, line_first: I
     opening = what[line_first]
     wrong = np.flatnonzero((opening == DIFFERENCE) | (opening == REPEAT))
     if wrong.size:
-        raise TokenError(int(lines.rows[wrong[0]]), "a line that starts with a difference or a count instead of a value")
+        raise TokenError(
+            int(lines.rows[wrong[0]]), "a line that starts with a difference or a count instead of a value"
+        )
     repeats = what == REPEAT
     for fault, words in (
         (repeats[1:] & repeats[:-1], "two counts of repetition in a row"),
@@ -160,7 +194,7 @@ def _repeated(
     position = np.cumsum(counts)
     if position[-1] > MOST_POINTS:
         place = int(starts[int((position > MOST_POINTS).argmax())])
-        raise TokenError(lines.row_at(place), f"a count of repetition that gives more than {MOST_POINTS} ordinates")
+        raise _too_many(lines.row_at(place))
     return np.repeat(what, counts), np.repeat(number, counts), (position - counts)[line_first]
 
 

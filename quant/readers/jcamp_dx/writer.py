@@ -1,6 +1,7 @@
 """Writer of JCAMP-DX files."""
 
 import math
+from decimal import Decimal
 from pathlib import Path
 
 import numpy as np
@@ -12,19 +13,12 @@ from quant.files import write_text
 from quant.readers.jcamp_dx.encode import FORMS, encode_lines
 from quant.readers.jcamp_dx.labels import plain_label
 from quant.readers.jcamp_dx.notes import NOTE_OF_LABEL
+from quant.readers.jcamp_dx.spectrum import X_UNITS, Y_UNITS
 from quant.spectra.axis import SAME_POSITION, SpectralAxis
 from quant.spectra.spectra_set import SpectraSet
 
 LARGEST_ORDINATE = 2**31 - 1  # readers that keep ordinates in 32 bits are common
-_X_UNITS = {"cm-1": "1/CM", "nm": "NANOMETERS", "um": "MICROMETERS"}
-_Y_UNITS = {
-    "absorbance": "ABSORBANCE",
-    "transmittance": "TRANSMITTANCE",
-    "reflectance": "REFLECTANCE",
-    "log_reflectance": "LOG(1/R)",
-    "arbitrary": "ARBITRARY UNITS",
-}
-_NOT_WRITTEN = ("file", "reader")  # what reading adds
+_NOT_WRITTEN = ("file", "reader", "block")  # what reading adds
 
 
 def write_jcamp_dx(spectra: SpectraSet, path: str | Path, form: str = "DIFDUP", y_factor: float | None = None) -> None:
@@ -70,9 +64,9 @@ def write_jcamp_dx(spectra: SpectraSet, path: str | Path, form: str = "DIFDUP", 
 
 
 def _check_axis(axis: SpectralAxis) -> None:
-    if axis.unit not in _X_UNITS:
+    if axis.unit not in X_UNITS:
         raise ParameterError(
-            f"The axis is in {axis.unit!r}; JCAMP-DX expects one of {', '.join(_X_UNITS)}. "
+            f"The axis is in {axis.unit!r}; JCAMP-DX expects one of {', '.join(X_UNITS)}. "
             "Use write_matrix or write_two_columns."
         )
     even = np.linspace(axis.values[0], axis.values[-1], len(axis))
@@ -112,20 +106,40 @@ def _labels(spectra: SpectraSet, factor: float) -> list[tuple[str, str]]:
     ]
     users = [(f"${name.upper()}", text) for name, text in notes.items()]
     numbers = {
-        "XUNITS": _X_UNITS[axis.unit],
-        "YUNITS": _Y_UNITS[spectra.quantity],
+        "XUNITS": X_UNITS[axis.unit],
+        "YUNITS": Y_UNITS[spectra.quantity],
         "XFACTOR": "1",
-        "YFACTOR": repr(factor),
+        "YFACTOR": _plain(Decimal(repr(factor))),
         "FIRSTX": repr(float(axis.values[0])),
         "LASTX": repr(float(axis.values[-1])),
         "NPOINTS": str(len(axis)),
         "DELTAX": repr(float(axis.values[-1] - axis.values[0]) / (len(axis) - 1)),
-        **({} if math.isnan(values[0]) else {"FIRSTY": repr(float(np.rint(values[0] / factor) * factor))}),
+        **_ordinate_labels(np.rint(values / factor), factor),
     }
     head = [("TITLE", sample), ("JCAMP-DX", "4.24"), ("DATA TYPE", "INFRARED SPECTRUM")]
     for label, text in (*head[:1], *own, *users):
         _check_label(label, text)
     return [*head, *own, *users, *numbers.items()]
+
+
+def _ordinate_labels(ordinates: FloatArray, factor: float) -> dict[str, str]:
+    """Return what the file says of its ordinates: where they have no check values, readers see damage by it."""
+    if np.isnan(ordinates).all():
+        return {}
+    found = {"FIRSTY": ordinates[0], "MAXY": np.nanmax(ordinates), "MINY": np.nanmin(ordinates)}
+    step = Decimal(repr(factor))
+    known = {label: int(value) * step for label, value in found.items() if not math.isnan(value)}
+    return {label: _plain(Decimal(f"{number:.12g}")) for label, number in known.items()}
+
+
+def _plain(number: Decimal) -> str:
+    """Return a number without exponent and trailing zeros, unless that would be long.
+
+    >>> _plain(Decimal("1E-5") * -358), _plain(Decimal("1E-30"))
+    ('-0.00358', '1E-30')
+    """
+    short = number.normalize()
+    return f"{short:f}" if abs(short.adjusted()) < 15 else f"{short:E}"
 
 
 def _check_label(label: str, text: str) -> None:

@@ -5,6 +5,7 @@ from typing import Any
 
 from quant.calibration.result import AnalyteResult, CalibrationResult
 from quant.checks import name_some
+from quant.model.calibration import Uncertainty
 from quant.text_table import Row
 from quant.units import AXIS_UNITS, QUANTITIES
 
@@ -12,13 +13,14 @@ MOST_NAMES = 40
 
 
 def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> dict[str, Any]:  # noqa: ARG001
-    """Return the sizes of the data, samples left out by reason, and samples without a partner."""
+    """Return the sizes of the data, samples left out by reason, remarks, and samples without a partner."""
     reasons: dict[str, list[str]] = {}
     for item in analyte.left_out:
         reasons.setdefault(item.reason, []).append(item.sample)
     return {
         "rows": _rows(analyte),
         "left_out": [(name_some(samples, MOST_NAMES), reason) for reason, samples in reasons.items()],
+        "remarks": analyte.remarks,
         "without_values": name_some(result.spectra_without_values, MOST_NAMES),
         "without_spectra": name_some(result.values_without_spectra, MOST_NAMES),
     }
@@ -40,9 +42,12 @@ def _rows(result: AnalyteResult) -> list[Row]:
         *notes,
         ("reference values from", float(result.reference.min()), result.unit),
         ("reference values to", float(result.reference.max()), result.unit),
-        ("standard error of the laboratory", *_or_not_stated(known.laboratory_error, result.unit)),
+        ("standard error of the laboratory", *_laboratory(known, result.unit)),
     ]
 
 
-def _or_not_stated(value: float | None, unit: str) -> tuple[object, str]:
-    return ("not stated", "") if value is None else (value, unit)
+def _laboratory(known: Uncertainty, unit: str) -> tuple[object, str]:
+    if known.laboratory_error is None:
+        return "not stated", ""
+    source = f"({known.laboratory_error_source})" if known.laboratory_error_source else ""
+    return known.laboratory_error, f"{unit} {source}".strip()

@@ -1,0 +1,56 @@
+"""The checks, in the order in which their findings are told."""
+
+from collections.abc import Callable
+
+from quant.inspection import atmosphere, duplicates, files, noise, ordinate, outliers, shift, spread, values
+from quant.inspection.finding import DOUBT, Finding
+from quant.inspection.material import Material
+
+CHECKS: tuple[Callable[[Material], list[Finding]], ...] = (
+    files.check_readable,
+    files.check_axes,
+    files.check_quantities,
+    files.check_recording,
+    files.check_pairing,
+    files.check_unmeasured,
+    ordinate.check_quantity,
+    ordinate.check_opaque,
+    ordinate.check_missing,
+    ordinate.check_flattened,
+    ordinate.check_high_absorbance,
+    ordinate.check_negative,
+    values.check_values,
+    duplicates.check_duplicates,
+    outliers.check_replicates,
+    outliers.check_outlying,
+    shift.check_shift,
+    noise.check_spikes,
+    noise.check_noise,
+    atmosphere.check_atmosphere,
+    spread.check_range,
+    spread.check_together,
+    spread.check_origin,
+    spread.check_counts,
+)
+"""A check takes the material and returns what it found. A new one is a function in a file of its theme, and a line here."""
+
+
+def run_checks(material: Material) -> list[Finding]:
+    """Return the findings of all checks."""
+    findings = [finding for check in CHECKS for finding in check(material)]
+    return [*findings, *_trouble(material)]
+
+
+def _trouble(material: Material) -> list[Finding]:
+    if not material.trouble:
+        return []
+    return [
+        Finding(
+            gravity=DOUBT,
+            code="preprocessing_fails",
+            title="The recipe's preprocessing cannot be applied",
+            samples=(),
+            evidence=material.trouble,
+            advice="Mend what this names; calibrating will refuse it. Checks that need processed spectra were left out.",
+        )
+    ]
