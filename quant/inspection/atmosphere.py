@@ -57,7 +57,8 @@ def _seen(material: Material, gas: _Gas, axis: FloatArray) -> list[Finding]:
     strongest = float(pattern[material.used & window].max()) if (material.used & window).any() else 0.0
     harmful = bool(touched.any()) and bool((np.abs(height[seen]) * strongest > HARMFUL * noise[seen]).any())
     rows = np.flatnonzero(seen)[np.argsort(-np.abs(height[seen]), kind="stable")]
-    where = " and ".join(f"{low:g} to {high:g}" for low, high in gas.windows)
+    first = rows[0]
+    where = " or ".join(f"{low:g} and {high:g}" for low, high in gas.windows)
     return [
         Finding(
             gravity=DOUBT if harmful else NOTE,
@@ -65,8 +66,8 @@ def _seen(material: Material, gas: _Gas, axis: FloatArray) -> list[Finding]:
             title=f"{gas.name} in {plural(rows.size, 'spectrum', 'spectra')}"
             + ("" if touched.any() else ", outside the ranges used"),
             samples=material.named(rows),
-            evidence=f"Strongest line {height[rows[0]]:+.2g} A ({np.abs(height[rows[0]]) / noise[rows[0]]:.0f} times the "
-            f"noise) between {where} cm⁻¹; correlation with the pattern of the gas {alike[rows[0]]:+.2f}.",
+            evidence=f"Strongest line {height[first]:+.2g} A ({np.abs(height[first]) / noise[first]:.0f} times the "
+            f"noise) between {where} cm⁻¹; correlation with the pattern of the gas {alike[first]:+.2f}.",
             advice=f"To be rid of it, {gas.remedy}"
             + ("; or leave the range out." if touched.any() else ". The ranges used do not see it."),
         )

@@ -110,22 +110,20 @@ def _contradictions(material: Material, pairs: list[tuple[int, int]]) -> list[Fi
     if material.validation is not None:
         values = np.vstack([values, material.validation.values])
     with np.errstate(invalid="ignore"):
-        unequal = [
-            (a, b) for a, b in pairs if (np.abs(values[a] - values[b]) > 1e-9 * np.abs(values[a])).any()
-        ]
+        unequal = [(a, b) for a, b in pairs if (np.abs(values[a] - values[b]) > 1e-9 * np.abs(values[a])).any()]
     if not unequal:
         return []
     a, b = unequal[0]
     column = int(np.nanargmax(np.abs(values[a] - values[b])))
     analyte = material.calibration.analytes[column]
+    said = f"{analyte.name} {values[a, column]:g} and {values[b, column]:g} {analyte.unit}".rstrip()
     return [
         Finding(
             gravity=DOUBT,
             code="duplicates_with_different_values",
             title=f"{plural(len(unequal), 'pair')} of one spectrum but different reference values",
             samples=_names(material, unequal),
-            evidence=f"The first: {analyte.name} {values[a, column]:g} and {values[b, column]:g} {analyte.unit}".rstrip()
-            + ".",
+            evidence=f"The first: {said}.",
             advice="One spectrum carries the wrong name, or one value is wrong: find out which before calibrating.",
         )
     ]
@@ -134,9 +132,7 @@ def _contradictions(material: Material, pairs: list[tuple[int, int]]) -> list[Fi
 def _copied_replicates(material: Material) -> list[Finding]:
     copied: list[int] = []
     seen: dict[tuple[int, bytes], int] = {}
-    for row, (sample, values) in enumerate(
-        zip(material.sample_index.tolist(), material.spectra.values, strict=True)
-    ):
+    for row, (sample, values) in enumerate(zip(material.sample_index.tolist(), material.spectra.values, strict=True)):
         if (sample, values.tobytes()) in seen:
             copied.append(row)
         seen[sample, values.tobytes()] = row

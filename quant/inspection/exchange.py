@@ -1,7 +1,7 @@
 """Exchanged labels: the pair of samples whose values, exchanged, fit the spectra far better.
 
-For each pair the two values are exchanged and PRESS (the sum of squared left-out errors) is computed again, with the best
-strength of the ridge before and after. The statistic is ::
+For each pair the two values are exchanged and PRESS (the sum of squared left-out errors) is computed again, with the
+best strength of the ridge before and after. The statistic is ::
 
     S = log( smallest PRESS after mending any one value / smallest PRESS after exchanging any one pair )
 
@@ -9,8 +9,8 @@ Mending one value (replacing it by what suits the spectra best) is the rival exp
 by an exchange with a sample half-way, but better by mending. A true exchange leaves two wrong values, of which mending
 helps one only.
 
-What S is by chance is simulated: values that the spectra explain, plus errors drawn from those found. Simulation stops
-as soon as it is plain that chance reaches the observed S too often (Besag & Clifford 1991, from memory).
+What S is by chance is simulated: values as the spectra explain them, plus errors drawn from those found. It stops as
+soon as it is plain that chance reaches the observed S too often (Besag & Clifford 1991, from memory).
 """
 
 from collections.abc import Sequence
@@ -118,8 +118,10 @@ def _chance(
     best = best_smoother(smoothers, mended)
     fitted = best.hat @ mended
     errors = studentised(best, mended)
-    errors = (errors - errors.mean()) * np.sqrt(errors.size / max(errors.size - best.freedom, 1.0)) * np.sqrt(
-        np.mean(1.0 - np.diagonal(best.hat))
+    errors = (
+        (errors - errors.mean())
+        * np.sqrt(errors.size / max(errors.size - best.freedom, 1.0))
+        * np.sqrt(np.mean(1.0 - np.diagonal(best.hat)))
     )
     enough = int(false_alarm * (SIMULATIONS + 1)) + 1
     as_large = 0

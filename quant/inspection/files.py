@@ -46,7 +46,9 @@ def check_axes(material: Material) -> list[Finding]:
     first, *others = material.readings
     if others and material.validation is None and len(others[0].samples):
         findings.append(
-            _other_axis(others[0].samples.sample_ids, others[0].spectra, first.spectra, material.recipe.spectra.resample)
+            _other_axis(
+                others[0].samples.sample_ids, others[0].spectra, first.spectra, material.recipe.spectra.resample
+            )
         )
     return findings
 

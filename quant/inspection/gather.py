@@ -7,7 +7,7 @@ import numpy as np
 
 from quant.arrays import BoolArray, FloatArray
 from quant.calibration.split import split_samples
-from quant.errors import AxisMismatchError, DataError, QuantError, QuantityError
+from quant.errors import AxisMismatchError, DataError, QuantError
 from quant.inspection.material import Material, Reading
 from quant.preprocessing.chain import apply_chain, fit_chain
 from quant.readers.read import find_files, read_spectra
@@ -119,7 +119,9 @@ def _lay_out(
     validation: SampleSet | None,
     in_both: tuple[str, ...],
 ) -> Material:
-    if validation is not None and _difference(calibration.spectra, validation.spectra, resample=recipe.spectra.resample):
+    if validation is not None and _difference(
+        calibration.spectra, validation.spectra, resample=recipe.spectra.resample
+    ):
         validation = None  # `readings` still hold it, so that the difference is reported
     sets = [calibration] if validation is None else [calibration, validation]
     spectra = join_spectra([part.spectra for part in sets], resample=recipe.spectra.resample)

@@ -71,12 +71,12 @@ def inspect(
     """
     material = gather(recipe, samples, validation)
     axis = material.spectra.axis
-    after = axis_behind(build_steps(recipe, axis, material.spectra.quantity), axis).size
+    behind = axis_behind(build_steps(recipe, axis, material.spectra.quantity), axis)
     return InspectionResult(
         title=recipe.title,
         sets=tuple(summarise(reading, material.readings) for reading in material.readings),
         pipeline=tuple(str(table["step"]) for table in recipe.preprocessing),
-        points=f"{len(axis)} read, {after} behind the preprocessing",
+        points=f"{len(axis)} read, {behind.size} behind the preprocessing",
         findings=by_gravity(run_checks(material)),
-        picture=picture_of(material),
+        picture=picture_of(material, behind),
     )

@@ -62,7 +62,7 @@ def make_smoothers(spectra: FloatArray, groups: Sequence[int] | IntArray) -> tup
     most = min(1 + squares.size, (n + 1) // 2)
     wanted = [f for f in FREEDOM if f <= most and f - 1 < squares.size] or []
     shrinks = [squares / (squares + _strength(squares, f - 1)) for f in wanted]
-    if squares.size and not wanted or 1 + squares.size <= min(most, 3):
+    if (squares.size and not wanted) or 1 + squares.size <= min(most, 3):
         shrinks.append(np.ones(squares.size))  # few columns: plain least squares
     labels = np.asarray(groups)
     return tuple(_smoother(u, shrink, n, labels) for shrink in shrinks)

@@ -114,6 +114,7 @@ def check_spikes(material: Material) -> list[Finding]:
         if chosen:
             worst = max(chosen, key=lambda row: float(np.abs(jump[row] * (high[row] & mask)).max()))
             place = int(np.argmax(np.abs(jump[worst]) * (high[worst] & mask)))
+            position = f"{axis.values[place]:g} {AXIS_UNITS[axis.unit]}"
             findings.append(
                 Finding(
                     gravity=DOUBT if inside else NOTE,
@@ -121,7 +122,7 @@ def check_spikes(material: Material) -> list[Finding]:
                     title=f"Spikes in {plural(len(chosen), 'spectrum', 'spectra')}"
                     + ("" if inside else ", outside the ranges used"),
                     samples=material.named(chosen),
-                    evidence=f"The highest: {jump[worst, place]:+.3g} at {axis.values[place]:g} {AXIS_UNITS[axis.unit]} "
+                    evidence=f"The highest: {jump[worst, place]:+.3g} at {position} "
                     f"in {material.named([worst])[0]}, {abs(jump[worst, place]) / floor[place]:.0f} times the usual "
                     "roughness there.",
                     advice="Measure again, or leave the spectrum out; a spike counts like a band.",

@@ -28,7 +28,7 @@ def check_quantity(material: Material) -> list[Finding]:
     logarithms = material.is_absorbance or material.spectra.quantity == "log_reflectance"
     percent = middle > (2.0 if fractions else PERCENT) if fractions or logarithms else np.zeros(len(values), bool)
     turned = ~percent & _on_their_heads(values, ~percent)
-    findings = _downward(material, values[~percent]) if material.spectra.quantity == "absorbance" else []
+    findings = _downward(values[~percent]) if material.spectra.quantity == "absorbance" else []
     for rows, evidence in (
         (percent, f"Their middle ordinate is {_span(middle[percent])}; no {said} is so high, but percent is."),
         (turned, "They run against the others: where most spectra have bands, these have gaps."),
@@ -50,7 +50,7 @@ def check_quantity(material: Material) -> list[Finding]:
     return findings
 
 
-def _downward(material: Material, values: FloatArray) -> list[Finding]:
+def _downward(values: FloatArray) -> list[Finding]:
     """Say so if most spectra lie near 1 with bands that point down, as transmittance does."""
     if len(values) == 0:
         return []
@@ -64,8 +64,8 @@ def _downward(material: Material, values: FloatArray) -> list[Finding]:
             code="perhaps_transmittance",
             title="Most spectra look like transmittance, not absorbance",
             samples=(),
-            evidence=f"Ordinates lie between {np.nanmin(values):.3g} and {np.nanmax(values):.3g}, most of them near the "
-            "upper end, and bands point down.",
+            evidence=f"Ordinates lie between {np.nanmin(values):.3g} and {np.nanmax(values):.3g}, most of them near "
+            "the upper end, and bands point down.",
             advice='If that is what they are, state quantity = "transmittance" under [spectra].',
         )
     ]
@@ -105,7 +105,7 @@ def check_opaque(material: Material) -> list[Finding]:
             title=f"{QUANTITIES[material.spectra.quantity].capitalize()} of zero or less in "
             f"{plural(int(rows.sum()), 'spectrum', 'spectra')}" + ("" if inside else ", outside the ranges used"),
             samples=material.named(rows),
-            evidence=f"At {_where(material, places.any(axis=0))}; such points have no absorbance.",
+            evidence=f"At {_where(material, _columns(places))}; such points have no absorbance.",
             advice="Use a thinner or more dilute sample, or leave that range out before converting.",
         )
         for rows, places, inside in _inside_and_outside(material, dark)
@@ -125,12 +125,13 @@ def check_high_absorbance(material: Material) -> list[Finding]:
     for low, high, gravity in limits:
         rows = (highest > low) & (highest <= high)
         if rows.any():
-            places = (a[rows] > low).any(axis=0) & material.used
+            places = _columns(a[rows] > low) & material.used
             findings.append(
                 Finding(
                     gravity=gravity,
                     code="high_absorbance",
-                    title=f"Absorbance above {low:g} in the ranges used: {plural(int(rows.sum()), 'spectrum', 'spectra')}",
+                    title=f"Absorbance above {low:g} in the ranges used: "
+                    f"{plural(int(rows.sum()), 'spectrum', 'spectra')}",
                     samples=material.named(np.flatnonzero(rows)[np.argsort(-highest[rows], kind="stable")]),
                     evidence=f"Up to {highest[rows].max():.2f} A at {_where(material, places)}. At {low:g} A "
                     f"{100 * 10.0**-low:.2g} % of the light is left: stray light and detector bend the line.",
@@ -139,7 +140,7 @@ def check_high_absorbance(material: Material) -> list[Finding]:
                 )
             )
     outside = a[:, ~material.used]
-    rows = (outside > DISTRUST_ABOVE).any(axis=1) if outside.size else np.zeros(len(a), bool)
+    rows = _columns((outside > DISTRUST_ABOVE).T)
     if rows.any():
         findings.append(
             Finding(
@@ -148,7 +149,7 @@ def check_high_absorbance(material: Material) -> list[Finding]:
                 title=f"Absorbance above {DISTRUST_ABOVE:g} outside the ranges used: "
                 f"{plural(int(rows.sum()), 'spectrum', 'spectra')}",
                 samples=material.named(rows),
-                evidence=f"At {_where(material, (a > DISTRUST_ABOVE).any(axis=0) & ~material.used)}.",
+                evidence=f"At {_where(material, _columns(a > DISTRUST_ABOVE) & ~material.used)}.",
                 advice="Nothing; keep these ranges out.",
             )
         )
@@ -175,7 +176,7 @@ def check_flattened(material: Material) -> list[Finding]:
             + ("" if inside else ", outside the ranges used"),
             samples=material.named(chosen),
             evidence=f"{FLAT_POINTS} or more neighbouring points share the highest ordinate "
-            f"({_span(top[chosen])}) at {_where(material, places.any(axis=0))}.",
+            f"({_span(top[chosen])}) at {_where(material, _columns(places))}.",
             advice="The detector or the export is at its end there: measure thinner or more dilute, or leave the band "
             "out by leave_out_ranges.",
         )
@@ -201,7 +202,7 @@ def check_negative(material: Material) -> list[Finding]:
             title=f"Absorbance below zero in the ranges used: {plural(int(rows.sum()), 'spectrum', 'spectra')}",
             samples=material.named(np.flatnonzero(rows)[np.argsort(lowest[rows], kind="stable")]),
             evidence=f"Down to {lowest[rows].min():.3f} A at "
-            f"{_where(material, (material.absorbance[rows] < -limit[rows, None]).any(axis=0) & material.used)}.",
+            f"{_where(material, _columns(material.absorbance[rows] < -limit[rows, None]) & material.used)}.",
             advice="The background saw more absorption than the sample, or scatters less: measure a fresh background, "
             "or take the baseline out by a step (straight_baseline, savitzky_golay, snv).",
         )
@@ -217,7 +218,7 @@ def check_missing(material: Material) -> list[Finding]:
             title=f"Missing points in {plural(int(rows.sum()), 'spectrum', 'spectra')}"
             + ("" if inside else ", outside the ranges used"),
             samples=material.named(rows),
-            evidence=f"{plural(int(places.sum()), 'point')} at {_where(material, places.any(axis=0))}; bridged by "
+            evidence=f"{plural(int(places.sum()), 'point')} at {_where(material, _columns(places))}; bridged by "
             "straight lines for this look, but calibrating refuses them.",
             advice="Export these spectra again, or leave the range out by leave_out_ranges.",
         )
@@ -231,8 +232,13 @@ def _inside_and_outside(material: Material, places: BoolArray) -> list[tuple[Boo
     for mask, inside in ((material.used, True), (~material.used, False)):
         marked = places & mask
         if marked.any():
-            parted.append((marked.any(axis=1), marked, inside))
+            parted.append((_columns(marked.T), marked, inside))
     return parted
+
+
+def _columns(marks: BoolArray) -> BoolArray:
+    """Mark the columns in which anything is marked."""
+    return np.asarray(marks.any(axis=0))
 
 
 def _where(material: Material, points: BoolArray) -> str:

@@ -1,24 +1,27 @@
 """Spectra unlike the others: replicates that disagree, and samples far from all that the others span."""
 
 import numpy as np
+from scipy import stats
 
 from quant.arrays import FloatArray, IntArray
 from quant.inspection.finding import DOUBT, Finding, plural
 from quant.inspection.material import Material
-from quant.inspection.robust import FALSE_ALARM, FEWEST, TO_SD, standing_out
+from quant.inspection.robust import FALSE_ALARM, FEWEST, standing_out
 from quant.statistics.splits import interleaved
 
-EXPLAINED = 0.99  # share of the spread that the components kept explain ...
+EXPLAINED = 0.9999  # share of the spread that the components kept explain ...
 MOST_COMPONENTS = 8  # ... at most so many, and at most a sixth of the samples
 LEFT_OUT_ALONE = 60  # up to so many samples each is left out alone, else a twentieth at a time
 SHARES = 20
 WORTH_NAMING = 4.0  # times the median sum of squares: twice the distance
 ADVICE = {
-    "calibration sample": "Look at the picture and at how the sample came about. A wrong sample or a bad measurement is "
-    "excluded with its reason; a rare but true one is kept, and more like it are wanted.",
-    "validation sample": "The calibration will call such samples \"not applicable\". Measure them as the calibration samples "
-    "were, leave the range out where they differ, or calibrate with samples of their kind.",
+    "calibration sample": "Look at the picture and at how the sample came about. A wrong sample or a bad measurement "
+    "is excluded with its reason; a rare but true one is kept, and more like it are wanted.",
+    "validation sample": 'The calibration will call such samples "not applicable". Measure them as the calibration '
+    "samples were, leave the range out where they differ, or calibrate with samples of their kind.",
 }
+USUAL = 0.95  # share of left-out calibration samples whose residual is called usual
+FEWEST_VALIDATION = 5  # of so few, half lie beyond by chance once in a thousand sets
 
 
 def check_outlying(material: Material) -> list[Finding]:
@@ -48,7 +51,27 @@ def check_outlying(material: Material) -> list[Finding]:
                         advice=ADVICE[whose],
                     )
                 )
-    return findings
+    return [*findings, *_unlike_validation(material, beyond, n)]
+
+
+def _unlike_validation(material: Material, beyond: FloatArray, n: int) -> list[Finding]:
+    """Say so if half of the validation samples leave more than 95 % of left-out calibration samples do."""
+    limit = float(np.quantile(beyond[:n], USUAL))
+    out = n + np.flatnonzero(beyond[n:] > limit)
+    count = beyond.size - n
+    if count < FEWEST_VALIDATION or 2 * out.size <= count:
+        return []
+    return [
+        Finding(
+            gravity=DOUBT,
+            code="validation_unlike_calibration",
+            title="The validation spectra as a whole hold something that the calibration spectra do not",
+            samples=tuple(material.sample_ids[i] for i in out[np.argsort(-beyond[out], kind="stable")]),
+            evidence=f"{out.size} of {count} leave a larger residual than {USUAL:.0%} of the calibration samples do "
+            "when left out; by chance it would be one in twenty.",
+            advice=ADVICE["validation sample"],
+        )
+    ]
 
 
 def distances(rows: FloatArray, others: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -92,7 +115,7 @@ def distances(rows: FloatArray, others: FloatArray) -> tuple[FloatArray, FloatAr
 
 def _components(s: FloatArray, n: int) -> int:
     share = np.cumsum(s**2) / max(float(np.sum(s**2)), 1e-300)
-    return int(min(np.searchsorted(share, EXPLAINED) + 1, MOST_COMPONENTS, max(n // 6, 1)))
+    return min(int(np.searchsorted(share, EXPLAINED)) + 1, MOST_COMPONENTS, max(n // 6, 1))
 
 
 def check_replicates(material: Material) -> list[Finding]:
@@ -104,21 +127,16 @@ def check_replicates(material: Material) -> list[Finding]:
     several: IntArray = np.flatnonzero(count > 1)
     if several.size < FEWEST:
         return []
-    deviations = material.processed - material.mean_by_sample(material.processed)[index]
     means = material.mean_by_sample(material.processed)
+    deviations = material.processed - means[index]
     _, s, axes = np.linalg.svd(means - means.mean(axis=0), full_matrices=False)
-    axes = axes[: _components(s, len(means))]
+    axes = axes[: min(_components(s, len(means)), several.size // 5)]
     scores = deviations @ axes.T
-    # Replicates differ far more along some components than along others: each is weighed by its usual deviation.
-    usual = TO_SD * np.median(np.abs(scores[np.isin(index, several)]), axis=0)
-    scores /= np.where(usual > 0, usual, np.inf)
-    rest = deviations - (deviations @ axes.T) @ axes
-    found: dict[int, float] = {}
-    for squares in (np.sum(scores**2, axis=1), np.sum(rest**2, axis=1)):
-        spread = np.bincount(index, weights=squares)[several] / (count[several] - 1)
-        for i in standing_out(spread, FALSE_ALARM / 2, least_ratio=WORTH_NAMING).tolist():
-            ratio = float(np.sqrt(spread[i] / np.median(spread)))
-            found[int(several[i])] = max(ratio, found.get(int(several[i]), 0.0))
+    found = disagreeing(scores, index, several, FALSE_ALARM / 2)
+    rest = np.bincount(index, weights=np.sum((deviations - scores @ axes) ** 2, axis=1))[several] / (count[several] - 1)
+    for i in standing_out(rest, FALSE_ALARM / 2, least_ratio=WORTH_NAMING).tolist():
+        ratio = float(np.sqrt(rest[i] / np.median(rest)))
+        found[int(several[i])] = max(ratio, found.get(int(several[i]), 0.0))
     if not found:
         return []
     ranked = sorted(found, key=lambda sample: -found[sample])
@@ -128,8 +146,50 @@ def check_replicates(material: Material) -> list[Finding]:
             code="replicates_disagree",
             title=f"{plural(len(ranked), 'sample')} whose replicate spectra disagree",
             samples=tuple(material.sample_ids[i] for i in ranked),
-            evidence=f"They differ up to {found[ranked[0]]:.1f} times as much as usual replicates, after preprocessing "
-            f"({FALSE_ALARM:.0%} of clean sets would raise this).",
-            advice="One spectrum may belong to another sample, or the sample is not homogeneous: compare, measure again.",
+            evidence=f"They differ up to {found[ranked[0]]:.1f} times as much as usual replicates, after "
+            f"preprocessing ({FALSE_ALARM:.0%} of clean sets would raise this).",
+            advice="One spectrum may belong to another sample, or the sample is not homogeneous: compare, measure "
+            "again.",
         )
     ]
+
+
+def disagreeing(scores: FloatArray, index: IntArray, several: IntArray, false_alarm: float) -> dict[int, float]:
+    """Return samples whose replicates scatter more than the pooled covariance of the others allows.
+
+    Hotelling's T² of each sample's deviations with the covariance of the other samples', p by its F distribution,
+    Bonferroni over the samples. Samples found are left out of the pool, and the others judged once more.
+
+    Parameters
+    ----------
+    scores : array of shape (n_spectra, k)
+        Deviations from the sample's mean.
+    index : array of int, shape (n_spectra,)
+        The sample of each spectrum.
+    several : array of int
+        Samples with replicates.
+    false_alarm : float
+        For all samples together.
+
+    Returns
+    -------
+    dict
+        Sample and how many times as far as expected its replicates lie apart.
+    """
+    k = scores.shape[1]
+    squares = {int(i): scores[index == i].T @ scores[index == i] for i in several}
+    freedom = {i: int(np.sum(index == i)) - 1 for i in squares}
+    found: dict[int, float] = {}
+    for _ in range(3):
+        pool = [i for i in squares if i not in found]
+        total, dof = sum((squares[i] for i in pool), np.zeros((k, k))), sum(freedom[i] for i in pool)
+        for i in squares:
+            left = dof - (freedom[i] if i in pool else 0)
+            if left < k + 2:
+                continue
+            others = (total - (squares[i] if i in pool else 0.0)) / left
+            distance = float(np.trace(np.linalg.pinv(others) @ squares[i])) / (k * freedom[i])
+            p = float(stats.f.sf(distance * (left - k + 1) / left, k * freedom[i], left - k + 1))
+            if p < false_alarm / len(squares):
+                found[i] = float(np.sqrt(distance))
+    return found

@@ -20,14 +20,17 @@ class InspectionPicture(Result):
     quantity: str = documented("Ordinate of the spectra as read")
     used: BoolArray = documented("Points that reach the regression")
     spectra: FloatArray = documented("Mean spectra of the samples drawn, as absorbance where it is one")
+    processed_axis: FloatArray | None = documented("Axis behind the preprocessing, or none where it fails", "axis unit")
+    processed: FloatArray | None = documented("Mean spectra of the samples drawn, after preprocessing")
     shown: tuple[int, ...] = documented("Positions of these samples, the calibration's first")
     analytes: tuple[tuple[str, str], ...] = documented("Name and unit of each analyte")
     values: FloatArray = documented("Reference values of all samples, one column an analyte")
     n_calibration: int = documented("So many of the samples calibrate; they come first")
 
 
-def picture_of(material: Material) -> InspectionPicture:
-    """Gather what the page draws."""
+def picture_of(material: Material, behind: FloatArray) -> InspectionPicture:
+    """Gather what the page draws; `behind` is the axis behind the preprocessing."""
+    changed = material.processed is not None and len(material.recipe.preprocessing) > 0
     values = material.calibration.values
     if material.validation is not None:
         values = np.vstack([values, material.validation.values])
@@ -39,6 +42,10 @@ def picture_of(material: Material) -> InspectionPicture:
         quantity="absorbance" if material.spectra.quantity == "transmittance" else material.spectra.quantity,
         used=material.used,
         spectra=material.mean_by_sample(material.absorbance)[shown],
+        processed_axis=behind if changed else None,
+        processed=material.mean_by_sample(material.processed)[shown]
+        if changed and material.processed is not None
+        else None,
         shown=tuple(int(i) for i in shown),
         analytes=tuple((analyte.name, analyte.unit) for analyte in material.calibration.analytes),
         values=values,

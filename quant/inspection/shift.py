@@ -24,15 +24,15 @@ def check_shift(material: Material) -> list[Finding]:
     if not out.any():
         return []
     rows = np.flatnonzero(out)[np.argsort(-np.abs(shifts[out] - centre), kind="stable")]
-    unit = AXIS_UNITS[axis.unit]
+    unit, largest = AXIS_UNITS[axis.unit], float(shifts[rows[0]]) - centre
     return [
         Finding(
             gravity=DOUBT,
             code="shifted_axis",
             title=f"{plural(rows.size, 'spectrum', 'spectra')} shifted along the axis",
             samples=material.named(rows),
-            evidence=f"The largest: {shifts[rows[0]] - centre:+.3g} {unit} ({(shifts[rows[0]] - centre) / axis.spacing:+.2f} "
-            f"points) against the middle of all; the others scatter by {robust_sd(shifts):.2g} {unit} "
+            evidence=f"The largest: {largest:+.3g} {unit} ({largest / axis.spacing:+.2f} points) against the middle of "
+            f"all; the others scatter by {robust_sd(shifts):.2g} {unit} "
             f"({FALSE_ALARM:.0%} of clean sets would raise this).",
             advice="Check the wavelength scale (polystyrene film), temperature, and whether these spectra come from "
             "another instrument or another export.",

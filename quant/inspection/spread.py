@@ -44,7 +44,11 @@ def check_range(material: Material) -> list[Finding]:
                     evidence=f"{share:.0%} of the range without a calibration sample"
                     + ("; one sample alone holds an end of the range." if edge else "."),
                     advice="Prepare standards inside the gap"
-                    + (", or limit the range to where samples are." if edge else "; a straight line across it is a guess."),
+                    + (
+                        ", or limit the range to where samples are."
+                        if edge
+                        else "; a straight line across it is a guess."
+                    ),
                 )
             )
         width = (values[-1] - values[0]) / 5
@@ -101,8 +105,8 @@ def check_together(material: Material) -> list[Finding]:
             title="Analytes that vary together in the calibration samples",
             samples=(),
             evidence="; ".join(f"{names}: r = {r:+.2f}" for r, names in pairs) + ".",
-            advice="One may be predicted through the other, and fails as soon as they part. Add standards in which they "
-            "vary independently, or use the calibration only where nature ties them.",
+            advice="One may be predicted through the other, and fails as soon as they part. Add standards in which "
+            "they vary independently, or use the calibration only where nature ties them.",
         )
     ]
 
@@ -122,7 +126,7 @@ def check_origin(material: Material) -> list[Finding]:
             samples=(),
             evidence="The validation has samples from the process, and shows how they are predicted."
             if tested
-            else "Process samples vary in ways that prepared ones do not: water, polymorphs, particle size, by-products.",
+            else "Process samples vary in ways that prepared ones do not: by-products, water, particle size.",
             advice="" if tested else "If process samples will be predicted, add some with laboratory values.",
         )
     ]
@@ -139,7 +143,9 @@ def check_counts(material: Material) -> list[Finding]:
             levels = np.unique(values[np.isfinite(values)]).size
             if levels < LEAST_LEVELS:
                 findings.append(
-                    _few(analyte.name, f"{plural(levels, 'different value')}", f"{LEAST_LEVELS} are the least for a line")
+                    _few(
+                        analyte.name, f"{plural(levels, 'different value')}", f"{LEAST_LEVELS} are the least for a line"
+                    )
                 )
             continue
         factors = table.factors if isinstance(table.factors, int) else None
@@ -152,7 +158,7 @@ def check_counts(material: Material) -> list[Finding]:
                 Finding(
                     gravity=NOTE,
                     code="sample_count",
-                    title=f"{n} calibration samples carry up to {plural(n // 6 - 1, 'factor')}; the recipe looks at {most}",
+                    title=f"{n} calibration samples carry up to {plural(n // 6 - 1, 'factor')}; up to {most} are tried",
                     samples=(),
                     evidence="6(k + 1) samples for k factors, at least 24 (ASTM E1655, from memory).",
                     advice="Distrust a choice of more factors than that, or add samples.",
@@ -175,7 +181,7 @@ def _few(analyte: str, found: str, wanted: str) -> Finding:
 
 def _validation_counts(material: Material) -> list[Finding]:
     table, validation = material.recipe.regression, material.validation
-    if validation is None or material.recipe.validation is None and not len(validation):
+    if validation is None or not len(validation):
         return [] if len(material.readings) > 1 else [_no_validation()]
     n = len(validation)
     factors = table.factors if isinstance(table.factors, int) else 1

@@ -3,7 +3,7 @@
 from collections.abc import Callable
 
 from quant.inspection import atmosphere, duplicates, files, noise, ordinate, outliers, shift, spread, values
-from quant.inspection.finding import DOUBT, Finding
+from quant.inspection.finding import STOP, Finding
 from quant.inspection.material import Material
 
 CHECKS: tuple[Callable[[Material], list[Finding]], ...] = (
@@ -32,7 +32,7 @@ CHECKS: tuple[Callable[[Material], list[Finding]], ...] = (
     spread.check_origin,
     spread.check_counts,
 )
-"""A check takes the material and returns what it found. A new one is a function in a file of its theme, and a line here."""
+"""A check takes the material and returns findings. A new one is a function in the file of its theme and a line here."""
 
 
 def run_checks(material: Material) -> list[Finding]:
@@ -46,11 +46,11 @@ def _trouble(material: Material) -> list[Finding]:
         return []
     return [
         Finding(
-            gravity=DOUBT,
+            gravity=STOP,
             code="preprocessing_fails",
             title="The recipe's preprocessing cannot be applied",
             samples=(),
             evidence=material.trouble,
-            advice="Mend what this names; calibrating will refuse it. Checks that need processed spectra were left out.",
+            advice="Mend what this names, calibrating will refuse it; checks of processed spectra were left out.",
         )
     ]

@@ -92,9 +92,7 @@ def _contradiction(unit: str, value: float, error: float, z: float, limit: float
     )
 
 
-def _exchanged(
-    material: Material, exchanges: dict[tuple[int, int], list[tuple[str, str, Exchange]]]
-) -> list[Finding]:
+def _exchanged(material: Material, exchanges: dict[tuple[int, int], list[tuple[str, str, Exchange]]]) -> list[Finding]:
     findings = []
     ids, n = material.calibration.sample_ids, len(material.calibration.analytes)
     ranked = sorted(exchanges.items(), key=lambda item: min(e.after / e.before for _, _, e in item[1]))

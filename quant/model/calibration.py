@@ -9,6 +9,8 @@ import numpy as np
 from quant.arrays import FloatArray
 from quant.errors import QuantityError
 from quant.estimator import Step
+from quant.model.decision_rule import DecisionRule
+from quant.model.left_out_models import LeftOutModels
 from quant.regression.method import Method
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.provenance import Source
@@ -102,6 +104,17 @@ class Calibration:
         Fingerprints of the files the calibration was made from.
     versions : mapping
         Versions of the programs that made it.
+    decision : DecisionRule or None
+        The limit that results are decided against.
+    smallest_decidable : float or None
+        The larger of limit of quantification and detection limit: a limit below it is never decided.
+        [unit of the analyte]
+    smallest_from : str
+        Which of the two it is, in words.
+    left_out : LeftOutModels or None
+        What distribution-free intervals are made of ...
+    left_out_note : str
+        ... or why there are none.
     """
 
     analyte: Analyte
@@ -122,6 +135,11 @@ class Calibration:
     recipe: str = ""
     training: tuple[Source, ...] = ()
     versions: Mapping[str, str] = field(default_factory=dict)
+    decision: DecisionRule | None = None
+    smallest_decidable: float | None = None
+    smallest_from: str = ""
+    left_out: LeftOutModels | None = None
+    left_out_note: str = ""
 
     def __str__(self) -> str:
         """Analyte, method, size, calibrated range, state."""

@@ -8,6 +8,8 @@ from quant.arrays import AnyArray
 from quant.errors import ModelFileError
 from quant.estimator import Estimator
 from quant.model.calibration import Calibration, Limits, ModelState, Uncertainty
+from quant.model.decision_rule import DecisionRule
+from quant.model.left_out_models import LeftOutModels
 from quant.preprocessing.registry import STEPS
 from quant.regression.registry import METHODS
 from quant.spectra.axis import SpectralAxis
@@ -52,6 +54,11 @@ def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:
         "recipe": model.recipe,
         "training": [asdict(source) for source in model.training],
         "versions": dict(model.versions),
+        "decision": asdict(model.decision) if model.decision else None,
+        "smallest_decidable": model.smallest_decidable,
+        "smallest_from": model.smallest_from,
+        "left_out": _split(model.left_out, "left_out", arrays) if model.left_out else None,
+        "left_out_note": model.left_out_note,
     }
     return manifest, arrays
 
@@ -90,14 +97,31 @@ def from_manifest(manifest: Mapping[str, Any], arrays: Arrays) -> Calibration:
         recipe=manifest["recipe"],
         training=tuple(Source(**source) for source in manifest["training"]),
         versions=manifest["versions"],
+        # The first models of this format had none of these.
+        decision=DecisionRule(**manifest["decision"]) if manifest.get("decision") else None,
+        smallest_decidable=manifest.get("smallest_decidable"),
+        smallest_from=manifest.get("smallest_from", ""),
+        left_out=_left_out(manifest.get("left_out"), arrays),
+        left_out_note=manifest.get("left_out_note", ""),
     )
 
 
-def _split(estimator: Estimator, prefix: str, arrays: Arrays) -> dict[str, Any]:
+def _split(estimator: Estimator | LeftOutModels, prefix: str, arrays: Arrays) -> dict[str, Any]:
     """Put an estimator's arrays among the others under a prefix, and return its plain values."""
     parameters, own = estimator.state()
     arrays.update({f"{prefix}/{name}": array for name, array in own.items()})
     return parameters
+
+
+def _left_out(plain: Mapping[str, Any] | None, arrays: Arrays) -> LeftOutModels | None:
+    if not plain:
+        return None
+    values: dict[str, Any] = {**plain, **_own(arrays, "left_out")}
+    return LeftOutModels(**values)
+
+
+def _own(arrays: Arrays, prefix: str) -> Arrays:
+    return {key.removeprefix(f"{prefix}/"): array for key, array in arrays.items() if key.startswith(f"{prefix}/")}
 
 
 def _join(registry: Mapping[str, type[Any]], entry: Mapping[str, Any], prefix: str, arrays: Arrays) -> Any:
@@ -106,5 +130,4 @@ def _join(registry: Mapping[str, type[Any]], entry: Mapping[str, Any], prefix: s
         raise ModelFileError(
             f"The model uses {name!r}, which this program does not know; expected {', '.join(registry)}."
         )
-    own = {key.removeprefix(f"{prefix}/"): array for key, array in arrays.items() if key.startswith(f"{prefix}/")}
-    return registry[name].from_state(dict(entry["parameters"]), own)
+    return registry[name].from_state(dict(entry["parameters"]), _own(arrays, prefix))

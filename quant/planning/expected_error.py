@@ -32,6 +32,8 @@ class ExpectedError(Result):
     selectivity: float = documented("SEL, that length over the length of the component's own spectrum; 1 is best")
     noise_part: float = documented("noise / SEN: the smallest difference that the noise lets see", "unit")
     leverage: float = documented("Mean leverage of the samples predicted, 1/n included")
+    from_noise: float = documented("Part of the standard error from the noise of sample and standards", "unit")
+    shrinkage: float = documented("Part from predictions being pulled to the mean by noise in the standards", "unit")
     laboratory_error: float = documented("Standard error of a reference value used", "unit")
     laboratory_source: str = documented("Where that comes from")
     against_truth: float = documented("Expected standard error against true values", "unit")
@@ -106,41 +108,68 @@ def mean_leverage(standards: FloatArray, samples: FloatArray) -> float:
 
 
 def expected_errors(
-    signals: Sequence[NetSignal],
+    spectra: ArrayLike,
+    names: Sequence[str],
+    standards: FloatArray,
+    samples: FloatArray,
     noise: float,
-    leverage: float,
     laboratory: Sequence[tuple[float, str]],
+    *,
+    closed: bool = False,
 ) -> tuple[ExpectedError, ...]:
-    """Standard errors of prediction to expect.
+    """Standard errors of prediction to expect of a PLS calibration with as many factors as components vary.
 
-    against truth: s² = (noise/SEN)²·(1 + h) + s_lab²·h; against reference values: s² + s_lab². The noise of the sample
-    counts once, that of the standards and the errors of their reference values count by the leverage h.
+    To first order s² = (noise/SEN)²·(1 + h) + s_lab²·h against the truth [1]_: the noise of the sample counts once,
+    that of the standards and the errors of their reference values by the leverage h. With many points p the noise of
+    the standards also tilts the factors, which pulls every prediction towards the mean. With K the spectra, C the
+    centred concentrations of the standards, Q = p·noise²·(C'C)⁻¹ and B = (KK' + Q)⁻¹, a sample c off the mean is predicted with
+    an error of −c·Q·B on average, and the noise part becomes noise²·(1 + h)·diag B (own derivation to second order, by
+    classical least squares; simulations of PLS agree, see the tests). Against reference values s_lab² is added.
 
     Parameters
     ----------
-    signals : sequence of NetSignal
+    spectra : array of shape (k, n_points)
+        Pure spectra of one unit of each component; see `net_signals`. [ordinate / unit]
+    names : sequence of str
+        The k components.
+    standards, samples : array of shape (n, k), (m, k)
+        Concentrations of the standards and of the samples predicted. [unit]
     noise : float
         Standard deviation at one point of a spectrum, independent from point to point. [ordinate]
-    leverage : float
-        Mean leverage of the samples predicted, 1/n included.
     laboratory : sequence of (float, str)
         Standard error of a reference value of each component and where it comes from. [unit]
+    closed : bool, optional
+        The total is fixed and the last component makes up the rest.
+
+    Raises
+    ------
+    ParameterError, DataError
+        As in `net_signals` and `mean_leverage`.
 
     References
     ----------
     .. [1] A.C. Olivieri et al., Pure Appl. Chem. 78 (2006) 633-661 (from memory).
     """
+    pure = as_matrix("The pure spectra", spectra)
+    signals = net_signals(pure, names, closed=closed)
+    varied, k = (pure[:-1] - pure[-1], len(pure) - 1) if closed else (pure, len(pure))
+    leverage = mean_leverage(standards[:, :k], samples[:, :k])
+    directions = np.vstack([np.eye(k), -np.ones((1, k))])[: len(pure)]  # of each component in those that vary
+    scatter, pull = _propagated(varied, standards[:, :k], samples[:, :k], noise)
+    from_noise = np.einsum("ij,jk,ik->i", directions, scatter, directions) * (1 + leverage)
+    shrinkage = ((pull @ directions.T) ** 2).mean(axis=0)
     found = []
-    for signal, (error, source) in zip(signals, laboratory, strict=True):
-        part = noise / signal.sensitivity
-        truth = part**2 * (1 + leverage) + error**2 * leverage
+    for c, (signal, (error, source)) in enumerate(zip(signals, laboratory, strict=True)):
+        truth = float(from_noise[c] + shrinkage[c]) + error**2 * leverage
         found.append(
             ExpectedError(
                 component=signal.component,
                 sensitivity=signal.sensitivity,
                 selectivity=signal.selectivity,
-                noise_part=part,
+                noise_part=noise / signal.sensitivity,
                 leverage=leverage,
+                from_noise=float(np.sqrt(from_noise[c])),
+                shrinkage=float(np.sqrt(shrinkage[c])),
                 laboratory_error=error,
                 laboratory_source=source,
                 against_truth=float(np.sqrt(truth)),
@@ -148,6 +177,17 @@ def expected_errors(
             )
         )
     return tuple(found)
+
+
+def _propagated(
+    varied: FloatArray, standards: FloatArray, samples: FloatArray, noise: float
+) -> tuple[FloatArray, FloatArray]:
+    """Return noise²·B, shape (k, k), and the pull −c·Q·B of each sample, shape (m, k); see `expected_errors`."""
+    middle = standards.mean(axis=0)
+    centred = standards - middle
+    Q = varied.shape[1] * noise**2 * np.linalg.inv(centred.T @ centred)
+    B = np.linalg.inv(varied @ varied.T + Q)
+    return noise**2 * B, -(samples - middle) @ Q @ B
 
 
 def _check_apart(varied: FloatArray, size: FloatArray, names: Sequence[str]) -> None:
@@ -161,6 +201,6 @@ def _check_apart(varied: FloatArray, size: FloatArray, names: Sequence[str]) -> 
         blended = np.abs(vectors[:, 0]) > 0.01
     culprits = name_some(names[c] for c in np.flatnonzero(blended).tolist())
     raise DataError(
-        f"The pure spectra of {culprits} cannot be told apart: one is a mixture of others (or of the balance component's alone). Expected spectra that differ; use other ranges, or "
-        "leave a component out."
+        f"The pure spectra of {culprits} cannot be told apart: one is a mixture of others (or of the balance "
+        "component's alone). Expected spectra that differ; use other ranges, or leave a component out."
     )

@@ -13,6 +13,7 @@ from quant.planning.judgement import ComponentSpread, Correlation, DesignJudgeme
 
 LARGE_CORRELATION = 0.1  # between components that need not be correlated
 LARGE_CONDITION = 30.0  # of standardised concentrations; the usual mark of collinearity (from memory: Belsley 1980)
+WIDE_GAP = 30.0  # % of a range; five levels leave 25
 _PROBES = 4000  # random mixtures from which the largest hole is found
 _SAME = 1e-9  # of a range
 
@@ -199,10 +200,10 @@ def _findings(
     if narrow:
         named = name_some(f"{spread.component} ({spread.coverage:.0f} %)" for spread in narrow)
         found.append(f"Ranges not spanned to 95 %: {named}.")
-    wide = [s for s in spreads if s.largest_gap > max(25.0, 150 / max(s.values - 1, 1))]
+    wide = [s for s in spreads if s.largest_gap > WIDE_GAP]
     if wide:
         named = name_some(f"{spread.component} ({spread.largest_gap:.0f} % of the range)" for spread in wide)
-        found.append(f"Gaps without a standard: {named}.")
+        found.append(f"Gaps without a standard, where a bend would not be seen: {named}.")
     twins = int((np.triu(apart < _SAME, 1)).sum())
     if twins:
         found.append(f"{twins} pair(s) of standards have the same composition.")

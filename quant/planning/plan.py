@@ -6,7 +6,7 @@ from quant.arrays import FloatArray
 from quant.checks import name_some
 from quant.planning.design import design_standards, design_validation
 from quant.planning.exchange import random_mixtures
-from quant.planning.expected_error import ExpectedError, expected_errors, mean_leverage, net_signals
+from quant.planning.expected_error import ExpectedError, expected_errors
 from quant.planning.judge import judge_design
 from quant.planning.judgement import DesignJudgement
 from quant.planning.precision import ValidationSize, validation_size
@@ -128,17 +128,24 @@ def _expected(
     table = plan.pure_spectra
     if table is None:
         return (), "Not computed: it needs [pure_spectra], one spectrum of each component, and the noise."
-    k = len(plan.component)
     predicted = validation if len(validation) else standards
-    leverage = mean_leverage(standards[:, :k], predicted[:, :k])
-    signals = net_signals(read_pure_spectra(plan, table), plan.names, closed=plan.mixture is not None)
-    basis = (
-        f"For {k} factors, {len(standards)} standards, noise {table.noise:g} at a point, mean leverage "
-        f"{leverage:.3g} of the {'validation samples' if len(validation) else 'standards'}: s² = (noise/SEN)²·(1 + h) "
-        "+ lab²·h against the truth, plus lab² against reference values. Baselines, path length, impurities and "
-        "non-linearity come on top."
+    found = expected_errors(
+        read_pure_spectra(plan, table),
+        plan.names,
+        standards,
+        predicted,
+        table.noise,
+        _laboratory(plan, weighings),
+        closed=plan.mixture is not None,
     )
-    return expected_errors(signals, table.noise, leverage, _laboratory(plan, weighings)), basis
+    basis = (
+        f"For {len(plan.component)} factors, {len(standards)} standards, noise {table.noise:g} at a point, mean "
+        f"leverage h = {found[0].leverage:.3g} of the {'validation samples' if len(validation) else 'standards'}. "
+        "Against the truth: noise part² + shrinkage² + lab²·h; the noise part is about noise/SEN·sqrt(1 + h), shrinkage is the "
+        "pull to the mean that noise in the standards causes. RMSEP against reference values: plus lab². Baselines, "
+        "path length, impurities and non-linearity come on top."
+    )
+    return found, basis
 
 
 def _laboratory(plan: Plan, weighings: WeighingPlan | None) -> list[tuple[float, str]]:

@@ -106,11 +106,11 @@ class PlanResult(Result):
         if not self.expected:
             return self.expected_basis
         table = format_columns(
-            ("component", "SEN", "SEL", "noise/SEN", "lab error", "against truth", "RMSEP", "unit"),
+            ("component", "SEN", "SEL", "noise/SEN", "noise part", "shrinkage", "lab", "to truth", "RMSEP", "unit"),
             [
                 (
-                    *(e.component, e.sensitivity, e.selectivity, e.noise_part, e.laboratory_error),
-                    *(e.against_truth, e.against_reference, self.unit),
+                    *(e.component, e.sensitivity, e.selectivity, e.noise_part, e.from_noise, e.shrinkage),
+                    *(e.laboratory_error, e.against_truth, e.against_reference, self.unit),
                 )
                 for e in self.expected
             ],

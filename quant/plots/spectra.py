@@ -59,7 +59,7 @@ def plot_spectra(result: AnalyteResult, ax: Axes | None = None, *, processed: bo
     if not processed:
         for low, high in kept_ranges(result):
             ax.axvspan(low, high, color=SHADE, linewidth=0, zorder=0)
-    _draw(ax, axis, spectra, picture.shown_values, with_unit(result.analyte, result.unit))
+    draw_spectra(ax, axis, spectra, picture.shown_values, with_unit(result.analyte, result.unit))
     ordinate = processed_ordinate(result) if processed else QUANTITIES[picture.quantity]
     label_axes(ax, spectral_axis(ax, axis, picture.axis_unit), ordinate)
     return ax
@@ -80,7 +80,8 @@ def plot_bands(result: AnalyteResult, ax: Axes | None = None, *, number: int | N
     """
     picture = result.picture
     ax = axes_or_new(ax, SIZE if number is None else HALF)
-    _draw(ax, picture.processed_axis, picture.processed, picture.shown_values, with_unit(result.analyte, result.unit))
+    unit = with_unit(result.analyte, result.unit)
+    draw_spectra(ax, picture.processed_axis, picture.processed, picture.shown_values, unit)
     bands = _bands(result)
     for i, (low, high, _, reference) in enumerate(bands):
         style = REFERENCE_BAND if reference else {"facecolor": SHADE}
@@ -143,7 +144,7 @@ def processed_ordinate(result: AnalyteResult) -> str:
     return ", ".join([name, *others])
 
 
-def _draw(ax: Axes, axis: FloatArray, spectra: FloatArray, values: FloatArray, label: str) -> None:
+def draw_spectra(ax: Axes, axis: FloatArray, spectra: FloatArray, values: FloatArray, label: str) -> None:
     """Draw spectra in their own order (sorted by value, the high ones would hide the low), and the scale of values."""
     runs = segments(axis)
     lines = [np.column_stack([axis[run], spectrum[run]]) for spectrum in spectra for run in runs]

@@ -7,14 +7,22 @@ import numpy as np
 
 from quant.arrays import FloatArray, IntArray
 from quant.model.calibration import Calibration
-from quant.prediction.applicability import check_acquisition, judge
+from quant.model.decision_rule import DecisionRule
+from quant.prediction.applicability import NOT_APPLICABLE, check_acquisition, judge
+from quant.prediction.decisions import Verdict, decide_sample
 from quant.prediction.result import Prediction, PredictionResult
+from quant.prediction.uncertainty import (
+    FreeInterval,
+    error_parts,
+    fewer_replicates,
+    free_intervals,
+    standard_uncertainty,
+    true_value_interval,
+)
 from quant.regression.band_area import BandArea
 from quant.spectra.sample_set import mean_by_sample
 from quant.spectra.spectra_set import SpectraSet
-from quant.statistics.intervals import NOT_RESOLVABLE, standard_error, true_value_share
-
-NOT_STATED = "no laboratory error stated"
+from quant.statistics.intervals import standard_error
 
 
 @dataclass(frozen=True, eq=False)
@@ -31,7 +39,7 @@ class Evaluation:
     count: IntArray
 
 
-def predict(model: Calibration, spectra: SpectraSet) -> PredictionResult:
+def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | None = None) -> PredictionResult:
     """Predict every sample of a set of spectra.
 
     Spectra that share a sample ID are averaged after preprocessing.
@@ -41,6 +49,8 @@ def predict(model: Calibration, spectra: SpectraSet) -> PredictionResult:
     model : Calibration
     spectra : SpectraSet
         On the model's axis (in either direction), or on another if the model's recipe allows resampling.
+    rule : DecisionRule, optional
+        A limit to decide against in place of the model's own, see `quant.prediction.decisions.other_rule`.
 
     Raises
     ------
@@ -52,10 +62,15 @@ def predict(model: Calibration, spectra: SpectraSet) -> PredictionResult:
     samples = list(dict.fromkeys(aligned.sample_ids))
     number = {sample: i for i, sample in enumerate(samples)}
     index = np.array([number[sample] for sample in aligned.sample_ids], dtype=np.intp)
-    found = evaluate(model, model.process(aligned.values), index, len(samples))
-    remarks = [_remarks(model, aligned, np.flatnonzero(index == i)) for i in range(len(samples))]
-    rows = tuple(_row(model, sample, found, i, remarks[i]) for i, sample in enumerate(samples))
-    return PredictionResult(model=str(model), predictions=rows)
+    processed, rule = model.process(aligned.values), rule or model.decision
+    found = evaluate(model, processed, index, len(samples))
+    free = free_intervals(model, mean_by_sample(processed, index, len(samples)), found.value)
+    rows = tuple(
+        _row(model, sample, found, i, _remarks(model, aligned, np.flatnonzero(index == i)), free[i], rule)
+        for i, sample in enumerate(samples)
+    )
+    told = rule.told(model.analyte.printed_unit) if rule else ""
+    return PredictionResult(model=str(model), rule=told, predictions=rows)
 
 
 def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_samples: int) -> Evaluation:
@@ -75,7 +90,7 @@ def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_sampl
     count = np.bincount(index, minlength=n_samples)
     value, leverage = method.predict(mean), method.leverage_each(mean)[-1]
     residual = mean_by_sample(method.residual_each(processed)[-1], index, n_samples)
-    extra = _fewer_replicates(model, count)
+    extra = fewer_replicates(model, count)
     if isinstance(method, BandArea):
         inverted = method.inverse_interval(method.signals(mean), known.t)
         error, low, high = inverted.standard_error, inverted.low, inverted.high
@@ -91,37 +106,27 @@ def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_sampl
     return Evaluation(value, error, low, high, leverage, residual, np.where(count > 1, spread, np.nan), count)
 
 
-def _fewer_replicates(model: Calibration, count: IntArray) -> FloatArray:
-    """Variance to add where a sample has fewer spectra than the calibration's samples had. [(unit of the analyte)²]"""
-    known = model.uncertainty
-    if known.replicate_sd is None:
-        return np.zeros(count.size)
-    return known.replicate_sd**2 * np.maximum(1 / count - 1 / known.replicates, 0.0)
-
-
-def true_value_interval(
-    model: Calibration, value: float, error: float, low: float, high: float
-) -> tuple[float, float] | str:
-    """Return the 95 % interval of the true value, or why there is none.
-
-    The base variance is s0², for band area the squared standard error; see `quant.statistics.intervals`.
-    """
-    laboratory = model.uncertainty.laboratory_error
-    if laboratory is None:
-        return NOT_STATED
-    base = error if isinstance(model.method, BandArea) else model.uncertainty.s0
-    share = true_value_share(error, base, laboratory)
-    if share is None:
-        return NOT_RESOLVABLE
-    return value - (value - low) * share, value + (high - value) * share
-
-
-def _row(model: Calibration, sample: str, found: Evaluation, i: int, remarks: tuple[str, ...]) -> Prediction:
+def _row(
+    model: Calibration,
+    sample: str,
+    found: Evaluation,
+    i: int,
+    remarks: tuple[str, ...],
+    free: FreeInterval,
+    rule: DecisionRule | None,
+) -> Prediction:
     value, error, low, high = (float(a[i]) for a in (found.value, found.standard_error, found.low, found.high))
-    residual, leverage = float(found.residual[i]), float(found.leverage[i])
-    verdict = judge(model.limits, residual=residual, leverage=leverage, value=value, standard_error=error)
+    residual, leverage, count = float(found.residual[i]), float(found.leverage[i]), int(found.count[i])
+    judged = judge(model.limits, residual=residual, leverage=leverage, value=value, standard_error=error)
     true = true_value_interval(model, value, error, low, high)
-    spread = float(found.spread[i])
+    spread, parts = float(found.spread[i]), error_parts(model, error, leverage, count)
+    uncertainty = standard_uncertainty(model, error) if rule else None
+    verdict = Verdict(outcome="")
+    if rule is not None and uncertainty is not None:
+        applicable = judged.verdict != NOT_APPLICABLE
+        verdict = decide_sample(
+            model, rule, value=value, uncertainty=uncertainty, n_spectra=count, applicable=applicable
+        )
     return Prediction(
         sample=sample,
         analyte=model.analyte.name,
@@ -133,11 +138,26 @@ def _row(model: Calibration, sample: str, found: Evaluation, i: int, remarks: tu
         true_low=None if isinstance(true, str) else true[0],
         true_high=None if isinstance(true, str) else true[1],
         true_note=true if isinstance(true, str) else "",
-        applicability=verdict.verdict,
-        reasons=verdict.reasons,
+        free_low=free.low,
+        free_high=free.high,
+        scaled_low=free.scaled_low,
+        scaled_high=free.scaled_high,
+        free_note=free.note,
+        part_presentation=parts.presentation,
+        part_calibration=parts.calibration,
+        part_laboratory=parts.laboratory,
+        part_unexplained=parts.unexplained,
+        decision=verdict.outcome,
+        limit=rule.limit if rule else None,
+        uncertainty=uncertainty,
+        guard_band=verdict.guard_band,
+        conformity=verdict.conformity,
+        decision_remark=verdict.remark,
+        applicability=judged.verdict,
+        reasons=judged.reasons,
         residual=residual / model.limits.residual_warn,
         leverage=leverage / model.limits.leverage_warn,
-        n_spectra=int(found.count[i]),
+        n_spectra=count,
         spread=None if np.isnan(spread) else spread,
         remarks=remarks,
         model_state=model.state.name,

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from quant.prediction.applicability import NOT_APPLICABLE
 from quant.result import Result, documented
+from quant.statistics.conformity import ACCEPT
 from quant.text_table import format_columns
 
 
@@ -28,6 +29,34 @@ class Prediction(Result):
     )
     true_high: float | None = documented("Upper end of it", "unit of the analyte")
     true_note: str = documented("Why there is no interval for the true value, or empty")
+    free_low: float | None = documented(
+        "Lower end of the distribution-free interval for a new reference result", "unit of the analyte"
+    )
+    free_high: float | None = documented("Upper end of it", "unit of the analyte")
+    scaled_low: float | None = documented(
+        "Lower end of the same with errors taken to grow with the level", "unit of the analyte"
+    )
+    scaled_high: float | None = documented("Upper end of it", "unit of the analyte")
+    free_note: str = documented("Kind and probability of these two intervals, or why there are none")
+    part_presentation: float | None = documented(
+        "Part of the standard error from presenting the sample, by replicates; the squares of all parts add up",
+        "unit of the analyte",
+    )
+    part_calibration: float | None = documented("Part from the calibration: s0 times √leverage", "unit of the analyte")
+    part_laboratory: float | None = documented("Part from one laboratory value", "unit of the analyte")
+    part_unexplained: float | None = documented(
+        "Part left: model and matrix; none where the others add up to more than the whole", "unit of the analyte"
+    )
+    decision: str = documented(
+        "accept, reject, undecided, or why nothing was decided; empty where the model has no limit"
+    )
+    limit: float | None = documented("The limit decided against", "unit of the analyte")
+    uncertainty: float | None = documented(
+        "Standard uncertainty decided with: against the true value where it can be told", "unit of the analyte"
+    )
+    guard_band: float | None = documented("Guard band for the risk accepted", "unit of the analyte")
+    conformity: float | None = documented("Probability that the true value conforms, where a decision was made")
+    decision_remark: str = documented("What would settle an undecided case, or why the method cannot decide")
     applicability: str = documented("applicable, warning, or not applicable: then the value must not be used")
     reasons: tuple[str, ...] = documented("Why not plainly applicable")
     residual: float = documented("Residual spectrum as a multiple of its warning limit")
@@ -43,12 +72,13 @@ class PredictionResult(Result):
     """Predictions of all samples by one model."""
 
     model: str = documented("The model in one line")
+    rule: str = documented("The limit decided against, its kind, source and risk; empty without one", default="")
     predictions: tuple[Prediction, ...] = documented("One entry a sample, in the order read")
 
     @property
     def accepted(self) -> bool:
-        """True if the model applies to every sample."""
-        return all(row.applicability != NOT_APPLICABLE for row in self.predictions)
+        """True if the model applies to every sample and, where there is a limit, every sample is accepted."""
+        return all(row.applicability != NOT_APPLICABLE and row.decision in ("", ACCEPT) for row in self.predictions)
 
     def __getitem__(self, sample: str) -> Prediction:
         """Return the prediction of a sample by its ID."""
@@ -58,8 +88,8 @@ class PredictionResult(Result):
         raise KeyError(f"No sample {sample!r}; there are {', '.join(row.sample for row in self.predictions)}.")
 
     def __str__(self) -> str:
-        """A table: sample, value, standard error, 95 % interval, applicability; then the reasons."""
-        header = ("sample", "value", "unit", "std error", "95 % from", "to", "applies?")
+        """A table: sample, value, standard error, 95 % interval, applicability, decision; then the reasons."""
+        header: tuple[str, ...] = ("sample", "value", "unit", "std error", "95 % from", "to", "applies?")
         digits = max(map(_decimals, self.predictions), default=0)
         table = [
             (
@@ -94,6 +124,14 @@ class PredictionResult(Result):
                 writer.writeheader()
             writer.writerow(cells)
         return stream.getvalue()
+
+
+def _probability(row: Prediction) -> str:
+    """The probability of conformity in percent, never rounded to certainty."""
+    if row.conformity is None:
+        return "–"
+    percent = 100 * row.conformity
+    return "> 99.9 %" if percent > 99.9 else "< 0.1 %" if percent < 0.1 else f"{percent:.1f} %"
 
 
 def _decimals(row: Prediction) -> int:

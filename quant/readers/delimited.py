@@ -2,8 +2,10 @@
 
 import csv
 import difflib
+import math
 import re
 from collections.abc import Sequence
+from functools import lru_cache
 from pathlib import Path
 from typing import TypeAlias
 
@@ -116,10 +118,17 @@ def position_from(heading: str, decimal: str = ".", thousands: str | None = None
     if match is None:
         return None
     value = float(match["number"])
+    if not math.isfinite(value):
+        return None  # 1e999 is no position
     if not match["unit"]:
         return value, None
-    unit = axis_unit_named(match["unit"])
+    unit = _unit_named(match["unit"])
     return None if unit is None else (value, unit)
+
+
+@lru_cache(maxsize=64)  # thousands of headings carry one unit
+def _unit_named(text: str) -> str | None:
+    return axis_unit_named(text)
 
 
 def _ungrouped(text: str, thousands: str | None) -> str:

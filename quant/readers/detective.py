@@ -8,6 +8,7 @@ key that settles it. None: the one that fits most rows is returned, for the read
 import re
 from collections.abc import Iterator, Sequence
 from dataclasses import replace
+from functools import lru_cache
 from itertools import product
 from pathlib import Path
 
@@ -56,16 +57,17 @@ def investigate(path: Path, text: str, options: ReadingOptions) -> Reading:
     return replace(chosen, rows=rows, evidence=(*_evidence(chosen.signs, options, rows), *chosen.evidence))
 
 
-def kinds_of(head: bytes) -> set[str]:
+@lru_cache(maxsize=4)  # each reader of text asks in turn
+def kinds_of(head: bytes) -> frozenset[str]:
     """Return the layouts in which the first bytes of a file read as spectra, perhaps damaged. Never raises."""
     try:
         plain, separators = _prepared(decode_text("", head), ReadingOptions())
     except FileFormatError:
-        return set()
+        return frozenset()
     if len(head) >= HEAD:
         plain = plain.rpartition("\n")[0]  # the last line may be cut
     found = [each for each in _readings(Path(), _head(plain), separators, ReadingOptions()) if _is_certain(each)]
-    return {each.layout.kind for each in whole(found) or found}
+    return frozenset(each.layout.kind for each in whole(found) or found)
 
 
 def _prepared(text: str, options: ReadingOptions) -> tuple[str, tuple[str, ...]]:
@@ -112,7 +114,7 @@ def _readings(path: Path, text: str, separators: Sequence[str], options: Reading
             if decimal == thousands or (not quoted and separator in (decimal, thousands)):
                 continue  # only inside quotes the sign that parts cells can mean something else
             signs = Signs(separator, decimal, thousands)
-            for layout in layouts_of(rows, signs, options.orientation):
+            for layout in layouts_of(rows, signs, options.orientation, options.sample_column):
                 if options.format not in ("two_columns", "matrix") or (
                     (layout.kind == "two_columns") is (options.format == "two_columns")
                 ):
@@ -152,8 +154,6 @@ def _nothing_found(path: Path, text: str, options: ReadingOptions) -> str:
         plain, separators = _prepared(text, freed)
         if others := whole(list(_readings(path, plain, separators, freed))):
             return f"it cannot be read with {key} = {getattr(options, key)!r}. {others[0].remedy(key)}"
-    if options.format == "two_columns":
-        return "no two lines of two numbers each; expected position and ordinate a line. Check separator and decimal."
     _, separators = _prepared(text, options)
     rows = read_rows(path, text, separators[0]) if separators else []
     if separators == (",",) and len(rows) > 1 and len(rows[-1][1]) > len(rows[0][1]):
@@ -161,6 +161,8 @@ def _nothing_found(path: Path, text: str, options: ReadingOptions) -> str:
             "rows have more cells than the header: commas may part the cells and mark the decimals as well, which "
             'no program can tell apart. Export with another separator (then decimal = ","), or with decimal points.'
         )
+    if options.format == "two_columns":
+        return "no two lines of two numbers each; expected position and ordinate a line. Check separator and decimal."
     headings = clipped(rows[0][1]) if rows else []
     positions = sum(Signs(",", options.decimal or ".").position(heading) is not None for heading in headings)
     return (

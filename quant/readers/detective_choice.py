@@ -12,6 +12,7 @@ from quant.readers.detective_layout import Layout, Signs, body_of, clipped, is_c
 from quant.readers.naming import names_an_axis
 from quant.readers.options import ReadingOptions
 
+LARGEST_ORDINATE = 1000.0
 LARGEST_POSITION = 1e5  # nm or cm⁻¹; beyond it a sign has been misunderstood
 _UNGROUPED = re.compile(r"\s*[+-]?[1-9]\d{3,}(?:\D|$)", re.ASCII)
 _PLAIN_WORDS = {
@@ -87,7 +88,9 @@ def decided(path: Path, readings: Sequence[Reading], options: ReadingOptions) ->
     FileFormatError
         Two readings with different numbers; or a table that may as well hold no spectra.
     """
-    left = _oriented(_distinct(_plausible(whole(readings), options)), options)
+    left = whole(readings)
+    if len(left) > 1:
+        left = _oriented(_distinct(_plausible(left, options)), options)
     if len(left) > 1:
         raise FileFormatError(path, _question(left[0], left[1]))
     chosen = left[0] if left else max(readings, key=_share_that_fits)
@@ -111,14 +114,29 @@ def _share_that_fits(reading: Reading) -> float:
 
 
 def _plausible(readings: list[Reading], options: ReadingOptions) -> list[Reading]:
-    """Drop readings with signs of thousands that the file itself contradicts, as long as another remains.
+    """Drop readings that the file itself contradicts, as long as another remains.
 
-    Who writes 4.000 for four thousand does not write 4000 elsewhere in the same file; and no axis passes 100 000.
+    Who writes 4.000 for four thousand does not write 4000 elsewhere in the same file. No axis passes 100 000, and no
+    ordinate that the program knows reaches a thousand. A table without sample IDs or axis gives way to one with them.
     """
     if options.thousands is None and any(each.signs.thousands is None for each in readings):
         readings = [each for each in readings if each.signs.thousands is None or not _has_ungrouped(each)]
-    near = [each for each in readings if all(abs(x) <= LARGEST_POSITION for x in each.positions)]
-    return near or readings
+    for is_likely in (_has_evidence, _has_likely_numbers):
+        readings = [each for each in readings if is_likely(each)] or readings
+    return readings
+
+
+def _has_evidence(reading: Reading) -> bool:
+    return reading.layout.kind == "two_columns" or bool(reading.layout.evidence)
+
+
+def _has_likely_numbers(reading: Reading) -> bool:
+    grouped = reading.signs.thousands is not None
+    axis, *rows = reading.numbers()
+    first = 0 if reading.layout.kind == "spectra_in_rows" else 1  # the first column is the axis
+    return all(abs(x) <= LARGEST_POSITION for x in axis) and not (
+        grouped and any(LARGEST_ORDINATE <= y < math.inf for row in rows for y in row[first:])
+    )
 
 
 def _has_ungrouped(reading: Reading) -> bool:
@@ -148,7 +166,11 @@ def _oriented(readings: list[Reading], options: ReadingOptions) -> list[Reading]
     names = {heading.lower() for heading in headings}
     counted, first_counted = is_count(rows.positions), is_count(columns.positions)
     corner = headings[0] if headings else ""
-    if not columns.layout.evidence or not columns.runs_one_way or names & {*SAMPLE_COLUMNS, options.sample_column}:
+    if (
+        not columns.layout.evidence
+        or not columns.runs_one_way
+        or names & {*SAMPLE_COLUMNS, options.sample_column or "?"}
+    ):
         return [rows]
     if not rows.runs_one_way or (names_an_axis(corner) and counted and not first_counted):
         return [columns]

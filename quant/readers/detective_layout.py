@@ -58,10 +58,12 @@ class Layout:
     evidence: str = ""
 
 
-def layouts_of(rows: Sequence[Row], signs: Signs, orientation: str | None = None) -> list[Layout]:
+def layouts_of(
+    rows: Sequence[Row], signs: Signs, orientation: str | None = None, sample_column: str | None = None
+) -> list[Layout]:
     """Return how these rows may lie, whole or damaged; `orientation` rules out what it does not name."""
     found = [
-        None if orientation == "spectra_in_columns" else _in_rows(rows, signs),
+        None if orientation == "spectra_in_columns" else _in_rows(rows, signs, sample_column),
         None if orientation == "spectra_in_rows" else _in_columns(rows, signs, stated=orientation is not None),
     ]
     return [layout for layout in found if layout is not None]
@@ -93,10 +95,12 @@ def fits_width(cells: Sequence[str], width: int) -> bool:
     return len(cells) >= width and not any(map(str.strip, cells[width:]))
 
 
-def _in_rows(rows: Sequence[Row], signs: Signs) -> Layout | None:
+def _in_rows(rows: Sequence[Row], signs: Signs, sample_column: str | None) -> Layout | None:
     """Header of axis positions and at least one other column; one spectrum a row."""
     for place, (_, cells) in enumerate(rows):
         head = clipped(cells)
+        if len(head) <= LARGEST_PREAMBLE:
+            continue
         points = [i for i, cell in enumerate(head) if signs.position(cell) is not None]
         is_header = 2 <= len(points) < len(head)
 
@@ -108,10 +112,21 @@ def _in_rows(rows: Sequence[Row], signs: Signs) -> Layout | None:
             if not (is_header and fits(following)):
                 continue  # a comment, and no header that is marked as one
         if is_header:
-            return _counted(Layout("spectra_in_rows", (place,), place + 1, len(head), 0, 0), rows, fits)
+            evidence = _sample_evidence([head[i] for i in range(len(head)) if i not in points], sample_column)
+            return _counted(Layout("spectra_in_rows", (place,), place + 1, len(head), 0, 0, evidence), rows, fits)
         if sum(map(bool, head)) > LARGEST_PREAMBLE:
             return None
     return None
+
+
+def _sample_evidence(texts: Sequence[str], sample_column: str | None) -> str:
+    """Say which of the columns that are no positions holds the sample IDs; empty where none is known to."""
+    wanted = SAMPLE_COLUMNS if sample_column is None else (sample_column.lower(),)
+    named = next((text for text in texts if text.lower() in wanted), None)
+    if named is not None:
+        return f"samples in column {named!r}"
+    alone = len(texts) == 1 and (not texts[0] or names_an_axis(texts[0]))
+    return "samples in the only column without an axis position" if alone else ""
 
 
 def _in_columns(rows: Sequence[Row], signs: Signs, *, stated: bool) -> Layout | None:

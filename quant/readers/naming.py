@@ -32,6 +32,7 @@ _QUANTITY_WORDS = {
     "kubelka-munk": "arbitrary",
 }
 _AXIS_NAMES = ("wavelength", "wavenumber", "wellenlänge", "wellenzahl", "lambda", "frequency", "axis", "x")
+_NOTES_IN_AXIS_UNITS = ("resolution", "path_length", "slit", "slit_width", "bandwidth", "spectral_bandwidth")
 _FRACTIONS = ("transmittance", "reflectance")
 _NOTE_ALIASES = {
     "pathlength": "path_length",
@@ -80,7 +81,9 @@ def axis_unit_in(heading: str) -> str | None:
 
 
 def names_an_axis(heading: str) -> bool:
-    """Tell whether a heading names an axis or its unit: ``Wavelength``, ``nm``, ``x``."""
+    """Tell whether a heading names an axis or its unit: ``Wavelength``, ``nm``, ``x``; but not ``Resolution (cm-1)``."""
+    if note_name(heading)[0] in _NOTES_IN_AXIS_UNITS:
+        return False
     words = re.findall(r"[^\W\d_]+", heading.lower())
     return axis_unit_in(heading) is not None or any(word.removesuffix("s") in _AXIS_NAMES for word in words)
 

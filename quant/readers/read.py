@@ -10,9 +10,9 @@ from typing import Any
 
 from quant.checks import name_some
 from quant.errors import AxisMismatchError, FileFormatError, ParameterError, QuantityError
-from quant.files import read_bytes
+from quant.files import decode_text, read_bytes
 from quant.readers.archive import is_zip, members_of
-from quant.readers.detective import HEAD
+from quant.readers.detective import HEAD, investigate
 from quant.readers.options import ReadingOptions
 from quant.readers.registry import READERS, Reader
 from quant.spectra.spectra_set import SpectraSet, join_spectra
@@ -147,9 +147,18 @@ def _read_file(file: Path, options: ReadingOptions) -> Iterator[tuple[Path, Spec
         raise FileFormatError(
             file,
             f"of no known format; expected one of {', '.join(reader.name for reader in READERS)}. "
-            "Name it as format to learn what is wrong with it.",
+            f"{_reason(file, content, options)}Name it as format to learn what is wrong with it.",
         )
     yield file, _named(reader.read(file, content, options), options, file.name)
+
+
+def _reason(file: Path, content: bytes, options: ReadingOptions) -> str:
+    """Say why a text is no table of spectra."""
+    try:
+        investigate(file, decode_text(file, content), options)
+    except FileFormatError as problem:
+        return f"As a table: {str(problem).removeprefix(f'{file}: ')} "
+    return ""
 
 
 def _read_archive(file: Path, content: bytes, options: ReadingOptions) -> Iterator[tuple[Path, SpectraSet]]:

@@ -1,6 +1,6 @@
 """Reader of reference values: one row a determination, one column an analyte."""
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Iterable, Sequence
 from dataclasses import replace
 from pathlib import Path
 
@@ -12,8 +12,9 @@ from quant.files import decode_text, read_bytes
 from quant.readers import delimited
 from quant.readers.dates import ORDERS, iso_dates
 from quant.readers.options import DECIMALS, SEPARATORS
-from quant.readers.reference_column import ColumnOf
+from quant.readers.reference_column import ColumnOf, ReadCell
 from quant.readers.repeats import average_repeats
+from quant.readers.spreadsheet import recognises_spreadsheet, rows_of_workbook
 from quant.spectra.concentration import BASES
 from quant.spectra.provenance import source_of
 from quant.spectra.reference_table import ReferenceTable
@@ -21,6 +22,8 @@ from quant.spectra.reference_table import ReferenceTable
 REPLICATES = ("refuse", "average")
 DATE, BASIS = "date", "basis"
 """Headings (in any case) of columns with a meaning of their own."""
+
+_HEAD = 2**10  # bytes that tell a workbook from text
 
 
 def read_reference(
@@ -34,8 +37,9 @@ def read_reference(
     replicates: str = "refuse",
     date_column: str | None = None,
     date_order: str | None = None,
+    sheet: str | None = None,
 ) -> ReferenceTable:
-    """Read reference values from delimited text.
+    """Read reference values from delimited text, or from a sheet of a workbook (.xlsx).
 
     A cell may hold an upper limit instead of a value ("<0.05", "n.d. <0.05"); it is kept as such. A column called
     "basis" that says wet or dry states the basis of all values, and must not contradict `analytes`.
@@ -58,6 +62,8 @@ def read_reference(
         Heading of a column of dates, which becomes the note ``date`` in ISO form; else the column called date.
     date_order : {"dmy", "mdy", "ymd"}, optional
         Order of dates such as 03/04/2026; see `quant.readers.dates.iso_dates`.
+    sheet : str, optional
+        The sheet of a workbook; else the first. In workbooks `decimal` speaks of texts such as "<0,05" only.
 
     Raises
     ------
@@ -74,32 +80,24 @@ def read_reference(
         raise ParameterError("No analyte named; expected at least one column of reference values.")
     file = Path(path)
     content = read_bytes(file)
-    rows = _table_rows(file, content, separator, decimal)
+    workbook = recognises_spreadsheet(content[:_HEAD], file.name)
+    rows = rows_of_workbook(file, content, sheet) if workbook else _text_rows(file, content, separator, decimal, sheet)
     if len(rows) < 2:
         raise FileFormatError(file, f"{len(rows)} line(s); expected a header and at least one sample.")
-    headings = [cell.strip() for cell in rows[0][1]]
-    for row in rows[1:]:
+    headings, body = [cell.strip() for cell in rows[0][1]], rows[1:]
+    for row in body:
         delimited.check_width(file, row, len(headings))
-    columns = _on_stated_basis(file, headings, rows[1:], analytes)
+    columns = _on_stated_basis(file, headings, body, analytes)
     sample = delimited.sample_column_of(file, headings, sample_column)
+    ids = [_sample_id(file, row, sample, headings) for row in body]
     places = [delimited.find_column(file, headings, each.heading, f"values of {each.analyte.name}") for each in columns]
-    wet = [_moisture_place(file, headings, each) for each in columns]
+    written = _with_comma if workbook and decimal == "," else str
+    read = _cells_read(file, headings, body, columns, places, decimal, written)
     date = _date_place(file, headings, date_column, note_columns)
-    taken = {sample, *places, *({date} if date is not None else ())}
-    noted = _note_places(file, headings, taken, note_columns, decimal)
-    ids = [_sample_id(file, row, sample, headings) for row in rows[1:]]
-    read = [
-        [
-            each.read(file, line, cells[place], "" if moist is None else cells[moist], decimal)
-            for each, place, moist in zip(columns, places, wet, strict=True)
-        ]
-        for line, cells in rows[1:]
-    ]
-    notes = [
-        delimited.note_cells(cells, headings, [place for place in noted if place != date]) for _, cells in rows[1:]
-    ]
+    noted = _note_places(file, headings, {sample, *places}, note_columns, decimal)
+    notes = [delimited.note_cells(cells, headings, [place for place in noted if place != date]) for _, cells in body]
     if date is not None:
-        days = iso_dates(file, [(line, cells[date]) for line, cells in rows[1:]], headings[date], date_order)
+        days = iso_dates(file, [(line, cells[date]) for line, cells in body], headings[date], date_order)
         notes = [{**row, DATE: day} if day else row for row, day in zip(notes, days, strict=True)]
     values, limits = np.moveaxis(np.array(read), 2, 0)
     kinds, source = [each.analyte for each in columns], [source_of(file, content)]
@@ -122,11 +120,39 @@ def _check_words(separator: str | None, decimal: str, replicates: str, date_orde
         raise ParameterError(f"separator and decimal are both {decimal!r}; expected two different signs.")
 
 
-def _table_rows(path: Path, content: bytes, separator: str | None, decimal: str) -> list[delimited.Row]:
-    """Return the rows of a table as text cells, whatever kind of file it stands in."""
+def _text_rows(
+    path: Path, content: bytes, separator: str | None, decimal: str, sheet: str | None
+) -> list[delimited.Row]:
+    if sheet is not None:
+        raise FileFormatError(path, f"no workbook; expected one, as sheet = {sheet!r} is given. Remove sheet.")
     text = decode_text(path, content)
     sign = delimited.separator_of(text.lstrip().partition("\n")[0], decimal, separator)
     return delimited.read_rows(path, text, sign)
+
+
+def _cells_read(
+    path: Path,
+    headings: Sequence[str],
+    rows: Sequence[delimited.Row],
+    columns: Sequence[ColumnOf],
+    places: Sequence[int],
+    decimal: str,
+    written: Callable[[str], str],
+) -> list[list[ReadCell]]:
+    """Return value and upper limit of every analyte in every row."""
+    wet = [_moisture_place(path, headings, each) for each in columns]
+    return [
+        [
+            each.read(path, line, written(cells[place]), "" if moist is None else written(cells[moist]), decimal)
+            for each, place, moist in zip(columns, places, wet, strict=True)
+        ]
+        for line, cells in rows
+    ]
+
+
+def _with_comma(cell: str) -> str:
+    """Return the number of a workbook's cell with a comma: it comes with a point, whatever the texts beside it have."""
+    return cell.replace(".", ",") if delimited.number_from(cell) is not None else cell
 
 
 def _sample_id(path: Path, row: delimited.Row, place: int, headings: Sequence[str]) -> str:

@@ -43,7 +43,7 @@ def read_spreadsheet(path: Path, content: bytes, options: ReadingOptions) -> Spe
         for signs in (
             Signs("\t", decimal) for decimal in DECIMALS
         )  # numbers come with a point, numbers as text may not
-        for layout in layouts_of(rows, signs, options.orientation)
+        for layout in layouts_of(rows, signs, options.orientation, options.sample_column)
     ]
     if not found:
         raise FileFormatError(

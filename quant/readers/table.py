@@ -106,7 +106,7 @@ def _in_columns(path: Path, reading: Reading, options: ReadingOptions) -> _Parts
             for line, cells in body_of(reading.rows, reading.layout)
         ]
     )
-    corners = [head[0] for head in heads]
+    corners = [head[0] for head in heads if naming.names_an_axis(head[0])]
     units = [naming.axis_unit_in(corner) for corner in corners]
     return table[:, 0], table[:, 1:].T, ids, notes, units, [quantity]
 
@@ -168,19 +168,31 @@ def _ordinates(
     path: Path, line: int, cells: list[str], headings: list[str], is_point: list[bool], signs: Signs
 ) -> list[float]:
     points = list(compress(cells, is_point))
-    together = "".join(points)
-    plain = together.isascii() and "_" not in together and "n" not in together.lower()  # no 1_000, nan, inf
-    if plain and signs.thousands is None and (signs.decimal == "." or "." not in together):
-        try:
-            return list(map(float, points if signs.decimal == "." else (cell.replace(",", ".") for cell in points)))
-        except ValueError:
-            pass  # read again below, cell by cell, to name the one that is wrong
+    plain = _plain_numbers(points, signs)
+    if plain is not None:
+        return plain
     named = list(compress(headings, is_point))
     return delimited.numbers_from(path, line, points, named, signs.decimal, MISSING, signs.thousands)
 
 
+def _plain_numbers(cells: list[str], signs: Signs) -> list[float] | None:
+    """Return numbers all at once if none of them needs a second look."""
+    together = "".join(cells)
+    plain = together.isascii() and "_" not in together and "n" not in together.lower()  # no 1_000, nan, inf
+    if not plain or signs.thousands is not None or (signs.decimal == "," and "." in together):
+        return None
+    try:
+        return list(map(float, cells if signs.decimal == "." else (cell.replace(",", ".") for cell in cells)))
+    except ValueError:
+        return None
+
+
 def _pairs(path: Path, body: Sequence[delimited.Row], signs: Signs) -> FloatArray:
     """Return positions and ordinates, shape (n_points, 2)."""
+    if all(fits_width(cells, 2) for _, cells in body):
+        plain = _plain_numbers([cell for _, cells in body for cell in cells[:2]], signs)
+        if plain is not None:
+            return np.array(plain).reshape(-1, 2)
     table = np.empty((len(body), 2))
     headings = ["position", "ordinate"]
     for number, (line, cells) in enumerate(body):

@@ -81,6 +81,7 @@ def read_recipe_reference(recipe: Recipe, file: str | None = None) -> ReferenceT
         replicates=table.replicates,
         date_column=table.date_column,
         date_order=table.date_order,
+        sheet=table.sheet,
     )
 
 

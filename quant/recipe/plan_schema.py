@@ -5,7 +5,8 @@ from typing import Annotated, Literal
 from pydantic import Field, FiniteFloat, PrivateAttr, model_validator
 
 from quant.readers.options import ReadingOptions
-from quant.recipe.schema import SpectraTable, Table, Text
+from quant.recipe.schema import SpectraTable
+from quant.recipe.table import Table, Text
 
 Above0 = Annotated[FiniteFloat, Field(gt=0)]
 NotBelow0 = Annotated[FiniteFloat, Field(ge=0)]

@@ -1,27 +1,14 @@
 """What a recipe may say: strict tables, each key with its meaning, default and unit."""
 
-import tomllib
-from importlib.resources import files
-from typing import Annotated, Any, Literal
+from typing import Any, Literal
 
-from pydantic import BaseModel, ConfigDict, Field, PrivateAttr, model_validator
+from pydantic import Field, PrivateAttr, model_validator
 
-from quant.errors import ParameterError
 from quant.preprocessing.registry import STEPS
 from quant.readers.options import ReadingOptions
-from quant.readers.reference_column import MOISTURE_UNIT, ColumnOf
-from quant.spectra.reference_table import Analyte
-
-DEFAULTS: dict[str, dict[str, Any]] = tomllib.loads(files("quant.recipe").joinpath("defaults.toml").read_text("utf-8"))
-
-Positive = Annotated[int, Field(ge=1)]
-Text = Annotated[str, Field(min_length=1)]
-
-
-class Table(BaseModel):
-    """A table of a recipe: unknown keys and wrong types are errors."""
-
-    model_config = ConfigDict(extra="forbid", strict=True, frozen=True)
+from quant.recipe.audit_schema import Acceptances, Decisions, UncertaintyTable, check_analytes
+from quant.recipe.reference_schema import AnalyteTable, ReferenceSection
+from quant.recipe.table import DEFAULTS, Positive, Table, Text
 
 
 class SpectraTable(Table):
@@ -80,91 +67,6 @@ class SpectraTable(Table):
     def options(self) -> ReadingOptions:
         """Return the options for the readers."""
         return ReadingOptions(**self.model_dump(exclude={"files"}))
-
-
-class ReferenceSection(Table):
-    """[reference]: the table of laboratory values."""
-
-    file: Text = Field(description="CSV file, counted from the recipe's own folder.")
-    sample_column: Text | None = Field(None, description="Column of the sample ID; default: sample, sample_id or id.")
-    separator: Literal[",", ";", "tab", "space"] | None = Field(None, description="What parts the cells.")
-    decimal: Literal[".", ","] = Field(DEFAULTS["reference"]["decimal"], description="Decimal sign.")
-    unmatched: Literal["refuse", "drop"] = Field(
-        DEFAULTS["reference"]["unmatched"], description="Spectra without a row: an error, or left out and named."
-    )
-    missing: Literal["refuse", "drop"] = Field(
-        DEFAULTS["reference"]["missing"], description="Rows without a value: an error, or left out for that analyte."
-    )
-    replicates: Literal["refuse", "average"] = Field(
-        DEFAULTS["reference"]["replicates"],
-        description="Several rows of one sample: an error, or repeated determinations whose mean is taken.",
-    )
-    date_column: Text | None = Field(
-        None, description="Column of dates, which becomes the note date in ISO form; default: the one called date."
-    )
-    date_order: Literal["dmy", "mdy", "ymd"] | None = Field(
-        None, description="Order of day, month and year in dates such as 03/04/2026, where the column does not tell."
-    )
-
-
-class AnalyteTable(Table):
-    """[[analyte]]: one quantity to predict; each gets a model of its own."""
-
-    name: Text = Field(description="As printed and as the model's file is called.")
-    column: Text | None = Field(None, description="Column of the reference table; default: the name.")
-    unit: str = Field("", description="Unit of the results, as printed: % m/m, mg/kg ...")
-    column_unit: Text | None = Field(
-        None, description="Unit of the column, if another: its values are converted. ppm and ppb are by mass."
-    )
-    density: float | None = Field(
-        None, gt=0, description="Density of the samples, to convert between % m/m or mg/kg and g/L or mol/L. [g/mL]"
-    )
-    molar_mass: float | None = Field(
-        None, gt=0, description="Molar mass of the analyte, to convert from or to mol/L. [g/mol]"
-    )
-    basis: Literal["wet", "dry"] | None = Field(
-        None, description="What a mass fraction is a fraction of: the sample as it is, or its dry matter."
-    )
-    column_basis: Literal["wet", "dry"] | None = Field(
-        None, description="Basis of the column, if another: its values are converted by moisture_column."
-    )
-    moisture_column: Text | None = Field(
-        None, description="Column of the moisture of each wet sample, to convert from one basis to the other."
-    )
-    moisture_unit: Text | None = Field(None, description="Unit of moisture_column; default: % m/m.")
-    detection_limit: float | None = Field(
-        None, gt=0, description='What "nd" in the column means: below this limit. [unit of the column]'
-    )
-    laboratory_error: float | None = Field(
-        None,
-        ge=0,
-        description="Standard error of one reported reference value; default: from repeated determinations, if there "
-        "are any. [unit of the analyte]",
-    )
-
-    @model_validator(mode="after")
-    def _can_be_converted(self) -> "AnalyteTable":
-        try:
-            self.column_of()
-        except ParameterError as problem:
-            raise ValueError(str(problem).removesuffix(".")) from None
-        if self.moisture_unit is not None and self.moisture_column is None:
-            raise ValueError("moisture_unit goes with moisture_column")
-        return self
-
-    def column_of(self) -> ColumnOf:
-        """Return where the analyte's values stand, and what they are converted from."""
-        return ColumnOf(
-            Analyte(self.name, self.unit, self.laboratory_error, self.basis or ""),
-            self.column or "",
-            unit=self.column_unit or "",
-            basis=self.column_basis or "",
-            density=self.density,
-            molar_mass=self.molar_mass,
-            moisture_column=self.moisture_column or "",
-            moisture_unit=self.moisture_unit or MOISTURE_UNIT,
-            detection_limit=self.detection_limit,
-        )
 
 
 class ExcludeTable(Table):
@@ -292,6 +194,11 @@ class Recipe(Table):
         default_factory=lambda: CrossValidationTable.model_validate({}), description="How samples are left out in turn."
     )
     validation: ValidationTable | None = Field(None, description="Samples that take no part in the calibration.")
+    uncertainty: UncertaintyTable = Field(
+        default_factory=lambda: UncertaintyTable.model_validate({}), description="Which intervals the model carries."
+    )
+    acceptance: Acceptances = Field(default_factory=list, description="What validation has to show.")
+    decision: Decisions = Field(default_factory=list, description="The limit that results are decided against.")
 
     @model_validator(mode="after")
     def _names_differ(self) -> "Recipe":
@@ -299,6 +206,8 @@ class Recipe(Table):
         twice = sorted({name for name in names if names.count(name) > 1})
         if twice:
             raise ValueError(f"more than one [[analyte]] is called {', '.join(twice)}; expected one each")
+        check_analytes("acceptance", self.acceptance, names)
+        check_analytes("decision", self.decision, names)
         return self
 
     _folder: str = PrivateAttr(default=".")

@@ -13,10 +13,10 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray, IntArray
-from quant.checks import as_matrix, as_vector, name_some
+from quant.checks import as_matrix, as_vector
 from quant.errors import ParameterError, SampleMismatchError
 from quant.estimator import check_weights
-from quant.regression.fast_cross_validation_columns import NEVER, Columns, check_factors, fold_columns
+from quant.regression.fast_cross_validation_columns import NEVER, Columns, check_factors, check_samples, fold_columns
 from quant.regression.fast_cross_validation_cross_products import ACCURACY_NOTE, cross_product_scores
 from quant.regression.fast_cross_validation_exact import ExactScores, exact_scores, rotated
 from quant.regression.fast_cross_validation_threads import one_blas_thread
@@ -113,7 +113,7 @@ def fast_left_out(
     extra = np.empty((0, spectra.shape[1])) if new is None else as_matrix("new", new)
     if extra.shape[1] != spectra.shape[1]:
         raise ParameterError(f"new has {extra.shape[1]} points, X has {spectra.shape[1]}; give spectra of one axis.")
-    samples = _check_samples(sample_index, fold_labels, values.size)
+    samples = check_samples(sample_index, fold_labels, values.size)
     weights = np.concatenate([check_weights(weight, values.size), np.zeros(extra.shape[0])])
     labels = [np.concatenate([np.asarray(one), np.full(extra.shape[0], NEVER)]) for one in fold_labels]
     columns = fold_columns(labels, weights.size)
@@ -125,7 +125,7 @@ def fast_left_out(
 
 
 def cheaper_way(n: int, k: int, folds: int, repeats: int, n_factors: int) -> str:
-    """Choose between "rotated" and "cross_products" by counting multiplications, those with single vectors `SLOW` times.
+    """Choose between "rotated" and "cross_products" by counting multiplications; with single vectors they count `SLOW`.
 
     Rotated: 2·n·k·A·F in two products a factor, and 2·(n + k)·A²·F for making W and T orthogonal, twice.
     Cross-products: n·k²/2 a repeat, and A·k² a fold. F folds in all, A factors. With n ≤ k spectra the rotated ones
@@ -136,29 +136,6 @@ def cheaper_way(n: int, k: int, folds: int, repeats: int, n_factors: int) -> str
     turning = 2.0 * n * k * n_factors * folds + SLOW * 2 * (n + k) * n_factors**2 * folds
     products = 0.5 * n * k**2 * repeats + SLOW * n_factors * k**2 * folds
     return "rotated" if turning <= products else "cross_products"
-
-
-def _check_samples(sample_index: ArrayLike | None, fold_labels: Sequence[ArrayLike], n: int) -> IntArray:
-    samples = np.arange(n) if sample_index is None else np.asarray(sample_index)
-    if (
-        samples.shape != (n,)
-        or samples.dtype.kind not in "iu"
-        or set(samples.tolist()) != set(range(samples.max() + 1))
-    ):
-        raise ParameterError(f"sample_index has shape {samples.shape}; expected {n} numbers of samples, 0, 1, 2 ...")
-    first = np.zeros(samples.max() + 1, dtype=np.intp)
-    first[samples[::-1]] = np.arange(n)[::-1]
-    for labels in map(np.asarray, fold_labels):
-        if labels.shape != (n,):
-            raise SampleMismatchError(f"{labels.size} fold labels for {n} spectra; give one each.")
-        if (labels < 0).any():
-            raise ParameterError(f"Fold labels run from {labels.min()}; expected 0 or more, so that all are left out.")
-        torn = np.unique(samples[labels != labels[first[samples]]])
-        if torn.size:
-            raise SampleMismatchError(
-                f"Sample(s) {name_some(torn)}, counted from 0, have spectra in two folds; keep replicates together."
-            )
-    return samples.astype(np.intp)
 
 
 def _scores(

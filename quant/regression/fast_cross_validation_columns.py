@@ -8,7 +8,7 @@ from numpy.typing import ArrayLike
 
 from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.checks import name_some
-from quant.errors import ParameterError
+from quant.errors import ParameterError, SampleMismatchError
 
 NEVER = -1  # fold label of a row no model learns from, and every model predicts
 
@@ -109,6 +109,38 @@ def check_factors(n_factors: object, columns: Columns, weight: FloatArray, n_poi
             f"({n_points}) and the smallest training set ({rows} rows) less one. Reduce n_factors."
         )
     return int(n_factors)
+
+
+def check_samples(sample_index: ArrayLike | None, fold_labels: Sequence[ArrayLike], n: int) -> IntArray:
+    """Return the sample of each of n spectra, if every sample is left out as a whole in every repeat.
+
+    Raises
+    ------
+    ParameterError
+        Not the numbers 0 to samples − 1, or a label below 0.
+    SampleMismatchError
+        Lengths that differ, or a sample in two folds.
+    """
+    samples = np.arange(n) if sample_index is None else np.asarray(sample_index)
+    if (
+        samples.shape != (n,)
+        or samples.dtype.kind not in "iu"
+        or set(samples.tolist()) != set(range(samples.max() + 1))
+    ):
+        raise ParameterError(f"sample_index has shape {samples.shape}; expected {n} numbers of samples, 0, 1, 2 ...")
+    first = np.zeros(samples.max() + 1, dtype=np.intp)
+    first[samples[::-1]] = np.arange(n)[::-1]
+    for labels in map(np.asarray, fold_labels):
+        if labels.shape != (n,):
+            raise SampleMismatchError(f"{labels.size} fold labels for {n} spectra; give one each.")
+        if (labels < 0).any():
+            raise ParameterError(f"Fold labels run from {labels.min()}; expected 0 or more, so that all are left out.")
+        torn = np.unique(samples[labels != labels[first[samples]]])
+        if torn.size:
+            raise SampleMismatchError(
+                f"Sample(s) {name_some(torn)}, counted from 0, have spectra in two folds; keep replicates together."
+            )
+    return samples.astype(np.intp)
 
 
 def _padded(asked: Sequence[IntArray]) -> tuple[IntArray, BoolArray]:

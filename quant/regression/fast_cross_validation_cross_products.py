@@ -23,7 +23,6 @@ ROWS_AT_A_TIME = 256  # of spectra whose residuals are worked on: they stay in c
 
 @dataclass(frozen=True)
 class _Model:
-    mean: FloatArray  # (k,)
     rotations: FloatArray  # (A, k)
     loadings: FloatArray  # (A, k)
     y_loadings: FloatArray  # (A,)
@@ -85,7 +84,8 @@ def cross_product_scores(
         mask = training[column : column + 1].astype(np.float64)
         ones, mean, rest = centred_values(mask, root, y[column : column + 1])
         total = float(np.linalg.norm(mask * root))
-        model = _fit(products, rest[0] @ weighted, ones[0] @ weighted / total, total, n_factors, accuracy)
+        products -= np.outer(ones @ weighted, ones @ weighted)  # centred: the mean is factor 0
+        model = _fit(products, rest[0], weighted, n_factors, accuracy)
         count = model.y_loadings.size
         found.y_loadings[0, column, : count + 1] = [mean[0] * total, *model.y_loadings]
         found.stopped[0, column] = count
@@ -93,7 +93,8 @@ def cross_product_scores(
             found.notes[column] = _note(count, accuracy) if rest.any() else FLAT_NOTE
         found.scores[0, column, 0] = 1.0 / total
         residual = found.residual[0, column] if residuals else None
-        _apply(model, spectra[columns.asked[column]], found.scores[0, column, 1:], residual)
+        mean_spectrum = ones[0] @ weighted / total
+        _apply(model, spectra[columns.asked[column]] - mean_spectrum, found.scores[0, column, 1:], residual)
     return found
 
 
@@ -118,39 +119,39 @@ def _products(weighted: FloatArray, rows: IntArray) -> FloatArray:
     return product
 
 
-def _fit(S: FloatArray, c: FloatArray, mean: FloatArray, total: float, n_factors: int, accuracy: float) -> _Model:
-    """Find up to `n_factors` factors from the products of centred spectra and c = X'y, both of training rows."""
-    k = c.size
-    S -= np.outer(total * mean, total * mean)
+def _fit(S: FloatArray, rest: FloatArray, weighted: FloatArray, n_factors: int, accuracy: float) -> _Model:
+    """Find up to `n_factors` factors from S = X'X of centred training rows, and the centred y (`rest`)."""
+    c, k = rest @ weighted, weighted.shape[1]
     W, R, P, q = np.zeros((n_factors, k)), np.zeros((n_factors, k)), np.zeros((n_factors, k)), np.zeros(n_factors)
-    noise = EPS * np.trace(S)
-    smallest = EPS * float(np.linalg.norm(c))
+    noise = EPS * np.trace(S) / accuracy  # of r'S·r per squared norm of r
+    # Of c = X'u: eps·‖X‖·‖y‖, and a tenth of `accuracy`, since the weights that follow inherit its error.
+    smallest = 10 * np.sqrt(EPS * noise / accuracy) * float(np.linalg.norm(rest))
     for a in range(n_factors):
         w = c
         for _ in range(2):
             w = w - (W[:a] @ w) @ W[:a]
         size = float(np.linalg.norm(w))
-        if size * accuracy <= smallest:
-            return _Model(mean, R[:a], P[:a], q[:a])
+        if size <= smallest:
+            return _Model(R[:a], P[:a], q[:a])
         w = r = w / size
         for _ in range(2):  # orthogonal scores: r'S·r_j = 0
             r = r - (P[:a] @ r) @ R[:a]
         s = S @ r
         tt = float(r @ s)
-        if tt * accuracy <= noise * float(r @ r):
-            return _Model(mean, R[:a], P[:a], q[:a])
+        if tt <= noise * float(r @ r):
+            return _Model(R[:a], P[:a], q[:a])
         W[a], R[a], P[a] = w, r / np.sqrt(tt), s / np.sqrt(tt)
         q[a] = R[a] @ c
         c = c - q[a] * P[a]
-    return _Model(mean, R, P, q)
+    return _Model(R, P, q)
 
 
 def _apply(model: _Model, left: FloatArray, scores: FloatArray, residual: FloatArray | None) -> None:
-    """Fill scores, shape (A, rows), and residuals, shape (A + 1, rows), of spectra that the model has not seen."""
+    """Fill scores, shape (A, rows), and residuals, shape (A + 1, rows), of centred spectra, which are used up."""
     count = model.y_loadings.size
     for first in range(0, left.shape[0], ROWS_AT_A_TIME):
         rows = slice(first, first + ROWS_AT_A_TIME)
-        rest = left[rows] - model.mean
+        rest = left[rows]
         t = model.rotations @ rest.T
         scores[:count, rows] = t
         if residual is None:

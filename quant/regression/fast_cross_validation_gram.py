@@ -10,7 +10,9 @@ first product. The guard here therefore stops long before that of `bidiagonal.py
 norm of the spectra, if 1e-8 is asked for; see `ACCURACY`.
 """
 
+import threading
 from dataclasses import dataclass
+from math import prod
 
 import numpy as np
 
@@ -20,7 +22,19 @@ from quant.regression.fast_cross_validation_columns import Columns
 
 ACCURACY = 1e-8  # share of a score that may be rounding error: see `gram_scores`
 CANCELLED = 0.01  # squared norm left by a pass against all scores below which it is repeated (norm: a tenth)
-BLOCK_BYTES = 2**22  # of scores worked on at a time; 1 to 8 MB measured equal, more falls out of cache
+BLOCK_BYTES = 2**23  # of scores worked on at a time: more falls out of cache
+KEPT_BYTES = 2**24  # of working memory, by each thread
+
+
+@dataclass(frozen=True)
+class Gram:
+    """Inner products of spectra, shape (n, n), with the trace of what they were worked out from. [(unit of X)²]
+
+    A difference of two Gram matrices carries the rounding error of the larger, and the guard has to know.
+    """
+
+    values: FloatArray
+    size: float
 
 
 @dataclass(frozen=True)
@@ -59,6 +73,7 @@ def gram_scores(
     n_factors: int,
     weight: FloatArray | None = None,
     accuracy: float = ACCURACY,
+    size: FloatArray | None = None,
 ) -> ColumnScores:
     """Fit PLS to every column on every Gram matrix; mean-centred, not column-scaled.
 
@@ -76,9 +91,11 @@ def gram_scores(
     weight : array of shape (n,), optional
         Not negative; 1/m for each of m replicates.
     accuracy : float
-        A column stops at the factor of whose score a larger share may be rounding error: eps·tr(G)·‖u‖/‖G·u‖. On 600
+        A column stops at the factor of whose score a larger share may be rounding error: eps·size·‖u‖/‖G·u‖. On 600
         simulated models with singular values falling over up to 18 decades, left-out predictions kept to 1e-10 of the
         range of y, and leverages to 5e-9 of themselves, with 1e-8; with 1e-6, to 5e-9 and 4e-7.
+    size : array of shape (c,), optional
+        Size of what each Gram matrix was worked out from, by default its trace; see `Gram`. [(unit of X)²]
 
     Returns
     -------
@@ -92,6 +109,7 @@ def gram_scores(
        the Gram-Schmidt QR factorization, Math. Comp. 30 (1976) 772 (from memory): when to repeat a pass.
     """
     c, n = grams.shape[:2]
+    sizes = np.einsum("cii->c", grams) if size is None else size
     root, training = weighted_rows(columns, weight)
     if weight is not None:
         grams = grams * (root[:, None] * root)
@@ -103,7 +121,7 @@ def gram_scores(
     y = np.broadcast_to(y, (len(columns), n))
     for block in columns.blocks(c * (n_factors + 4) * n * 8, BLOCK_BYTES, least=8):
         part = ColumnScores(found.scores[:, block], found.y_loadings[:, block], found.stopped[:, block])
-        _fit_block(grams, training[block], root, columns.asked[block], y[block], accuracy, part)
+        _fit_block(grams, training[block], root, columns.asked[block], y[block], EPS * sizes / accuracy, part)
     return found
 
 
@@ -140,34 +158,33 @@ def _fit_block(
     root: FloatArray,
     asked: IntArray,
     y: FloatArray,
-    accuracy: float,
+    limit: FloatArray,
     out: ColumnScores,
 ) -> None:
-    """Fill `out`. T holds scores not scaled, within training; `inverse` their 1/(t't)."""
+    """Fill `out`. T holds scores not scaled, within training; `inverse` their 1/(t't); limit: least ‖t‖/‖u‖."""
     c, F, counts, slots = out.scores.shape
     n = grams.shape[1]
     mask = training.astype(np.float64)
     ones, mean, rest = centred_values(mask, root, y)
     places = (asked + n * np.arange(F)[:, None]).ravel()
-    T, inverse, S = np.empty((c, F, counts, n)), np.zeros((c, F, counts)), out.scores
+    T, u, W, step = _scratch((c, F, counts, n), (c, F, n), (c, F, n), (c, F, n))
+    inverse, S = np.zeros((c, F, counts)), out.scores
     total = np.linalg.norm(mask * root, axis=1)
     T[:, :, 0], inverse[:, :, 0], out.y_loadings[:, :, 0] = ones, 1.0, mean * total
     S[:, :, 0] = root[asked] / total[:, None]  # rows of S are scaled like those of G until the end
-    u, W, step = np.empty((c, F, n)), np.empty((c, F, n)), np.empty((c, F, n))
     u[:] = rest
     live = np.broadcast_to(rest.any(axis=1), (c, F)).copy()
-    noise = (EPS * np.einsum("cii->c", grams)[:, None]) ** 2  # squared: of G·u per norm of u, since tr G ≥ ‖G‖
     for a in range(1, counts):
         np.matmul(u, grams, out=W)
         raw = np.take(W.reshape(c, F * n), places, axis=1, mode="clip").reshape(c, F, slots)
         W *= mask
         t = T[:, :, a]
-        h = _remove(W, T[:, :, :a], inverse[:, :, :a], step, out=t)
+        h, removed = _remove(W, T[:, :, :a], inverse[:, :, :a], step, out=t)
         tt = np.vecdot(t, t)
-        if (tt < CANCELLED * (tt + np.vecdot(h * h, 1.0 / np.where(inverse, inverse, 1.0)[:, :, :a])))[live].any():
-            h += _remove(t, T[:, :, :a], inverse[:, :, :a], step, out=t)
+        if (live & (tt < CANCELLED * removed)).any():
+            h += _remove(t, T[:, :, :a], inverse[:, :, :a], step, out=t)[0]
             tt = np.vecdot(t, t)
-        live &= tt * accuracy**2 > noise * np.vecdot(u, u)
+        live &= tt > limit[:, None] ** 2 * np.vecdot(u, u)
         inverse[:, :, a] = np.divide(1.0, tt, out=np.zeros_like(tt), where=live)
         S[:, :, a] = np.where(live[..., None], raw - np.vecmat(h, S[:, :, :a]), 0.0)
         share = np.vecdot(t, u) * inverse[:, :, a]
@@ -180,10 +197,27 @@ def _fit_block(
     S /= root[asked][:, None]
 
 
-def _remove(W: FloatArray, T: FloatArray, inverse: FloatArray, step: FloatArray, out: FloatArray) -> FloatArray:
-    """Make W orthogonal to T in one pass, into `out`; return the coefficients, shape (c, columns, a)."""
-    h: FloatArray = np.matvec(T, W)
-    h *= inverse
+def _remove(
+    W: FloatArray, T: FloatArray, inverse: FloatArray, step: FloatArray, out: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Make W orthogonal to T in one pass, into `out`; return the coefficients and the squared norm of what they take."""
+    products: FloatArray = np.matvec(T, W)
+    h = products * inverse
     np.vecmat(h, T, out=step)
     np.subtract(W, step, out=out)
-    return h
+    return h, np.vecdot(products, h)
+
+
+_kept = threading.local()
+
+
+def _scratch(*shapes: tuple[int, ...]) -> list[FloatArray]:
+    """Return arrays of any content, from memory each thread keeps: fresh pages cost as much as the arithmetic on them."""
+    sizes = [prod(shape) for shape in shapes]
+    whole = getattr(_kept, "memory", np.empty(0))
+    if whole.size < sum(sizes):
+        whole = np.empty(sum(sizes))
+        if whole.nbytes <= KEPT_BYTES:
+            _kept.memory = whole
+    ends = np.cumsum(sizes)
+    return [whole[end - size : end].reshape(shape) for shape, size, end in zip(shapes, sizes, ends, strict=True)]

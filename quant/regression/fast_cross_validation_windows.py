@@ -8,14 +8,15 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_matrix
 from quant.errors import ParameterError
+from quant.regression.fast_cross_validation_gram import Gram
 
 
 class WindowGrams:
     """Running sums P_j = Σ X_i·X_i' over the first j blocks of points: the Gram matrix of a window is P_stop − P_start.
 
-    The subtraction leaves rounding error of the size of the whole, eps·tr(P), in the Gram matrix of a narrow or weak
-    window. `noise` tells how much, and `cross_validate_many` takes it into its guard, so that it stops early rather than
-    follow noise; score leading windows again by refitting (`fast_left_out`).
+    The subtraction leaves rounding error of the size of P_stop in the Gram matrix of a narrow or weak window. The
+    `size` of a `Gram` tells the guard of `cross_validate_many`, which stops early rather than follow noise. Score
+    leading windows again by refitting (`fast_left_out`): that keeps the digits, and the factors, that are lost here.
 
     Parameters
     ----------
@@ -28,6 +29,8 @@ class WindowGrams:
     ----------
     sums : array of shape (blocks + 1, n, n)
         (k/block + 1)·n² doubles. [(unit of X)²]
+    traces : array of shape (blocks + 1,)
+        Of the sums. [(unit of X)²]
     """
 
     def __init__(self, X: ArrayLike, block: int) -> None:
@@ -42,12 +45,13 @@ class WindowGrams:
         for number, start in enumerate(starts):
             part = centred[:, start : start + self.block]
             np.add(self.sums[number], part @ part.T, out=self.sums[number + 1])
+        self.traces: FloatArray = np.einsum("jii->j", self.sums)
 
     def __len__(self) -> int:
         return len(self.sums) - 1
 
-    def gram(self, start: int, stop: int) -> FloatArray:
-        """Return the Gram matrix of blocks start, start + 1, ... stop − 1, shape (n, n). [(unit of X)²]
+    def gram(self, start: int, stop: int) -> Gram:
+        """Return the Gram matrix of blocks start, start + 1, ... stop − 1.
 
         Raises
         ------
@@ -56,8 +60,7 @@ class WindowGrams:
         """
         if not 0 <= start < stop <= len(self):
             raise ParameterError(f"blocks {start} to {stop} of {len(self)}; expected 0 ≤ start < stop ≤ {len(self)}.")
-        window: FloatArray = self.sums[stop] - self.sums[start]
-        return window
+        return Gram(self.sums[stop] - self.sums[start], float(self.traces[stop]))
 
     def points(self, start: int, stop: int) -> slice:
         """Return the points of blocks start ... stop − 1."""
@@ -68,7 +71,3 @@ class WindowGrams:
         for start in range(len(self)):
             for stop in range(start + 1, len(self) + 1):
                 yield start, stop
-
-    def traces(self) -> FloatArray:
-        """Return the trace of each running sum, shape (blocks + 1,): `noise` of a window ending there. [(unit of X)²]"""
-        return np.einsum("jii->j", self.sums)

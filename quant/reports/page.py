@@ -36,7 +36,7 @@ class Block:
 
 def render_page(result: CalibrationResult) -> str:
     """Return the whole page."""
-    environment = _environment()
+    environment = page_environment()
     style = Markup((TEMPLATES / "page.css").read_text(encoding="utf-8"))
     return environment.get_template("page.html").render(title=result.title, style=style, blocks=_blocks(result))
 
@@ -56,7 +56,7 @@ def render_section(section: Section, result: CalibrationResult, analyte: int = 0
         values = section.context(result, result.analytes[analyte], f"a{analyte + 1}")
     else:
         values = section.context(result)
-    return Markup(_environment().get_template(f"{section.name}.html").render(values))
+    return Markup(page_environment().get_template(f"{section.name}.html").render(values))
 
 
 def _blocks(result: CalibrationResult) -> list[Block]:
@@ -75,7 +75,8 @@ def _blocks(result: CalibrationResult) -> list[Block]:
     return blocks
 
 
-def _environment() -> Environment:
+def page_environment() -> Environment:
+    """Return what renders templates: everything is escaped, and a missing value is an error."""
     environment = Environment(
         loader=FileSystemLoader(TEMPLATES),
         autoescape=True,  # sample IDs and titles are hostile input

@@ -7,6 +7,8 @@ from typing import Any
 
 from quant.calibration.result import AnalyteResult, CalibrationResult
 from quant.files import write_text
+from quant.inspection.inspect import InspectionResult
+from quant.reports.inspection_page import inspection_json, render_inspection
 from quant.reports.keys import key_docs
 from quant.reports.page import render_page
 from quant.result import Result, documented, jsonable
@@ -58,6 +60,15 @@ def write_report(result: CalibrationResult, folder: str | Path) -> ReportPaths:
     """
     paths = ReportPaths(Path(folder) / "report.html", Path(folder) / "calibration.json")
     page, numbers = render_page(result), report_json(result)
+    write_text(paths.html, page)
+    write_text(paths.json, numbers)
+    return paths
+
+
+def write_inspection(result: InspectionResult, folder: str | Path) -> ReportPaths:
+    """Write `inspection.html` and `inspection.json`, as `write_report` writes those of a calibration."""
+    paths = ReportPaths(Path(folder) / "inspection.html", Path(folder) / "inspection.json")
+    page, numbers = render_inspection(result), inspection_json(result)
     write_text(paths.html, page)
     write_text(paths.json, numbers)
     return paths

@@ -249,7 +249,7 @@ def _half_widths(
     own, new = as_vector("scales", scales), np.atleast_2d(np.asarray(new_scales, dtype=np.float64))
     if own.size != residuals.size or new.shape not in (shape, (1, shape[1])):
         raise SampleMismatchError(
-            f"{own.size} scales and new scales of shape {new.shape} do not fit {shape[0]} residuals, {shape[1]} new samples."
+            f"{own.size} scales and new scales of shape {new.shape}; expected {shape[0]}, and ({shape[1]},) or {shape}."
         )
     if not ((own > 0).all() and (new > 0).all() and np.isfinite(new).all()):
         raise ParameterError("scales must be finite and above zero; use a level function with a floor.")

@@ -71,7 +71,9 @@ def guard_band(standard_uncertainty: float, factor: float) -> float:
     ----------
     .. [1] JCGM 106:2012, clause 8 (from memory): w = r·U, which is factor·u here.
     """
-    if not (math.isfinite(standard_uncertainty) and standard_uncertainty >= 0 and math.isfinite(factor) and factor >= 0):
+    if not (
+        math.isfinite(standard_uncertainty) and standard_uncertainty >= 0 and math.isfinite(factor) and factor >= 0
+    ):
         raise ParameterError(
             f"standard_uncertainty = {standard_uncertainty}, factor = {factor}; expected finite numbers, 0 or more."
         )
@@ -189,8 +191,8 @@ def decide(
 def replicates_to_decide(value: float, limit: float, factor: float, fixed: float, repeatability: float) -> int | None:
     """Fewest replicates whose mean, at this same value, would settle a decision; None where no number would.
 
-    The standard uncertainty of a mean of m is sqrt(fixed² + repeatability²/m): replicates shrink repeatability only. With
-    d = |L - x|/factor the number is repeatability²/(d² - fixed²), rounded up.
+    The standard uncertainty of a mean of m is sqrt(fixed² + repeatability²/m): replicates shrink repeatability only.
+    With d = |L - x|/factor the number is repeatability²/(d² - fixed²), rounded up.
 
     Parameters
     ----------

@@ -53,7 +53,7 @@ def result_sd(leverage: ArrayLike, sensitivity: float, signal_sd: float, referen
         SEN = 1/|b|, b the regression vector. [ordinate / unit of the analyte]
     signal_sd : float
         s_x, noise of one point of a spectrum behind the preprocessing, alike and independent at all points. Where it is
-        not (after a derivative), give sqrt(b'Σb)·SEN, see `error_parts.propagated_variance`. [ordinate]
+        not (after a derivative), give sqrt(b'Σb)·SEN, see `replicate_parts.propagated_variance`. [ordinate]
     reference_sd : float
         s_y, standard error of the calibration's laboratory values. [unit of the analyte]
 
@@ -120,7 +120,9 @@ def blank_leverages(reference: ArrayLike, leverages: ArrayLike, *, mean_term: bo
     if np.ptp(y) == 0:
         raise NotEnoughDataError(f"all {y.size} reference values are {y[0]:.6g}; samples that differ are needed.")
     if (h < (1 - 1e-9) / y.size).any():
-        raise ParameterError(f"leverages below 1/n = {1 / y.size:.4g}; give those of the mean-centred model, 1/n included.")
+        raise ParameterError(
+            f"leverages below 1/n = {1 / y.size:.4g}; give those of the mean-centred model, 1/n included."
+        )
     own = (y - y.mean()) ** 2
     total = float(own.sum())
     lowest = float(y.mean()) ** 2 / total

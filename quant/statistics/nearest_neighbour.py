@@ -42,7 +42,7 @@ def whitened_scores(scores: ArrayLike, calibration_scores: ArrayLike) -> FloatAr
         raise NotEnoughDataError(f"{n} samples with {n_factors} factor(s); more samples than factors are needed.")
     middle = calibration.mean(axis=0)
     centred = calibration - middle
-    triangle = np.linalg.qr(centred, mode="r")  # S'S = R'R
+    triangle = np.linalg.qr(centred)[1]  # S'S = R'R
     size = np.linalg.norm(centred, axis=0)
     if (np.abs(np.diag(triangle)) <= 10 * n * np.finfo(np.float64).eps * size).any():
         raise NotEnoughDataError("the scores of one factor are constant or follow from the others'; use fewer factors.")
@@ -76,7 +76,8 @@ def nearest_neighbour_distance(scores: ArrayLike, calibration_scores: ArrayLike)
     ----------
     .. [1] ASTM E1655-05(2012), nearest neighbour distance (from memory).
     """
-    return _squared_distances(scores, calibration_scores).min(axis=1)
+    nearest: FloatArray = _squared_distances(scores, calibration_scores).min(axis=1)
+    return nearest
 
 
 def gap_limit(calibration_scores: ArrayLike) -> float:

@@ -38,8 +38,8 @@ def randomisation_test(
     """Test whether the errors of one model are larger than those of another on the same samples.
 
     Where both models predict equally well, each difference d of squared errors could as well have the other sign. p is
-    the share of sign patterns whose mean is at least that observed: of all 2^n patterns (the observed one among them) up
-    to 16 samples, else (1 + random patterns as large)/(n_random + 1).
+    the share of sign patterns whose mean is at least that observed: of all 2^n patterns (the observed one among them)
+    up to 16 samples, else (1 + random patterns as large)/(n_random + 1).
 
     Parameters
     ----------
@@ -64,7 +64,9 @@ def randomisation_test(
     ----------
     .. [1] H. van der Voet, Chemom. Intell. Lab. Syst. 25 (1994) 313-323 (from memory).
     """
-    one, other = paired_vectors("squared errors", squared_errors, "squared errors of the other model", other_squared_errors)
+    one, other = paired_vectors(
+        "squared errors", squared_errors, "squared errors of the other model", other_squared_errors
+    )
     if (one < 0).any() or (other < 0).any():
         raise ParameterError("squared errors hold negative numbers; pass the squares of predicted - reference.")
     if n_random < 1:

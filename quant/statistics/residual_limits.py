@@ -44,8 +44,8 @@ def residual_variances(residual_spectra: ArrayLike, degrees_of_freedom: float | 
     divisor = len(residual) - 1 if degrees_of_freedom is None else degrees_of_freedom
     if not divisor > 0:
         raise ParameterError(f"degrees_of_freedom = {divisor}; expected a number above zero.")
-    values: FloatArray = np.linalg.svd(residual, compute_uv=False) ** 2 / divisor
-    return values
+    singular: FloatArray = np.linalg.svd(residual, compute_uv=False).astype(np.float64, copy=False)
+    return singular**2 / divisor
 
 
 def jackson_mudholkar(variances: ArrayLike, probability: float = 0.95) -> float:

@@ -1,5 +1,7 @@
 """Which samples are left out together: the default, groups, seeds."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
@@ -78,3 +80,55 @@ def test_what_cannot_be_divided_is_refused(make_samples, make_recipe):
         folds_of(make_samples(n=6), make_recipe, 'scheme = "interleaved"\nfolds = 8')
     with pytest.raises(NotEnoughDataError):
         folds_of(with_batches(make_samples, "AAAA"), make_recipe, 'scheme = "leave_one_group_out"\ngroup = "batch"')
+
+
+def with_twins(samples, *pairs):
+    """Return samples of which the second of each pair has the spectra of the first."""
+    values = samples.spectra.values.copy()
+    for first, second in pairs:
+        values[second] = values[first]
+    spectra = type(samples.spectra)(values, samples.spectra.axis, samples.spectra.sample_ids)
+    return replace(samples, spectra=spectra)
+
+
+TOGETHER = "duplicates_together = true\n"
+
+
+def test_duplicates_share_a_fold_where_asked(make_samples, make_recipe):
+    samples = with_twins(make_samples(n=8), (1, 5), (5, 7))
+    text = 'scheme = "interleaved"\nfolds = 3\n'
+    apart = folds_of(samples, make_recipe, text)
+    assert apart.repeats[0].tolist() == [0, 1, 2, 0, 1, 2, 0, 1]
+    folds = folds_of(samples, make_recipe, TOGETHER + text)
+    assert folds.repeats[0].tolist() == [0, 1, 2, 0, 1, 1, 2, 1]  # distinct spectra are numbered, not samples
+    assert folds.scheme == "3 interleaved folds, duplicate spectra together"
+    assert (apart.n_units, folds.n_units) == (8, 6)
+
+
+def test_nearly_equal_is_not_equal(make_samples, make_recipe):
+    samples = with_twins(make_samples(n=4), (0, 3))
+    values = samples.spectra.values.copy()
+    values[3, 20] = np.nextafter(values[3, 20], 9)
+    near = replace(samples, spectra=type(samples.spectra)(values, samples.spectra.axis, samples.sample_ids))
+    assert folds_of(samples, make_recipe, TOGETHER).n_units == 3
+    assert folds_of(near, make_recipe, TOGETHER).n_units == 4
+
+
+def test_one_equal_replicate_is_enough(make_samples, make_recipe):
+    samples = make_samples(n=4, replicates=2)
+    twins = with_twins(samples, (0, 7))  # the first spectrum of S01, the second of S04
+    assert folds_of(samples, make_recipe, TOGETHER).n_units == 4
+    assert folds_of(twins, make_recipe, TOGETHER).repeats[0].tolist() == [0, 1, 2, 0]
+
+
+def test_groups_and_duplicates_are_joined(make_samples, make_recipe):
+    # A and B are tied by a duplicate, so that both are left out at once.
+    samples = with_twins(with_batches(make_samples, "AABBCCDD"), (1, 2))
+    folds = folds_of(samples, make_recipe, TOGETHER)
+    assert folds.scheme == "leave one batch out, duplicate spectra together"
+    assert folds.repeats[0].tolist() == [0, 0, 0, 0, 1, 1, 2, 2]
+    folds = folds_of(samples, make_recipe, TOGETHER + 'scheme = "interleaved"\nfolds = 2\ngroup = "batch"')
+    assert folds.scheme == "2 interleaved folds, equal 'batch' and duplicate spectra together"
+    assert folds.repeats[0].tolist() == [0, 0, 0, 0, 1, 1, 0, 0]
+    with pytest.raises(RecipeError, match="needs group"):
+        folds_of(samples, make_recipe, TOGETHER + 'scheme = "leave_one_group_out"')

@@ -108,6 +108,26 @@ def test_tecator_cross_validation(analyte):
 
 
 @pytest.mark.parametrize("analyte", ["fat", "moisture", "protein"])
+def test_tecator_with_duplicates_kept_together(analyte):
+    # Computed with NumPy (SIMPLS): distinct spectra numbered in order of first appearance, that number mod 10 the fold.
+    recipe = load_recipe(ROOT / "configs" / "tecator.toml")
+    text = recipe.text.replace("[cross_validation]", "[cross_validation]\nduplicates_together = true")
+    training = samples_of("tecator").subset(np.array(samples_of("tecator").groups("subset")) != "T")
+    found = cross_validate(training, recipe_from_text(text, folder=recipe.folder), analyte)
+    figures = expected("tecator")["results"][analyte]["sg_d2_w9p2__snv"]
+    assert found.scheme == "10 interleaved folds, duplicate spectra together"
+    assert found.n_units == 172 - 14  # of 22 pairs, 14 lie within the calibration samples
+    assert found.rmsecv == pytest.approx(figures["rmsecv_duplicate_grouped"], abs=1e-8)
+
+
+def test_tecator_duplicates_across_the_validation_are_told():
+    twins = expected("tecator")["test_samples_with_an_exact_duplicate_in_calibration"]
+    (remark,) = result_of("tecator")["fat"].remarks
+    assert remark.startswith("7 of 43 validation samples have a spectrum that is also among the calibration's")
+    assert all(f"{number}" in remark for number in twins[:5])
+
+
+@pytest.mark.parametrize("analyte", ["fat", "moisture", "protein"])
 def test_tecator_test_samples(analyte):
     # One calibration predicts with every number of factors: its largest model holds all smaller ones.
     result = calibrate(with_factors("tecator", 20, analyte), samples_of("tecator"))[analyte]

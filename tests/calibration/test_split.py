@@ -7,6 +7,7 @@ import pytest
 
 from quant.calibration.split import INDEPENDENT, INTERNAL, split_samples
 from quant.errors import ParameterError, SampleMismatchError
+from quant.spectra.reference_table import Analyte
 
 
 def split_of(samples, recipe, separate=None):
@@ -124,3 +125,40 @@ def test_names_that_do_not_exist_are_refused(make_samples, make_recipe):
         split_of(make_samples(n=6), make_recipe('[[exclude]]\nsamples = ["S06..S07"]\nreason = "x"'))
     with pytest.raises(SampleMismatchError, match="No sample S07 among the 6 paired samples"):
         split_of(make_samples(n=6), make_recipe('[validation]\nsamples = ["S06..S07"]'))
+
+
+def with_a_twin(samples, first, second):
+    values = samples.spectra.values.copy()
+    values[second] = values[first]
+    return replace(samples, spectra=type(samples.spectra)(values, samples.spectra.axis, samples.spectra.sample_ids))
+
+
+@pytest.mark.parametrize("way", ["kennard_stone", "random"])
+def test_a_split_keeps_duplicates_together_where_asked(make_samples, make_recipe, way):
+    samples = make_samples(n=12)
+    for first in range(0, 12, 2):
+        samples = with_a_twin(samples, first, first + 1)
+    text = f'[validation]\nsplit = "{way}"\nfraction = 0.5\n[cross_validation]\n'
+    split = split_of(samples, make_recipe(f"{text}duplicates_together = true"))
+    numbers = {int(name[1:]) for name in split.validation.sample_ids}
+    assert len(numbers) == 6
+    assert {number + 1 if number % 2 else number - 1 for number in numbers} == numbers
+    assert split.remarks() == ()
+
+
+def test_a_duplicate_across_the_validation_is_told(make_samples, make_recipe):
+    recipe = make_recipe('[validation]\nsamples = ["S01..S04"]')
+    assert split_of(make_samples(n=12), recipe).remarks() == ()
+    (remark,) = split_of(with_a_twin(make_samples(n=12), 2, 9), recipe).remarks()
+    assert remark.startswith("1 of 4 validation samples have a spectrum that is also among the calibration's")
+    assert "(S03)" in remark
+
+
+def test_tables_on_another_basis_are_refused(make_samples, make_recipe):
+    recipe = make_recipe('[validation]\nfiles = ["v.csv"]')
+    dry, wet = (Analyte("acid", "% m/m", basis=basis) for basis in ("dry", "wet"))
+    calibration = replace(make_samples(n=6), analytes=(dry,))
+    separate = replace(renamed(make_samples(n=4), "V"), analytes=(wet,))
+    with pytest.raises(SampleMismatchError, match="are in % m/m dry basis, the validation's in % m/m wet basis"):
+        split_of(calibration, recipe, separate)
+    assert len(split_of(calibration, recipe, replace(separate, analytes=(dry,))).validation) == 4

@@ -8,8 +8,9 @@ import pytest
 from quant.calibration.calibrate import calibrate
 from quant.calibration.split import INTERNAL
 from quant.calibration.validate import regression_direction, validate
-from quant.errors import AcquisitionMismatchError, QuantityError
+from quant.errors import AcquisitionMismatchError, QuantityError, SampleMismatchError
 from quant.prediction.predict import predict
+from quant.spectra.reference_table import Analyte
 from quant.statistics.significance import PREDICTED_ON_REFERENCE, REFERENCE_ON_PREDICTED
 
 
@@ -79,3 +80,16 @@ def test_direction_of_the_line(model, make_samples, make_recipe):
     band = '[regression]\nmethod = "band_area"\nbands = [{ range = [1700, 1760], baseline = [1700, 1760] }]'
     assert regression_direction(model) == REFERENCE_ON_PREDICTED
     assert regression_direction(calibrate(make_recipe(band), make_samples()).model) == PREDICTED_ON_REFERENCE
+
+
+def test_values_on_another_basis_are_refused(model, make_samples, make_recipe):
+    samples = make_samples(n=12)
+    dry, wet = (Analyte("acid", "% m/m", basis=basis) for basis in ("dry", "wet"))
+    stated = calibrate(make_recipe("[regression]\nfactors = 2"), replace(samples, analytes=(dry,)))["acid"]
+    assert (stated.unit, stated.model.analyte.basis) == ("% m/m dry basis", "dry")
+    assert "9 % m/m dry basis" in str(stated.model)
+    assert predict(stated.model, samples.spectra).predictions[0].unit == "% m/m dry basis"
+    with pytest.raises(SampleMismatchError, match="are in % m/m dry basis, the validation's in % m/m wet basis"):
+        validate(stated.model, replace(samples, analytes=(wet,)))
+    with pytest.raises(SampleMismatchError, match="are in % m/m, the validation's in mg/kg"):
+        validate(model, replace(samples, analytes=(Analyte("acid", "mg/kg"),)))

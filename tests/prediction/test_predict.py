@@ -6,7 +6,8 @@ import numpy as np
 import pytest
 
 from quant.errors import AxisMismatchError
-from quant.prediction.predict import NOT_STATED, predict, true_value_interval
+from quant.prediction.predict import predict
+from quant.prediction.uncertainty import NOT_STATED, true_value_interval
 from quant.spectra.axis import SpectralAxis
 from quant.statistics.intervals import NOT_RESOLVABLE
 

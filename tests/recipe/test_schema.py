@@ -8,7 +8,8 @@ import pytest
 from quant.errors import RecipeError
 from quant.readers.options import FORMATS, STATED_QUANTITIES, ReadingOptions
 from quant.recipe.load import recipe_from_text
-from quant.recipe.schema import DEFAULTS, Recipe, SpectraTable
+from quant.recipe.schema import Recipe, SpectraTable
+from quant.recipe.table import DEFAULTS
 from quant.statistics.factor_rules import RULES
 from quant.units import AXIS_UNITS
 
@@ -16,10 +17,12 @@ SMALLEST = 'title = "t"\n[spectra]\nfiles = ["x"]\n[reference]\nfile = "x"\n[[an
 
 
 def test_every_default_is_in_force():
-    recipe = recipe_from_text(f'{SMALLEST}[validation]\nsplit = "random"')
-    for table, keys in DEFAULTS.items():
+    audit = "[decision]\nlimit = 1.0\n[acceptance]\nmin_samples = 1\n"
+    recipe = recipe_from_text(f'{SMALLEST}{audit}[validation]\nsplit = "random"')
+    for name, keys in DEFAULTS.items():
+        table = getattr(recipe, name)
         for key, value in keys.items():
-            assert getattr(getattr(recipe, table), key) == value
+            assert getattr(table[0] if isinstance(table, list) else table, key) == value
 
 
 def test_every_default_that_is_something_stands_in_the_file():

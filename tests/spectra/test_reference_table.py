@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from quant.errors import ParameterError, SampleMismatchError
-from quant.spectra.reference_table import Analyte, ReferenceTable
+from quant.spectra.reference_table import Analyte, ReferenceTable, Repeatability, refuse_other_scale
 
 ETHANOL, WATER = Analyte("ethanol", "% m/m"), Analyte("water")
 
@@ -33,3 +33,34 @@ def test_parts_that_do_not_fit(values: list[object], notes: list[dict[str, str]]
 def test_a_sample_has_one_row() -> None:
     with pytest.raises(SampleMismatchError, match="more than one row for A, C; expected one"):
         ReferenceTable(["C", "A", "B", "A", "C"], [WATER], [[1]] * 5)
+
+
+def test_a_basis_is_printed_with_the_unit() -> None:
+    assert Analyte("fat", "% m/m", basis="dry").printed_unit == "% m/m dry basis"
+    assert (Analyte("fat", "% m/m").printed_unit, Analyte("fat", basis="wet").printed_unit) == ("% m/m", "wet basis")
+    with pytest.raises(ParameterError, match="basis of fat = 'moist'; expected one of '', 'wet', 'dry'"):
+        Analyte("fat", basis="moist")
+
+
+def test_limits_and_determinations() -> None:
+    table = ReferenceTable(["A", "B"], [ETHANOL], [[np.nan], [2]], censored=[[0.5], [np.nan]])
+    assert table.censored[0, 0] == 0.5
+    assert table.determinations.tolist() == [[1], [1]]
+    with pytest.raises(ValueError, match="read-only"):
+        table.censored[0, 0] = 1
+    with pytest.raises(ParameterError, match="Both a value and an upper limit for B; expected one of the two"):
+        ReferenceTable(["A", "B"], [ETHANOL], [[1], [2]], censored=[[np.nan], [3]])
+    with pytest.raises(ParameterError, match=r"determinations has shape \(2,\); expected that of the values, \(2, 1\)"):
+        ReferenceTable(["A", "B"], [ETHANOL], [[1], [2]], determinations=[2, 2])
+    known = {"ethanol": Repeatability(0.1, 3, 3)}
+    assert ReferenceTable(["A"], [ETHANOL], [[1]], repeatability=known).repeatability == known
+
+
+def test_another_scale_is_refused() -> None:
+    dry, wet = Analyte("fat", "% m/m", basis="dry"), Analyte("fat", "% m/m", basis="wet")
+    with pytest.raises(SampleMismatchError, match="of fat are in % m/m dry basis, the validation's in % m/m wet basis"):
+        refuse_other_scale(dry, wet)
+    with pytest.raises(SampleMismatchError, match="are in % m/m, the validation's in mg/kg"):
+        refuse_other_scale(Analyte("fat", "% m/m"), Analyte("fat", "mg/kg"))
+    for other in (Analyte("fat"), Analyte("fat", "wt%"), dry):
+        refuse_other_scale(dry, other)  # what is not stated does not clash

@@ -98,3 +98,20 @@ def test_words_and_names_that_are_not_there() -> None:
     with pytest.raises(SampleMismatchError, match="No sample Z among the 3 paired samples"):
         samples.positions(["A", "Z"])
     assert samples.positions(["C", "B"]).tolist() == [2, 0]
+
+
+def test_values_below_a_limit_are_not_missing() -> None:
+    table = ReferenceTable(
+        ["A", "B", "C"],
+        [ETHANOL],
+        [[1], [np.nan], [3]],
+        censored=[[np.nan], [0.1], [np.nan]],
+        determinations=[[1], [2], [3]],
+    )
+    samples = pair_samples(SPECTRA, table)
+    assert np.array_equal(samples.upper_limits("ethanol"), [0.1, np.nan, np.nan], equal_nan=True)
+    assert samples.determinations_of("ethanol").tolist() == [2, 1, 3]
+    part = samples.subset([0, 2])
+    assert np.array_equal(part.upper_limits("ethanol"), [0.1, np.nan], equal_nan=True)
+    assert part.determinations_of("ethanol").tolist() == [2, 3]
+    assert np.isnan(pair_samples(SPECTRA, reference()).upper_limits("water")).all()

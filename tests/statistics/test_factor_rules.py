@@ -67,6 +67,7 @@ def test_no_rule_answers_with_the_mean():
         "one_standard_error": 1,
         "minimum": 1,
         "f_ratio": 1,
+        "randomisation": 1,
     }
 
 

@@ -11,6 +11,7 @@ from quant.readers.jcamp_dx.labels import Block
 
 _UNCERTAIN = 0.5  # share of the point spacing by which an abscissa may be off
 _WORTH_A_NOTE = 0.1
+_ROUNDED_STEP = 0.01  # share by which DELTAX may be rounded
 
 
 def axis_values(
@@ -51,7 +52,7 @@ def axis_values(
                 block.deviates(how)
             if worst > _WORTH_A_NOTE:
                 block.deviates(f"abscissae drift by up to {worst:.2f} point spacings")
-            _compare_step(block, scale, x)
+            _compare_step(block, scale, x, verified=int(first.max()) > 0)
             return x
         wrong = int((off > _UNCERTAIN).argmax())
         refusal = refusal or FileFormatError(
@@ -91,12 +92,19 @@ def _candidates(
         yield found, "abscissae are not evenly spaced; each line has its own, which is taken"
 
 
-def _compare_step(block: Block, scale: Scale, x: FloatArray) -> None:
-    """Note a DELTAX that is not the step of the axis."""
+def _compare_step(block: Block, scale: Scale, x: FloatArray, *, verified: bool) -> None:
+    """Note a DELTAX that is not the step of the axis; refuse it where only the first abscissa bears the axis out."""
     if scale.step is None:
         return
     step = float(x[-1] - x[0]) / (x.size - 1)
     if scale.step * step < 0:
         block.deviates("##DELTAX= has the wrong sign")
-    if abs(abs(scale.step) - abs(step)) * (x.size - 1) > _UNCERTAIN * abs(step):
+    off = abs(abs(scale.step) - abs(step))
+    if off > _ROUNDED_STEP * abs(step) and not verified:
+        raise FileFormatError(
+            block.path,
+            f"##DELTAX= is {scale.step:g} where FIRSTX, LASTX and {x.size} points give {step:.6g}; expected them to "
+            "agree, for no line but the first has an abscissa. Export it again.",
+        )
+    if off * (x.size - 1) > _UNCERTAIN * abs(step):
         block.deviates(f"##DELTAX= is {scale.step:g} where the step is {step:.6g}")

@@ -110,11 +110,10 @@ def _check_inner_count(block: Block, inner: int) -> None:
     if stated == str(inner):
         return
     if not block.ended:
-        found = f"##BLOCKS= {stated}" if stated else "neither ##BLOCKS="
         raise FileFormatError(
             block.path,
-            f"{found} where {inner} blocks are, and {'no' if stated else 'nor'} ##END= of the LINK block; "
-            "expected one of them to fit. The file is cut.",
+            f"found {inner} block(s); expected {stated or 'a count'} (##BLOCKS=), or ##END= of the LINK block. "
+            "The file is cut.",
             line=None if record is None else record.line,
         )
     block.deviates(f"##BLOCKS= is {stated} where {inner} blocks are" if stated else "##BLOCKS= is missing")

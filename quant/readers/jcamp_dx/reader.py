@@ -92,9 +92,10 @@ def _join(path: Path, parts: Sequence[Part], sets: Sequence[SpectraSet], options
         held = "; ".join(
             f"{part} ({spectra.quantity}, {spectra.axis})" for part, spectra in zip(parts, sets, strict=True)
         )
+        why = f" {problem}" if options.resample else ""
         raise type(problem)(
             f"{path} holds blocks that differ in axis or ordinate: {held}. Expected spectra alike: choose one, "
-            f'block = "{parts[0].name}" (its title or number), or export them apart.'
+            f'block = "{parts[0].name}" (its title or number), or export them apart.{why}'
         ) from problem
 
 

@@ -10,9 +10,10 @@ import numpy as np
 from quant.arrays import FloatArray
 from quant.errors import FileFormatError
 from quant.readers.jcamp_dx.labels import Block
-from quant.readers.jcamp_dx.numbers import factor_of, number_of
+from quant.readers.jcamp_dx.numbers import decimals_of, factor_of, number_of
 
-_ROUNDING = 1e-3  # share by which a stated ordinate may be off
+_SINGLE_PRECISION = 1e-6  # share by which a stated ordinate may be off
+_FACTORS = 2.0  # multiples of YFACTOR by which it may be off: labels are often made before ordinates are rounded
 
 
 @dataclass(frozen=True)
@@ -51,7 +52,7 @@ def y_factor_of(block: Block, y: FloatArray, decimal: str) -> float:
     statements = _statements(block, y, 1.0 if factor is None else factor, decimal)
     if factor is None:
         first = next((statement for statement in statements if statement.label == "FIRSTY"), None)
-        if first is None or abs(first.written - first.stated) > _ROUNDING * abs(first.stated):
+        if first is None or not first.holds_unscaled or first.stated == 0:
             raise FileFormatError(
                 block.path, "no ##YFACTOR=, and no ##FIRSTY= that would show it to be 1. Export it again."
             )
@@ -81,9 +82,9 @@ def _statements(block: Block, y: FloatArray, factor: float, decimal: str) -> lis
         record, stated = block.find(label), number_of(block, label, decimal)
         if record is None or stated is None or np.isnan(ordinate):
             continue
-        relative = _ROUNDING * abs(stated)
-        allowed, unscaled = abs(factor) + relative, min(1.0, abs(factor)) + relative
-        found.append(_Statement(label, record.line, stated, ordinate, ordinate * factor, allowed, unscaled))
+        rounding = 0.5 * 10.0 ** -decimals_of(record.value) + _SINGLE_PRECISION * abs(stated)
+        allowed = rounding + _FACTORS * abs(factor)
+        found.append(_Statement(label, record.line, stated, ordinate, ordinate * factor, allowed, rounding))
     return found
 
 

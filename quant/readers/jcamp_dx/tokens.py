@@ -63,7 +63,8 @@ def decode_compressed(lines: Lines) -> Ordinates:
     Raises
     ------
     TokenError
-        A count or a difference that has no meaning there, or a check value that is not the last ordinate.
+        A count or a difference that has no meaning there, a number too large, or a check value that is not the last
+        ordinate.
     """
     # In portions that fit the cache; each begins with the last line of the one before, which its first line may check.
     edges = np.unique(np.searchsorted(lines.begin, np.arange(0, len(lines.data), PORTION)))
@@ -185,9 +186,6 @@ def _repeated(
 ) -> tuple[AnyArray, IntArray, IntArray]:
     """Write out what is repeated; a difference repeated is added again."""
     repeats = np.flatnonzero(what == REPEAT)
-    none = repeats[number[repeats] < 1]
-    if none.size:
-        raise TokenError(lines.row_at(int(starts[none[0]])), "a count of repetition of 0")
     counts = np.ones(what.size, np.int64)
     counts[repeats - 1] = np.minimum(number[repeats], MOST_POINTS + 1)
     counts[repeats] = 0

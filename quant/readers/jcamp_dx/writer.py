@@ -109,7 +109,7 @@ def _labels(spectra: SpectraSet, factor: float) -> list[tuple[str, str]]:
         "XUNITS": X_UNITS[axis.unit],
         "YUNITS": Y_UNITS[spectra.quantity],
         "XFACTOR": "1",
-        "YFACTOR": _plain(Decimal(repr(factor))),
+        "YFACTOR": _plain(Decimal(repr(factor)).normalize()),
         "FIRSTX": repr(float(axis.values[0])),
         "LASTX": repr(float(axis.values[-1])),
         "NPOINTS": str(len(axis)),
@@ -123,23 +123,25 @@ def _labels(spectra: SpectraSet, factor: float) -> list[tuple[str, str]]:
 
 
 def _ordinate_labels(ordinates: FloatArray, factor: float) -> dict[str, str]:
-    """Return what the file says of its ordinates: where they have no check values, readers see damage by it."""
+    """Return what the file says of its ordinates: where they have no check values, readers see damage by it.
+
+    Zeros at the end are kept: how exactly an ordinate is stated is how closely it is checked.
+    """
     if np.isnan(ordinates).all():
         return {}
     found = {"FIRSTY": ordinates[0], "MAXY": np.nanmax(ordinates), "MINY": np.nanmin(ordinates)}
-    step = Decimal(repr(factor))
+    step = Decimal(repr(factor)).normalize()
     known = {label: int(value) * step for label, value in found.items() if not math.isnan(value)}
     return {label: _plain(Decimal(f"{number:.12g}")) for label, number in known.items()}
 
 
 def _plain(number: Decimal) -> str:
-    """Return a number without exponent and trailing zeros, unless that would be long.
+    """Return a number without exponent, unless that would be long.
 
     >>> _plain(Decimal("1E-5") * -358), _plain(Decimal("1E-30"))
     ('-0.00358', '1E-30')
     """
-    short = number.normalize()
-    return f"{short:f}" if abs(short.adjusted()) < 15 else f"{short:E}"
+    return f"{number:f}" if abs(number.adjusted()) < 15 else f"{number:E}"
 
 
 def _check_label(label: str, text: str) -> None:

@@ -221,15 +221,21 @@ def test_pairs(tmp_path: Path) -> None:
     spectra = read_text(tmp_path, f"{text}##XYPOINTS= (XY..XY)\n300,1; 301,2\n304.5 -3\n##END=\n")
     assert spectra.axis.values.tolist() == [600, 602, 609]
     assert spectra.values[0].tolist() == [0.5, 1, -1.5]
-    with pytest.raises(FileFormatError, match="line 13: an odd count"):
+    with pytest.raises(FileFormatError, match="line 13: found an odd count"):
         read_text(tmp_path, f"{text}##XYPOINTS= (XY..XY)\n300,1; 301,2\n304.5\n##END=\n")
 
 
-def test_decimal_commas_only_if_stated(tmp_path: Path) -> None:
-    text = text_of({"YFACTOR": "0,5", "LASTX": "609,0"}, "600,0 1 2 3 3 2\n605,0 1 0 -1 -2 -3")
-    assert read_text(tmp_path, text, decimal=",").values[0, 1] == 1
+def test_decimal_commas_only_if_certain_or_stated(tmp_path: Path) -> None:
+    table = "600,0 1 2 3 3 2\n605,0 1 0 -1 -2 -3"
+    certain = read_text(tmp_path, text_of({"YFACTOR": "0,5", "LASTX": "609,0"}, table))
+    assert certain.values[0, 1] == 1
+    assert certain.notes[0]["reader"] == "decimal commas"
+    uncertain = text_of({"YFACTOR": "1", "LASTX": "609,000"}, table)
+    assert read_text(tmp_path, uncertain, decimal=",").values[0, 1] == 2
     with pytest.raises(FileFormatError, match=r'decimal = ","'):
-        read_text(tmp_path, text)
+        read_text(tmp_path, uncertain)
+    with pytest.raises(FileFormatError, match=r'decimal = ","'):
+        read_text(tmp_path, text_of({"LASTX": "609,0"}, table), decimal=".")
 
 
 @pytest.mark.parametrize(
@@ -249,20 +255,20 @@ def test_decimal_commas_only_if_stated(tmp_path: Path) -> None:
         (text_of({"XUNITS": "SECONDS"}), "line 4: ##XUNITS= 'SECONDS'"),
         (text_of(table="600AJT%\n603FjX\n609c"), "line 13: found the check value 6 where the line before ends at 3"),
         (text_of(table="600 1 2 3 3 2\n607 1 0 -1 -2 -3"), "line 13: found the abscissa 607; expected 605"),
-        (text_of(table="600 1 2 3 3 2\n605 1 0 1_0 -2 -3.0"), "line 13: found '1_0'"),
-        (text_of(table="600 1 2 3 3 2\n605 1 0 nan -2 -3.0"), "line 13: found 'nan'"),
+        (text_of(table="600 1 2 3 3 2\n605 1 0 1_0 -2 -3.0"), "line 13: found the character '_'"),
+        (text_of(table="600 1 2 3 3 2\n605 1 0 nan -2 -3.0"), "line 13: found 'nan' where a number should be"),
         (text_of(table="600 1 2 3 3 2\n605 1 0 \u0661 -2 -3.0"), "line 13"),
         (text_of(table="600 1.0 2 3 3 2\n605"), "line 13: found an abscissa without ordinates"),
-        (text_of(table="600 1 2 3 3 2\nsix 1 0 -1 -2 -3"), "line 13: found 'six"),
+        (text_of(table="600 1 2 3 3 2\nsis 1 0 -1 -2 -3"), "line 13: found 'sis"),
+        (text_of(table="600 1 2 3 3 2\n6.0.5 1 0 -1 -2 -3"), "line 13: found"),
         (text_of(table="600 1"), "found 1 ordinate"),
-        (text_of(table=""), "no data under ##XYDATA="),
+        (text_of(table=""), "line 12: found no ordinates under ##XYDATA="),
         (text_of().replace("(X++(Y..Y))", "(X++(R..R))"), "line 11: .*expected"),
-        (text_of().replace("##XYDATA", "##PEAK TABLE"), "##PEAK TABLE= is not read"),
-        (text_of({"NTUPLES": "NMR"}), "##NTUPLES= is not read"),
-        (text_of({"DATA TYPE": "LINK", "BLOCKS": "2"}), "compound file"),
-        (text_of() + text_of(), "compound file of 2 block"),
-        (text_of({"DATA TYPE": "INFRARED INTERFEROGRAM"}), "interferogram"),
-        (text_of().partition("##XYDATA")[0] + "##END=\n", "no ##XYDATA=; found ##TITLE=, ##JCAMP-DX="),
+        (text_of().replace("##XYDATA", "##PEAK TABLE"), "##PEAK TABLE= is no spectrum"),
+        (text_of({"NTUPLES": "NMR"}).replace("##XYDATA", "##XY"), "##NTUPLES= without a ##DATA TABLE="),
+        (text_of({"DATA TYPE": "LINK"}).partition("##XYDATA")[0] + "##END=\n", "LINK block without blocks"),
+        (text_of({"DATA TYPE": "INFRARED INTERFEROGRAM"}), "INTERFEROGRAM is no infrared spectrum"),
+        (text_of().partition("##XYDATA")[0] + "##END=\n", "no ##XYDATA= among ##TITLE=, ##JCAMP-DX="),
         (text_of({"TITLE": ""}), "sample_label"),
         ("nothing", "expected ##TITLE= first"),
         ("##TITLE= \x00", "binary"),

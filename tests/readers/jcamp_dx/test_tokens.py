@@ -3,7 +3,9 @@
 import numpy as np
 import pytest
 
-from quant.readers.jcamp_dx.tokens import TokenError, decode_compressed
+from quant.readers.jcamp_dx import tokens
+from quant.readers.jcamp_dx.scan import TokenError, scan_lines
+from quant.readers.jcamp_dx.tokens import Ordinates
 
 # McDonald R.S., Wilks P.A., Appl. Spectrosc. 42 (1988) 151-162, Table VIIb: found (public test data quoting it).
 TABLE_VII = [1, 2, 3, 3, 2, 1, 0, -1, -2, -3]
@@ -15,6 +17,11 @@ TABLE_VI = [
 VI_DIFDUP = "@VKT%TLkj%J%KLJ%njKjL%kL%jJULJ%kLK1%lLMNPNPRLJ0QTOJ1P"
 VI_DIF = "@%%%KK%%Lkj%J%KLJ%njKjL%kL%jJJJLJ%kLK1%lLMNPNPRLJ0QQOJ1P"
 VI_SQZ = "@@@@BDDDGEDDEEGA0A1A1FEGFIIGA0A0IA0A1A2A5A6A6A4A7C8C8C5C8D2D7E4E9F6G5G8H8I6A04A10A21A28"
+
+
+def decode_compressed(lines: list[str]) -> Ordinates:
+    """Decode ordinates behind an abscissa that is always 0."""
+    return tokens.decode_compressed(scan_lines("\n".join(f"0 {line}" for line in lines).encode()))
 
 
 @pytest.mark.parametrize(
@@ -85,6 +92,7 @@ def test_a_check_value_off_by_one_is_told_and_counts_from_there() -> None:
         (["?J"], 0, "missing ordinate"),
         (["A", "B+"], 1, "sign without a number"),
         (["A", "", "B"], 1, "without ordinates"),
+        (["AJ", "B" + "R99999999999999" * 6000], 0, "too large"),
         (["A", "B#"], 1, "'#'"),
         (["A", "B\x00"], 1, "character"),
         (["A1234567890123456"], 0, "digits"),
@@ -95,3 +103,51 @@ def test_damage_is_refused_with_its_line(lines: list[str], row: int, words: str)
     with pytest.raises(TokenError, match=words) as refusal:
         decode_compressed(lines)
     assert refusal.value.row == row
+
+
+def test_portions_are_decoded_as_the_whole(monkeypatch: pytest.MonkeyPatch) -> None:
+    lines = ["AJT", "DJ", "E?", "A%", "AJ?TB", "BL", "E", "@SAT"]
+    whole = decode_compressed(lines)
+    assert len(whole.values) == 16
+    for size in range(1, 40):
+        monkeypatch.setattr(tokens, "PORTION", size)
+        parts = decode_compressed(lines)
+        assert np.array_equal(parts.values, whole.values, equal_nan=True), size
+        assert parts.first.tolist() == whole.first.tolist()
+        assert (parts.rounded, parts.closed, parts.checked) == (whole.rounded, whole.closed, whole.checked)
+        with pytest.raises(TokenError, match="check value") as refusal:
+            decode_compressed([*lines[:5], "H", *lines[6:], "AJ", "I"])
+        assert refusal.value.row == 9
+
+
+@pytest.mark.parametrize(
+    ("line", "abscissa", "decimals"),
+    [
+        ("599.860@", 599.86, 3),
+        ("-5+1", -5.0, 0),
+        ("+.5 1", 0.5, 1),
+        ("6.00E+02A", 600.0, 0),
+        ("5E-1 A", 0.5, 1),
+        ("  12.\tA", 12.0, 0),
+        ("0.12345678901234567@", 0.12345678901234567, 17),
+        ("600E3", 600.0, 0),  # E and no sign is the digit 5 of the ordinate
+    ],
+)
+def test_abscissae(line: str, abscissa: float, decimals: int) -> None:
+    lines = scan_lines(line.encode())
+    assert lines.abscissae.tolist() == [abscissa]
+    assert lines.decimals == decimals
+    assert not lines.plain
+    assert tokens.decode_compressed(lines).values.size == 1
+
+
+@pytest.mark.parametrize("table", ["1 2.5", "1 2E+1", "1E+1 2e-1", "0.5+1+2.5", "1.2.3A"])
+def test_decimals_and_exponents_among_ordinates_are_seen(table: str) -> None:
+    assert scan_lines(table.encode()).plain
+
+
+@pytest.mark.parametrize("line", ["A1", "E+1", ".", "-", "?"])
+def test_a_line_without_abscissa_is_refused(line: str) -> None:
+    with pytest.raises(TokenError) as refusal:
+        tokens.decode_compressed(scan_lines(f"\n0 1\n{line}".encode()))
+    assert refusal.value.row == 2

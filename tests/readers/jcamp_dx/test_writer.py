@@ -40,12 +40,42 @@ def test_the_smallest_file(tmp_path: Path) -> None:
         "##LASTX= 400.0",
         "##NPOINTS= 5",
         "##DELTAX= -900.0",
-        "##FIRSTY= 0.1",
+        "##FIRSTY= 0.10",
+        "##MAXY= 0.20",
+        "##MINY= 0.10",
         "##XYDATA= (X++(Y..Y))",
         "4000.0A0J0%Tn",  # 0.15 / 0.01 is rounded to 15 = 20 - 5
         "400.0A5",
         "##END=",
     ]
+
+
+@pytest.mark.parametrize(
+    ("first", "factor", "written"),
+    [
+        (-0.00358, 1e-5, "-0.00358"),
+        (0.1 + 0.2, 1e-7, "0.3000000"),
+        (1234.0, 1.0, "1234"),
+        (0.0, 1e-5, "0.00000"),
+        (1.5e-20, 1e-21, "1.5E-20"),
+    ],
+)
+def test_numbers_are_written_short(tmp_path: Path, first: float, factor: float, written: str) -> None:
+    write_jcamp_dx(one([first, 2 * first, 3 * first]), tmp_path / "a.dx", y_factor=factor)
+    assert f"##FIRSTY= {written}\n" in (tmp_path / "a.dx").read_text()
+    after = read_spectra(tmp_path / "a.dx")
+    assert after.values[0, 0] == pytest.approx(first)
+    assert "reader" not in after.notes[0]
+
+
+def test_labels_of_ordinates_are_left_out_where_ordinates_are_missing(tmp_path: Path) -> None:
+    write_jcamp_dx(one([np.nan, 1.0, 2.0]), tmp_path / "a.dx")
+    text = (tmp_path / "a.dx").read_text()
+    assert "FIRSTY" not in text
+    assert "##MAXY= 2.000000000\n" in text
+    write_jcamp_dx(one([np.nan, np.nan]), tmp_path / "b.dx")
+    assert "MAXY" not in (tmp_path / "b.dx").read_text()
+    assert np.isnan(read_spectra(tmp_path / "b.dx").values).all()
 
 
 @pytest.mark.parametrize("form", FORMS)
