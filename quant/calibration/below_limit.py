@@ -36,18 +36,19 @@ class BelowLimitResult(Result):
 
     def remarks(self) -> tuple[str, ...]:
         """Say how the check ended, and ask for what would make it needless."""
-        n = len(self.sample_ids)
-        limit = f"{self.limit.max():g} {self.unit}".rstrip()
+        limit = f"{self.limit.max():.4g} {self.unit}".rstrip()
+        lowest = f"{self.lowest_calibrated:.4g} {self.unit}".rstrip()
         failed = (
-            f"{len(self.contradicting)} of them ({name_some(self.contradicting)}) are predicted above it even at the "
-            "lower end of the 95 % interval: check their labels, their laboratory values, and for interference"
+            f"predicted above it even at the lower end of the 95 % interval: {name_some(self.contradicting)} (check "
+            "labels, laboratory values, interference)"
             if self.contradicting
             else "none of them is predicted above its limit"
         )
+        n = len(self.sample_ids)
         return (
-            f"{n} sample(s) below a detection limit (at most {limit}) took no part in the fit; {failed}",
-            f"leaving them out cuts off the low end at {self.lowest_calibrated:g} {self.unit}".rstrip()
-            + ": prepare blanks and low standards by weighing, measure them, and add them with their known values",
+            f"{n} sample(s) below a detection limit of at most {limit} took no part in the fit; {failed}",
+            f"leaving them out cuts off the low end at {lowest}: prepare blanks and low standards by weighing, measure "
+            "them, and add them with their known values",
         )
 
 

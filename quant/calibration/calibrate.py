@@ -6,14 +6,17 @@ from dataclasses import replace
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
+from quant.calibration.audit import audit, equip
 from quant.calibration.below_limit import check_below_limit
 from quant.calibration.cross_validation import cross_validate, factor_limit, fit_pipeline
 from quant.calibration.cross_validation_result import CrossValidationResult
+from quant.calibration.evidence import Evidence
 from quant.calibration.folds import make_folds
 from quant.calibration.laboratory import laboratory_of
 from quant.calibration.limits import applicability_limits, degrees_of_freedom, interval_parts
 from quant.calibration.picture import picture_of
 from quant.calibration.result import AnalyteResult, CalibrationResult
+from quant.calibration.sealed import Ledger, seal_of
 from quant.calibration.split import split_samples
 from quant.calibration.validate import regression_direction, validate
 from quant.errors import NotEnoughDataError
@@ -21,6 +24,7 @@ from quant.estimator import Step
 from quant.model.calibration import Calibration
 from quant.model.versions import program_versions
 from quant.prediction.applicability import acquisition_domain
+from quant.recipe.audit_schema import table_of
 from quant.recipe.load import load_samples, load_validation_samples
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
 from quant.recipe.schema import Recipe
@@ -32,7 +36,11 @@ TEST_SPECTRA = 3  # kept in the model: the samples with the lowest, middle and h
 
 
 def calibrate(
-    recipe: Recipe, samples: SampleSet | None = None, validation: SampleSet | None = None
+    recipe: Recipe,
+    samples: SampleSet | None = None,
+    validation: SampleSet | None = None,
+    *,
+    ledger: Ledger | None = None,
 ) -> CalibrationResult:
     """Make one calibration for every analyte of a recipe.
 
@@ -41,6 +49,8 @@ def calibrate(
     recipe : Recipe
     samples, validation : SampleSet, optional
         Samples at hand, instead of the files that the recipe names.
+    ledger : Ledger, optional
+        Where looks at validation sets are counted; recipe and criteria are sealed in it before any value is read.
 
     Returns
     -------
@@ -52,9 +62,11 @@ def calibrate(
     QuantError
         Of many kinds; each message says what was found, what was expected and what to do.
     """
+    if ledger is not None:
+        ledger.seal(recipe)
     everything = load_samples(recipe) if samples is None else samples
     separate = load_validation_samples(recipe) if samples is None and validation is None else validation
-    results = tuple(_calibrate_one(recipe, everything, separate, table.name) for table in recipe.analyte)
+    results = tuple(_calibrate_one(recipe, everything, separate, table.name, ledger) for table in recipe.analyte)
     return CalibrationResult(
         title=recipe.title,
         recipe=recipe.text,
@@ -70,7 +82,9 @@ def _unused_values(samples: SampleSet, separate: SampleSet | None) -> tuple[str,
     return tuple(sample for sample in samples.values_without_spectra if sample not in other)
 
 
-def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | None, name: str) -> AnalyteResult:
+def _calibrate_one(
+    recipe: Recipe, samples: SampleSet, separate: SampleSet | None, name: str, ledger: Ledger | None
+) -> AnalyteResult:
     split = split_samples(recipe, samples, separate, name)
     training = split.calibration
     crossed = cross_validate(training, recipe, name)
@@ -83,13 +97,17 @@ def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | Non
     steps, full, processed = fit_pipeline(training, values, unfitted, build_method(recipe, axis_after, most))
     factors, rule = _found(full, factors, rule)
     model = _model(recipe, training, crossed, steps, full.with_factors(factors), factors, processed, name)
+    evidence, detection = equip(Evidence(recipe, model, training, values, crossed, processed, axis_after))
+    model = evidence.model
     _, _, laboratory = laboratory_of(training, name)
     below = check_below_limit(model, split.below_limit)
     mean = training.mean_by_sample(processed)
     fitted = model.method.predict(mean)
-    validated = (
-        validate(model, split.validation, kind=split.kind, how=split.how) if split.validation is not None else None
-    )
+    seal, validated = None, None
+    if split.validation is not None:
+        seal = seal_of(recipe, training, split.validation, name, ledger)  # the look is counted before it is taken
+        criteria = table_of(recipe.acceptance, name)
+        validated = validate(model, split.validation, kind=split.kind, how=split.how, acceptance=criteria)
     return AnalyteResult(
         analyte=analyte.name,
         unit=analyte.printed_unit,
@@ -115,12 +133,14 @@ def _calibrate_one(recipe: Recipe, samples: SampleSet, separate: SampleSet | Non
         cross_validation=crossed,
         rmsecv_by_origin=_rmsecv_by_origin(training.origins, crossed, factors),
         validation=validated,
+        criteria=table_of(recipe.acceptance, name) is not None,
         left_out=split.left_out,
         laboratory=laboratory,
         below_limit=below,
         remarks=tuple(
             remark for found in (laboratory, below, split) if found is not None for remark in found.remarks()
         ),
+        audit=audit(evidence, detection, validated, seal),
         picture=picture_of(model, training, full, axis_after, processed, values),
     )
 

@@ -4,7 +4,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from quant.arrays import IntArray
+from quant.arrays import FloatArray, IntArray
 from quant.result import Result, documented
 from quant.spectra.reference_table import Analyte
 from quant.spectra.sample_set import SampleSet
@@ -27,6 +27,7 @@ class LaboratoryResult(Result):
     degrees_of_freedom: int = documented("Its degrees of freedom")
     n_samples: int = documented("Samples determined more than once")
     determinations: IntArray = documented("Determinations behind the value of each calibration sample")
+    standard_errors: FloatArray = documented("Standard error of each of these means", "unit of the analyte")
     standard_error: float = documented(
         "Root mean square of the standard errors of the calibration samples' values", "unit of the analyte"
     )
@@ -82,6 +83,7 @@ def laboratory_of(samples: SampleSet, name: str) -> tuple[Analyte, str, Laborato
         degrees_of_freedom=found.degrees_of_freedom,
         n_samples=found.n_samples,
         determinations=np.array(count),
+        standard_errors=found.standard_deviation / np.sqrt(count),
         standard_error=error,
         used=used,
     )

@@ -3,6 +3,7 @@
 from dataclasses import dataclass, field
 
 from quant.arrays import FloatArray
+from quant.calibration.audit import AuditResult
 from quant.calibration.below_limit import BelowLimitResult
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.laboratory import LaboratoryResult
@@ -40,11 +41,20 @@ class AnalyteResult(Result):
         "RMSECV of the samples of each origin, where more than one is stated", "unit of the analyte"
     )
     validation: ValidationResult | None = documented("Predictions of samples that took no part, or none")
+    criteria: bool = documented("Whether the recipe has criteria of acceptance")
     left_out: tuple[LeftOut, ...] = documented("Samples left out, and why")
     laboratory: LaboratoryResult | None = documented("What repeated determinations say, or none")
     below_limit: BelowLimitResult | None = documented("Check of samples below a detection limit, or none")
     remarks: tuple[str, ...] = documented("What else should be known of the samples")
+    audit: AuditResult = documented("Diagnostics, uncertainty, detection, standards, seal and decision limit")
     picture: Picture = documented("The numbers behind the pictures")
+
+    @property
+    def accepted(self) -> bool:
+        """False where the recipe has criteria of acceptance and independent validation does not meet them all."""
+        if not self.criteria:
+            return True
+        return self.validation is not None and self.validation.accepted
 
     def rows(self) -> list[Row]:
         """The few figures that matter first."""
@@ -110,6 +120,11 @@ class CalibrationResult(Result):
     def __str__(self) -> str:
         """Title, then one block an analyte."""
         return "\n\n".join([self.title, *map(str, self.analytes)])
+
+    @property
+    def accepted(self) -> bool:
+        """False where criteria of acceptance were not met, or nothing was there to hold against them."""
+        return all(result.accepted for result in self.analytes)
 
 
 def _significance(figures: Figures) -> str:

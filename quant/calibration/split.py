@@ -11,7 +11,7 @@ from quant.errors import ParameterError, SampleMismatchError
 from quant.preprocessing.chain import fit_chain
 from quant.recipe.pipeline import build_steps
 from quant.recipe.schema import Recipe
-from quant.spectra.reference_table import refuse_other_scale
+from quant.spectra.concentration import refuse_other_scale
 from quant.spectra.sample_ids import expand_ids
 from quant.spectra.sample_set import SampleSet
 from quant.statistics import splits
@@ -130,7 +130,7 @@ def _with_values(samples: SampleSet, name: str) -> tuple[SampleSet, list[LeftOut
     reasons = [
         f"no reference value of {name}"
         if np.isnan(limit)
-        else f"{name} below the detection limit of {limit:g} {analyte.printed_unit}".rstrip()
+        else f"{name} below the detection limit of {limit:.4g} {analyte.printed_unit}".rstrip()
         for limit in limits
     ]
     left_out = [LeftOut(samples.sample_ids[i], reasons[i]) for i in np.flatnonzero(absent)]

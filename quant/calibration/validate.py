@@ -5,13 +5,16 @@ from dataclasses import dataclass
 import numpy as np
 
 from quant.arrays import BoolArray, FloatArray
+from quant.calibration.acceptance import check_acceptance
+from quant.calibration.requirement import MET, Requirement
 from quant.calibration.split import INDEPENDENT
 from quant.model.calibration import Calibration
 from quant.prediction.applicability import check_acquisition, judge
 from quant.prediction.predict import evaluate
+from quant.recipe.audit_schema import AcceptanceTable
 from quant.regression.band_area import BandArea
 from quant.result import Result, documented
-from quant.spectra.reference_table import refuse_other_scale
+from quant.spectra.concentration import refuse_other_scale
 from quant.spectra.sample_set import NOT_STATED, SampleSet
 from quant.statistics.figures import Figures, figures_of_merit
 from quant.statistics.significance import PREDICTED_ON_REFERENCE, REFERENCE_ON_PREDICTED
@@ -36,24 +39,32 @@ class ValidationResult(Result):
     inside: BoolArray = documented("Whether the interval holds the reference value")
     figures: Figures = documented("Figures of merit")
     by_origin: dict[str, Figures] = documented("The same for each origin of the samples, where more than one is stated")
+    acceptance: tuple[Requirement, ...] = documented("The recipe's criteria, one entry each; empty without any")
 
     @property
     def accepted(self) -> bool:
-        """False for an internal test: it proves nothing about separately prepared material."""
-        return self.kind == INDEPENDENT
+        """True if all criteria are met; never for an internal test, which proves nothing about separate material."""
+        return self.kind == INDEPENDENT and all(row.verdict == MET for row in self.acceptance)
 
     def __str__(self) -> str:
-        """Kind, number of samples, figures of merit."""
+        """Kind, number of samples, figures of merit, criteria of acceptance."""
         inside = f"{int(self.inside.sum())} of {self.inside.size} reference values inside their 95 % interval"
         origins = [
             f"  {origin}: n {f.n_samples}, RMSEP {f.rmse:.4g}, bias {f.bias:.3g} {self.unit}"
             for origin, f in self.by_origin.items()
         ]
         title = f"{self.kind.capitalize()} of {self.analyte}: {self.how}"
-        return "\n".join([title, str(self.figures), inside, *origins])
+        return "\n".join([title, str(self.figures), inside, *origins, *map(str, self.acceptance)])
 
 
-def validate(model: Calibration, samples: SampleSet, *, kind: str = INDEPENDENT, how: str = "") -> ValidationResult:
+def validate(
+    model: Calibration,
+    samples: SampleSet,
+    *,
+    kind: str = INDEPENDENT,
+    how: str = "",
+    acceptance: AcceptanceTable | None = None,
+) -> ValidationResult:
     """Predict samples with known values and compare.
 
     Parameters
@@ -65,6 +76,8 @@ def validate(model: Calibration, samples: SampleSet, *, kind: str = INDEPENDENT,
         "independent validation" for separately prepared or sampled material, "internal test" for a split of one set.
     how : str
         How they were chosen, in words.
+    acceptance : AcceptanceTable, optional
+        Criteria, as under [acceptance] of a recipe.
 
     Raises
     ------
@@ -84,6 +97,8 @@ def validate(model: Calibration, samples: SampleSet, *, kind: str = INDEPENDENT,
         for r, h, v, s in zip(found.residual, found.leverage, found.value, found.standard_error, strict=True)
     )
     direction = regression_direction(model)
+    inside = (found.low <= values) & (values <= found.high)
+    figures = figures_of_merit(found.value, values, direction=direction, unit=unit, kind="RMSEP")
     origins = [origin for origin in dict.fromkeys(samples.origins) if origin != NOT_STATED]
     rows = {origin: np.flatnonzero(np.array(samples.origins) == origin) for origin in origins}
     return ValidationResult(
@@ -99,14 +114,15 @@ def validate(model: Calibration, samples: SampleSet, *, kind: str = INDEPENDENT,
         leverage=found.leverage,
         residual=found.residual,
         applicability=verdicts,
-        inside=(found.low <= values) & (values <= found.high),
-        figures=figures_of_merit(found.value, values, direction=direction, unit=unit, kind="RMSEP"),
+        inside=inside,
+        figures=figures,
         by_origin={
             origin: figures_of_merit(found.value[i], values[i], direction=direction, unit=unit, kind="RMSEP")
             for origin, i in rows.items()
         }
         if len(rows) > 1
         else {},
+        acceptance=check_acceptance(acceptance, figures, inside) if acceptance else (),
     )
 
 

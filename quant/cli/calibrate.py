@@ -5,7 +5,7 @@ from pathlib import Path
 import click
 
 from quant.checks import name_some
-from quant.errors import RecipeError
+from quant.errors import ExitCode, RecipeError
 
 
 @click.command("calibrate")
@@ -17,16 +17,22 @@ from quant.errors import RecipeError
     type=click.Path(path_type=Path, file_okay=False),
     help="Folder for model and report.",
 )
-def command(recipe: Path, folder: Path) -> None:
-    """Make the calibrations of RECIPE; leave model, report.html and calibration.json in a folder."""
+@click.pass_context
+def command(ctx: click.Context, /, recipe: Path, folder: Path) -> None:
+    """Make the calibrations of RECIPE; leave model, report.html and calibration.json in a folder.
+
+    Looks at validation samples are counted in validation-looks.json there. The exit code is 1 if the recipe's criteria
+    of acceptance are not met.
+    """
     from quant.calibration.calibrate import calibrate  # deferred, as those below: --help needs none of it
+    from quant.calibration.sealed import open_ledger
     from quant.model.storage import save_model
     from quant.recipe.load import load_recipe
     from quant.reports.write import write_report
 
     wanted = load_recipe(recipe)
     names = model_files([table.name for table in wanted.analyte])
-    result = calibrate(wanted)
+    result = calibrate(wanted, ledger=open_ledger(folder))
     models = [save_model(entry.model, folder / names[entry.analyte]) for entry in result.analytes]
     report = write_report(result, folder)
     click.echo(str(result))
@@ -35,6 +41,7 @@ def command(recipe: Path, folder: Path) -> None:
         click.echo(f"model   {path}")
     click.echo(f"report  {report.html}")
     click.echo(f"figures {report.json}")
+    ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))
 
 
 def model_files(analytes: list[str]) -> dict[str, str]:

@@ -18,11 +18,12 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from quant.arrays import FloatArray
+from quant.arrays import FloatArray, IntArray
 from quant.inspection.left_out import Smoother, best_smoother, studentised
 
 FEWEST = 8  # samples
 SIMULATIONS = 499
+MOST_NUMBERS = 500_000  # in one array of pairs: stays in the cache
 MOST_PAIRS = 5  # exchanged pairs looked for, one after the other
 
 
@@ -83,28 +84,34 @@ def find_exchanges(
 
 
 def exchange_statistic(smoothers: Sequence[Smoother], values: FloatArray) -> tuple[float, tuple[int, int]]:
-    """Return S (see the module) and the best pair."""
-    mended, exchanged = np.inf, np.inf
-    pair = (0, 1)
-    difference = values[None, :] - values[:, None]  # what is added to i and taken from j when they exchange
+    """Return S (see the module) and the best pair, for values of shape (n,)."""
+    statistics, places = _statistics(smoothers, values[None, :])
+    i, j = divmod(int(places[0]), values.size)
+    return float(statistics[0]), (min(i, j), max(i, j))
+
+
+def _statistics(smoothers: Sequence[Smoother], rows: FloatArray) -> tuple[FloatArray, IntArray]:
+    """Return S and the place i·n + j of the best pair for each row of values, shape (m, n)."""
+    m = len(rows)
+    mended, exchanged = np.full(m, np.inf), np.full(m, np.inf)
+    places = np.zeros(m, dtype=np.intp)
+    difference = rows[:, None, :] - rows[:, :, None]  # what is added to i and taken from j when they exchange
     for smoother in smoothers:
         diagonal = np.diagonal(smoother.gram)
-        slope = smoother.gram @ values
-        press = float(values @ slope)
-        mended = min(mended, press - float(np.max(slope**2 / diagonal)))
+        slope = rows @ smoother.gram
+        press = np.einsum("mn,mn->m", rows, slope)
+        mended = np.minimum(mended, press - np.max(slope**2 / diagonal, axis=1))
         # |M(y + d(u_i − u_j))|² = PRESS + 2d(g_i − g_j) + d²(A_ii + A_jj − 2A_ij), g = M'M·y, A = M'M
-        after = difference * (
-            2 * (slope[:, None] - slope[None, :])
-            + difference * (diagonal[:, None] + diagonal[None, :] - 2 * smoother.gram)
-        )
-        place = int(np.argmin(after))
-        least = press + float(after.flat[place])
-        if least < exchanged:
-            exchanged = least
-            i, j = divmod(place, values.size)
-            pair = (min(i, j), max(i, j))
+        after = difference * (diagonal[:, None] + diagonal[None, :] - 2 * smoother.gram)
+        after += 2 * (slope[:, :, None] - slope[:, None, :])
+        after *= difference
+        flat = after.reshape(m, -1)
+        place = np.argmin(flat, axis=1)
+        least = press + flat[np.arange(m), place]
+        places = np.where(least < exchanged, place, places)
+        exchanged = np.minimum(least, exchanged)
     tiny = np.finfo(float).tiny
-    return float(np.log(max(mended, tiny)) - np.log(max(exchanged, tiny))), pair
+    return np.log(np.maximum(mended, tiny)) - np.log(np.maximum(exchanged, tiny)), places
 
 
 def _chance(
@@ -116,18 +123,19 @@ def _chance(
 ) -> float:
     """Share of simulated clean sets whose S is as large; stops when it is plainly above the false-alarm rate."""
     best = best_smoother(smoothers, mended)
-    fitted = best.hat @ mended
-    errors = studentised(best, mended)
-    errors = (
-        (errors - errors.mean())
-        * np.sqrt(errors.size / max(errors.size - best.freedom, 1.0))
-        * np.sqrt(np.mean(1.0 - np.diagonal(best.hat)))
-    )
+    fitted, errors = best.hat @ mended, studentised(best, mended)
+    # Drawn errors have the variance Σr²/(n − freedom) of the fit's residuals r.
+    variance = float(np.sum((mended - fitted) ** 2)) / max(mended.size - best.freedom, 1.0)
+    errors = errors - errors.mean()
+    errors *= np.sqrt(variance / max(float(np.mean(errors**2)), np.finfo(float).tiny))
     enough = int(false_alarm * (SIMULATIONS + 1)) + 1
-    as_large = 0
-    for done in range(1, SIMULATIONS + 1):
-        drawn = fitted + rng.choice(errors, errors.size)
-        as_large += exchange_statistic(smoothers, drawn)[0] >= statistic
+    together = max(1, min(25, MOST_NUMBERS // mended.size**2))
+    as_large = done = 0
+    while done < SIMULATIONS:
+        count = min(together, SIMULATIONS - done)
+        drawn = fitted + rng.choice(errors, (count, errors.size))
+        as_large += int(np.sum(_statistics(smoothers, drawn)[0] >= statistic))
+        done += count
         if as_large >= enough:
             return as_large / done
     return (as_large + 1) / (SIMULATIONS + 1)

@@ -2,6 +2,8 @@
 
 from collections.abc import Iterable, Sequence
 
+import numpy as np
+
 from quant.checks import name_some
 from quant.inspection.finding import DOUBT, NOTE, STOP, Finding, plural
 from quant.inspection.material import Material, Reading
@@ -158,9 +160,9 @@ def check_pairing(material: Material) -> list[Finding]:
         f"{sample} ({analyte.name})"
         for samples in (material.calibration, material.validation)
         if samples is not None
-        for analyte, values in zip(samples.analytes, samples.values.T, strict=True)
-        for sample, value in zip(samples.sample_ids, values, strict=True)
-        if value != value  # NaN
+        for analyte, values, limits in zip(samples.analytes, samples.values.T, samples.censored.T, strict=True)
+        for sample, absent in zip(samples.sample_ids, np.isnan(values) & np.isnan(limits), strict=True)
+        if absent
     ]
     if lacking:
         refused = reference.missing == "refuse"

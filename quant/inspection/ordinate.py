@@ -14,7 +14,8 @@ PROVE_ABOVE = 1.5  # A
 DISTRUST_ABOVE = 2.0  # A
 NEGATIVE_SHARE = 0.05  # of the highest absorbance; less below zero is a baseline's wobble
 NEGATIVE_LEAST = 0.02  # A
-FLAT_POINTS = 4  # neighbouring points of exactly one ordinate at the top of a band
+FLAT_POINTS = 4  # neighbouring points of exactly one ordinate at the top of a band ...
+STEEP = 2.5  # ... from which the spectrum falls by more than so many times its least step
 TURNED = -0.5  # correlation with the other spectra below which a spectrum stands on its head
 HALF_AS_FAR = 0.5  # bands that point down: the middle lies this much nearer to the top than to the bottom
 PERCENT = 20.0  # no absorbance is so high; percent transmittance mostly is
@@ -157,31 +158,46 @@ def check_high_absorbance(material: Material) -> list[Finding]:
 
 
 def check_flattened(material: Material) -> list[Finding]:
-    """Name bands cut off at the top: several neighbouring points share the highest ordinate of the spectrum."""
+    """Name bands cut off at the top: several neighbouring points of one ordinate, and a steep fall at both ends."""
     if material.spectra.quantity == "arbitrary":
         return []
-    a = np.where(material.missing, -np.inf, material.absorbance)
-    top = a.max(axis=1)
-    at_top = a == top[:, None]
-    runs = at_top[:, : -FLAT_POINTS + 1].copy() if a.shape[1] > FLAT_POINTS else np.zeros((len(a), 0), bool)
-    for shift in range(1, FLAT_POINTS):
-        runs &= at_top[:, shift : a.shape[1] - FLAT_POINTS + 1 + shift]
-    rows = runs.any(axis=1) & (top > np.median(material.absorbance, axis=1))
-    flat = at_top & rows[:, None]
+    flat = np.array([_flat_tops(row) for row in material.absorbance]) & ~material.missing
     return [
         Finding(
             gravity=STOP if inside else NOTE,
             code="flattened_band",
-            title=f"Bands cut off at the top in {plural(int(chosen.sum()), 'spectrum', 'spectra')}"
+            title=f"Bands cut off at the top in {plural(int(rows.sum()), 'spectrum', 'spectra')}"
             + ("" if inside else ", outside the ranges used"),
-            samples=material.named(chosen),
-            evidence=f"{FLAT_POINTS} or more neighbouring points share the highest ordinate "
-            f"({_span(top[chosen])}) at {_where(material, _columns(places))}.",
+            samples=material.named(rows),
+            evidence=f"{FLAT_POINTS} or more neighbouring points share one ordinate "
+            f"({_span(material.absorbance[places])}) at {_where(material, _columns(places))}.",
             advice="The detector or the export is at its end there: measure thinner or more dilute, or leave the band "
             "out by leave_out_ranges.",
         )
-        for chosen, places, inside in _inside_and_outside(material, flat)
+        for rows, places, inside in _inside_and_outside(material, flat)
     ]
+
+
+def _flat_tops(row: FloatArray) -> BoolArray:
+    """Mark runs of equal points, in the upper half of the spectrum, that fall off steeply at both ends.
+
+    Steeply: by more than rounding, which makes runs on the tops of wide bands, too.
+    """
+    marked = np.zeros(row.size, dtype=bool)
+    steps = np.diff(row)
+    level = steps == 0
+    middle = (row.min() + row.max()) / 2
+    bounds = np.flatnonzero(np.diff(np.concatenate([[False], level, [False]]).astype(np.int8)))
+    moving = np.abs(steps[~level])
+    steep = STEEP * float(moving.min()) if moving.size else np.inf  # the least step is the rounding, or noise
+    for first, after in zip(
+        bounds[::2].tolist(), bounds[1::2].tolist(), strict=True
+    ):  # steps first ... after - 1 are 0
+        enough = after - first + 1 >= FLAT_POINTS and row[first] > middle
+        ends = [-steps[after] if after < steps.size else np.inf, steps[first - 1] if first > 0 else np.inf]
+        if enough and min(ends) > steep:
+            marked[first : after + 1] = True
+    return marked
 
 
 def check_negative(material: Material) -> list[Finding]:

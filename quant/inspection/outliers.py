@@ -20,6 +20,7 @@ ADVICE = {
     "validation sample": 'The calibration will call such samples "not applicable". Measure them as the calibration '
     "samples were, leave the range out where they differ, or calibrate with samples of their kind.",
 }
+FAR_APART = 3.0  # times as far as usual replicates: a little more is common where some portions lie worse than others
 USUAL = 0.95  # share of left-out calibration samples whose residual is called usual
 FEWEST_VALIDATION = 5  # of so few, half lie beyond by chance once in a thousand sets
 
@@ -147,7 +148,7 @@ def check_replicates(material: Material) -> list[Finding]:
             title=f"{plural(len(ranked), 'sample')} whose replicate spectra disagree",
             samples=tuple(material.sample_ids[i] for i in ranked),
             evidence=f"They differ up to {found[ranked[0]]:.1f} times as much as usual replicates, after "
-            f"preprocessing ({FALSE_ALARM:.0%} of clean sets would raise this).",
+            f"preprocessing (at most {FALSE_ALARM:.0%} of clean sets with normal scatter would raise this).",
             advice="One spectrum may belong to another sample, or the sample is not homogeneous: compare, measure "
             "again.",
         )
@@ -157,7 +158,8 @@ def check_replicates(material: Material) -> list[Finding]:
 def disagreeing(scores: FloatArray, index: IntArray, several: IntArray, false_alarm: float) -> dict[int, float]:
     """Return samples whose replicates scatter more than the pooled covariance of the others allows.
 
-    Hotelling's T² of each sample's deviations with the covariance of the other samples', p by its F distribution,
+    They have to lie three times as far apart as usual, too. The test: Hotelling's T² of each sample's deviations with
+    the covariance of the other samples', p by its F distribution,
     Bonferroni over the samples. Samples found are left out of the pool, and the others judged once more.
 
     Parameters
@@ -190,6 +192,6 @@ def disagreeing(scores: FloatArray, index: IntArray, several: IntArray, false_al
             others = (total - (squares[i] if i in pool else 0.0)) / left
             distance = float(np.trace(np.linalg.pinv(others) @ squares[i])) / (k * freedom[i])
             p = float(stats.f.sf(distance * (left - k + 1) / left, k * freedom[i], left - k + 1))
-            if p < false_alarm / len(squares):
+            if p < false_alarm / len(squares) and distance > FAR_APART**2:
                 found[i] = float(np.sqrt(distance))
     return found

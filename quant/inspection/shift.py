@@ -58,7 +58,7 @@ def axis_shifts(rows: FloatArray, axis: FloatArray) -> tuple[FloatArray, BoolArr
     shifts : array of shape (n,)
         Towards higher axis values. [axis unit]
     alike : array of bool, shape (n,)
-        Whether most stretches agree: seven of nine on one side of what is usual for them.
+        Whether two thirds of the stretches agree with the median to within half of it, as only the axis can do.
     """
     middle = np.median(rows, axis=0)
     slope = np.gradient(middle, axis)
@@ -77,5 +77,6 @@ def axis_shifts(rows: FloatArray, axis: FloatArray) -> tuple[FloatArray, BoolArr
             shifts.append(np.where(found[0] != 0, -found[1] / found[0], 0.0))
     each = np.array(shifts) if shifts else np.zeros((1, len(rows)))
     total = np.median(each, axis=0)
-    side = np.sign(each - np.median(each, axis=1, keepdims=True))
-    return total, np.abs(side.sum(axis=0)) >= 5 / 9 * len(each)
+    each = each - np.median(each, axis=1, keepdims=True)
+    agree = np.abs(each - np.median(each, axis=0)) <= np.abs(np.median(each, axis=0)) / 2
+    return total, np.asarray(agree.mean(axis=0) >= 2 / 3)

@@ -111,6 +111,27 @@ def check_together(material: Material) -> list[Finding]:
     ]
 
 
+def check_below_limit(material: Material) -> list[Finding]:
+    """Name values that the laboratory gave as below its limit."""
+    samples = material.calibration
+    findings = []
+    for analyte, values, limits in zip(samples.analytes, samples.values.T, samples.censored.T, strict=True):
+        below = np.flatnonzero(np.isnan(values) & np.isfinite(limits))
+        if below.size:
+            findings.append(
+                Finding(
+                    gravity=NOTE,
+                    code="values_below_limit",
+                    title=f"{plural(below.size, 'value')} of {analyte.name} below the laboratory's limit",
+                    samples=tuple(samples.sample_ids[i] for i in below),
+                    evidence=f"Given as below {float(limits[below].max()):g} {analyte.unit}".rstrip()
+                    + "; left out of the fit, so that the low end of the range is cut off.",
+                    advice="Prepare blanks and standards of known small content, whose values are weighed.",
+                )
+            )
+    return findings
+
+
 def check_origin(material: Material) -> list[Finding]:
     """Say whether process samples are to be predicted from prepared standards only."""
     origins = set(material.calibration.origins)

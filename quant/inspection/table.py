@@ -29,6 +29,7 @@ CHECKS: tuple[Callable[[Material], list[Finding]], ...] = (
     atmosphere.check_atmosphere,
     spread.check_range,
     spread.check_together,
+    spread.check_below_limit,
     spread.check_origin,
     spread.check_counts,
 )

@@ -24,6 +24,7 @@ _BUDGET = 8e5  # microseconds or so, counted in work and not in time, so that re
 _MOST_PARTNERS = 100
 _VALUES = 12  # values tried for one component of one mixture
 _CANDIDATES = 20  # random mixtures for each one wanted; a start looks at a quarter of them
+_SWEEPS = 30  # over all components until a random mixture has forgotten where it began
 _GAIN = 1e-7  # smaller gains of the score are rounding
 
 Start = Callable[[], FloatArray]
@@ -124,13 +125,25 @@ def inner_design(region: Region, n: int, margin: float, fixed: FloatArray, rng: 
 
 def random_mixtures(region: Region, n: int, rng: np.random.Generator) -> FloatArray:
     """Draw mixtures all over a region, shape (n, k): one component after the other, given the others (Gibbs)."""
-    if region.is_box and all(count is None for count in region.levels):
+    if any(count is not None for count in region.levels):
+        return _random_on_levels(region, n, rng)
+    if region.is_box:
         return rng.random((n, len(region.names)))
+    corners = extreme_points(region)
+    points = corners[np.arange(n) % len(corners)]
+    for _ in range(_SWEEPS):
+        for c in range(points.shape[1]):
+            low, high = region.segments(points, c)
+            points[:, c] = low + rng.random(n) * np.maximum(high - low, 0.0)
+    return points
+
+
+def _random_on_levels(region: Region, n: int, rng: np.random.Generator) -> FloatArray:
     chains = _rounded(region, extreme_points(region))
     drawn: list[FloatArray] = []
     while sum(map(len, drawn)) < n:
         for point in chains:
-            for c in rng.permutation(point.size):
+            for c in rng.permutation(point.size).tolist():
                 values = region.values_between(c, *region.segment(point, c), _VALUES)
                 if values.size:
                     point[c] = rng.choice(values)

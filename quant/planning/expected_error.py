@@ -122,9 +122,10 @@ def expected_errors(
     To first order s² = (noise/SEN)²·(1 + h) + s_lab²·h against the truth [1]_: the noise of the sample counts once,
     that of the standards and the errors of their reference values by the leverage h. With many points p the noise of
     the standards also tilts the factors, which pulls every prediction towards the mean. With K the spectra, C the
-    centred concentrations of the standards, Q = p·noise²·(C'C)⁻¹ and B = (KK' + Q)⁻¹, a sample c off the mean is predicted with
-    an error of −c·Q·B on average, and the noise part becomes noise²·(1 + h)·diag B (own derivation to second order, by
-    classical least squares; simulations of PLS agree, see the tests). Against reference values s_lab² is added.
+    centred concentrations of the standards, Q = p·noise²·(C'C)⁻¹ and B = (KK' + Q)⁻¹, a sample c off the mean is
+    predicted with an error of −c·Q·B on average, and the noise part becomes noise²·(1 + h)·diag B (own derivation to
+    second order, by classical least squares; simulations of PLS agree, see the tests). Against reference values s_lab²
+    is added.
 
     Parameters
     ----------

@@ -30,7 +30,7 @@ CAUTIONS = (
     "Plan and calibration support, and do not replace, a qualified person's decision; local codes and the "
     "pharmacopoeia in force rule.",
 )
-_PROBES = 4000
+_PROBES = 1500
 
 
 def plan(plan: Plan) -> PlanResult:
@@ -141,9 +141,9 @@ def _expected(
     basis = (
         f"For {len(plan.component)} factors, {len(standards)} standards, noise {table.noise:g} at a point, mean "
         f"leverage h = {found[0].leverage:.3g} of the {'validation samples' if len(validation) else 'standards'}. "
-        "Against the truth: noise part² + shrinkage² + lab²·h; the noise part is about noise/SEN·sqrt(1 + h), shrinkage is the "
-        "pull to the mean that noise in the standards causes. RMSEP against reference values: plus lab². Baselines, "
-        "path length, impurities and non-linearity come on top."
+        "Against the truth: noise part² + shrinkage² + lab²·h; the noise part is about noise/SEN·sqrt(1 + h), the "
+        "shrinkage is the pull to the mean that noise in the standards causes. RMSEP against reference values: plus "
+        "lab². Baselines, path length, impurities and non-linearity come on top."
     )
     return found, basis
 

@@ -13,6 +13,7 @@ from quant.planning.constraints import Inequality, parse_inequality
 from quant.recipe.plan_schema import Plan
 
 TOLERANCE = 1e-9  # of a range: what rounding of numbers may break a limit by
+_NO_ROOM = 1e-4  # of a range: less is no room that could be weighed
 COVERED = 0.95  # share of a range that mixtures have to reach
 
 
@@ -81,6 +82,16 @@ class Region:
                 low = max(low, r / a)
         return low, high
 
+    def segments(self, points: FloatArray, c: int) -> tuple[FloatArray, FloatArray]:
+        """Return the same for many points, shape (n, k), as two arrays of shape (n,)."""
+        slope = self.A[:, c]
+        room = self.b - points @ self.A.T + np.outer(points[:, c], slope)  # (n, m)
+        up, down = slope > TOLERANCE, slope < -TOLERANCE
+        return (
+            (room[:, down] / slope[down]).max(axis=1, initial=0.0),
+            (room[:, up] / slope[up]).min(axis=1, initial=1.0),
+        )
+
     def values_between(self, c: int, low: float, high: float, most: int) -> FloatArray:
         """Return up to `most` (or all levels') values of component `c` in a segment, round numbers in the unit."""
         count = self.levels[c]
@@ -115,8 +126,8 @@ def region_of(plan: Plan) -> Region:
     Raises
     ------
     ParameterError
-        No mixture obeys the ranges, the total and the constraints, or a part of a range cannot be reached: the message
-        says which and by how much.
+        No mixture obeys the ranges, the total and the constraints, they leave no room to vary, or a part of a range
+        cannot be reached: the message says which and by how much.
     RecipeError
         A constraint that cannot be read.
     """
@@ -200,7 +211,23 @@ def _with_reach(region: Region, plan: Plan) -> Region:
             f"Ranges that the mixtures cannot span: {found}. Limits in force: {limits}. Expected mixtures that reach "
             "both ends of every range within 5 % of it; narrow those ranges, or lower the low ends of the others."
         )
+    if _largest_ball(region) < _NO_ROOM:
+        raise ParameterError(
+            f"The limits leave the components no room to vary apart: {limits}. Together they fix one component when "
+            "the others are known. Expected inequalities with room between them; take one away, or plan that component "
+            "as the balance."
+        )
     return replace(region, reach=ends)
+
+
+def _largest_ball(region: Region) -> float:
+    """Radius of the largest ball inside the inequalities, levels apart. [ranges]"""
+    k = len(region.names)
+    cost = np.zeros(k + 1)
+    cost[k] = -1.0
+    rows = np.column_stack([region.A, np.linalg.norm(region.A, axis=1)])
+    found = _solve(region.free_of_levels(), cost, rows, np.zeros(k + 1), np.ones(k + 1))
+    return 0.0 if found is None else float(found[k])
 
 
 def _optimum(region: Region, c: int, sign: float) -> float:

@@ -100,9 +100,15 @@ def number_from(cell: str, decimal: str = ".", thousands: str | None = None) -> 
     return float(text) if _NUMBER.fullmatch(text) else None
 
 
+def looks_like_a_number(text: str) -> bool:
+    """Tell a damaged number such as ``9O2`` from a name: more digits than letters."""
+    digits = sum(map(str.isdigit, text))
+    return digits > sum(map(str.isalpha, text))
+
+
 def groups_in(text: str) -> list[str]:
     """Return the signs that part three digits from others somewhere in a text: each may be a sign of thousands."""
-    return [word for word, pattern in _GROUPED.items() if re.search(r"(?<![\d.,])" + pattern.pattern, text)]
+    return [word for word, pattern in _GROUPED.items() if re.search(r"(?<!\d)" + pattern.pattern, text)]
 
 
 def position_from(heading: str, decimal: str = ".", thousands: str | None = None) -> tuple[float, str | None] | None:

@@ -130,7 +130,8 @@ def _is_certain(reading: Reading) -> bool:
         return bool(layout.evidence) and 2 * layout.damaged <= layout.n_rows
     corner = clipped(reading.rows[layout.heads[0]][1])[0].lower() if layout.heads else ""
     rest = layouts_of(reading.rows[:-1], reading.signs)  # the last line may be cut
-    return corner not in SAMPLE_COLUMNS and not (layout.damaged and all(other.damaged for other in rest))
+    few = 4 * layout.damaged < layout.n_rows  # a damaged spectrum is refused, not passed over
+    return corner not in SAMPLE_COLUMNS and (few or any(not other.damaged for other in rest))
 
 
 def _evidence(signs: Signs, options: ReadingOptions, rows: Sequence[tuple[int, list[str]]]) -> list[str]:

@@ -3,12 +3,13 @@
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 
-from quant.readers.delimited import SAMPLE_COLUMNS, Row, number_from, position_from
+from quant.readers.delimited import SAMPLE_COLUMNS, Row, looks_like_a_number, number_from, position_from
 from quant.readers.naming import names_an_axis
 
 MISSING = ("", "nan", "na", "n/a")
 """Cells (in lower case) that say that a point is missing."""
 
+MOST_DAMAGED = 10  # rows above the data that are looked at for damaged ones
 LARGEST_PREAMBLE = 2  # cells with content in a line above the header; more would be a header of its own
 
 
@@ -87,12 +88,13 @@ def is_comment(cells: Sequence[str]) -> bool:
 
 def body_of(rows: Sequence[Row], layout: Layout) -> list[Row]:
     """Return the rows of data; comments of another width than the table's are left out."""
-    return [row for row in rows[layout.start :] if not (is_comment(row[1]) and len(row[1]) < layout.width)]
+    width = layout.width
+    return [row for row in rows[layout.start :] if len(row[1]) >= width or not is_comment(row[1])]
 
 
 def fits_width(cells: Sequence[str], width: int) -> bool:
     """Tell whether a row has `width` cells, and nothing but trailing separators behind them."""
-    return len(cells) >= width and not any(map(str.strip, cells[width:]))
+    return len(cells) == width or (len(cells) > width and not any(map(str.strip, cells[width:])))
 
 
 def _in_rows(rows: Sequence[Row], signs: Signs, sample_column: str | None) -> Layout | None:
@@ -155,9 +157,11 @@ def _in_columns(rows: Sequence[Row], signs: Signs, *, stated: bool) -> Layout | 
         )
 
     if width == 2 and not stated:
+        start = _first_damaged(rows, start, signs, is_data)
+        head = clipped(rows[start - 1][1]) if start else []
         above = (start - 1,) if len(head) == 2 else ()
         return _counted(Layout("two_columns", above, start, 2, 0, 0), rows, fits)
-    top = start
+    top = start = _first_damaged(rows, start, signs, is_data)
     while top and _heads_columns(rows[top - 1][1], width) and not is_data(rows[top - 1][1]):
         top -= 1
     if top == start:
@@ -168,8 +172,36 @@ def _in_columns(rows: Sequence[Row], signs: Signs, *, stated: bool) -> Layout | 
 
 
 def _heads_columns(cells: list[str], width: int) -> bool:
+    """Tell whether a row names every spectrum of a table, or the axis alone."""
     names = clipped(cells)
-    return len(names) == width and all(names[1:])
+    return (len(names) == width and all(names[1:])) or (len(names) == 1 and names_an_axis(names[0]))
+
+
+def _first_damaged(rows: Sequence[Row], start: int, signs: Signs, is_data: Callable[[list[str]], bool]) -> int:
+    """Return where the data begin if the rows above are damaged ones of theirs and no headings.
+
+    A damaged row parts those above it from the others; they would pass for text above the table and be lost.
+    """
+    first, second = (number_from(rows[start + i][1][0], signs.decimal, signs.thousands) or 0.0 for i in (0, 1))
+    width, earliest = len(clipped(rows[start][1])), start
+    for place in range(start - 1, max(start - MOST_DAMAGED, 0) - 1, -1):
+        cells = rows[place][1]
+        if is_data(cells):
+            position = number_from(cells[0], signs.decimal, signs.thousands) or 0.0
+            if second != first and 0 < (first - position) / (second - first) <= MOST_DAMAGED:
+                earliest = place
+        elif place == earliest - 1 and len(clipped(cells)) == width and _is_damaged(clipped(cells), signs):
+            earliest = place
+    return earliest
+
+
+def _is_damaged(cells: Sequence[str], signs: Signs) -> bool:
+    """Tell a damaged row of numbers from one of headings; no heading of an axis is a plain number."""
+    corner, *others = cells
+    numbers = [number_from(cell, signs.decimal, signs.thousands) is not None for cell in others]
+    if number_from(corner, signs.decimal, signs.thousands) is not None:
+        return True
+    return all(numbers) and looks_like_a_number(corner) and not names_an_axis(corner)
 
 
 def _first_of_two(rows: Sequence[Row], is_data: Callable[[list[str]], bool]) -> int | None:
@@ -213,5 +245,5 @@ def sample_row(heads: Sequence[Sequence[str]], column: str | None) -> int:
     firsts = [head[0].lower() for head in heads]
     wanted = [column.lower()] if column is not None else list(SAMPLE_COLUMNS)
     by_name = [i for i, name in enumerate(firsts) if name in wanted]
-    by_axis = [i for i, name in enumerate(firsts) if not name or names_an_axis(name)]
+    by_axis = [i for i, name in enumerate(firsts) if len(heads[i]) > 1 and (not name or names_an_axis(name))]
     return (*by_name, *by_axis, len(heads) - 1)[0]

@@ -81,7 +81,7 @@ def axis_unit_in(heading: str) -> str | None:
 
 
 def names_an_axis(heading: str) -> bool:
-    """Tell whether a heading names an axis or its unit: ``Wavelength``, ``nm``, ``x``; but not ``Resolution (cm-1)``."""
+    """Tell whether a heading names an axis or its unit: ``Wavelength``, ``nm``, ``x``, not ``Resolution (cm-1)``."""
     if note_name(heading)[0] in _NOTES_IN_AXIS_UNITS:
         return False
     words = re.findall(r"[^\W\d_]+", heading.lower())

@@ -93,6 +93,8 @@ class ReadingOptions:
         for one, other in (("separator", "decimal"), ("separator", "thousands"), ("decimal", "thousands")):
             if (sign := getattr(self, one)) is not None and sign == getattr(self, other):
                 raise ParameterError(f"{one} and {other} are both {sign!r}; expected two different signs.")
+        if self.block is not None and (isinstance(self.block, bool) or not isinstance(self.block, str | int)):
+            raise ParameterError(f"block = {self.block!r}; expected a title or a number.")
         if not isinstance(self.resample, bool):
             raise ParameterError(f"resample = {self.resample!r}; expected true or false.")
         if not isinstance(self.notes, Mapping):

@@ -1,6 +1,5 @@
 """One column of reference values: what it holds, and how a cell becomes a value of the analyte."""
 
-import math
 import re
 from dataclasses import dataclass, field
 from fractions import Fraction
@@ -23,6 +22,7 @@ MISSING = ("", "-", "n/a", "nan")
 NOT_DETECTED = ("nd", "n.d.", "n.d", "not detected", "<lod", "< lod", "<loq", "< loq")
 """Cells that say that the value lies below a detection limit, which the recipe has to state (in any case)."""
 
+LARGEST = 1e100  # what is larger is a slip of the pen, and its square no number
 MOISTURE_UNIT = "% m/m"
 _BELOW = re.compile(
     r"(?:n\.?\s?d\.?|not detected)?\s*\(?\s*(?:<=?|≤)\s*(?P<limit>[^()<]*[^()<\s])\s*\)?", re.IGNORECASE
@@ -171,8 +171,8 @@ class ColumnOf:
         below = _BELOW.fullmatch(text)
         digits = below["limit"] if below else text
         number = delimited.numbers_from(path, line, [digits], [self.heading], decimal)[0]
-        if not math.isfinite(number) or (below and number <= 0):
-            expected = "a detection limit above 0" if below else "a number that can be computed with"
+        if abs(number) > LARGEST or (below and number <= 0):
+            expected = "a detection limit above 0" if below and number <= 0 else f"a number of at most {LARGEST:g}"
             raise FileFormatError(
                 path, f"found {text!r} in column {self.heading!r}; expected {expected}. Mend the cell.", line=line
             )

@@ -15,9 +15,9 @@ from quant.readers.options import DECIMALS, SEPARATORS
 from quant.readers.reference_column import ColumnOf, ReadCell
 from quant.readers.repeats import average_repeats
 from quant.readers.spreadsheet import recognises_spreadsheet, rows_of_workbook
-from quant.spectra.concentration import BASES
+from quant.spectra.concentration import MASS_FRACTION, concentration_unit_named
 from quant.spectra.provenance import source_of
-from quant.spectra.reference_table import ReferenceTable
+from quant.spectra.reference_table import BASES, ReferenceTable
 
 REPLICATES = ("refuse", "average")
 DATE, BASIS = "date", "basis"
@@ -42,7 +42,7 @@ def read_reference(
     """Read reference values from delimited text, or from a sheet of a workbook (.xlsx).
 
     A cell may hold an upper limit instead of a value ("<0.05", "n.d. <0.05"); it is kept as such. A column called
-    "basis" that says wet or dry states the basis of all values, and must not contradict `analytes`.
+    "basis" that says wet or dry states the basis of all mass fractions, and must not contradict `analytes`.
 
     Parameters
     ----------
@@ -196,7 +196,10 @@ def _with_basis(path: Path, column: ColumnOf, stated: str) -> ColumnOf:
             f"the table says {stated} basis; expected {expected} basis, as the recipe says of {column.analyte.name}. "
             f'Mend the table, or set column_basis = "{stated}" under [[analyte]].',
         )
-    return column if expected else replace(column, analyte=replace(column.analyte, basis=stated))
+    unit = concentration_unit_named(column.analyte.unit)
+    if expected or unit is None or unit.kind != MASS_FRACTION:
+        return column  # a volume has no dry basis
+    return replace(column, analyte=replace(column.analyte, basis=stated))
 
 
 def _own_column(path: Path, headings: Sequence[str], word: str) -> int | None:

@@ -69,6 +69,7 @@ def _in_rows(path: Path, reading: Reading, options: ReadingOptions) -> _Parts:
     sample = _sample_column(path, headings, is_point, options)
     others = [i for i, heading in enumerate(headings) if not is_point[i] and i != sample and heading]
     body = body_of(reading.rows, reading.layout)
+    _refuse_damaged_headings(path, header_line, headings, is_point, [cells for _, cells in body], reading.signs)
     if not body:
         raise FileFormatError(path, "1 line; expected a header and at least one spectrum.", line=header_line)
     values = np.empty((len(body), len(positions)))
@@ -149,6 +150,25 @@ def _sample_column(path: Path, headings: list[str], is_point: list[bool], option
     if options.sample_column is None and (not only or naming.names_an_axis(only)):
         return texts[0]
     return delimited.sample_column_of(path, headings, options.sample_column)
+
+
+def _refuse_damaged_headings(
+    path: Path, line: int, headings: list[str], is_point: list[bool], body: list[list[str]], signs: Signs
+) -> None:
+    """Refuse a heading beside axis positions that may be a damaged one: its column would pass for notes and be lost."""
+    beside = [any(is_point[max(i - 1, 0) : i + 2]) for i in range(len(headings))]
+    for i, heading in enumerate(headings):
+        inside = any(is_point[:i]) and any(is_point[i:])
+        if is_point[i] or not beside[i] or not (delimited.looks_like_a_number(heading) or (inside and not heading)):
+            continue
+        numbers = [signs.number(cells[i]) for cells in body if len(cells) > i and cells[i].strip()]
+        if numbers and None not in numbers:
+            raise FileFormatError(
+                path,
+                f"found {heading!r} as heading of a column of numbers beside axis positions; expected a position. Mend "
+                "the heading (or name the column by a word, if it holds notes).",
+                line=line,
+            )
 
 
 def _checked(path: Path, line: int, cells: list[str], width: int) -> list[str]:

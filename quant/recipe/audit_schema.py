@@ -42,7 +42,7 @@ class DecisionTable(Table):
 
 
 class AcceptanceTable(Table):
-    """[acceptance]: what validation has to show, fixed before its values are read; [[acceptance]] for several analytes."""
+    """[acceptance]: what validation has to show, fixed before its values are read; a list for several analytes."""
 
     analyte: Text | None = Field(None, description="Which [[analyte]]; not needed if there is one.")
     max_rmsep: float | None = Field(None, gt=0, description="Largest RMSEP. [unit of the analyte]")

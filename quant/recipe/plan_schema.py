@@ -67,7 +67,7 @@ class WeighingTable(Table):
 class PlanValidationTable(Table):
     """[validation]: samples that are prepared apart, to prove the calibration."""
 
-    samples: int = Field(20, ge=0, le=1000, description="How many; they lie between the standards.")
+    samples: int = Field(20, ge=0, le=500, description="How many; they lie between the standards.")
     rmsep_within: Annotated[FiniteFloat, Field(ge=1, le=100)] = Field(
         30.0, description="How well RMSEP should be known: 95 % limits within ± so much of it. [%]"
     )
@@ -103,7 +103,7 @@ class Plan(Table):
 
     title: Text = Field(description="What the standards are for.")
     unit: Text = Field(description="Unit of every component: % m/m, g/kg, mg/kg; with free totals g/L, mg/mL, mg/L.")
-    standards: int = Field(ge=3, le=1000, description="How many standards.")
+    standards: int = Field(ge=3, le=500, description="How many standards.")
     seed: int = Field(1, ge=0, description="Seed of the search: the same seed gives the same design.")
     constraints: list[Text] = Field(
         default_factory=list, description='What mixtures have to obey, such as "water <= 0.5 * ethanol".'

@@ -7,6 +7,7 @@ this loses half of the digits of weak directions and has a guard of its own.
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import islice
 
 import numpy as np
 
@@ -18,6 +19,7 @@ from quant.regression.fast_cross_validation_gram import ACCURACY, centred_values
 
 ACCURACY_NOTE = "accuracy"  # how the notes of columns begin that another algorithm can take further
 PARTS_BYTES = 2**28  # of the cross-products of folds kept at a time; where they take more, they are formed twice
+VECTORS_BYTES = 2**26  # of masks and reference values of the columns in hand
 ROWS_AT_A_TIME = 256  # of spectra whose residuals are worked on: they stay in cache
 
 
@@ -80,21 +82,23 @@ def cross_product_scores(
         notes=[""] * len(columns),
     )
     y = np.broadcast_to(y, (len(columns), n))
-    for column, products in _training_products(weighted, columns, training):
-        mask = training[column : column + 1].astype(np.float64)
-        ones, mean, rest = centred_values(mask, root, y[column : column + 1])
-        total = float(np.linalg.norm(mask * root))
-        products -= np.outer(ones @ weighted, ones @ weighted)  # centred: the mean is factor 0
-        model = _fit(products, rest[0], weighted, n_factors, accuracy)
-        count = model.y_loadings.size
-        found.y_loadings[0, column, : count + 1] = [mean[0] * total, *model.y_loadings]
-        found.stopped[0, column] = count
-        if count < n_factors:
-            found.notes[column] = _note(count, accuracy) if rest.any() else FLAT_NOTE
-        found.scores[0, column, 0] = 1.0 / total
-        residual = found.residual[0, column] if residuals else None
-        mean_spectrum = ones[0] @ weighted / total
-        _apply(model, spectra[columns.asked[column]] - mean_spectrum, found.scores[0, column, 1:], residual)
+    each = _training_products(weighted, columns, training)
+    for block in columns.blocks(4 * 8 * n, VECTORS_BYTES):
+        mask = training[block].astype(np.float64)
+        ones, mean, rest = centred_values(mask, root, y[block])
+        total = np.linalg.norm(mask * root, axis=1)
+        middles, starts, sizes = ones @ weighted, rest @ weighted, np.linalg.norm(rest, axis=1)
+        for i, (column, S) in enumerate(islice(each, len(total))):
+            S -= np.outer(middles[i], middles[i])  # centred: the mean is factor 0
+            model = _fit(S, starts[i], float(sizes[i]), n_factors, accuracy)
+            count = model.y_loadings.size
+            found.y_loadings[0, column, : count + 1] = [mean[i] * total[i], *model.y_loadings]
+            found.stopped[0, column] = count
+            if count < n_factors:
+                found.notes[column] = _note(count, accuracy) if sizes[i] else FLAT_NOTE
+            found.scores[0, column, 0] = 1.0 / total[i]
+            left = spectra[columns.asked[column]] - middles[i] / total[i]
+            _apply(model, left, found.scores[0, column, 1:], found.residual[0, column] if residuals else None)
     return found
 
 
@@ -119,13 +123,13 @@ def _products(weighted: FloatArray, rows: IntArray) -> FloatArray:
     return product
 
 
-def _fit(S: FloatArray, rest: FloatArray, weighted: FloatArray, n_factors: int, accuracy: float) -> _Model:
-    """Find up to `n_factors` factors from S = X'X of centred training rows, and the centred y (`rest`)."""
-    c, k = rest @ weighted, weighted.shape[1]
+def _fit(S: FloatArray, c: FloatArray, y_size: float, n_factors: int, accuracy: float) -> _Model:
+    """Find up to `n_factors` factors from S = X'X and c = X'y, centred, of training rows; y_size: norm of y."""
+    k = c.size
     W, R, P, q = np.zeros((n_factors, k)), np.zeros((n_factors, k)), np.zeros((n_factors, k)), np.zeros(n_factors)
     noise = EPS * np.trace(S) / accuracy  # of r'S·r per squared norm of r
     # Of c = X'u: eps·‖X‖·‖y‖, and a tenth of `accuracy`, since the weights that follow inherit its error.
-    smallest = 10 * np.sqrt(EPS * noise / accuracy) * float(np.linalg.norm(rest))
+    smallest = 10 * np.sqrt(EPS * noise / accuracy) * y_size
     for a in range(n_factors):
         w = c
         for _ in range(2):

@@ -200,7 +200,7 @@ def _fit_block(
 def _remove(
     W: FloatArray, T: FloatArray, inverse: FloatArray, step: FloatArray, out: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
-    """Make W orthogonal to T in one pass, into `out`; return the coefficients and the squared norm of what they take."""
+    """Make W orthogonal to T in one pass, into `out`; return the coefficients and the squared norm taken."""
     products: FloatArray = np.matvec(T, W)
     h = products * inverse
     np.vecmat(h, T, out=step)
@@ -212,7 +212,7 @@ _kept = threading.local()
 
 
 def _scratch(*shapes: tuple[int, ...]) -> list[FloatArray]:
-    """Return arrays of any content, from memory each thread keeps: fresh pages cost as much as the arithmetic on them."""
+    """Return arrays of any content, from memory each thread keeps: fresh pages cost more than arithmetic."""
     sizes = [prod(shape) for shape in shapes]
     whole = getattr(_kept, "memory", np.empty(0))
     if whole.size < sum(sizes):

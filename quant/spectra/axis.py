@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_vector, one_of
 from quant.errors import ParameterError
-from quant.spectra.frozen import restore
+from quant.spectra.frozen import is_frozen, restore
 from quant.spectra.segments import median_step
 from quant.units import AXIS_UNITS, convert_axis
 
@@ -38,12 +38,13 @@ class SpectralAxis:
     unit: str = "point"
 
     def __init__(self, values: ArrayLike, unit: str = "point") -> None:
-        numbers = as_vector("axis", values).copy()
+        numbers = as_vector("axis", values)
+        numbers = numbers if is_frozen(numbers) else numbers.copy()
         one_of("axis unit", unit, tuple(AXIS_UNITS))
         if numbers.size == 0:
             raise ParameterError("The axis holds no values; expected one for every point.")
-        steps = np.diff(numbers)
-        onward = steps > 0 if steps.size and steps[0] > 0 else steps < 0
+        before, after = numbers[:-1], numbers[1:]
+        onward = after > before if after.size and after[0] > before[0] else after < before
         wrong = np.flatnonzero(~onward)
         if wrong.size:
             place = int(wrong[0]) + 1

@@ -12,15 +12,13 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
-from quant.errors import ParameterError
+from quant.errors import ParameterError, SampleMismatchError
+from quant.spectra.reference_table import BASES, Analyte
 from quant.units import plain_word
 
 MASS_FRACTION = "mass fraction"
 MASS_CONCENTRATION = "mass concentration"
 AMOUNT_CONCENTRATION = "amount concentration"
-
-BASES = ("wet", "dry")
-"""What a mass fraction is a fraction of: the sample as it is, or its dry matter."""
 
 _KINDS = {
     MASS_FRACTION: {  # in g/g
@@ -212,3 +210,19 @@ def convert_basis(values: ArrayLike, basis: str, to: str, moisture: ArrayLike) -
     if basis == to:
         return array.copy()
     return array / (1 - water) if to == "dry" else array * (1 - water)
+
+
+def refuse_other_scale(calibrated: Analyte, found: Analyte) -> None:
+    """Refuse values whose stated unit or basis is not that of the calibration's.
+
+    Raises
+    ------
+    SampleMismatchError
+        Both state a unit, or both a basis, and they differ.
+    """
+    units = calibrated.unit and found.unit and not same_unit(calibrated.unit, found.unit)
+    if units or (calibrated.basis and found.basis and calibrated.basis != found.basis):
+        raise SampleMismatchError(
+            f"The calibration's values of {calibrated.name} are in {calibrated.printed_unit}, the validation's in "
+            f"{found.printed_unit}; expected one unit and one basis. Convert one of the tables."
+        )

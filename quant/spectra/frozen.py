@@ -1,9 +1,11 @@
 """What keeps sets unchangeable, also when they come back from another process."""
 
 from collections.abc import Iterator, Mapping
-from typing import Any, TypeVar
+from typing import Any, TypeGuard, TypeVar
 
 import numpy as np
+
+from quant.arrays import FloatArray
 
 Value = TypeVar("Value")
 
@@ -38,6 +40,13 @@ class FrozenMapping(Mapping[str, Value]):
 
     def __repr__(self) -> str:
         return repr(self._entries)
+
+
+def is_frozen(values: object) -> TypeGuard[FloatArray]:
+    """Tell whether something is an array of doubles that nobody can change any more, so that it need not be copied."""
+    if not isinstance(values, np.ndarray) or values.dtype != np.float64 or values.flags.writeable:
+        return False
+    return bool(values.flags.owndata) or is_frozen(values.base)
 
 
 def restore(target: object, state: dict[str, Any]) -> None:

@@ -11,9 +11,11 @@ from numpy.typing import ArrayLike
 from quant.arrays import AnyArray, FloatArray, IntArray
 from quant.checks import name_some, one_of
 from quant.errors import ParameterError, SampleMismatchError
-from quant.spectra.concentration import BASES, same_unit
 from quant.spectra.frozen import FrozenMapping, restore
 from quant.spectra.provenance import Source
+
+BASES = ("wet", "dry")
+"""What a mass fraction is a fraction of: the sample as it is, or its dry matter."""
 
 NO_LIMIT = float("nan")
 
@@ -57,22 +59,6 @@ class Analyte:
     def printed_unit(self) -> str:
         """Unit and, where stated, basis: "% m/m dry basis"."""
         return " ".join([*([self.unit] if self.unit else []), *([f"{self.basis} basis"] if self.basis else [])])
-
-
-def refuse_other_scale(calibrated: Analyte, found: Analyte) -> None:
-    """Refuse values whose stated unit or basis is not that of the calibration's.
-
-    Raises
-    ------
-    SampleMismatchError
-        Both state a unit, or both a basis, and they differ.
-    """
-    units = calibrated.unit and found.unit and not same_unit(calibrated.unit, found.unit)
-    if units or (calibrated.basis and found.basis and calibrated.basis != found.basis):
-        raise SampleMismatchError(
-            f"The calibration's values of {calibrated.name} are in {calibrated.printed_unit}, the validation's in "
-            f"{found.printed_unit}; expected one unit and one basis. Convert one of the tables."
-        )
 
 
 @dataclass(frozen=True)

@@ -2,7 +2,7 @@
 
 from collections.abc import Iterable, Mapping, Sequence
 from dataclasses import dataclass, replace
-from typing import TYPE_CHECKING, Any, TypeGuard
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -11,7 +11,7 @@ from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.checks import name_some, one_of
 from quant.errors import AxisMismatchError, ParameterError, QuantityError, SampleMismatchError
 from quant.spectra.axis import SpectralAxis
-from quant.spectra.frozen import FrozenMapping, restore
+from quant.spectra.frozen import FrozenMapping, is_frozen, restore
 from quant.spectra.provenance import Source
 from quant.spectra.resampling import interpolate
 from quant.units import QUANTITIES
@@ -63,7 +63,7 @@ class SpectraSet:
         notes: Sequence[Notes] | None = None,
         sources: Sequence[Source] = (),
     ) -> None:
-        matrix = values if _is_frozen(values) else np.array(values, dtype=np.float64)
+        matrix = values if is_frozen(values) else np.array(values, dtype=np.float64)
         rows = [{}] * len(sample_ids) if notes is None else notes
         if matrix.ndim != 2 or matrix.shape != (len(sample_ids), len(axis)) or len(rows) != len(sample_ids):
             raise ParameterError(
@@ -172,16 +172,6 @@ class SpectraSet:
         )
         right = pd.DataFrame(self.values, columns=pd.Index(self.axis.values))
         return pd.concat([left, right], axis=1)
-
-
-def _is_frozen(values: ArrayLike) -> TypeGuard[FloatArray]:
-    """Tell whether an array is one that nobody can change any more, so that it need not be copied."""
-    return (
-        isinstance(values, np.ndarray)
-        and values.dtype == np.float64
-        and not values.flags.writeable
-        and values.flags.owndata
-    )
 
 
 def join_spectra(sets: Sequence[SpectraSet], *, resample: bool = False) -> SpectraSet:

@@ -88,8 +88,8 @@ def detection_limit(
     """Detection limit L_D of a result whose standard deviation does not change between zero and L_D.
 
     "noncentral t": δ·s0, δ such that a noncentral t (ν, δ) lies below t(1 - alpha, ν) with probability beta; exact
-    where s0 is the true standard deviation. "twice t": [t(1 - alpha, ν) + t(1 - beta, ν)]·s0, a little larger; with it
-    samples at the limit are missed with probability beta on average over repeated calibrations, each with its own s0.
+    where s0 is the true standard deviation. "twice t": [t(1 - alpha, ν) + t(1 - beta, ν)]·s0, a little larger; for
+    alpha = beta exact on average over calibrations that each state a limit from their own s0, of a slope known well.
 
     Parameters
     ----------

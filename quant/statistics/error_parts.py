@@ -22,8 +22,10 @@ class CorrectedRmsep(Result):
     corrected: float | None = documented(
         "RMSEP against true values, or None where the laboratory's variance is more than half", "unit of the analyte"
     )
-    low: float | None = documented("Lower end of its confidence interval; None where it cannot be told from zero")
-    high: float | None = documented("Upper end of its confidence interval")
+    low: float | None = documented(
+        "Lower end of its confidence interval; None where it cannot be told from zero", "unit of the analyte"
+    )
+    high: float | None = documented("Upper end of its confidence interval", "unit of the analyte")
     probability: float = documented("Two-sided confidence of the interval")
     note: str = documented("Why there is no corrected value, or empty")
 

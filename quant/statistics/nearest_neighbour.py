@@ -80,6 +80,32 @@ def nearest_neighbour_distance(scores: ArrayLike, calibration_scores: ArrayLike)
     return nearest
 
 
+def neighbour_distances(calibration_scores: ArrayLike) -> FloatArray:
+    """Squared Mahalanobis distance of each calibration sample to its nearest other one.
+
+    Parameters
+    ----------
+    calibration_scores : array of shape (n_samples, n_factors)
+        Scores of the calibration samples, one row a sample (not one a replicate, which would be its own neighbour).
+
+    Returns
+    -------
+    array of shape (n_samples,)
+        On the scale of `nearest_neighbour_distance`.
+
+    Raises
+    ------
+    ParameterError
+        Numbers that are not finite.
+    NotEnoughDataError
+        No more samples than factors, or scores of one factor that follow from the others'.
+    """
+    distances = _squared_distances(calibration_scores, calibration_scores)
+    np.fill_diagonal(distances, np.inf)
+    nearest: FloatArray = distances.min(axis=1)
+    return nearest
+
+
 def gap_limit(calibration_scores: ArrayLike) -> float:
     """Largest distance of a calibration sample to its own nearest neighbour; a new sample beyond lies in a gap.
 
@@ -104,9 +130,7 @@ def gap_limit(calibration_scores: ArrayLike) -> float:
     ----------
     .. [1] ASTM E1655-05(2012), nearest neighbour distance (from memory).
     """
-    distances = _squared_distances(calibration_scores, calibration_scores)
-    np.fill_diagonal(distances, np.inf)
-    return float(distances.min(axis=1).max())
+    return float(neighbour_distances(calibration_scores).max())
 
 
 def _squared_distances(scores: ArrayLike, calibration_scores: ArrayLike) -> FloatArray:

@@ -71,9 +71,10 @@ def test_what_is_told(make_samples, make_recipe):
     result = calibrate(make_recipe(FIXED), below(make_samples(n=12), {"S01": 1.2, "S07": 2.0}))["acid"]
     failed, blanks = result.remarks
     assert failed.startswith(
-        "2 sample(s) below a detection limit (at most 2 % m/m) took no part in the fit; 1 of them (S07)"
+        "2 sample(s) below a detection limit of at most 2 % m/m took no part in the fit; predicted"
     )
-    assert blanks.startswith("leaving them out cuts off the low end at 1.72727 % m/m: prepare blanks and low standards")
+    assert failed.endswith("interval: S07 (check labels, laboratory values, interference)")
+    assert blanks.startswith("leaving them out cuts off the low end at 1.727 % m/m: prepare blanks and low standards")
     assert all(remark in str(result) for remark in result.remarks)
     fine = calibrate(make_recipe(FIXED), below(make_samples(n=12), {"S01": 1.2}))["acid"]
     assert fine.remarks[0].endswith("none of them is predicted above its limit")

@@ -23,6 +23,7 @@ def test_from_repeats(make_samples):
     # By hand: s = 0.2, half of the samples determined once, half four times: 0.2·√((1 + 1/4)/2) = 0.158114.
     analyte, source, found = laboratory_of(repeated(make_samples(n=12), [1, 4] * 6), "acid")
     assert analyte.laboratory_error == found.standard_error == pytest.approx(0.158113883)
+    assert found.standard_errors == pytest.approx([0.2, 0.1] * 6)
     assert (source, found.used) == (FROM_REPEATS, True)
     assert found.remarks() == (
         "repeated determinations have a standard deviation of 0.2 % m/m (12 degrees of freedom, 8 samples determined "
@@ -65,6 +66,7 @@ def test_the_model_carries_it(make_samples, make_recipe):
     model = from_manifest(*to_manifest(result.model))
     assert model.uncertainty.laboratory_error == model.analyte.laboratory_error == pytest.approx(expected)
     assert model.uncertainty.laboratory_error_source == FROM_REPEATS
+    assert model.analyte == result.model.analyte
     assert result.laboratory.determinations.tolist() == count.tolist()
     assert result.to_dict()["laboratory"]["standard_error"] == pytest.approx(expected)
     assert result.laboratory.remarks()[0] in str(result)

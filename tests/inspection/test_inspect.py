@@ -115,3 +115,13 @@ def test_what_cannot_be_read_is_refused(folder):
     (folder / "spectra2.csv").write_text("sample,900,903\nA,1,2\n")
     with pytest.raises(AxisMismatchError, match=r"spectra"):
         inspect(recipe_from_text(RECIPE.replace('"spectra.csv"', '"spectra.csv", "spectra2.csv"'), folder=folder))
+
+
+def test_values_below_a_limit_are_not_missing(folder):
+    (folder / "values.csv").write_text("sample,acid,water\nA,1.5,7\nB,<0.5,3\nC,,4\nE,2,5\n")
+    [missing] = [
+        finding
+        for finding in inspect(recipe_from_text(RECIPE, folder=folder)).findings
+        if finding.code == "missing_values"
+    ]
+    assert missing.samples == ("C (acid)",)

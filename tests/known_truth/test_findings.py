@@ -51,12 +51,16 @@ def look(drying, recipe):
         damage(spoilt)
         notes = [{"technique": "ATR", "resolution": "4", **spoilt.notes.get(i, {})} for i in range(len(spoilt.spectra))]
         spectra = SpectraSet(spoilt.spectra, part.spectra.axis, part.spectra.sample_ids, spoilt.quantity, notes)
-        table = ReferenceTable(
-            part.reference.sample_ids, part.reference.analytes, spoilt.values, part.reference.notes
-        )
+        table = ReferenceTable(part.reference.sample_ids, part.reference.analytes, spoilt.values, part.reference.notes)
         return inspect(recipe, samples=pair_samples(spectra, table, missing="drop"))
 
     return look
+
+
+@pytest.fixture(scope="module")
+def clean(look):
+    """What is found in the set before it is spoilt."""
+    return look()
 
 
 def spike(s):
@@ -201,7 +205,8 @@ DAMAGES = [
 
 
 @pytest.mark.parametrize(("damage", "code", "gravity", "samples"), DAMAGES, ids=[case[0].__name__ for case in DAMAGES])
-def test_damage_is_found_where_it_was_done(look, damage, code, gravity, samples):
+def test_damage_is_found_where_it_was_done(look, clean, damage, code, gravity, samples):
+    assert not clean.found(code)
     result = look(damage)
     [finding] = result.found(code)
     assert finding.gravity == gravity
@@ -210,8 +215,8 @@ def test_damage_is_found_where_it_was_done(look, damage, code, gravity, samples)
     assert result.accepted == (gravity != STOP)
 
 
-def test_carbon_dioxide_is_told_and_does_no_harm(look):
-    [before] = look().found("carbon_dioxide")
+def test_carbon_dioxide_is_told_and_does_no_harm(look, clean):
+    [before] = clean.found("carbon_dioxide")
     [finding] = look(carbon_dioxide).found("carbon_dioxide")
     assert finding.gravity == NOTE
     assert finding.samples[0] == SPOILT

@@ -19,7 +19,7 @@ SETS = 60
 
 
 def planned(closed):
-    """Return components, standards and validation samples of four solvents, in water as the balance or with free totals."""
+    """Return components, standards and validation samples of four solvents; closed: water is the balance."""
     used = SUBSTANCES if closed else SUBSTANCES[:4]
     tables = "".join(f'[[component]]\nname = "{part.name}"\nlow = 0.5\nhigh = 5\n' for part in SUBSTANCES[:4])
     result = plan(plan_from_text(HEAD + tables + (MIXTURE if closed else "")))
@@ -43,7 +43,7 @@ def simulated(used, standards, samples, noise, laboratory):
 
 @pytest.mark.parametrize("closed", [False, True], ids=["free totals", "fixed total"])
 @pytest.mark.parametrize(
-    ("noise", "laboratory"), [(0.0005, 0.0), (0.0005, 0.05), (0.002, 0.05)], ids=["noise", "laboratory", "much noise"]
+    ("noise", "laboratory"), [(0.0005, 0.05), (0.002, 0.05)], ids=["laboratory error rules", "noise rules"]
 )
 def test_expected_errors_agree_with_simulation_within_15_percent(closed, noise, laboratory):
     used, standards, samples = planned(closed)

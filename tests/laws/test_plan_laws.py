@@ -15,7 +15,7 @@ from quant.planning.load import plan_from_text
 from quant.planning.plan import plan
 from quant.planning.precision import rmsep_precision
 
-laws = settings(max_examples=25)
+laws = settings(max_examples=20)
 NAMES = "abcd"
 
 
@@ -49,7 +49,7 @@ def planned(wanted):
     try:
         return plan(wanted)
     except ParameterError as error:
-        assert any(word in str(error) for word in ("cannot span", "No mixture obeys", "different mixtures"))  # noqa: PT017
+        assert any(word in str(error) for word in ("cannot span", "No mixture obeys", "no room", "different mixtures"))  # noqa: PT017
         return None
 
 
@@ -77,7 +77,7 @@ def test_ranges_totals_constraints_and_levels_hold(wanted):
             assert steps == pytest.approx(np.round(steps), abs=1e-6)
 
 
-@settings(max_examples=10)
+@settings(max_examples=8)
 @given(plans(), st.randoms(use_true_random=False))
 def test_the_order_of_components_changes_only_the_order_of_columns(wanted, random):
     order = list(range(len(wanted.component)))

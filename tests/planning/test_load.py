@@ -19,5 +19,5 @@ def test_no_file(tmp_path):
 
 
 def test_no_toml():
-    with pytest.raises(RecipeError, match="mine is no valid TOML: .* Check quotes and brackets"):
+    with pytest.raises(RecipeError, match=r"mine is no valid TOML: .* Check quotes and brackets"):
         plan_from_text("title = ", name="mine")

@@ -62,7 +62,8 @@ def test_expected_errors_use_the_weighings_or_what_is_stated(make_plan, short_se
     assert (a.laboratory_error, a.laboratory_source) == (0.5, "as stated for the component")
     for c, entry in ((1, b), (2, rest)):
         assert entry.laboratory_error == pytest.approx(np.sqrt((result.weighings.uncertainties[:, c] ** 2).mean()))
-    # a and b differ from the rest by (1, 0, −1)/100 and (0, 1, −1)/100: KK' = [[2, 1], [1, 2]]/10⁴, inverse [[2, −1], [−1, 2]]·10⁴/3.
+    # a and b differ from the rest by (1, 0, −1)/100 and (0, 1, −1)/100: KK' = [[2, 1], [1, 2]]/10⁴, of which the
+    # inverse is [[2, −1], [−1, 2]]·10⁴/3.
     assert a.sensitivity == pytest.approx(np.sqrt(1.5) / 100)
     assert rest.sensitivity == pytest.approx(np.sqrt(1.5) / 100)
     assert "Laboratory error: as stated for the component." in str(result)

@@ -47,7 +47,7 @@ def test_ranges_choose_points(read):
 
 
 def test_a_component_without_a_spectrum(read):
-    with pytest.raises(SampleMismatchError, match="no spectrum of b; the files hold a, c. The sample ID has to be"):
+    with pytest.raises(SampleMismatchError, match=r"no spectrum of b; the files hold a, c\. The sample ID has to be"):
         read(TABLE.replace("b,1,2,3\n", ""))
 
 

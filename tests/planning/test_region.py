@@ -33,6 +33,14 @@ def test_segment_by_hand(make_plan):
     assert region.amounts(np.array([[low, 0], [high, 0]]))[:, 0] == pytest.approx([3.0, 4.0])
 
 
+def test_segments_of_many_points_are_those_of_each(make_plan):
+    region = region_of(make_plan(3, top='constraints = ["a + b <= 12", "a >= 0.5 * b - 1", "c <= a + 5"]'))
+    points = np.array([[0.2, 0.3, 0.1], [0.0, 0.0, 0.0], [0.5, 0.1, 0.4]])
+    for c in range(3):
+        low, high = region.segments(points, c)
+        assert list(zip(low, high, strict=True)) == [pytest.approx(region.segment(point, c)) for point in points]
+
+
 def test_values_of_a_segment_are_round_or_ends_or_levels(make_plan):
     region = region_of(make_plan(2, low=0.123456, high=2.0))
     values = region.amounts(np.tile(region.values_between(0, 0.0, 0.41, 5)[:, None], 2))[:, 0]
@@ -68,6 +76,18 @@ def test_no_mixture_at_all(make_plan):
         region_of(make_plan(4, low=30, high=90, rest=BALANCE))
     with pytest.raises(ParameterError, match="No mixture obeys everything asked for: a >= b \\+ 9"):
         region_of(make_plan(2, top='constraints = ["a >= b + 9"]'))
+
+
+@pytest.mark.parametrize(
+    ("top", "rest"),
+    [
+        ('constraints = ["a <= b", "b <= a"]', ""),
+        ("", '[mixture]\ntotal = 100\nbalance = "rest"\nbalance_low = 90\nbalance_high = 90\n'),
+    ],
+)
+def test_limits_that_fix_a_component_are_refused(make_plan, top, rest):
+    with pytest.raises(ParameterError, match="no room to vary apart"):
+        region_of(make_plan(2, top=top, rest=rest))
 
 
 def test_levels_narrow_what_can_be_reached(make_plan):

@@ -21,7 +21,7 @@ mass_uncertainty = 0.001
 
 
 def test_a_stock_by_hand():
-    # Portions of √2·0.001/0.01 = 0.1414 g at least, so 0.01 g has to be diluted 14.1 times: the next round number is 20.
+    # Portions of √2·0.001/0.01 = 0.1414 g at least, so 0.01 g is to be diluted 14.1 times, roundly 20.
     masses = np.array([[0.01, 9.99], [0.0, 10.0], [0.3, 9.7]])
     [found] = advise_stocks(plan_from_text(CLOSED), masses, [0])
     assert found.strength == pytest.approx(5.0)
@@ -44,10 +44,8 @@ def test_the_room_in_every_sample_bounds_the_dilution():
     assert 100 / cut.strength == pytest.approx(1 + 9.4 / 0.6)  # 16.7, no round number but what there is room for
     [none] = advise_stocks(plan, np.array([[0.01, 9.99], [0.9, 9.1]]), [0])
     assert none.strength is None
-    assert (
-        none.advice
-        == "No stock in rest would do: there is not enough of it to replace. Make samples of at least 100 g."
-    )
+    assert none.advice.startswith("No stock in rest would do: there is not enough of it to replace.")
+    assert none.advice.endswith("Make samples of at least 100 g.")
 
 
 def test_free_totals_use_the_solvent():

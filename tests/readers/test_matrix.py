@@ -111,7 +111,7 @@ def test_a_decimal_comma_is_found_out_and_a_wrong_option_refused(tmp_path: Path,
     spectra = read_text(tmp_path, text)
     assert spectra.values.tolist() == [[0.1, 0.2]]
     assert "decimal comma" in spectra.notes[0]["reader"]
-    with pytest.raises(FileFormatError, match='[Ss]et decimal = ","'):
+    with pytest.raises(FileFormatError, match=r'[Ss]et decimal = ","'):
         read_text(tmp_path, text, format="matrix", decimal=".")
 
 

@@ -108,6 +108,8 @@ def test_every_determination_is_converted_by_its_own_moisture(tmp_path: Path) ->
 def test_a_table_may_state_its_basis(tmp_path: Path) -> None:
     text = "id,ethanol,Basis\nS1,1,dry\nS2,2,Dry\n"
     assert read_text(tmp_path, text).analytes[0].basis == "dry"
+    by_volume = ColumnOf(Analyte("ethanol", "g/L"))
+    assert read_text(tmp_path, text, by_volume).analytes[0].basis == ""
     wet = ColumnOf(Analyte("ethanol", "% m/m", basis="wet"))
     with pytest.raises(
         FileFormatError, match="the table says dry basis; expected wet basis, as the recipe says of ethanol"

@@ -79,7 +79,7 @@ def dialects() -> Iterator[tuple[str, Dialect]]:
         yield f"{lie}-big-endian", replace(base, above="\ufeff", encoding="utf-16-be")
         for name, end in (("CRLF", "\r\n"), ("CR", "\r")):
             yield f"{lie}-{name}", replace(base, end=end)
-        for separator, decimal, thousands in (";.,", ";,.", ";.'", ";, ", ";,\u00a0", "\t.,", "\t,."):
+        for separator, decimal, thousands in (",. ", ",.'", ";.,", ";,.", ";.'", ";, ", ";,\u00a0", "\t.,", "\t,."):
             grouped = replace(base, separator=separator, decimal=decimal, thousands=thousands)
             yield f"{lie}-thousands {thousands!r} in {separator!r}", grouped
         yield f"{lie}-thousands, quoted", replace(base, thousands=",", quoted=True)
@@ -289,6 +289,15 @@ OTHERS: dict[str, tuple[str, str]] = {  # damaged, or no spectra at all: text, w
     "header names no positions": ("sample,X900,X902\nS1,0.1,0.2\nS2,0.3,0.4\n", "no known format"),
     "an ordinate in words": ("sample,900,902\nS1,0.1,low\nS2,0.3,0.4\n", "line 2: found 'low'"),
     "a data row as header": ("S1,0.1,0.2\nS2,0.3,0.4\n", "sample_column"),
+    "a damaged first row": ("nm,A\n9O0,0.1\n902,0.2\n904,0.3\n", "found '9O0'"),
+    "a damaged first ordinate": ("nm,A\n900,O.1\n902,0.2\n904,0.3\n", "found 'O.1'"),
+    "a damaged second row": ("nm,A\n900,0.1\n9O2,0.2\n904,0.3\n906,0.3\n", "line 3: found '9O2'"),
+    "a second row of other things": ("900,0.1\n?\n904,0.3\n906,0.3\n", "line 2: found 1 cell"),
+    "a second row as comment": ("900,0.1\n#902,0.2\n904,0.3\n906,0.3\n", "line 2: found '#902'"),
+    "a damaged first row of a table": ("nm,A,B\n9O0,0.1,1\n902,0.2,1\n904,0.3,1\n", "line 2: found '9O0'"),
+    "a damaged heading": ("sample,900,9O2,904\nS1,0.1,0.2,0.3\n", "found '9O2' as heading"),
+    "a lost heading": ("sample,900,,904\nS1,0.1,0.2,0.3\n", "found '' as heading"),
+    "a damaged last heading": ("sample,900,902,9O4\nS1,0.1,0.2,0.3\n", "found '9O4' as heading"),
     "numbers only": ("900,902,904\n0.1,0.2,0.3\n", "no known format"),
 }
 

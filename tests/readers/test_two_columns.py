@@ -81,7 +81,7 @@ def test_damage_is_refused_by_line(tmp_path: Path, text: str, words: str) -> Non
 def test_a_decimal_comma_is_found_out_and_a_wrong_option_refused(tmp_path: Path) -> None:
     text = "900;0,1\n902;0,2\n"
     assert read_text(tmp_path, text).values.tolist() == [[0.1, 0.2]]
-    with pytest.raises(FileFormatError, match="cannot be read with decimal = '.'. Set decimal = \",\""):
+    with pytest.raises(FileFormatError, match=r"cannot be read with decimal = '\.'\. Set decimal = \",\""):
         read_text(tmp_path, text, decimal=".", format="two_columns")
 
 

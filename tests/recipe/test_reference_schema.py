@@ -10,7 +10,7 @@ from quant.readers.dates import ORDERS
 from quant.readers.reference_csv import REPLICATES
 from quant.recipe.load import load_samples, recipe_from_text
 from quant.recipe.reference_schema import AnalyteTable, ReferenceSection
-from quant.spectra.concentration import BASES
+from quant.spectra.reference_table import BASES
 
 HEAD = 'title = "t"\n[spectra]\nfiles = ["spectra.csv"]\naxis_unit = "nm"\n[reference]\nfile = "values.csv"\n'
 

@@ -52,3 +52,14 @@ def test_golden_text(name, case, request):
 
 def test_no_golden_text_is_left_over():
     assert sorted(path.stem for path in GOLDEN.iterdir()) == sorted(f"{name}-{case}" for name, case in CASES)
+
+
+def test_what_repeats_and_limits_say_is_shown(make):
+    found = text_of(render_section(BY_NAME["data"], make(repeats=True, laboratory_error=None)))
+    assert "standard error of the laboratory  0.02121 % m/m (from repeated determinations)" in found  # 0.03/√2
+    assert "S08  acetone below the detection limit of 0.5 % m/m" in found
+    assert "Repeated determinations have a standard deviation of 0.03 % m/m (14 degrees of freedom" in found
+    assert (
+        "1 sample(s) below a detection limit of at most 0.5 % m/m took no part in the fit; predicted above it" in found
+    )
+    assert "prepare blanks and low standards by weighing" in found

@@ -5,14 +5,16 @@ from fractions import Fraction
 import numpy as np
 import pytest
 
-from quant.errors import ParameterError
+from quant.errors import ParameterError, SampleMismatchError
 from quant.spectra.concentration import (
     concentration_unit_named,
     conversion_ratio,
     convert_basis,
     convert_concentration,
+    refuse_other_scale,
     same_unit,
 )
+from quant.spectra.reference_table import Analyte
 
 
 @pytest.mark.parametrize(
@@ -91,3 +93,13 @@ def test_basis():
             convert_basis(1.0, "wet", "dry", moisture)
     with pytest.raises(ParameterError, match="basis = 'moist'; expected one of 'wet', 'dry'"):
         convert_basis(1.0, "moist", "dry", 0.1)
+
+
+def test_another_scale_is_refused() -> None:
+    dry, wet = Analyte("fat", "% m/m", basis="dry"), Analyte("fat", "% m/m", basis="wet")
+    with pytest.raises(SampleMismatchError, match="of fat are in % m/m dry basis, the validation's in % m/m wet basis"):
+        refuse_other_scale(dry, wet)
+    with pytest.raises(SampleMismatchError, match="are in % m/m, the validation's in mg/kg"):
+        refuse_other_scale(Analyte("fat", "% m/m"), Analyte("fat", "mg/kg"))
+    for other in (Analyte("fat"), Analyte("fat", "wt%"), dry):
+        refuse_other_scale(dry, other)  # what is not stated does not clash

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from quant.errors import ParameterError, SampleMismatchError
-from quant.spectra.reference_table import Analyte, ReferenceTable, Repeatability, refuse_other_scale
+from quant.spectra.reference_table import Analyte, ReferenceTable, Repeatability
 
 ETHANOL, WATER = Analyte("ethanol", "% m/m"), Analyte("water")
 
@@ -54,13 +54,3 @@ def test_limits_and_determinations() -> None:
         ReferenceTable(["A", "B"], [ETHANOL], [[1], [2]], determinations=[2, 2])
     known = {"ethanol": Repeatability(0.1, 3, 3)}
     assert ReferenceTable(["A"], [ETHANOL], [[1]], repeatability=known).repeatability == known
-
-
-def test_another_scale_is_refused() -> None:
-    dry, wet = Analyte("fat", "% m/m", basis="dry"), Analyte("fat", "% m/m", basis="wet")
-    with pytest.raises(SampleMismatchError, match="of fat are in % m/m dry basis, the validation's in % m/m wet basis"):
-        refuse_other_scale(dry, wet)
-    with pytest.raises(SampleMismatchError, match="are in % m/m, the validation's in mg/kg"):
-        refuse_other_scale(Analyte("fat", "% m/m"), Analyte("fat", "mg/kg"))
-    for other in (Analyte("fat"), Analyte("fat", "wt%"), dry):
-        refuse_other_scale(dry, other)  # what is not stated does not clash

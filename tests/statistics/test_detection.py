@@ -8,6 +8,7 @@ from scipy import stats
 
 from quant.errors import NotEnoughDataError, ParameterError
 from quant.statistics.detection import (
+    NONCENTRAL_T,
     TWICE_T,
     critical_value,
     detection_limit,
@@ -38,7 +39,7 @@ def test_twice_t(dof, expected):
 def test_the_noncentral_t_leaves_beta_below_the_critical_value(dof, alpha, beta):
     # By integration over the estimated standard deviation, a way of its own: P(Z + δ < t·sqrt(χ²/ν)).
     delta, t = detection_limit(1.0, dof, alpha, beta), critical_value(1.0, dof, alpha)
-    quantiles = (np.arange(200_000) + 0.5) / 200_000
+    quantiles = (np.arange(20_000) + 0.5) / 20_000
     missed = np.mean(stats.norm.cdf(t * np.sqrt(stats.chi2.ppf(quantiles, dof) / dof) - delta))
     assert missed == pytest.approx(beta, rel=2e-3)
 
@@ -48,6 +49,16 @@ def test_the_noncentral_t_is_close_to_twice_t_from_ten_degrees_of_freedom():
     for dof in (10, 20, 50):
         exact, twice = detection_limit(1.0, dof), detection_limit(1.0, dof, way=TWICE_T)
         assert 0.97 * twice < exact < twice
+
+
+def test_twice_t_is_exact_where_each_calibration_states_its_own_limit():
+    # By integration over the estimated s0: a sample at 2·t·s0 is missed where Z < -t·s0/σ, in 5 % by the law of t.
+    dof = 4
+    s0 = np.sqrt(stats.chi2.ppf((np.arange(20_000) + 0.5) / 20_000, dof) / dof)
+    for way, missed in ((TWICE_T, 0.05), (NONCENTRAL_T, stats.t.cdf(2.1318 - detection_limit(1.0, dof), dof))):
+        at_limit, critical = detection_limit(1.0, dof, way=way) * s0, critical_value(1.0, dof) * s0
+        assert np.mean(stats.norm.cdf(critical - at_limit)) == pytest.approx(missed, rel=2e-3)
+    assert 0.05 < missed < 0.07
 
 
 def test_the_calibration_term():

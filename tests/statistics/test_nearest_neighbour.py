@@ -4,13 +4,21 @@ import numpy as np
 import pytest
 
 from quant.errors import NotEnoughDataError, ParameterError
-from quant.statistics.nearest_neighbour import gap_limit, nearest_neighbour_distance, whitened_scores
+from quant.statistics.nearest_neighbour import (
+    gap_limit,
+    nearest_neighbour_distance,
+    neighbour_distances,
+    whitened_scores,
+)
 
 
 def test_one_factor_by_hand():
     # Scores -3, -2, 2, 3: S'S = 26. Nearest neighbours are 1 apart; a sample at 0 is 2 away from two of them.
     calibration = np.array([[-3.0], [-2.0], [2.0], [3.0]])
+    assert neighbour_distances(calibration) == pytest.approx(np.full(4, 1 / 26))
     assert gap_limit(calibration) == pytest.approx(1 / 26)
+    assert neighbour_distances([[0.0], [1.0], [3.0]]) == pytest.approx(np.array([1, 1, 4]) * 3 / 14)  # S'S = 14/3
+    assert gap_limit([[0.0], [1.0], [3.0]]) == pytest.approx(12 / 14)
     assert nearest_neighbour_distance([[0.0], [2.5], [5.0]], calibration) == pytest.approx([4 / 26, 0.25 / 26, 4 / 26])
 
 

@@ -47,7 +47,7 @@ def test_random_patterns_come_close_to_all_patterns_and_repeat():
 
 def test_the_rule_takes_the_fewest_factors_that_are_not_significantly_worse():
     best = np.array([1.0, 1.0, 2.0, 1.0])
-    worse = best + [4.0, 1.0, -2.0, 3.0]  # p = 3/16, not significant at 0.1
+    worse = best + np.array([4.0, 1.0, -2.0, 3.0])  # p = 3/16, not significant at 0.1
     bad = best + 9.0  # p = 1/16
     assert randomisation([bad, bad, worse, best, best]) == 2
     assert randomisation([bad, bad, worse, best, best], alpha=0.2) == 3

@@ -35,11 +35,11 @@ class Scale:
         return abs(self.span / (self.n_points - 1) - spacing) < abs(self.span / (n_points - 1) - spacing)
 
 
-def agree_on_count(block: Block, found: int, scale: Scale, last_line: int, closing: float | None = None) -> None:
+def agree_on_count(block: Block, found: int, scale: Scale, last_line: int, *, closed: bool = False) -> None:
     """Compare the number of ordinates with NPOINTS.
 
-    NPOINTS may be wrong in a file that has its END: by one if DELTAX does not side with it, by any number if DELTAX, or
-    a check line whose abscissa is LASTX, confirms what was found.
+    NPOINTS may be wrong in a file that has its END: by one if DELTAX does not side with it, by any number if DELTAX
+    confirms what was found.
 
     Parameters
     ----------
@@ -50,8 +50,8 @@ def agree_on_count(block: Block, found: int, scale: Scale, last_line: int, closi
     scale : Scale
     last_line : int
         The last line of the table.
-    closing : float, optional
-        Abscissa of the check line that closes the table. [XUNITS]
+    closed : bool
+        A check line closes the table.
 
     Raises
     ------
@@ -70,7 +70,7 @@ def agree_on_count(block: Block, found: int, scale: Scale, last_line: int, closi
             )
         block.deviates("##NPOINTS= is missing")
     elif found != expected:
-        confirmed = scale.step_speaks_for(found) or _closes(closing, scale, found)
+        confirmed = scale.step_speaks_for(found)
         by_one = abs(found - expected) == 1 and not scale.step_speaks_against(found)
         if not block.ended or not (confirmed or by_one):
             raise FileFormatError(
@@ -78,12 +78,5 @@ def agree_on_count(block: Block, found: int, scale: Scale, last_line: int, closi
                 f"found {found} ordinates; expected {expected} (##NPOINTS=). The file is cut or damaged.",
                 line=last_line,
             )
-        counted = ", the check line is counted in it" if closing is not None and expected == found + 1 else ""
+        counted = ", the check line is counted in it" if closed and expected == found + 1 else ""
         block.deviates(f"##NPOINTS= is {expected} where {found} ordinates are{counted}")
-
-
-def _closes(closing: float | None, scale: Scale, found: int) -> bool:
-    """Tell whether the check line stands at the last point."""
-    if closing is None or scale.last is None or scale.span is None:
-        return False
-    return abs(closing - scale.last) < 0.5 * scale.span / (found - 1)

@@ -26,16 +26,6 @@ def decimal_of(block: Block, stated: str | None) -> str:
     return "."
 
 
-def decimals_of(text: str) -> int:
-    """Return how many decimals a number is written with.
-
-    >>> decimals_of("0.50"), decimals_of("12"), decimals_of("1.25E-3"), decimals_of("5E2")
-    (2, 0, 5, -2)
-    """
-    mantissa, _, exponent = text.strip().lower().replace(",", ".").partition("e")
-    return len(mantissa.partition(".")[2]) - int(exponent or 0)
-
-
 def number_of(block: Block, label: str, decimal: str) -> float | None:
     """Return the number under a label, or None where there is none.
 

@@ -132,4 +132,10 @@ def _fault(block: Block) -> tuple[str, int]:
         return "", 1
     for record in records:
         return f"##{record.written}= is no spectrum", record.line
+    if not block.ended:
+        raise FileFormatError(
+            block.path,
+            f"neither ##XYDATA= nor ##END= of {block.title!r}; expected a whole block. The file is cut.",
+            line=block.records[-1].line,
+        )
     return f"no ##XYDATA= among {labels_of(block)}", block.records[0].line

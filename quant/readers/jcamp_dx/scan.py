@@ -1,5 +1,6 @@
 """The bytes of an ordinate table: what each character is, where lines begin, and the abscissa of each line."""
 
+import math
 import re
 from dataclasses import dataclass
 
@@ -94,7 +95,8 @@ def scan_lines(data: bytes) -> Lines:
     TokenError
         A character of no meaning, a line that does not begin with a number, or no line at all.
     """
-    data += b"\n"
+    if not data.endswith(b"\n"):
+        data += b"\n"
     foreign = data.translate(None, _KNOWN)
     if foreign:
         place = data.index(foreign[:1])
@@ -109,16 +111,26 @@ def scan_lines(data: bytes) -> Lines:
         kind = kind.copy()
         for line in odd.tolist():
             number = _odd_abscissa(data, int(begin[line]), int(rows[line]))
-            mantissa, _, exponent = number.lower().partition(b"e")
             values[line], stop[line] = float(number), begin[line] + len(number)
-            decimals[line] = len(mantissa.partition(b".")[2]) - int(exponent or 0)
+            decimals[line] = decimals_of(number.decode())
             points[line] = number.count(b".")
-            exponents += bool(exponent)
+            exponents += b"e" in number.lower()
             kind[begin[line] : stop[line]] = DIGIT  # no character of it begins an ordinate
     plain = data.count(b".") > points.sum()
     if not plain and (b"E" in data or b"e" in data) and any(sign in data for sign in _EXPONENT_SIGNS):
         plain = len(_EXPONENT.findall(data)) > exponents
     return Lines(data, kind, digit, begin, stop, end, rows, values, int(decimals.max()), plain)
+
+
+def decimals_of(number: str) -> int:
+    """Return how many decimals a number is written with.
+
+    >>> decimals_of("0.50"), decimals_of("12"), decimals_of("1.25E-3"), decimals_of("5E2")
+    (2, 0, 5, -2)
+    """
+    mantissa, _, exponent = number.strip().lower().partition("e")
+    decimals = len(mantissa.partition(".")[2]) - int(exponent[:5] or 0)
+    return max(-300, min(300, decimals))  # powers of ten beyond these are no doubles
 
 
 def _line_bounds(kind: AnyArray) -> tuple[IntArray, IntArray, IntArray]:
@@ -170,4 +182,6 @@ def _odd_abscissa(data: bytes, start: int, row: int) -> bytes:
     if number is None:
         found = data[start:].partition(b"\n")[0][:40].decode("ascii").strip()
         raise TokenError(row, f"{found!r} where a line should begin with its abscissa")
+    if not math.isfinite(float(number[0])):
+        raise TokenError(row, "an abscissa too large")
     return number[0]

@@ -50,9 +50,14 @@ def decode_spectrum(block: Block, options: ReadingOptions) -> Spectrum:
     AxisMismatchError, QuantityError
         The options state another unit or ordinate than the block.
     """
-    table = _table(block, options)
     unit = _axis_unit(block, options)
-    values, quantity = _ordinates(block, table.y, options)
+    with np.errstate(over="ignore", invalid="ignore"):  # what runs over is refused as not finite
+        table = _table(block, options)
+        values, quantity = _ordinates(block, table.y, options)
+    if np.isinf(values).any():
+        raise FileFormatError(block.path, "ordinates beyond the largest number; expected another ##YFACTOR=.")
+    for array in (table.x, values):
+        array.flags.writeable = False  # so that no copy is made of it
     try:
         return Spectrum(SpectralAxis(table.x, unit), values, quantity)
     except ParameterError as problem:
@@ -72,10 +77,9 @@ def _table(block: Block, options: ReadingOptions) -> Table:
         n_points=count_of(block, "NPOINTS", decimal),
         factor=_x_factor(block, decimal),
     )
-    form, _, lines = record.text.partition("\n")
-    form = re.sub(r"\s", "", form).upper()
-    if decimal == "," and (options.decimal == "," or "." not in lines):
-        record = replace(record, text=f"{form}\n{lines.replace(',', '.')}")
+    form = re.sub(r"\s", "", record.head).upper()
+    if decimal == "," and (options.decimal == "," or "." not in record.body):
+        record = replace(record, text=f"{form}\n{record.body.replace(',', '.')}")
     if form == "(X++(Y..Y))":
         table = decode_line_table(block, record, scale)
     elif form == "(XY..XY)":

@@ -10,7 +10,8 @@ import numpy as np
 from quant.arrays import FloatArray
 from quant.errors import FileFormatError
 from quant.readers.jcamp_dx.labels import Block
-from quant.readers.jcamp_dx.numbers import decimals_of, factor_of, number_of
+from quant.readers.jcamp_dx.numbers import factor_of, number_of
+from quant.readers.jcamp_dx.scan import decimals_of
 
 _SINGLE_PRECISION = 1e-6  # share by which a stated ordinate may be off
 _FACTORS = 2.0  # multiples of YFACTOR by which it may be off: labels are often made before ordinates are rounded
@@ -82,7 +83,7 @@ def _statements(block: Block, y: FloatArray, factor: float, decimal: str) -> lis
         record, stated = block.find(label), number_of(block, label, decimal)
         if record is None or stated is None or np.isnan(ordinate):
             continue
-        rounding = 0.5 * 10.0 ** -decimals_of(record.value) + _SINGLE_PRECISION * abs(stated)
+        rounding = 0.5 * 10.0 ** -decimals_of(record.value.replace(",", ".")) + _SINGLE_PRECISION * abs(stated)
         allowed = rounding + _FACTORS * abs(factor)
         found.append(_Statement(label, record.line, stated, ordinate, ordinate * factor, allowed, rounding))
     return found

@@ -29,7 +29,7 @@ def decode_line_table(block: Block, record: Record, scale: Scale) -> Table:
         Damage: line, what was found, what was expected.
     """
     try:
-        lines = scan_lines(_body(record).encode("utf-8"))
+        lines = scan_lines(record.body.encode("utf-8"))
         ordinates = decode_plain(lines) if lines.plain else decode_compressed(lines)
     except TokenError as problem:
         raise _damage(block, record, problem, "ordinates in AFFN or ASDF form") from problem
@@ -40,8 +40,7 @@ def decode_line_table(block: Block, record: Record, scale: Scale) -> Table:
     found = lines.abscissae * scale.factor
     numbers = [record.line, *(record.line + 1 + lines.rows).tolist()]
     n_points = ordinates.values.size
-    closing = float(found[-1]) if ordinates.checked else None
-    agree_on_count(block, n_points, scale, numbers[-1], closing)
+    agree_on_count(block, n_points, scale, numbers[-1], closed=ordinates.checked)
     rounding = abs(scale.factor) * 0.5 * 10.0**-lines.decimals
     return Table(
         axis_values(block, scale, found, ordinates.first, rounding, n_points, numbers),
@@ -58,7 +57,7 @@ def decode_pair_table(block: Block, record: Record, scale: Scale) -> Table:
         A line that is not pairs of numbers, or pairs that do not run from FIRSTX to LASTX.
     """
     try:
-        pairs, last = decode_pairs(_body(record))
+        pairs, last = decode_pairs(record.body)
     except TokenError as problem:
         raise _damage(block, record, problem, "pairs of numbers") from problem
     agree_on_count(block, len(pairs), scale, record.line + 1 + last)
@@ -68,11 +67,6 @@ def decode_pair_table(block: Block, record: Record, scale: Scale) -> Table:
         if stated is not None and abs(stated - found) > 0.5 * spacing:
             block.deviates(f"##{label}= is {stated:g} where the pairs have {found:g}")
     return Table(x, pairs[:, 1])
-
-
-def _body(record: Record) -> str:
-    """Return the lines below the label."""
-    return record.text.partition("\n")[2]
 
 
 def _damage(block: Block, record: Record, problem: TokenError, expected: str) -> FileFormatError:

@@ -18,7 +18,7 @@ from quant.spectra.axis import SAME_POSITION, SpectralAxis
 from quant.spectra.spectra_set import SpectraSet
 
 LARGEST_ORDINATE = 2**31 - 1  # readers that keep ordinates in 32 bits are common
-_NOT_WRITTEN = ("file", "reader", "block")  # what reading adds
+_NOT_WRITTEN = ("file", "reader")  # what reading adds
 
 
 def write_jcamp_dx(spectra: SpectraSet, path: str | Path, form: str = "DIFDUP", y_factor: float | None = None) -> None:

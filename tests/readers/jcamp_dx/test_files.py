@@ -33,7 +33,6 @@ NOTED = {
     "blocks_without_link": "several blocks without a LINK block around them",
     "bom": "byte-order mark",
     "check_line_counted": "##NPOINTS= is 11 where 10 ordinates are, the check line is counted in it",
-    "check_line_counted_step_too": "the check line is counted in it; ##DELTAX= is 0.9 where the step is 1",
     "cr": "lines end with CR alone",
     "ctrl_z": "Ctrl-Z at the end",
     "ctrl_z_without_end": "Ctrl-Z at the end; ##END= is missing",
@@ -77,6 +76,7 @@ NOTED = {
 }
 
 REFUSED = {
+    "check_line_counted_step_too": "line 17: found 10 ordinates; expected 11",  # or an ordinate was lost
     "comma_thousands_or_decimal": "line 10: ##FIRSTX= '600,000'; expected a number.*set decimal = \",\"",
     "cut_at_a_line": "line 15: found 5 ordinates; expected 10",
     "cut_in_a_line": "line 16: the file ends within a line",

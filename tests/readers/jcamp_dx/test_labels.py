@@ -60,3 +60,18 @@ def test_a_label_that_contradicts_itself_is_refused_when_it_is_needed() -> None:
     assert record.value == "1"
     with pytest.raises(FileFormatError, match="line 5"):
         block.find("LASTX")
+
+
+def test_a_lost_end_does_not_make_the_next_block_an_inner_one() -> None:
+    text = "##TITLE= one\n##XYDATA= (X++(Y..Y))\n1 2\n##TITLE= two\n##XYDATA= (X++(Y..Y))\n1 2\n##END=\n"
+    one, two = read_blocks(FILE, text)
+    assert (one.ended, two.ended) == (False, True)
+    assert two.outer is None
+    assert "##END= is missing" in one.deviations
+    assert "##END= is missing" not in two.deviations
+
+
+def test_a_mark_within_a_line_is_text() -> None:
+    (block,) = read_blocks(FILE, "##TITLE= a ## b # c\n##OWNER= d\n# e\n##END= $$ f\n")
+    assert [record.value for record in block.records] == ["a ## b # c", "d\n# e"]
+    assert block.deviations == []

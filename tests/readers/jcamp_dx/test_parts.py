@@ -2,12 +2,15 @@
 
 from pathlib import Path
 
+import numpy as np
 import pytest
 
-from quant.errors import FileFormatError, ParameterError
+from quant.errors import FileFormatError, ParameterError, QuantError
 from quant.readers.jcamp_dx.labels import read_blocks
 from quant.readers.jcamp_dx.parts import choose, parts_of
+from quant.readers.options import ReadingOptions
 from quant.readers.read import read_spectra
+from quant.recipe.schema import SpectraTable
 
 FILES = Path(__file__).parent / "files"
 
@@ -87,3 +90,32 @@ def test_page_labels_come_before_those_of_all_pages(tmp_path: Path) -> None:
     spectra = read_spectra(tmp_path / "a.dx", block=2)
     assert spectra.axis.values.tolist() == [600, 601, 602, 603, 604]
     assert spectra.values.shape == (1, 5)
+
+
+def test_the_block_is_part_of_options_and_recipe() -> None:
+    assert ReadingOptions.from_dict(ReadingOptions(block=2).to_dict()).block == 2
+    table = SpectraTable.model_validate({"files": ["a.dx"], "block": "short"})
+    assert table.options().block == "short"
+    with pytest.raises(ParameterError, match="expected a title or a number"):
+        ReadingOptions(block=True)
+    with pytest.raises(ValueError, match="block"):
+        SpectraTable.model_validate({"files": ["a.dx"], "block": 0})
+
+
+@pytest.mark.parametrize("name", ["link_with_peaks", "ntuples", "blocks_without_link"])
+def test_a_file_of_blocks_cut_anywhere_never_loses_spectra_silently(tmp_path: Path, name: str) -> None:
+    content = (FILES / f"{name}.dx").read_bytes()
+    whole = read_spectra(FILES / f"{name}.dx")
+    boundary = content.find(b"##END=\n##TITLE= B") + len(b"##END=\n") if name == "blocks_without_link" else -1
+    for length in range(1, len(content)):
+        (tmp_path / "a.dx").write_bytes(content[:length])
+        try:
+            spectra = read_spectra(tmp_path / "a.dx")
+        except QuantError:
+            continue
+        if boundary - 1 <= length <= boundary:  # a whole file in itself: nothing can tell
+            continue
+        if name == "blocks_without_link" and len(spectra) == 1:
+            assert "##END" in spectra.notes[0]["reader"]
+        else:
+            assert np.array_equal(spectra.values, whole.values), content[:length].decode()
