@@ -7,6 +7,7 @@ import click
 from quant.errors import ExitCode
 from quant.files import write_text
 from quant.model.storage import load_model
+from quant.prediction.decisions import other_rule
 from quant.prediction.predict import predict
 from quant.readers.options import ReadingOptions
 from quant.readers.read import read_spectra
@@ -28,6 +29,9 @@ from quant.spectra.sample_ids import expand_ids
     metavar="NAME=VALUE",
     help='How the spectra were recorded, where the files do not say: "technique=ATR". Compared with the calibration.',
 )
+@click.option("--limit", type=float, help="Decide against this upper limit, in place of the model's own.")
+@click.option("--lower-limit", type=float, help="Decide against this lower limit, in place of the model's own.")
+@click.option("--risk", type=float, default=0.05, show_default=True, help="Risk accepted, with one of these limits.")
 @click.pass_context
 def command(
     ctx: click.Context,
@@ -37,15 +41,24 @@ def command(
     table: Path | None,
     samples: str | None,
     notes: tuple[str, ...],
+    limit: float | None,
+    lower_limit: float | None,
+    risk: float,
     **naming: str | None,
 ) -> None:
     """Predict the spectra in FILES with a saved MODEL.
 
-    FILES are read as the calibration's own files were. The exit code is 1 if the model does not apply to a sample.
+    FILES are read as the calibration's own files were. The exit code is 1 if the model does not apply to a sample, or
+    if a sample is not accepted where there is a limit.
     """
     if table is not None and table.suffix.lower() not in (".csv", ".json"):
         raise click.UsageError(f"--out {table}: expected a name that ends in .csv or .json.")
+    if limit is not None and lower_limit is not None:
+        raise click.UsageError("--limit and --lower-limit were both given; expected one of them.")
     calibration = load_model(model)
+    rule, own = None, lower_limit if limit is None else limit
+    if own is not None:
+        rule = other_rule(calibration, own, kind="lower" if limit is None else "upper", risk=risk)
     reading = dict(calibration.reading)
     if any(naming.values()):
         reading |= naming
@@ -53,7 +66,7 @@ def command(
     spectra = read_spectra(list(files), ReadingOptions.from_dict(reading))
     if samples is not None:
         spectra = spectra.select(expand_ids(samples.split(",")))
-    result = predict(calibration, spectra)
+    result = predict(calibration, spectra, rule=rule)
     click.echo(str(result))
     if table is not None:
         write_text(table, result.to_json() + "\n" if table.suffix.lower() == ".json" else result.to_csv())

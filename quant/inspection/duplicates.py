@@ -84,7 +84,7 @@ def _across(material: Material, pairs: list[tuple[int, int]], kind: str) -> Find
 
 
 def _within(material: Material, pairs: list[tuple[int, int]], kind: str, n_across: int) -> Finding:
-    together = bool(getattr(material.recipe.cross_validation, "duplicates_together", False))
+    together = material.recipe.cross_validation.duplicates_together
     also = f" ({plural(n_across, 'more pair')} between calibration and validation above)" if n_across else ""
     return Finding(
         gravity=NOTE if together and kind == "Exact" else DOUBT,

@@ -58,11 +58,13 @@ def make_smoothers(spectra: FloatArray, groups: Sequence[int] | IntArray) -> tup
     centred = spectra - spectra.mean(axis=0)
     u, s, _ = np.linalg.svd(centred, full_matrices=False)
     keep = s > _KEPT * max(float(s[0]), 1e-300)
+    if not keep.any():
+        return ()
     u, squares = u[:, keep], s[keep] ** 2
     most = min(1 + squares.size, (n + 1) // 2)
-    wanted = [f for f in FREEDOM if f <= most and f - 1 < squares.size] or []
+    wanted = [f for f in FREEDOM if f <= most and f - 1 < squares.size]
     shrinks = [squares / (squares + _strength(squares, f - 1)) for f in wanted]
-    if (squares.size and not wanted) or 1 + squares.size <= min(most, 3):
+    if not wanted or 1 + squares.size <= min(most, 3):
         shrinks.append(np.ones(squares.size))  # few columns: plain least squares
     labels = np.asarray(groups)
     return tuple(_smoother(u, shrink, n, labels) for shrink in shrinks)

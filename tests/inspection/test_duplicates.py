@@ -67,11 +67,7 @@ def test_twins_with_different_values_are_told(recipe, repository, tmp_path):
     assert finding.evidence == "The first: fat 20.6 and 14.6 % m/m."
 
 
-def test_duplicates_kept_together_are_a_note(recipe, found):
-    class Together(type(recipe.cross_validation)):
-        duplicates_together: bool = True
-
-    kept = recipe.model_copy(update={"cross_validation": Together.model_validate({"scheme": "leave_one_out"})})
-    kept._folder, kept._name = recipe.folder, recipe.name
-    [within] = inspect(kept).found("exact_duplicates")
+def test_duplicates_kept_together_are_a_note(recipe):
+    table = recipe.cross_validation.model_copy(update={"duplicates_together": True})
+    [within] = inspect(recipe.model_copy(update={"cross_validation": table})).found("exact_duplicates")
     assert within.gravity == NOTE

@@ -5,7 +5,7 @@ from pathlib import Path
 
 import pytest
 
-from quant.errors import AxisMismatchError, SampleMismatchError
+from quant.errors import FileFormatError, SampleMismatchError
 from quant.inspection.inspect import inspect
 from quant.recipe.load import recipe_from_text
 
@@ -105,23 +105,68 @@ water                2  7.000  9.000  8.000  B
 Preprocessing: keep_ranges → snv
 Points: 4 read, 3 behind the preprocessing"""
     )
-    assert json.loads(found.to_json())["sets"][0]["analytes"][1]["without_value"] == ["B"]
+    assert findings.startswith("0 stops, ")
+    record = json.loads(found.to_json())
+    assert record["sets"][0]["analytes"][1]["without_value"] == ["B"]
+    assert {"gravity", "code", "title", "samples", "evidence", "advice"} == set(record["findings"][0])
+    assert "picture" not in record
 
 
 def test_what_cannot_be_read_is_refused(folder):
     (folder / "values.csv").write_text("sample,acid,water\nX,1,2\n")
     with pytest.raises(SampleMismatchError, match="Not one of 4 samples with spectra"):
         inspect(recipe_from_text(RECIPE, folder=folder))
-    (folder / "spectra2.csv").write_text("sample,900,903\nA,1,2\n")
-    with pytest.raises(AxisMismatchError, match=r"spectra"):
-        inspect(recipe_from_text(RECIPE.replace('"spectra.csv"', '"spectra.csv", "spectra2.csv"'), folder=folder))
+    (folder / "spectra.csv").write_text("sample,900\nA,x\n")
+    with pytest.raises(FileFormatError):
+        inspect(recipe_from_text(RECIPE, folder=folder))
 
 
-def test_values_below_a_limit_are_not_missing(folder):
-    (folder / "values.csv").write_text("sample,acid,water\nA,1.5,7\nB,<0.5,3\nC,,4\nE,2,5\n")
-    [missing] = [
-        finding
-        for finding in inspect(recipe_from_text(RECIPE, folder=folder)).findings
-        if finding.code == "missing_values"
-    ]
-    assert missing.samples == ("C (acid)",)
+def test_files_on_another_axis_are_named_and_left_out(folder):
+    (folder / "spectra2.csv").write_text("sample,900,902,904,907\nW,1,2,3,1\n")
+    found = inspect(recipe_from_text(RECIPE.replace('"spectra.csv"', '"spectra.csv", "spectra2.csv"'), folder=folder))
+    [finding] = found.found("mixed_axes")
+    assert (finding.gravity, finding.samples) == ("stop", ("spectra2.csv (W)",))
+    assert "900 → 907 nm" in finding.evidence
+    assert "900 → 906 nm" in finding.evidence
+    assert (found.sets[0].n_files, found.sets[0].n_spectra, found.sets[0].n_samples) == (2, 6, 3)
+    assert not found.accepted
+
+
+def test_resampled_files_are_taken_in(folder):
+    (folder / "spectra2.csv").write_text("sample,899,901,903,905,907\nW,1,2,3,1,1\n")
+    recipe = RECIPE.replace('"spectra.csv"', '"spectra.csv", "spectra2.csv"').replace(
+        'quantity = "absorbance"', 'quantity = "absorbance"\nresample = true'
+    )
+    found = inspect(recipe_from_text(recipe, folder=folder))
+    assert not found.found("mixed_axes")
+    assert found.sets[0].n_samples == 4
+
+
+def test_a_damaged_file_among_others_is_named(folder):
+    (folder / "spectra2.csv").write_text("sample,900,902,904,906\nW,1,2,?!,1\n")
+    recipe = RECIPE.replace('"spectra.csv"', '"spectra.csv", "spectra2.csv"')
+    [finding] = inspect(recipe_from_text(recipe, folder=folder)).found("unreadable_file")
+    assert (finding.gravity, finding.samples) == ("stop", ("spectra2.csv",))
+
+
+def test_a_validation_set_on_another_axis(folder):
+    (folder / "new.csv").write_text("sample,900,902,904,908\nV,1,2,3,4\n")
+    found = inspect(recipe_from_text(f'{RECIPE}[validation]\nfiles = ["new.csv"]', folder=folder))
+    [finding] = found.found("mixed_axes")
+    assert finding.samples == ("V",)
+    assert [part.n_samples for part in found.sets] == [3, 1]
+
+
+def test_a_sample_in_both_sets(folder):
+    (folder / "new.csv").write_text("sample,900,902,904,906\nV,1,2,3,4\nA,1,2,3,4.5\n")
+    found = inspect(recipe_from_text(f'{RECIPE}[validation]\nfiles = ["new.csv"]', folder=folder))
+    [finding] = found.found("sample_in_both_sets")
+    assert (finding.gravity, finding.samples) == ("stop", ("A",))
+
+
+def test_excluded_samples_are_not_looked_at(folder):
+    rows = (folder / "spectra.csv").read_text()
+    (folder / "spectra.csv").write_text(rows.replace("C,-0.1,1,0,2", "C,0.1,0.2,0.3,0.4"))
+    assert inspect(recipe_from_text(RECIPE, folder=folder)).found("exact_duplicates")
+    left_out = '[[exclude]]\nsamples = ["C"]\nreason = "a copy"\n'
+    assert not inspect(recipe_from_text(RECIPE + left_out, folder=folder)).found("exact_duplicates")

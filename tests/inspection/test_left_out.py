@@ -34,9 +34,7 @@ def test_a_ridge_is_that_of_scikit_learn(data):
         low, high = 1e-12, 1e12
         for _ in range(200):  # the strength that gives the smoother's freedom, by bisection
             middle = np.sqrt(low * high)
-            low, high = (
-                (middle, high) if 1 + np.sum(squares / (squares + middle)) > smoother.freedom else (low, middle)
-            )
+            low, high = (middle, high) if 1 + np.sum(squares / (squares + middle)) > smoother.freedom else (low, middle)
         expected = Ridge(alpha=middle).fit(spectra, values).predict(spectra)
         assert smoother.hat @ values == pytest.approx(expected, abs=1e-6)
 

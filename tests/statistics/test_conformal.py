@@ -36,6 +36,14 @@ def test_the_mini_case():
     assert jackknife_plus(means[:, np.newaxis], y - means, 0.9) == ([-np.inf], [np.inf])
 
 
+def test_ends_are_the_ranks_of_the_sorted_values():
+    # Residuals 1 ... 20 about predictions of 0 and 100: ranks 2 and 19 of -20 ... -1 and 1 ... 20.
+    predictions = np.repeat([[0.0, 100.0]], 20, axis=0)
+    low, high = jackknife_plus(predictions, np.arange(1, 21) * (-1.0) ** np.arange(20), 0.9)
+    assert low.tolist() == [-19.0, 81.0]
+    assert high.tolist() == [19.0, 119.0]
+
+
 def test_too_few_samples_give_infinite_ends():
     # Computed: n from 19 for 95 %, 9 for 90 %, 99 for 99 %.
     assert [least_samples(p) for p in (0.95, 0.9, 0.99)] == [19, 9, 99]

@@ -51,6 +51,7 @@ def test_the_rule_takes_the_fewest_factors_that_are_not_significantly_worse():
     bad = best + 9.0  # p = 1/16
     assert randomisation([bad, bad, worse, best, best]) == 2
     assert randomisation([bad, bad, worse, best, best], alpha=0.2) == 3
+    assert randomisation([bad, bad, worse, best, best], alpha=3 / 16) == 3  # p at alpha is significant
     assert randomisation([bad, bad, worse, best, best], alpha=0.05) == 1
     assert RULES["randomisation"] is randomisation
 

@@ -76,7 +76,7 @@ NOTED = {
 }
 
 REFUSED = {
-    "check_line_counted_step_too": "line 17: found 10 ordinates; expected 11",  # or an ordinate was lost
+    "check_line_counted_step_too": "line 18: found 10 ordinates; expected 11",  # or an ordinate was lost
     "comma_thousands_or_decimal": "line 10: ##FIRSTX= '600,000'; expected a number.*set decimal = \",\"",
     "cut_at_a_line": "line 15: found 5 ordinates; expected 10",
     "cut_in_a_line": "line 16: the file ends within a line",
