@@ -62,12 +62,12 @@ def equip(evidence: Evidence) -> tuple[Evidence, DetectionResult | None]:
         left_out_note=note,
         smallest_decidable=None if detection is None else detection.smallest_decidable,
         smallest_from="" if detection is None else detection.smallest_from,
-        decision=None if table is None else decision_rule(table, e.unit, model.uncertainty.degrees_of_freedom),
+        decision=None if table is None else rule_of(table, e.unit, model.uncertainty.degrees_of_freedom),
     )
     return replace(e, model=equipped), detection
 
 
-def decision_rule(table: DecisionTable, unit: str, degrees_of_freedom: int) -> DecisionRule:
+def rule_of(table: DecisionTable, unit: str, degrees_of_freedom: int) -> DecisionRule:
     """Return the rule that a recipe's table states, with the factor of its guard band.
 
     Parameters

@@ -49,7 +49,7 @@ class DetectionResult(Result):
         "Multivariate: LOD_min and LOD_max of Allegrini & Olivieri 2014", default=None
     )
     signal_sd: float | None = documented(
-        "Multivariate: noise of one point of a sample's mean spectrum behind the preprocessing", "ordinate", default=None
+        "Multivariate: noise of one point of a mean spectrum behind the preprocessing", "ordinate", default=None
     )
     signal_sd_source: str = documented("Multivariate: where that comes from", default="")
     reference_sd: float | None = documented(

@@ -21,6 +21,7 @@ from quant.result import Result, documented
 from quant.spectra.sample_set import SampleSet
 
 FILE = "validation-looks.json"
+WHAT = "Looks at validation sets; see the report. Do not edit: the count is the proof of independence."
 NOT_COUNTED = "not counted: calibrated from Python without a ledger"
 
 
@@ -51,43 +52,29 @@ class Ledger:
     Attributes
     ----------
     path : Path
-    seals : list of dict
-        Recipes and criteria, in the order in which they were sealed.
     looks : dict
         By validation set: its looks in order, each with the fingerprints of calibration, recipe and criteria.
+    sealed : tuple of str
+        Fingerprints of the recipe and of its criteria, taken before any value is read.
     """
 
     path: Path
-    seals: list[dict[str, str]] = field(default_factory=list)
     looks: dict[str, list[dict[str, str]]] = field(default_factory=dict)
+    sealed: tuple[str, str] = ("", "")
 
     def seal(self, recipe: Recipe) -> None:
-        """Write down recipe and criteria, before any validation value is opened."""
-        entry = {"recipe": recipe_fingerprint(recipe), "criteria": criteria_fingerprint(recipe)}
-        if entry not in self.seals:
-            self.seals.append(entry)
-            self._write()
+        """Take the fingerprints of recipe and criteria, before any value is read."""
+        self.sealed = (recipe_fingerprint(recipe), criteria_fingerprint(recipe))
 
-    def look(self, validation: str, calibration: str, recipe: Recipe) -> int:
-        """Count a look, and return its number from 1; a look of before keeps its number."""
-        entry = {
-            "calibration": calibration,
-            "recipe": recipe_fingerprint(recipe),
-            "criteria": criteria_fingerprint(recipe),
-        }
+    def look(self, validation: str, calibration: str) -> int:
+        """Write a look down before it is taken, and return its number from 1; a look of before keeps its number."""
+        recipe, criteria = self.sealed
+        entry = {"calibration": calibration, "recipe": recipe, "criteria": criteria}
         known = self.looks.setdefault(validation, [])
         if entry not in known:
             known.append(entry)
-            self._write()
+            write_text(self.path, json.dumps({"what": WHAT, "looks": self.looks}, indent=2) + "\n")
         return known.index(entry) + 1
-
-    def _write(self) -> None:
-        content = {
-            "what": "Looks at validation sets; see the report. Do not edit: the count is the proof of independence.",
-            "seals": self.seals,
-            "looks": self.looks,
-        }
-        write_text(self.path, json.dumps(content, indent=2, ensure_ascii=False) + "\n")
 
 
 def open_ledger(folder: str | Path) -> Ledger:
@@ -103,14 +90,14 @@ def open_ledger(folder: str | Path) -> Ledger:
         return Ledger(path)
     try:
         content: dict[str, Any] = json.loads(read_bytes(path))
-        seals, looks = list(content["seals"]), dict(content["looks"])
-    except (ValueError, LookupError, TypeError) as problem:
+        looks = {mark: [dict(entry) for entry in entries] for mark, entries in content["looks"].items()}
+    except (ValueError, LookupError, TypeError, AttributeError) as problem:
         raise FileFormatError(
             path,
             f"no intact ledger of looks at validation sets ({type(problem).__name__}); expected what this program "
             "wrote. Restore it, or write into another folder; moving it away makes every set look unseen.",
         ) from None
-    return Ledger(path, seals, looks)
+    return Ledger(path, looks)
 
 
 def fingerprint(*parts: str | bytes) -> str:
@@ -163,7 +150,7 @@ def seal_of(
         samples_fingerprint(training, training.analyte(analyte)[1]),
         *(source.sha256 for source in training.spectra.sources),
     )
-    number = ledger.look(mark, calibration, recipe)
+    number = ledger.look(mark, calibration)
     known = ledger.looks[mark]
     fixed = known[0]["criteria"] == criteria if criteria else None
     return _sealed(recipe, criteria, mark, _statement(number, fixed=fixed), number, len(known), fixed=fixed)

@@ -32,7 +32,8 @@ def command(ctx: click.Context, /, recipe: Path, folder: Path) -> None:
 
     wanted = load_recipe(recipe)
     names = model_files([table.name for table in wanted.analyte])
-    result = calibrate(wanted, ledger=open_ledger(folder))
+    ledger = open_ledger(folder)
+    result = calibrate(wanted, ledger=ledger)
     models = [save_model(entry.model, folder / names[entry.analyte]) for entry in result.analytes]
     report = write_report(result, folder)
     click.echo(str(result))
@@ -41,6 +42,8 @@ def command(ctx: click.Context, /, recipe: Path, folder: Path) -> None:
         click.echo(f"model   {path}")
     click.echo(f"report  {report.html}")
     click.echo(f"figures {report.json}")
+    if ledger.looks:
+        click.echo(f"looks   {ledger.path}")
     ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))
 
 

@@ -44,23 +44,29 @@ def check_axes(material: Material) -> list[Finding]:
     for reading in material.readings:
         odd = [(file, spectra) for file, spectra, what in reading.other if what == "axis"]
         if odd:
-            findings.append(_other_axis(_labels(odd), odd[0][1], reading.spectra, material.recipe.spectra.resample))
+            findings.append(
+                _other_axis("file", _labels(odd), odd[0][1], reading.spectra, material.recipe.spectra.resample)
+            )
     first, *others = material.readings
     if others and material.validation is None and len(others[0].samples):
         findings.append(
             _other_axis(
-                others[0].samples.sample_ids, others[0].spectra, first.spectra, material.recipe.spectra.resample
+                "sample",
+                others[0].samples.sample_ids,
+                others[0].spectra,
+                first.spectra,
+                material.recipe.spectra.resample,
             )
         )
     return findings
 
 
-def _other_axis(names: tuple[str, ...], other: SpectraSet, main: SpectraSet, resample: bool) -> Finding:  # noqa: FBT001
+def _other_axis(noun: str, names: tuple[str, ...], other: SpectraSet, main: SpectraSet, resample: bool) -> Finding:  # noqa: FBT001
     if other.quantity != main.quantity:
         title, evidence = "Validation samples of another quantity", QUANTITIES[other.quantity]
         evidence = f"{evidence}; the calibration's spectra are {QUANTITIES[main.quantity]}."
     else:
-        title = f"{len(names)} on another axis than most spectra"
+        title = f"{plural(len(names), noun)} on another axis than most spectra"
         evidence = f"The first lies on {other.axis}; most lie on {main.axis}."
     return Finding(
         gravity=STOP,

@@ -55,3 +55,21 @@ def plural(count: int, noun: str, several: str = "") -> str:
     ('1 pair', '3 spectra')
     """
     return f"{count} {noun if count == 1 else several or noun + 's'}"
+
+
+def percent(share: float) -> str:
+    """Return a share in percent, without decimals.
+
+    >>> percent(0.02)
+    '2 %'
+    """
+    return f"{100 * share:.0f} %"
+
+
+def signed_percent(share: float) -> str:
+    """Return a share in percent with its sign.
+
+    >>> signed_percent(-0.26), signed_percent(0.5)
+    ('-26 %', '+50 %')
+    """
+    return f"{100 * share:+.0f} %"

@@ -41,6 +41,18 @@ def gather(recipe: Recipe, samples: SampleSet | None = None, validation: SampleS
     return _lay_out(recipe, tuple(readings), calibration, apart, in_both)
 
 
+def leave_out(material: Material, names: set[str]) -> Material:
+    """Return the material without some samples."""
+    validation = material.validation
+    return _lay_out(
+        material.recipe,
+        material.readings,
+        _without(material.calibration, names),
+        None if validation is None else _without(validation, names),
+        material.in_both,
+    )
+
+
 def _at_hand(name: str, samples: SampleSet) -> Reading:
     return Reading(name, (("", samples.spectra),), (), samples.spectra, (), samples)
 

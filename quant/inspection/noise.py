@@ -12,7 +12,7 @@ from quant.units import AXIS_UNITS
 LITTLE_SIGNAL = 30.0  # signal-to-noise ratio below which noise decides
 NOISIER = 2.0  # times the median noise is worth naming
 SPIKE = 12.0  # times the usual roughness at that point
-MOST_SPIKES = 5  # more in one spectrum are lines of a gas or noise, not spikes
+MOST_SPIKES = 3  # more in one spectrum are lines of a gas or noise, not spikes
 FEWEST = 5  # spectra that tell how rough a point usually is
 Q_BRANCH = (655.0, 680.0)  # cm⁻¹, sharp line of carbon dioxide: told by the check of the atmosphere
 

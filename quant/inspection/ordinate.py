@@ -18,17 +18,15 @@ FLAT_POINTS = 4  # neighbouring points of exactly one ordinate at the top of a b
 STEEP = 2.5  # ... from which the spectrum falls by more than so many times its least step
 TURNED = -0.5  # correlation with the other spectra below which a spectrum stands on its head
 HALF_AS_FAR = 0.5  # bands that point down: the middle lies this much nearer to the top than to the bottom
+PERCENT_OF_ONE = 2.0  # a fraction is at most about 1
 PERCENT = 20.0  # no absorbance is so high; percent transmittance mostly is
 
 
 def check_quantity(material: Material) -> list[Finding]:
     """Name spectra that are not the quantity they are said to be: %T or T among absorbance, or all of them."""
     values, said = material.spectra.values, QUANTITIES[material.spectra.quantity]
-    middle = np.array([float(np.median(row[~np.isnan(row)])) if (~np.isnan(row)).any() else 0.0 for row in values])
-    fractions = material.spectra.quantity in ("transmittance", "reflectance")
-    logarithms = material.is_absorbance or material.spectra.quantity == "log_reflectance"
-    percent = middle > (2.0 if fractions else PERCENT) if fractions or logarithms else np.zeros(len(values), bool)
-    turned = ~percent & _on_their_heads(values, ~percent)
+    percent, turned = other_quantity(material)
+    middle = _middles(values)
     findings = _downward(values[~percent]) if material.spectra.quantity == "absorbance" else []
     for rows, evidence in (
         (percent, f"Their middle ordinate is {_span(middle[percent])}; no {said} is so high, but percent is."),
@@ -49,6 +47,20 @@ def check_quantity(material: Material) -> list[Finding]:
                 )
             )
     return findings
+
+
+def other_quantity(material: Material) -> tuple[BoolArray, BoolArray]:
+    """Mark spectra that look like percent, and spectra that stand on their heads, each of shape (n_spectra,)."""
+    values, quantity = material.spectra.values, material.spectra.quantity
+    if quantity == "arbitrary":
+        return np.zeros(len(values), dtype=bool), np.zeros(len(values), dtype=bool)
+    percent = _middles(values) > (PERCENT_OF_ONE if quantity in ("transmittance", "reflectance") else PERCENT)
+    return percent, ~percent & _on_their_heads(values, ~percent)
+
+
+def _middles(values: FloatArray) -> FloatArray:
+    """Median of each spectrum, zero where nothing is known."""
+    return np.array([float(np.median(row[~np.isnan(row)])) if (~np.isnan(row)).any() else 0.0 for row in values])
 
 
 def _downward(values: FloatArray) -> list[Finding]:

@@ -4,7 +4,7 @@ import numpy as np
 from scipy import stats
 
 from quant.arrays import FloatArray, IntArray
-from quant.inspection.finding import DOUBT, Finding, plural
+from quant.inspection.finding import DOUBT, Finding, percent, plural
 from quant.inspection.material import Material
 from quant.inspection.robust import FALSE_ALARM, FEWEST, standing_out
 from quant.statistics.splits import interleaved
@@ -48,7 +48,7 @@ def check_outlying(material: Material) -> list[Finding]:
                         title=f"{plural(chosen.size, whose)} whose spectra {what}",
                         samples=tuple(material.sample_ids[i] for i in chosen),
                         evidence=f"{how} is up to {ratio:.1f} times that of a usual sample (each left out in turn; "
-                        f"{FALSE_ALARM:.0%} of clean sets would raise this).",
+                        f"{percent(FALSE_ALARM)} of clean sets would raise this).",
                         advice=ADVICE[whose],
                     )
                 )
@@ -68,7 +68,7 @@ def _unlike_validation(material: Material, beyond: FloatArray, n: int) -> list[F
             code="validation_unlike_calibration",
             title="The validation spectra as a whole hold something that the calibration spectra do not",
             samples=tuple(material.sample_ids[i] for i in out[np.argsort(-beyond[out], kind="stable")]),
-            evidence=f"{out.size} of {count} leave a larger residual than {USUAL:.0%} of the calibration samples do "
+            evidence=f"{out.size} of {count} leave a larger residual than {percent(USUAL)} of the calibration samples do "
             "when left out; by chance it would be one in twenty.",
             advice=ADVICE["validation sample"],
         )
@@ -148,7 +148,7 @@ def check_replicates(material: Material) -> list[Finding]:
             title=f"{plural(len(ranked), 'sample')} whose replicate spectra disagree",
             samples=tuple(material.sample_ids[i] for i in ranked),
             evidence=f"They differ up to {found[ranked[0]]:.1f} times as much as usual replicates, after "
-            f"preprocessing (at most {FALSE_ALARM:.0%} of clean sets with normal scatter would raise this).",
+            f"preprocessing (at most {percent(FALSE_ALARM)} of clean sets with normal scatter would raise this).",
             advice="One spectrum may belong to another sample, or the sample is not homogeneous: compare, measure "
             "again.",
         )

@@ -3,7 +3,7 @@
 import numpy as np
 
 from quant.arrays import BoolArray, FloatArray
-from quant.inspection.finding import DOUBT, Finding, plural
+from quant.inspection.finding import DOUBT, Finding, percent, plural
 from quant.inspection.material import Material
 from quant.inspection.robust import FALSE_ALARM, FEWEST, largest_z, robust_sd
 from quant.units import AXIS_UNITS
@@ -33,7 +33,7 @@ def check_shift(material: Material) -> list[Finding]:
             samples=material.named(rows),
             evidence=f"The largest: {largest:+.3g} {unit} ({largest / axis.spacing:+.2f} points) against the middle of "
             f"all; the others scatter by {robust_sd(shifts):.2g} {unit} "
-            f"({FALSE_ALARM:.0%} of clean sets would raise this).",
+            f"({percent(FALSE_ALARM)} of clean sets would raise this).",
             advice="Check the wavelength scale (polystyrene film), temperature, and whether these spectra come from "
             "another instrument or another export.",
         )
@@ -60,7 +60,10 @@ def axis_shifts(rows: FloatArray, axis: FloatArray) -> tuple[FloatArray, BoolArr
     alike : array of bool, shape (n,)
         Whether two thirds of the stretches agree with the median to within half of it, as only the axis can do.
     """
-    middle = np.median(rows, axis=0)
+    # All of one size first: else the one of middle size would be compared with itself.
+    centred = rows - rows.mean(axis=1, keepdims=True)
+    length = np.linalg.norm(centred, axis=1, keepdims=True)
+    middle = np.median(centred / np.where(length > 0, length, 1.0), axis=0)
     slope = np.gradient(middle, axis)
     share = np.cumsum(slope**2)
     bounds = np.searchsorted(share, share[-1] * np.arange(1, WINDOWS) / WINDOWS)

@@ -6,7 +6,7 @@ from scipy import stats
 from quant.arrays import FloatArray
 from quant.calibration.cross_validation import MOST_FACTORS
 from quant.calibration.split import INTERNAL
-from quant.inspection.finding import DOUBT, NOTE, Finding, plural
+from quant.inspection.finding import DOUBT, NOTE, Finding, percent, plural, signed_percent
 from quant.inspection.material import Material
 
 WIDE_GAP = 0.2  # of the range
@@ -41,7 +41,7 @@ def check_range(material: Material) -> list[Finding]:
                     title=f"A gap in the range of {analyte.name}: {values[place]:.4g} to {values[place + 1]:.4g} "
                     f"{analyte.unit}".rstrip(),
                     samples=(ids[order[place]], ids[order[place + 1]]),
-                    evidence=f"{share:.0%} of the range without a calibration sample"
+                    evidence=f"{percent(share)} of the range without a calibration sample"
                     + ("; one sample alone holds an end of the range." if edge else "."),
                     advice="Prepare standards inside the gap"
                     + (
@@ -217,7 +217,7 @@ def _validation_counts(material: Material) -> list[Finding]:
             code="few_validation_samples",
             title=f"Only {plural(n, 'sample')} in the {kind}",
             samples=(),
-            evidence=f"RMSEP from {n} is known to {low:+.0%} to {high:+.0%} (95 %)"
+            evidence=f"RMSEP from {n} is known to {signed_percent(low)} to {signed_percent(high)} (95 %)"
             + (f"; {wanted} are wanted (ASTM E1655, from memory)." if table.method == "pls" else "."),
             advice="Prepare more, separately from the calibration and over its whole range.",
         )

@@ -4,9 +4,12 @@ from collections.abc import Callable
 
 from quant.inspection import atmosphere, duplicates, files, noise, ordinate, outliers, shift, spread, values
 from quant.inspection.finding import STOP, Finding
+from quant.inspection.gather import leave_out
 from quant.inspection.material import Material
 
-CHECKS: tuple[Callable[[Material], list[Finding]], ...] = (
+Check = Callable[[Material], list[Finding]]
+
+FIRST: tuple[Check, ...] = (
     files.check_readable,
     files.check_axes,
     files.check_quantities,
@@ -14,6 +17,10 @@ CHECKS: tuple[Callable[[Material], list[Finding]], ...] = (
     files.check_pairing,
     files.check_unmeasured,
     ordinate.check_quantity,
+)
+"""Checks of whether the spectra belong together at all."""
+
+CHECKS: tuple[Check, ...] = (
     ordinate.check_opaque,
     ordinate.check_missing,
     ordinate.check_flattened,
@@ -37,9 +44,19 @@ CHECKS: tuple[Callable[[Material], list[Finding]], ...] = (
 
 
 def run_checks(material: Material) -> list[Finding]:
-    """Return the findings of all checks."""
-    findings = [finding for check in CHECKS for finding in check(material)]
+    """Return the findings of all checks; spectra of another quantity would spoil the later ones, and are left out."""
+    findings = [finding for check in FIRST for finding in check(material)]
+    material = _without_other_quantity(material)
+    findings += [finding for check in CHECKS for finding in check(material)]
     return [*findings, *_trouble(material)]
+
+
+def _without_other_quantity(material: Material) -> Material:
+    percent, turned = ordinate.other_quantity(material)
+    odd = {material.sample_ids[i] for i in material.sample_index[percent | turned]}
+    if not odd or odd.issuperset(material.calibration.sample_ids):
+        return material
+    return leave_out(material, odd)
 
 
 def _trouble(material: Material) -> list[Finding]:

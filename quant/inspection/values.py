@@ -5,7 +5,7 @@ import numpy as np
 from quant.arrays import FloatArray, IntArray
 from quant.inspection.duplicates import duplicate_pairs
 from quant.inspection.exchange import Exchange, find_exchanges
-from quant.inspection.finding import DOUBT, STOP, Finding, plural
+from quant.inspection.finding import DOUBT, STOP, Finding, percent, plural
 from quant.inspection.left_out import best_smoother, make_smoothers, studentised
 from quant.inspection.material import Material
 from quant.inspection.robust import FALSE_ALARM, FEWEST, largest_z, robust_z
@@ -87,7 +87,7 @@ def _groups(material: Material) -> IntArray:
 def _contradiction(unit: str, value: float, error: float, z: float, limit: float) -> str:
     return (
         f"The worst: the laboratory says {value:.4g}, the other samples {value + error:.4g} {unit}".rstrip()
-        + f" ({abs(z):.1f} robust standard errors apart; {limit:.1f} is the limit that {FALSE_ALARM:.0%} of clean sets "
+        + f" ({abs(z):.1f} robust standard errors apart; {limit:.1f} is the limit that {percent(FALSE_ALARM)} of clean sets "
         "pass)."
     )
 
@@ -109,7 +109,7 @@ def _exchanged(material: Material, exchanges: dict[tuple[int, int], list[tuple[s
                 samples=(ids[a], ids[b]),
                 evidence=f"{name}{also}: {values[a]:.4g} and {values[b]:.4g} {unit}".rstrip()
                 + f". With {whole} of the two exchanged, the left-out error falls from {best.before:.3g} to "
-                f"{best.after:.3g}; chance does as well with p = {best.p:.2g} (a pair is named in {FALSE_ALARM:.0%} of "
+                f"{best.after:.3g}; chance does as well with p = {best.p:.2g} (a pair is named in {percent(FALSE_ALARM)} of "
                 "clean sets).",
                 advice="Check vials, file names and laboratory sheet of both; mend the files only when the cause is "
                 "found, else exclude both.",

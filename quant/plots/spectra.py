@@ -107,13 +107,17 @@ def plot_bands(result: AnalyteResult, ax: Axes | None = None, *, number: int | N
 
 
 def plot_regression_vector(result: AnalyteResult, ax: Axes | None = None) -> Axes:
-    """Draw the regression vector of a PLS calibration; there is nothing to draw for other methods."""
+    """Draw the regression vector, two jackknife standard errors shaded; nothing for methods without one."""
     picture = result.picture
     ax = axes_or_new(ax)
     zero_line(ax)
     if picture.regression_vector is not None:
+        error = result.audit.diagnostics.vector_error
         for run in segments(picture.processed_axis):
-            ax.plot(picture.processed_axis[run], picture.regression_vector[run], color=OCHRE, linewidth=LINE)
+            axis, vector = picture.processed_axis[run], picture.regression_vector[run]
+            if error is not None:
+                ax.fill_between(axis, vector - 2 * error[run], vector + 2 * error[run], color=SHADE, linewidth=0)
+            ax.plot(axis, vector, color=OCHRE, linewidth=LINE)
     unit = f"[{result.unit or result.analyte} per unit of the ordinate]"
     label_axes(ax, spectral_axis(ax, picture.processed_axis, picture.axis_unit), f"regression vector\n{unit}")
     return ax

@@ -93,7 +93,7 @@ def _settle(model: Calibration, rule: DecisionRule, value: float, uncertainty: f
     return told
 
 
-def other_rule(model: Calibration, limit: float, *, kind: str = "upper", risk: float = 0.05) -> DecisionRule:
+def decision_rule(model: Calibration, limit: float, *, kind: str = "upper", risk: float = 0.05) -> DecisionRule:
     """Return a rule given with the samples, in place of the model's own.
 
     Parameters
@@ -131,7 +131,6 @@ def guard_factor(risk: float, degrees_of_freedom: int) -> float:
     """
     if not 0 < risk <= HIGHEST_RISK:
         raise ParameterError(f"risk = {risk}; expected a probability above 0 and at most {HIGHEST_RISK}.")
-
 
     def too_low(t: float) -> bool:
         return probability_of_conformity(0.0, 1.0, t, degrees_of_freedom=degrees_of_freedom) < 1 - risk

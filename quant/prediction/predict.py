@@ -50,7 +50,7 @@ def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | Non
     spectra : SpectraSet
         On the model's axis (in either direction), or on another if the model's recipe allows resampling.
     rule : DecisionRule, optional
-        A limit to decide against in place of the model's own, see `quant.prediction.decisions.other_rule`.
+        A limit to decide against in place of the model's own, see `quant.prediction.decisions.decision_rule`.
 
     Raises
     ------

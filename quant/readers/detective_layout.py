@@ -164,8 +164,8 @@ def _in_columns(rows: Sequence[Row], signs: Signs, *, stated: bool) -> Layout | 
     top = start = _first_damaged(rows, start, signs, is_data)
     while top and _heads_columns(rows[top - 1][1], width) and not is_data(rows[top - 1][1]):
         top -= 1
-    if top == start:
-        return None  # without headings there are no sample IDs
+    if all(len(clipped(cells)) == 1 for _, cells in rows[top:start]):
+        return None  # without headings of all columns there are no sample IDs
     heads = tuple(range(top, start))
     evidence = "as stated" if stated else _axis_evidence([clipped(rows[i][1])[0] for i in heads], rows, start, signs)
     return _counted(Layout("spectra_in_columns", heads, start, width, 0, 0, evidence), rows, fits)
@@ -244,6 +244,7 @@ def sample_row(heads: Sequence[Sequence[str]], column: str | None) -> int:
     """
     firsts = [head[0].lower() for head in heads]
     wanted = [column.lower()] if column is not None else list(SAMPLE_COLUMNS)
-    by_name = [i for i, name in enumerate(firsts) if name in wanted]
-    by_axis = [i for i, name in enumerate(firsts) if len(heads[i]) > 1 and (not name or names_an_axis(name))]
-    return (*by_name, *by_axis, len(heads) - 1)[0]
+    full = [i for i, head in enumerate(heads) if len(head) > 1]
+    by_name = [i for i in full if firsts[i] in wanted]
+    by_axis = [i for i in full if not firsts[i] or names_an_axis(firsts[i])]
+    return (*by_name, *by_axis, full[-1])[0]

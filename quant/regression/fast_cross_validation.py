@@ -126,11 +126,11 @@ def cheaper_way(n: int, k: int, folds: int, repeats: int, n_factors: int) -> str
     """Choose between "rotated" and "cross_products" by their cost in nanoseconds; F folds in all, A factors.
 
     rotated: 0.25·n·k·A·F for the products + 4·(n + k)·A²·F for making W and T orthogonal + 6e3·A·F for calls.
-    cross_products: 0.06·n·k²·repeats + 4·k²·F for subtracting + 0.7·n·k·F for means + 0.15·k²·A·F + 3e4·A·F for calls.
-    Fitted to 36 measured cases on one core, n = 300 to 8000, k = 50 to 700, A and F = 5 and 20: the choice cost 5 % over
-    the better of the two on average, 77 % at most. They are within a third of each other from n = 400 to 1000 at k = 200
-    and A = 20; from 2000 spectra on, cross-products gain. With n ≤ k spectra the rotated ones are no larger than
-    cross-products, keep more digits, and are always taken.
+    cross_products: 0.06·n·k²·repeats + 4·k²·F to subtract + 0.7·n·k·F for means + 0.15·k²·A·F + 3e4·A·F for calls.
+    Fitted to 36 measured cases on one core, n = 300 to 8000, k = 50 to 700, A and F = 5 and 20: the choice cost 5 %
+    over the better of the two on average, 77 % at most. They are within a third of each other from n = 400 to 1000 at
+    k = 200 and A = 20; from 2000 spectra on, cross-products gain. With n ≤ k spectra the rotated ones are no larger
+    than cross-products, keep more digits, and are always taken.
     """
     if n <= k:
         return "rotated"

@@ -173,7 +173,8 @@ def _fit_block(
     T[:, :, 0], inverse[:, :, 0], out.y_loadings[:, :, 0] = ones, 1.0, mean * total
     S[:, :, 0] = root[asked] / total[:, None]  # rows of S are scaled like those of G until the end
     u[:] = rest
-    live = np.broadcast_to(rest.any(axis=1), (c, F)).copy()
+    yy = np.vecdot(rest, rest)
+    uu, live = np.broadcast_to(yy, (c, F)), np.broadcast_to(yy > 0, (c, F)).copy()
     for a in range(1, counts):
         np.matmul(u, grams, out=W)
         raw = np.take(W.reshape(c, F * n), places, axis=1, mode="clip").reshape(c, F, slots)
@@ -184,13 +185,16 @@ def _fit_block(
         if (live & (tt < CANCELLED * removed)).any():
             h += _remove(t, T[:, :, :a], inverse[:, :, :a], step, out=t)[0]
             tt = np.vecdot(t, t)
-        live &= tt > limit[:, None] ** 2 * np.vecdot(u, u)
+        live &= tt > limit[:, None] ** 2 * uu
         inverse[:, :, a] = np.divide(1.0, tt, out=np.zeros_like(tt), where=live)
-        S[:, :, a] = np.where(live[..., None], raw - np.vecmat(h, S[:, :, :a]), 0.0)
+        np.subtract(raw, np.vecmat(h, S[:, :, :a]), out=S[:, :, a])
+        if not live.all():
+            S[:, :, a][~live] = 0.0
         share = np.vecdot(t, u) * inverse[:, :, a]
         out.y_loadings[:, :, a] = share
         out.stopped[live] = a
         u -= np.multiply(t, share[..., None], out=step)
+        uu = np.maximum(uu - share**2 * tt, EPS * yy)  # ‖u‖², never below what rounding leaves of it
     size = np.sqrt(np.where(inverse > 0, 1.0 / np.where(inverse > 0, inverse, 1.0), 1.0))
     out.y_loadings[:, :, 1:] *= size[:, :, 1:]
     S /= size[..., None]

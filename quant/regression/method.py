@@ -2,11 +2,12 @@
 
 from typing import ClassVar, Self
 
+import numpy as np
 from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
 from quant.errors import ParameterError
-from quant.estimator import Regressor
+from quant.estimator import Regressor, check_target
 
 
 class Method(Regressor):
@@ -20,6 +21,9 @@ class Method(Regressor):
     averages_replicates : bool
         True: whoever calls averages the processed spectra of one sample before `fit` and `predict`.
         False: replicates are trained one by one, each of the m spectra of a sample with weight 1/m.
+    classical : bool
+        True: spectra are a function of the values, read backwards, so that predictions scatter about the reference
+        values. False (inverse): reference values scatter about the predictions.
     factor_counts_ : tuple of int
         Numbers of fitted terms besides the mean, rising; the last is the method as it was asked for.
     n_samples_ : float
@@ -27,7 +31,13 @@ class Method(Regressor):
     """
 
     averages_replicates: ClassVar[bool] = False
+    classical: ClassVar[bool] = False
     n_samples_: float
+
+    @property
+    def companions(self) -> tuple[str, ...]:
+        """Names of what `fit` takes beside the reference values, one more column of y each."""
+        return ()
 
     @property
     def factor_counts_(self) -> tuple[int, ...]:
@@ -50,6 +60,10 @@ class Method(Regressor):
         """Sum of squares of what the model leaves of each spectrum, shape (len(factor_counts_), n). [(unit of X)²]"""
         raise NotImplementedError
 
+    def remarks_each(self, X: ArrayLike) -> tuple[str, ...]:
+        """Say what should be known of each prediction, n texts, empty where nothing is to be said."""
+        return ("",) * len(self.check_new(X))
+
     def with_factors(self, count: int) -> Self:
         """Return a fitted copy cut to `count` factors.
 
@@ -68,6 +82,27 @@ class Method(Regressor):
     def residual_degrees_of_freedom(self, n_samples: int, factors: int) -> int:
         """Return n − A − 1: the mean and each factor cost one (through the origin A = 0: the slope costs the one)."""
         return n_samples - factors - 1
+
+    def check_fit_companions(self, X: ArrayLike, y: ArrayLike | None) -> tuple[FloatArray, FloatArray, FloatArray]:
+        """Check training spectra (n, k), reference values (n,) and their `companions` (n, len(companions)).
+
+        Raises
+        ------
+        ParameterError
+            y does not have one column for the reference values and one for each companion.
+        """
+        if y is None or not self.companions:
+            matrix, values = self.check_fit_pair(X, y)
+            return matrix, values, np.empty((values.size, 0))
+        columns = np.asarray(y)
+        if columns.ndim != 2 or columns.shape[1] != 1 + len(self.companions):
+            raise ParameterError(
+                f"y has shape {columns.shape}; expected {1 + len(self.companions)} columns: the reference values, then "
+                f"{', '.join(self.companions)}."
+            )
+        matrix = self.check_fit(X)
+        checked = [check_target(column, matrix.shape[0]) for column in columns.T]
+        return matrix, checked[0], np.column_stack(checked[1:])
 
     def check_count(self, count: int) -> None:
         """Refuse a number of factors this fit does not have.

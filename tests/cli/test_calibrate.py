@@ -18,7 +18,8 @@ def test_tecator(project) -> None:
     result = project.run("calibrate", ROOT / "configs" / "tecator.toml", "--out", out)
     assert result.exit_code == 0
     assert result.stderr == ""
-    names = ["fat.model", "moisture.model", "protein.model", "report.html", "calibration.json"]
+    models = ["fat.model", "moisture.model", "protein.model"]
+    names = [*models, "report.html", "calibration.json", "validation-looks.json"]
     assert sorted(path.name for path in out.iterdir()) == sorted(names)
     for name in names:
         assert str(out / name) in result.stdout

@@ -2,6 +2,8 @@
 
 import json
 
+import numpy as np
+
 
 def test_what_was_read_is_printed_and_written(project) -> None:
     project.replace("reference.csv", "S03,2.455\n", "S30,2.455\n")
@@ -18,14 +20,12 @@ def test_what_was_read_is_printed_and_written(project) -> None:
     assert found["values_without_spectra"] == ["S30"]
 
 
-def test_a_stop_is_exit_code_1(project) -> None:
-    rows = (project.folder / "spectra.csv").read_text(encoding="utf-8").splitlines()
-    cells = rows[1].split(",")
-    rows[1] = ",".join([cells[0], *(f"{100 * 10 ** -float(cell):.5f}" for cell in cells[1:])])
-    (project.folder / "spectra.csv").write_text("\n".join(rows) + "\n", encoding="utf-8")
+def test_a_stop_is_exit_code_1(project, make_spectra) -> None:
+    project.write_spectra(make_spectra(np.array([2.0, 3.0]), 2, np.linspace(1800.0, 1600.0, 51)), "more.csv")
+    project.replace("recipe.toml", '"spectra.csv"', '"spectra.csv", "more.csv"')
     result = project.run("inspect", project.folder / "recipe.toml")
     assert result.exit_code == 1
-    assert "stop   1 spectrum looks like another quantity than absorbance\n       S01." in result.stdout
+    assert "stop   1 file on another axis than most spectra\n       more.csv (S01, S02)." in result.stdout
 
 
 def test_a_wrong_recipe(project) -> None:

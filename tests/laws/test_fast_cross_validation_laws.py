@@ -1,4 +1,4 @@
-"""Laws of fast cross-validation: every way of it equals refitting every fold, and says itself where it no longer does."""
+"""Laws of fast cross-validation: every way equals refitting every fold, and says itself where it no longer does."""
 
 import numpy as np
 import pytest
@@ -13,7 +13,9 @@ from quant.statistics import splits
 
 laws = settings(max_examples=40, deadline=None, derandomize=True)
 AGREEMENT = 1e-8  # of the range of y for predictions, of themselves for leverages
-WEAK = 1e-6  # norm of a score or weight before scaling / norm of the spectra, below which two programs lose common digits
+WEAK = (
+    1e-6  # norm of a score or weight before scaling / norm of the spectra, below which two programs lose common digits
+)
 SCHEMES = ["leave_one_out", "random", "repeated", "contiguous", "interleaved", "groups"]
 
 

@@ -298,6 +298,7 @@ OTHERS: dict[str, tuple[str, str]] = {  # damaged, or no spectra at all: text, w
     "a damaged heading": ("sample,900,9O2,904\nS1,0.1,0.2,0.3\n", "found '9O2' as heading"),
     "a lost heading": ("sample,900,,904\nS1,0.1,0.2,0.3\n", "found '' as heading"),
     "a damaged last heading": ("sample,900,902,9O4\nS1,0.1,0.2,0.3\n", "found '9O4' as heading"),
+    "headings of the axis alone": ("nm\n900,0.1,0.2\n902,0.3,0.4\n", "no known format"),
     "numbers only": ("900,902,904\n0.1,0.2,0.3\n", "no known format"),
 }
 

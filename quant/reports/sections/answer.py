@@ -59,6 +59,10 @@ def answer_rows(result: AnalyteResult) -> list[tuple[str, str]]:
             ("bias", bias_verdict(result)),
             ("95 % intervals held", held),
         ]
+    if result.criteria:
+        rows.append(("criteria of acceptance", "met" if result.accepted else "not met: see there"))
+    if result.audit.decision is not None:
+        rows.append(("decides against", result.audit.decision.told))
     return [*rows, ("state of the model", str(result.model.state))]
 
 
@@ -96,6 +100,12 @@ def _about_calibration(result: AnalyteResult) -> list[str]:
             found.append(f"Few samples: {n} for {factors} factors; at least {wanted} would be usual.")
         if len(crossed.choices) and factors == crossed.factor_counts[-1]:
             found.append(f"{factors} is the largest number of factors looked at; raise max_factors and look again.")
+    limit = result.audit.decision
+    if limit is not None and not limit.decidable:
+        found.append(f"This method cannot decide this limit: {limit.remark}.")
+    named = [row.sample for row in result.audit.diagnostics.outstanding]
+    if named:
+        found.append(f"Calibration samples that stand out: {name_some(named)}. See the diagnostics.")
     return [*found, *(f"{note[:1].upper()}{note[1:].rstrip('.')}." for note in crossed.guard_notes)]
 
 
@@ -104,6 +114,9 @@ def _about_validation(result: AnalyteResult) -> list[str]:
     if checked is None:
         return ["Not validated: the errors on new material are not known. Prepare or sample validation material."]
     figures, found = checked.figures, []
+    seal = result.audit.seal
+    if seal is not None and not seal.independent:
+        found.append(f"{seal.statement[:1].upper()}{seal.statement[1:]}.")
     if checked.kind != INDEPENDENT:
         found.append(
             "Internal test, no independent validation: its samples come from the set that was calibrated with."

@@ -309,3 +309,24 @@ def test_a_digit_changed_in_differences_does_not_pass(tmp_path: Path) -> None:
     table = "600AJT%\n603CjX\n609c"
     with pytest.raises(FileFormatError, match="check value"):
         read_text(tmp_path, text_of(table=table.replace("AJ", "AM")))
+
+
+@pytest.mark.parametrize(
+    ("old", "new"),
+    [
+        ("605 1", "6.05E+999999 1"),
+        ("605 1", "0E+" + "9" * 5000 + " 1"),
+        ("605 1", "9" * 400 + " 1"),
+        ("605 1 ", "605 " + "9" * 400 + ".0 "),
+        ("YFACTOR= 0.5", "YFACTOR= 1e308"),
+        ("XFACTOR= 1", "XFACTOR= 1e307"),
+        ("FIRSTX= 600", "FIRSTX= 1e308"),
+        ("LASTX= 609", "LASTX= -1.7e308"),
+        ("NPOINTS= 10", "NPOINTS= 1e300"),
+    ],
+)
+def test_numbers_beyond_all_bounds_are_refused(tmp_path: Path, old: str, new: str) -> None:
+    text = text_of()
+    assert old in text
+    with pytest.raises(FileFormatError):
+        read_text(tmp_path, text.replace(old, new))

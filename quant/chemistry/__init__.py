@@ -1,0 +1,1 @@
+"""What is known beforehand: characteristic bands, oscillators, residual-solvent limits, film positions, atmosphere."""
