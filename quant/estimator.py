@@ -67,7 +67,8 @@ class Estimator:
     def from_state(cls, parameters: dict[str, Any], arrays: dict[str, AnyArray]) -> Self:
         """Return the fitted estimator that `state` described."""
         values = {**parameters, **arrays}
-        estimator = cls(**{name: values.pop(name) for name in cls.parameter_names()})
+        # A parameter that came after the model was made has its default.
+        estimator = cls(**{name: values.pop(name) for name in cls.parameter_names() if name in values})
         for name, value in values.items():
             setattr(estimator, name, value)
         return estimator

@@ -13,6 +13,7 @@ from quant.calibration.uncertainty_parts import UncertaintyResult, split_uncerta
 from quant.calibration.validate import ValidationResult
 from quant.model.decision_rule import DecisionRule
 from quant.recipe.audit_schema import DecisionTable, table_of
+from quant.recipe.reference_schema import AnalyteTable
 from quant.result import Result, documented
 from quant.statistics.quantiles import t_quantile
 
@@ -27,7 +28,7 @@ class DecisionLimit(Result):
     risk: float = documented("Accepted probability that a result just accepted does not conform")
     factor: float = documented("Student's t at 1 - risk: the guard band is this times the standard uncertainty")
     decidable: bool = documented("Whether the method can see so little at all")
-    remark: str = documented("Why it cannot, or empty")
+    remark: str = documented("Why it cannot, or that the limit lies outside the calibrated range; or empty")
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -55,6 +56,7 @@ def equip(evidence: Evidence) -> tuple[Evidence, DetectionResult | None]:
         e.recipe, e.training, e.values, e.crossed, model.steps, model.method, e.processed, e.axis_after
     )
     detection = detect(model, e.values, e.mean, e.crossed)
+    analyte = next(each for each in e.recipe.analyte if each.name == model.analyte.name)
     table: DecisionTable | None = table_of(e.recipe.decision, model.analyte.name)
     equipped = replace(
         model,
@@ -62,23 +64,22 @@ def equip(evidence: Evidence) -> tuple[Evidence, DetectionResult | None]:
         left_out_note=note,
         smallest_decidable=None if detection is None else detection.smallest_decidable,
         smallest_from="" if detection is None else detection.smallest_from,
-        decision=None if table is None else rule_of(table, e.unit, model.uncertainty.degrees_of_freedom),
+        decision=None if table is None else rule_of(table, analyte, model.uncertainty.degrees_of_freedom),
     )
     return replace(e, model=equipped), detection
 
 
-def rule_of(table: DecisionTable, unit: str, degrees_of_freedom: int) -> DecisionRule:
+def rule_of(table: DecisionTable, analyte: AnalyteTable, degrees_of_freedom: int) -> DecisionRule:
     """Return the rule that a recipe's table states, with the factor of its guard band.
 
     Parameters
     ----------
     table : DecisionTable
-    unit : str
-        Unit of the analyte.
+    analyte : AnalyteTable
     degrees_of_freedom : int
         Of the standard uncertainty.
     """
-    limit, source = stated_limit(table, unit)
+    limit, source = stated_limit(table, analyte)
     return DecisionRule(
         limit=limit,
         kind=table.kind,
@@ -122,7 +123,13 @@ def _limit(e: Evidence) -> DecisionLimit | None:
     if rule is None:
         return None
     decidable = least is None or rule.limit >= least
-    remark = "" if decidable else f"it lies below the {e.model.smallest_from} of {least:.3g} {e.unit}".rstrip()
+    lowest, highest = e.model.limits.lowest, e.model.limits.highest
+    remark = ""
+    if not decidable:
+        remark = f"it lies below the {e.model.smallest_from} of {least:.3g} {e.unit}".rstrip()
+    elif not lowest <= rule.limit <= highest:
+        remark = f"the limit lies outside the calibrated range {lowest:g} to {highest:g} {e.unit}".rstrip()
+        remark += ": values near it are not applicable"
     return DecisionLimit(
         told=rule.told(e.unit),
         limit=rule.limit,

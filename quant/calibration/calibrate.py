@@ -8,6 +8,7 @@ import numpy as np
 from quant.arrays import FloatArray, IntArray
 from quant.calibration.audit import audit, equip
 from quant.calibration.below_limit import check_below_limit
+from quant.calibration.chemistry import chemistry_behind
 from quant.calibration.cross_validation import cross_validate, factor_limit, fit_pipeline
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.evidence import Evidence
@@ -141,6 +142,7 @@ def _calibrate_one(
             remark for found in (laboratory, below, split) if found is not None for remark in found.remarks()
         ),
         audit=audit(evidence, detection, validated, seal),
+        chemistry=chemistry_behind(evidence),
         picture=picture_of(model, training, full, axis_after, processed, values),
     )
 

@@ -5,6 +5,7 @@ from dataclasses import dataclass, field
 from quant.arrays import FloatArray
 from quant.calibration.audit import AuditResult
 from quant.calibration.below_limit import BelowLimitResult
+from quant.calibration.chemistry import ChemistryResult
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.laboratory import LaboratoryResult
 from quant.calibration.picture import Picture
@@ -47,6 +48,7 @@ class AnalyteResult(Result):
     below_limit: BelowLimitResult | None = documented("Check of samples below a detection limit, or none")
     remarks: tuple[str, ...] = documented("What else should be known of the samples")
     audit: AuditResult = documented("Diagnostics, uncertainty, detection, standards, seal and decision limit")
+    chemistry: ChemistryResult | None = documented("Where the predictions come from; none for a band area without it")
     picture: Picture = documented("The numbers behind the pictures")
 
     @property

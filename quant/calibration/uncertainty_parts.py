@@ -16,8 +16,8 @@ from quant.statistics.replicate_parts import ReplicateComponents, replicate_comp
 ONE_SPECTRUM = "every calibration sample has one spectrum: presentation is part of what is unexplained"
 NO_LABORATORY = "no laboratory error is known: it is part of what is unexplained"
 OVERSTATED = (
-    "laboratory error and scatter of replicates add up to more than the left-out errors show: one of them is "
-    "overstated, or the set is too small to tell; no budget"
+    "the parts known add up to more than the left-out errors show: one of them is overstated, or the set is too small "
+    "to tell; no budget"
 )
 
 

@@ -85,8 +85,8 @@ def named_bands(name: str) -> tuple[Band, ...]:
     hints = list(dict.fromkeys([*alike, *inside]))[:5]
     such = f", such as {', '.join(map(repr, hints))}" if hints else ""
     raise ParameterError(
-        f"{name!r} is no group and no solvent of the tables of bands; expected one of them{such}; or a position such as "
-        "1741, or a range such as [1750, 1735]."
+        f"{name!r} is no group and no solvent of the tables of bands; expected one of them{such}; or a position such "
+        "as 1741, or a range such as [1750, 1735]."
     )
 
 

@@ -58,18 +58,18 @@ def plural(count: int, noun: str, several: str = "") -> str:
 
 
 def percent(share: float) -> str:
-    """Return a share in percent, without decimals.
+    r"""Return a share in percent, without decimals; no line breaks before the sign.
 
     >>> percent(0.02)
-    '2 %'
+    '2\xa0%'
     """
-    return f"{100 * share:.0f} %"
+    return f"{100 * share:.0f}\N{NO-BREAK SPACE}%"
 
 
 def signed_percent(share: float) -> str:
-    """Return a share in percent with its sign.
+    r"""Return a share in percent with its sign.
 
     >>> signed_percent(-0.26), signed_percent(0.5)
-    ('-26 %', '+50 %')
+    ('-26\xa0%', '+50\xa0%')
     """
-    return f"{100 * share:+.0f} %"
+    return f"{100 * share:+.0f}\N{NO-BREAK SPACE}%"

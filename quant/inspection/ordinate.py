@@ -65,6 +65,7 @@ def _middles(values: FloatArray) -> FloatArray:
 
 def _downward(values: FloatArray) -> list[Finding]:
     """Say so if most spectra lie near 1 with bands that point down, as transmittance does."""
+    values = values[~np.isnan(values).all(axis=1)]
     if len(values) == 0:
         return []
     low, middle, high = np.nanpercentile(values, (1, 50, 99), axis=1)

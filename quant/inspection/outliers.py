@@ -68,8 +68,8 @@ def _unlike_validation(material: Material, beyond: FloatArray, n: int) -> list[F
             code="validation_unlike_calibration",
             title="The validation spectra as a whole hold something that the calibration spectra do not",
             samples=tuple(material.sample_ids[i] for i in out[np.argsort(-beyond[out], kind="stable")]),
-            evidence=f"{out.size} of {count} leave a larger residual than {percent(USUAL)} of the calibration samples do "
-            "when left out; by chance it would be one in twenty.",
+            evidence=f"{out.size} of {count} leave a larger residual than {percent(USUAL)} of the calibration samples "
+            "do when left out; by chance it would be one in twenty.",
             advice=ADVICE["validation sample"],
         )
     ]

@@ -37,8 +37,8 @@ class SetInspection(Result):
     replicates: str = documented("Spectra a sample, fewest to most")
     axis: str = documented("Axis of the spectra")
     quantity: str = documented("Ordinate of the spectra")
-    ordinate_lowest: float = documented("Lowest ordinate of all spectra")
-    ordinate_highest: float = documented("Highest ordinate of all spectra")
+    ordinate_lowest: float | None = documented("Lowest ordinate of all spectra")
+    ordinate_highest: float | None = documented("Highest ordinate of all spectra")
     origins: dict[str, int] = documented("Samples of each origin: process, spiked, blended, not stated")
     spectra_without_values: tuple[str, ...] = documented("Samples with spectra but no row in the reference table")
     values_without_spectra: tuple[str, ...] = documented("Samples in the reference table that have no spectrum")
@@ -52,11 +52,16 @@ class SetInspection(Result):
             ("spectra", self.n_spectra, ""),
             ("paired samples", self.n_samples, f"({self.replicates} spectra each)"),
             ("axis", self.axis, ""),
-            ("ordinate", f"{self.quantity}, {self.ordinate_lowest:.4g} to {self.ordinate_highest:.4g}", ""),
+            ("ordinate", self._ordinate(), ""),
             ("origins", ", ".join(f"{count} {origin}" for origin, count in self.origins.items()), ""),
             ("spectra without a value", ", ".join(self.spectra_without_values) or "none", ""),
             ("values without a spectrum", ", ".join(self.values_without_spectra) or "none", ""),
         ]
+
+    def _ordinate(self) -> str:
+        if self.ordinate_lowest is None or self.ordinate_highest is None:
+            return f"{self.quantity}, not a single point"
+        return f"{self.quantity}, {self.ordinate_lowest:.4g} to {self.ordinate_highest:.4g}"
 
     def __str__(self) -> str:
         """Heading, rows, one line an analyte."""
@@ -74,6 +79,7 @@ def summarise(reading: Reading, readings: Sequence[Reading]) -> SetInspection:
     """Return what one set of files holds; `readings` are all sets, which may share a reference table."""
     spectra, samples = reading.spectra, reading.samples
     count = samples.replicates
+    known = spectra.values[~np.isnan(spectra.values)]
     few, many = int(count.min()), int(count.max())
     notes = [f"{row.get('file', '')}: {row['reader']}" for row in spectra.notes if row.get("reader")]
     return SetInspection(
@@ -84,8 +90,8 @@ def summarise(reading: Reading, readings: Sequence[Reading]) -> SetInspection:
         replicates=str(few) if few == many else f"{few} to {many}",
         axis=f"{spectra.axis} ({spectra.axis.direction})",
         quantity=QUANTITIES[spectra.quantity],
-        ordinate_lowest=float(np.nanmin(spectra.values)),
-        ordinate_highest=float(np.nanmax(spectra.values)),
+        ordinate_lowest=float(known.min()) if known.size else None,
+        ordinate_highest=float(known.max()) if known.size else None,
         origins={origin: samples.origins.count(origin) for origin in dict.fromkeys(samples.origins)},
         spectra_without_values=samples.spectra_without_values,
         values_without_spectra=unpaired_values(reading, readings),

@@ -3,6 +3,7 @@
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
+from quant.errors import QuantityError
 from quant.inspection.duplicates import duplicate_pairs
 from quant.inspection.exchange import Exchange, find_exchanges
 from quant.inspection.finding import DOUBT, STOP, Finding, percent, plural
@@ -10,7 +11,7 @@ from quant.inspection.left_out import best_smoother, make_smoothers, studentised
 from quant.inspection.material import Material
 from quant.inspection.robust import FALSE_ALARM, FEWEST, largest_z, robust_z
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
-from quant.regression.band_area import BandArea
+from quant.regression.bands import place_bands
 
 PLAIN = 0.5  # left-out error falls to this share of what it was: more than a suspicion
 USEFUL = 0.5  # share of the values' variance that spectra have to explain, left out, before they may contradict any
@@ -20,7 +21,10 @@ def check_values(material: Material) -> list[Finding]:
     """Predict every calibration sample from the others and ask which values, or pairs of values, cannot be right."""
     if material.processed is None:
         return []
-    spectra = _predictors(material)
+    try:
+        spectra = _predictors(material, material.processed)
+    except QuantityError as problem:
+        return [_no_signal(str(problem))]
     exchanges: dict[tuple[int, int], list[tuple[str, str, Exchange]]] = {}
     contradictions = []
     alarm = FALSE_ALARM / len(material.calibration.analytes)
@@ -60,19 +64,27 @@ def check_values(material: Material) -> list[Finding]:
     return [*_exchanged(material, exchanges), *contradictions]
 
 
-def _predictors(material: Material) -> FloatArray:
+def _predictors(material: Material, processed: FloatArray) -> FloatArray:
     """Mean processed spectra of the calibration samples, or the band signals where the recipe takes these."""
-    assert material.processed is not None
-    rows = material.calibration.mean_by_sample(material.processed[: material.n_calibration])
-    if material.recipe.regression.method == "band_area":
-        steps = build_steps(material.recipe, material.spectra.axis, material.spectra.quantity)
-        method = build_method(material.recipe, axis_behind(steps, material.spectra.axis), 1)
-        if isinstance(method, BandArea):
-            values = material.calibration.values
-            # Fitting places the bands; signals do not depend on the values.
-            spread = np.arange(len(rows), dtype=np.float64) if np.isnan(values[:, 0]).any() else values[:, 0]
-            return method.fit(rows, spread).signals(rows)[:, None]
-    return rows
+    rows = material.calibration.mean_by_sample(processed[: material.n_calibration])
+    if material.recipe.regression.method != "band_area":
+        return rows
+    axis = material.spectra.axis
+    behind = axis_behind(build_steps(material.recipe, axis, material.spectra.quantity), axis)
+    method = build_method(material.recipe, behind, 1).get_params()
+    bands = place_bands(method["bands"], method["reference_band"], behind, behind.size)
+    return bands.signals(rows)[:, None]
+
+
+def _no_signal(problem: str) -> Finding:
+    return Finding(
+        gravity=STOP,
+        code="no_band_signal",
+        title="The band's signal cannot be computed",
+        samples=(),
+        evidence=problem,
+        advice="Mend what this names, calibrating will refuse it; values were not compared with spectra.",
+    )
 
 
 def _groups(material: Material) -> IntArray:
@@ -87,8 +99,8 @@ def _groups(material: Material) -> IntArray:
 def _contradiction(unit: str, value: float, error: float, z: float, limit: float) -> str:
     return (
         f"The worst: the laboratory says {value:.4g}, the other samples {value + error:.4g} {unit}".rstrip()
-        + f" ({abs(z):.1f} robust standard errors apart; {limit:.1f} is the limit that {percent(FALSE_ALARM)} of clean sets "
-        "pass)."
+        + f" ({abs(z):.1f} robust standard errors apart; {limit:.1f} is the limit that {percent(FALSE_ALARM)} of "
+        "clean sets pass)."
     )
 
 
@@ -109,8 +121,8 @@ def _exchanged(material: Material, exchanges: dict[tuple[int, int], list[tuple[s
                 samples=(ids[a], ids[b]),
                 evidence=f"{name}{also}: {values[a]:.4g} and {values[b]:.4g} {unit}".rstrip()
                 + f". With {whole} of the two exchanged, the left-out error falls from {best.before:.3g} to "
-                f"{best.after:.3g}; chance does as well with p = {best.p:.2g} (a pair is named in {percent(FALSE_ALARM)} of "
-                "clean sets).",
+                f"{best.after:.3g}; chance does as well with p = {best.p:.2g} (a pair is named in "
+                f"{percent(FALSE_ALARM)} of clean sets).",
                 advice="Check vials, file names and laboratory sheet of both; mend the files only when the cause is "
                 "found, else exclude both.",
             )

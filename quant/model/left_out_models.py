@@ -93,10 +93,15 @@ class LeftOutModels:
         return jackknife_plus(each, self.residuals, self.probability, scales=size(self.left_out), new_scales=size(each))
 
     @property
+    def finite(self) -> bool:
+        """Whether there are samples enough for intervals with two ends."""
+        return self.residuals.size >= least_samples(self.probability)
+
+    @property
     def note(self) -> str:
         """What the intervals are, or why they have no end."""
-        least = least_samples(self.probability)
-        if self.residuals.size < least:
+        if not self.finite:
+            least = least_samples(self.probability)
             return f"{self.residuals.size} samples are too few for {100 * self.probability:g} %; {least} are needed"
         return f"{self.way}, {100 * self.probability:g} %, marginal coverage"
 

@@ -7,6 +7,7 @@ from pydantic import Field, PrivateAttr, model_validator
 from quant.preprocessing.registry import STEPS
 from quant.readers.options import ReadingOptions
 from quant.recipe.audit_schema import Acceptances, Decisions, UncertaintyTable, check_analytes
+from quant.recipe.chemistry_schema import Chemistries, check_chemistry
 from quant.recipe.reference_schema import AnalyteTable, ReferenceSection
 from quant.recipe.table import DEFAULTS, Positive, Table, Text
 
@@ -199,6 +200,7 @@ class Recipe(Table):
     )
     acceptance: Acceptances = Field(default_factory=list, description="What validation has to show.")
     decision: Decisions = Field(default_factory=list, description="The limit that results are decided against.")
+    chemistry: Chemistries = Field(default_factory=list, description="What is known of bands and interferents.")
 
     @model_validator(mode="after")
     def _names_differ(self) -> "Recipe":
@@ -208,6 +210,7 @@ class Recipe(Table):
             raise ValueError(f"more than one [[analyte]] is called {', '.join(twice)}; expected one each")
         check_analytes("acceptance", self.acceptance, names)
         check_analytes("decision", self.decision, names)
+        check_chemistry(self.chemistry, names)
         return self
 
     _folder: str = PrivateAttr(default=".")

@@ -1,4 +1,4 @@
-"""Classical calibration of one band: a straight line of its signal against concentration, read backwards."""
+"""Classical calibration of one band: a line or quadratic of its signal against concentration, read backwards."""
 
 from collections.abc import Sequence
 from dataclasses import asdict
@@ -8,9 +8,19 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
-from quant.errors import NotEnoughDataError
+from quant.checks import one_of
+from quant.errors import NotEnoughDataError, ParameterError
 from quant.regression.bands import BandSet, BandSpec, place_bands
+from quant.regression.line_weights import LAWS, level_table, standard_weights, told_weight, weight_at
 from quant.regression.method import Method
+from quant.statistics.curve import (
+    QuadraticFit,
+    check_branch,
+    curve_leverage,
+    fit_quadratic,
+    inverse_quadratic,
+    inverse_quadratic_interval,
+)
 from quant.statistics.straight_line import (
     EPS,
     InverseInterval,
@@ -24,7 +34,7 @@ from quant.statistics.straight_line import (
 
 
 class BandArea(Method):
-    """Straight line of a band's signal against concentration (Beer-Lambert), predicted by reading it backwards.
+    """Line of a band's signal against concentration (Beer-Lambert), straight or bent, predicted by reading it backwards.
 
     Parameters
     ----------
@@ -44,11 +54,21 @@ class BandArea(Method):
         Whether no concentration means no signal for certain.
     axis : array of shape (k,), optional
         Axis values, rising or falling; None: points are numbered 0, 1, 2 ... [axis unit]
+    curve : {"line", "quadratic"}
+        A quadratic is read on the branch of the calibrated range, and refused if it turns within that.
+    line_weights : {"equal", "1/x", "1/x^2", "1/s^2"}
+        Weights of the standards; the weight of an unknown follows from its own concentration.
+    sd_column : str, optional
+        1/s^2: name of the standards' standard deviations, which `fit` takes as second column of y.
 
     Attributes
     ----------
     line_ : LineFit
-        x: concentration, y: signal.
+        x: concentration, y: signal. Beside a quadratic only to compare.
+    curve_ : QuadraticFit or None
+        The quadratic, if there is one.
+    standards_ : array of shape (2, levels)
+        Concentrations of the standards and 1/√w of each; empty for equal weights.
     n_samples_ : float
         Number of training rows.
     residual_basis_ : array of shape (rank, points)
@@ -56,11 +76,17 @@ class BandArea(Method):
 
     Notes
     -----
-    Rows count one each, so replicates must be averaged first. `factor_counts_` is (1,), through the origin (0,).
+    Rows count one each, so replicates must be averaged first. `factor_counts_` is (1,), through the origin (0,),
+    of a quadratic (2,).
     """
 
     averages_replicates: ClassVar[bool] = True
-    fitted: ClassVar[tuple[str, ...]] = ("n_samples_", "line_values_", "residual_basis_")
+    classical: ClassVar[bool] = True
+    fitted: ClassVar[tuple[str, ...]] = (
+        *("n_samples_", "line_values_", "residual_basis_", "curve_values_", "standards_"),
+    )
+    curve_values_: dict[str, Any] | None = None
+    standards_: FloatArray = np.empty((2, 0))
 
     def __init__(
         self,
@@ -68,31 +94,47 @@ class BandArea(Method):
         reference_band: BandSpec | None = None,
         through_origin: bool = False,  # noqa: FBT001 (a scikit-learn parameter)
         axis: ArrayLike | None = None,
+        curve: str = "line",
+        line_weights: str = "equal",
+        sd_column: str | None = None,
     ) -> None:
         self.bands = bands
         self.reference_band = reference_band
         self.through_origin = through_origin
         self.axis = axis
+        self.curve = curve
+        self.line_weights = line_weights
+        self.sd_column = sd_column
+
+    @property
+    def companions(self) -> tuple[str, ...]:
+        """The standard deviations that weights 1/s^2 come from."""
+        return (self.sd_column or "sd",) if self.line_weights == "1/s^2" else ()
 
     @property
     def factor_counts_(self) -> tuple[int, ...]:
-        """(1,) for a free line, (0,) through the origin."""
-        return (0,) if self.line_.through_origin else (1,)
+        """(1,) for a free line, (0,) through the origin, (2,) for a quadratic."""
+        return (2,) if self.curve_values_ else (0,) if self.line_.through_origin else (1,)
 
     @property
     def line_(self) -> LineFit:
         """The calibration line, x: concentration, y: signal."""
         return LineFit(**self.line_values_)
 
+    @property
+    def curve_(self) -> QuadraticFit | None:
+        """The calibration quadratic, x: concentration, y: signal; None for a line."""
+        return QuadraticFit(**self.curve_values_) if self.curve_values_ else None
+
     def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # type: ignore[override]  # weights have no meaning here
-        """Fit the line.
+        """Fit the line or quadratic.
 
         Parameters
         ----------
         X : array of shape (n, k)
             Spectra, one a sample (replicates averaged). [absorbance]
-        y : array of shape (n,)
-            Concentrations.
+        y : array of shape (n,), or (n, 2) for weights 1/s^2
+            Concentrations; then the standard deviations of the signals.
 
         Returns
         -------
@@ -102,24 +144,36 @@ class BandArea(Method):
         Raises
         ------
         NotEnoughDataError
-            Too few samples, equal concentrations, or a signal that does not follow them.
+            Too few samples, equal concentrations, a signal that does not follow them, or a quadratic that turns within
+            their range.
         ParameterError
-            A band is not as described or does not lie on the axis.
+            A band is not as described or does not lie on the axis, or curve and weights do not exist.
         QuantityError
             The reference band shows no signal above zero.
         """
-        matrix, values = self.check_fit_pair(X, y)
+        one_of("line_weights", self.line_weights, LAWS)
+        if one_of("curve", self.curve, ("line", "quadratic")) == "quadratic" and self.through_origin:
+            raise ParameterError("through_origin = true belongs to curve = 'line'; remove one of the two.")
+        matrix, values, sds = self.check_fit_companions(X, y)
         bands = self._place()
         if values.size < 2 and not self.through_origin:
             raise NotEnoughDataError(f"A straight line needs 2 samples or more; n_samples={values.size} were given.")
         signal = bands.signals(matrix)
-        line = fit_line_through_origin(values, signal) if self.through_origin else fit_line(values, signal)
+        weights = standard_weights(self.line_weights, values, sds[:, 0] if sds.size else None)
+        fit = fit_line_through_origin if self.through_origin else fit_line
+        line = fit(values, signal, weights)
         if abs(line.slope) * np.sqrt(line.sxx) <= 10 * signal.size * EPS * np.linalg.norm(signal):
             raise NotEnoughDataError(
                 f"The band's signal does not change with concentration (slope {line.slope:.1e}), so it cannot be read "
                 "backwards. Check the band's range, or add samples that differ."
             )
         self.line_values_: dict[str, Any] = asdict(line)
+        self.curve_values_ = None
+        if self.curve == "quadratic":
+            curve = fit_quadratic(values, signal, weights)
+            check_branch(curve)
+            self.curve_values_ = asdict(curve)
+        self.standards_ = np.empty((2, 0)) if self.line_weights == "equal" else level_table(values, weights)
         self.n_samples_ = float(values.size)
         self.residual_basis_ = _leading_directions(bands.profiles(matrix))
         return self
@@ -135,14 +189,13 @@ class BandArea(Method):
         return self._place().signals(self.check_new(X))
 
     def predict_each(self, X: ArrayLike) -> FloatArray:
-        """Concentrations (signal − intercept)/slope, shape (1, n). [unit of y]"""
-        signals = self.signals(X)
-        return inverse_value(self.line_, signals).reshape(1, -1)
+        """Concentrations (signal − intercept)/slope, or the quadratic's root, shape (1, n). [unit of y]"""
+        return self._read(self.signals(X)).reshape(1, -1)
 
     def leverage_each(self, X: ArrayLike) -> FloatArray:
-        """Leverage 1/n + (x̂ − x̄)²/Sxx, through the origin x̂²/Σx², shape (1, n)."""
-        predicted = self.predict_each(X)
-        return line_leverage(self.line_, predicted)
+        """Leverage 1/n + (x̂ − x̄)²/Sxx, through the origin x̂²/Σx², or that of the quadratic, shape (1, n)."""
+        predicted, curve = self.predict_each(X), self.curve_
+        return line_leverage(self.line_, predicted) if curve is None else curve_leverage(curve, predicted)
 
     def residual_each(self, X: ArrayLike) -> FloatArray:
         """Sum of squares of what `residual_basis_` leaves of the bands' profiles, shape (1, n). [(unit of X)²]
@@ -162,14 +215,14 @@ class BandArea(Method):
         signal : array of shape (n,)
             As from `signals`, each the mean of `readings` readings.
         t : float
-            Quantile of Student's t at `line_.degrees_of_freedom`.
+            Quantile of Student's t at the degrees of freedom of the line or quadratic.
         readings : int or array of shape (n,)
-            Readings behind each signal.
+            Readings behind each signal, each with the weight that `weights_at` gives its concentration.
 
         Returns
         -------
         InverseInterval
-            See `quant.statistics.straight_line.inverse_interval`.
+            See `inverse_interval` of `quant.statistics.straight_line`, `inverse_quadratic_interval` of `.curve`.
 
         Raises
         ------
@@ -179,7 +232,21 @@ class BandArea(Method):
             t is not above zero, or fewer than one reading.
         """
         self.check_fitted()
-        return inverse_interval(self.line_, signal, t, readings)
+        measured, curve = np.atleast_1d(np.asarray(signal, dtype=np.float64)), self.curve_
+        weight = self.weights_at(self._read(measured))
+        if curve is not None:
+            return inverse_quadratic_interval(curve, measured, t, readings, weight)
+        return inverse_interval(self.line_, measured, t, readings, weight)
+
+    def weights_at(self, concentration: ArrayLike) -> FloatArray:
+        """Weight of a signal at concentrations of shape (n,), the mean weight of the standards being 1."""
+        return weight_at(self.line_weights, self.standards_, np.asarray(concentration, dtype=np.float64))
+
+    def remarks_each(self, X: ArrayLike) -> tuple[str, ...]:
+        """State the weight of each signal, where standards are weighted."""
+        if self.line_weights == "equal":
+            return super().remarks_each(X)
+        return tuple(told_weight(self.line_weights, float(w)) for w in self.weights_at(self.predict(X)))
 
     def with_factors(self, count: int) -> Self:
         """Return itself: a line has no simpler self.
@@ -191,6 +258,10 @@ class BandArea(Method):
         """
         self.check_count(count)
         return self
+
+    def _read(self, signals: FloatArray) -> FloatArray:
+        curve = self.curve_
+        return inverse_value(self.line_, signals) if curve is None else inverse_quadratic(curve, signals)
 
     def _place(self) -> BandSet:
         self.check_fitted()

@@ -14,7 +14,7 @@ from quant.errors import NotEnoughDataError, ParameterError, SampleMismatchError
 from quant.estimator import check_weights
 from quant.regression.fast_cross_validation_columns import Columns, check_factors, check_samples, fold_columns
 from quant.regression.fast_cross_validation_gram import ACCURACY, Gram, gram_scores
-from quant.regression.fast_cross_validation_threads import one_blas_thread
+from quant.regression.fast_cross_validation_threads import one_blas_thread, scratch
 
 BLOCK_BYTES = 2**22  # of Gram matrices and scores of a block; measured best at n = 100 with 10 folds: 16 candidates
 
@@ -70,7 +70,8 @@ def cross_validate_many(
     weight, sample_index : arrays of shape (n,), optional
         As in `fast_left_out`.
     accuracy : float
-        Share of a score that may be rounding error before a fold stops; see `gram_scores`.
+        Share of a score that may be rounding error before a fold stops; see `gram_scores`. 1e-6 suits a ranking that
+        is rescored.
     n_jobs : int
         Workers, each with one thread of linear algebra; −1: one a core. Through joblib, whose backend may be another.
     keep_predicted : bool
@@ -225,7 +226,8 @@ def _errors(block: Sequence[Candidate], plan: _Plan) -> ManyErrors:
 
 
 def _stack(block: Sequence[Candidate], n: int) -> tuple[FloatArray, FloatArray]:
-    grams, sizes = np.empty((len(block), n, n)), np.empty(len(block))
+    (grams,) = scratch("grams", (len(block), n, n))
+    known = {}
     for number, candidate in enumerate(block):
         formed: Any = candidate() if callable(candidate) else candidate
         matrix = formed.values if isinstance(formed, Gram) else np.asarray(formed, dtype=np.float64)
@@ -234,7 +236,10 @@ def _stack(block: Sequence[Candidate], n: int) -> tuple[FloatArray, FloatArray]:
                 f"A Gram matrix has shape {matrix.shape}; expected {(n, n)}, one row a value of y."
             )
         grams[number] = matrix
-        sizes[number] = formed.size if isinstance(formed, Gram) else np.trace(matrix)
+        if isinstance(formed, Gram):
+            known[number] = formed.size
+    sizes = np.einsum("cii->c", grams)  # traces
+    sizes[list(known)] = list(known.values())
     return grams, sizes
 
 

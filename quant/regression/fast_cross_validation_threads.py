@@ -1,9 +1,20 @@
-"""One thread of linear algebra a worker: with more, small products wait for each other, at times 100 times over."""
+"""What a worker keeps: one thread of linear algebra, and its working memory.
 
+With more threads of linear algebra, small products wait for each other, at times a hundred times over.
+"""
+
+import threading
 from collections.abc import Iterator
 from contextlib import contextmanager
 from functools import cache
+from math import prod
 from typing import Any
+
+import numpy as np
+
+from quant.arrays import FloatArray
+
+KEPT_BYTES = 2**24  # of working memory of each kind, by each thread
 
 
 @contextmanager
@@ -18,3 +29,26 @@ def _controller() -> Any:
     from threadpoolctl import ThreadpoolController  # type: ignore[import-untyped]  # deferred: start-up
 
     return ThreadpoolController()  # looks through all loaded libraries: worth keeping
+
+
+_kept = threading.local()
+
+
+def scratch(kind: str, *shapes: tuple[int, ...]) -> list[FloatArray]:
+    """Return arrays of any content, from memory that each thread keeps: fresh pages cost more than the arithmetic.
+
+    Parameters
+    ----------
+    kind : str
+        Whose memory: the next call with the same word hands the same memory out again.
+    *shapes : tuple of int
+        One an array.
+    """
+    sizes = [prod(shape) for shape in shapes]
+    whole: FloatArray = getattr(_kept, kind, np.empty(0))
+    if whole.size < sum(sizes):
+        whole = np.empty(sum(sizes))
+        if whole.nbytes <= KEPT_BYTES:
+            setattr(_kept, kind, whole)
+    ends = np.cumsum(sizes)
+    return [whole[end - size : end].reshape(shape) for shape, size, end in zip(shapes, sizes, ends, strict=True)]

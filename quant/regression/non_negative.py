@@ -44,7 +44,8 @@ def _inside(A: FloatArray, b: FloatArray, c: FloatArray, free: BoolArray) -> Flo
         blocked = np.flatnonzero(free & (goal <= 0))
         if not blocked.size:
             return goal
-        steps = c[blocked] / (c[blocked] - goal[blocked])
+        way = c[blocked] - goal[blocked]
+        steps = np.divide(c[blocked], way, out=np.zeros_like(way), where=way > 0)
         c = c + steps.min() * (goal - c)
         free[blocked[steps == steps.min()]] = False
         c[~free] = 0.0

@@ -18,7 +18,7 @@ from quant.errors import NotEnoughDataError, ParameterError, SampleMismatchError
 EPS = float(np.finfo(np.float64).eps)
 SYMMETRIC_BELOW = 0.05  # above this g, the symmetric interval is visibly wrong
 
-IntervalForm = Literal["symmetric", "Fieller", "unbounded"]
+IntervalForm = Literal["symmetric", "Fieller", "unbounded", "delta method"]
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -82,9 +82,9 @@ class InverseInterval:
         x0 = (y0 − a)/b and its standard error s_x0. [unit of x]
     low, high : array of shape (n,)
         The interval. [unit of x]
-    form : {"symmetric", "Fieller", "unbounded"}
-        x0 ± t·s_x0; the exact interval, not symmetric about x0; or no finite interval at all, because the slope
-        itself does not differ from zero at this t.
+    form : {"symmetric", "Fieller", "unbounded", "delta method"}
+        x0 ± t·s_x0; the exact interval, not symmetric about x0; no finite interval at all, because the slope itself
+        does not differ from zero at this t; or, of curves, x0 ± t·s_x0 from the slope at x0.
     """
 
     value: FloatArray
@@ -120,7 +120,7 @@ def fit_line(x: ArrayLike, y: ArrayLike, weights: ArrayLike | None = None) -> Li
         x, y and the weights differ in length.
     """
     x_values, y_values = paired_vectors("x", x, "y", y)
-    x_values, y_values, w = _present(x_values, y_values, weights)
+    x_values, y_values, w = present_pairs(x_values, y_values, weights)
     if x_values.size < 2:
         raise NotEnoughDataError(f"{x_values.size} pair(s) of x and y; a straight line needs 2 or more.")
     total = float(w.sum())
@@ -128,13 +128,15 @@ def fit_line(x: ArrayLike, y: ArrayLike, weights: ArrayLike | None = None) -> Li
     return _finish(x_values - x_mean, y_values - y_mean, w, x_mean, y_mean, x_size=float(np.abs(x_values).max()))
 
 
-def fit_line_through_origin(x: ArrayLike, y: ArrayLike) -> LineFit:
-    """Fit y = b·x by least squares, errors in y only.
+def fit_line_through_origin(x: ArrayLike, y: ArrayLike, weights: ArrayLike | None = None) -> LineFit:
+    """Fit y = b·x by (weighted) least squares, errors in y only.
 
     Parameters
     ----------
     x, y : array of shape (n,)
         What is known, what is measured. [units of x and y]
+    weights : array of shape (n,), optional
+        As `fit_line` takes them.
 
     Returns
     -------
@@ -146,12 +148,15 @@ def fit_line_through_origin(x: ArrayLike, y: ArrayLike) -> LineFit:
     NotEnoughDataError
         No pair, or all x zero.
     ParameterError
-        Numbers that are not finite.
+        Numbers that are not finite, or negative weights.
     SampleMismatchError
-        x and y differ in length.
+        x, y and the weights differ in length.
     """
     x_values, y_values = paired_vectors("x", x, "y", y, least=1)
-    return _finish(x_values, y_values, np.ones(x_values.size), 0.0, 0.0, x_size=None)
+    x_values, y_values, w = present_pairs(x_values, y_values, weights)
+    if not x_values.size:
+        raise NotEnoughDataError("No pair has a weight above zero; a line through the origin needs one.")
+    return _finish(x_values, y_values, w, 0.0, 0.0, x_size=None)
 
 
 def line_leverage(line: LineFit, x: ArrayLike) -> FloatArray:
@@ -174,12 +179,14 @@ def inverse_value(line: LineFit, y: ArrayLike) -> FloatArray:
     return value
 
 
-def inverse_interval(line: LineFit, y: ArrayLike, t: float, readings: ArrayLike = 1) -> InverseInterval:
+def inverse_interval(
+    line: LineFit, y: ArrayLike, t: float, readings: ArrayLike = 1, weight: ArrayLike = 1.0
+) -> InverseInterval:
     """Read the line backwards, with standard error and interval.
 
-    With D = (y0 − ȳ)/b, c = 1/m + 1/n and g = t²·s_b²/b²: s_x0 = (s/|b|)·sqrt(c + D²/Sxx). Below g = 0.05 the interval
+    With D = (y0 − ȳ)/b, c = 1/(m·w) + 1/n (n the sum of weights) and g = t²·s_b²/b²: s_x0 = (s/|b|)·sqrt(c + D²/Sxx). Below g = 0.05 the interval
     is x0 ± t·s_x0, above it is Fieller's, x̄ + [D ± sqrt(g·D² + (1 − g)·t²·s²·c/b²)] / (1 − g); from g = 1 on there is
-    no finite one. Through the origin x̄ = ȳ = 0, c = 1/m and Sxx = Σx².
+    no finite one. Through the origin x̄ = ȳ = 0, c = 1/(m·w) and Sxx = Σx².
 
     Parameters
     ----------
@@ -190,7 +197,9 @@ def inverse_interval(line: LineFit, y: ArrayLike, t: float, readings: ArrayLike 
     t : float
         Quantile of Student's t at the line's degrees of freedom.
     readings : int or array of shape (n,)
-        m, readings behind each y, each of weight 1.
+        m, readings behind each y.
+    weight : float or array of shape (n,)
+        w, weight of one of them on the scale of the line's weights; 1 for an unweighted line.
 
     Returns
     -------
@@ -202,12 +211,12 @@ def inverse_interval(line: LineFit, y: ArrayLike, t: float, readings: ArrayLike 
     NotEnoughDataError
         The slope is zero, or no degree of freedom is left.
     ParameterError
-        t is not above zero, or fewer than one reading.
+        t is not above zero, fewer than one reading, or a weight that is not above zero.
 
     References
     ----------
     .. [1] ISO 8466-1; J. N. Miller, J. C. Miller, Statistics and Chemometrics for Analytical Chemistry; EURACHEM/CITAC
-       QUAM A5: the standard error, the same in all three (from memory).
+       QUAM A5: the standard error, the same in all three, with weights in the second (from memory).
     .. [2] E. C. Fieller, Some problems in interval estimation, J. R. Stat. Soc. B 16 (1954) 175 (from memory).
     """
     signal, m = as_vector("y", np.atleast_1d(y)), np.asarray(readings, dtype=np.float64)
@@ -215,6 +224,9 @@ def inverse_interval(line: LineFit, y: ArrayLike, t: float, readings: ArrayLike 
         raise ParameterError(f"t = {t}; expected a quantile of Student's t above zero.")
     if not np.all(m >= 1):
         raise ParameterError(f"readings = {readings!r}; expected 1 or more behind each value.")
+    w = np.asarray(weight, dtype=np.float64)
+    if not np.all(w > 0):
+        raise ParameterError(f"weight = {weight!r}; expected the weight of a reading, above zero.")
     value = inverse_value(line, signal)
     if line.degrees_of_freedom < 1:
         raise NotEnoughDataError(
@@ -222,7 +234,7 @@ def inverse_interval(line: LineFit, y: ArrayLike, t: float, readings: ArrayLike 
             "Measure more standards."
         )
     relative_sd = line.residual_sd / abs(line.slope)
-    own = 1.0 / m + line.mean_share
+    own = 1.0 / (m * w) + line.mean_share
     distance = value - line.x_mean
     standard_error = relative_sd * np.sqrt(own + distance**2 / line.sxx)
     g = (t * relative_sd) ** 2 / line.sxx
@@ -237,7 +249,18 @@ def inverse_interval(line: LineFit, y: ArrayLike, t: float, readings: ArrayLike 
     return InverseInterval(value=value, standard_error=standard_error, low=low, high=high, form=form)
 
 
-def _present(x: FloatArray, y: FloatArray, weights: ArrayLike | None) -> tuple[FloatArray, FloatArray, FloatArray]:
+def present_pairs(
+    x: FloatArray, y: FloatArray, weights: ArrayLike | None
+) -> tuple[FloatArray, FloatArray, FloatArray]:
+    """Return x, y and weights of the pairs that weigh anything; all weigh one by default.
+
+    Raises
+    ------
+    ParameterError
+        Weights that are negative or not finite.
+    SampleMismatchError
+        Another number of weights than of pairs.
+    """
     if weights is None:
         return x, y, np.ones(x.size)
     w = np.asarray(weights, dtype=np.float64)

@@ -56,7 +56,7 @@ def test_a_gap_by_hand():
     [finding] = check_range(material(values))
     assert finding.title == "A gap in the range of a: 4 to 9 %"
     assert finding.samples == ("S14", "S15")
-    assert finding.evidence.startswith("50 % of the range")
+    assert finding.evidence.startswith("50\N{NO-BREAK SPACE}% of the range")
 
 
 def test_even_and_random_values_have_no_gap():
@@ -109,7 +109,7 @@ def test_a_few_validation_samples():
     [_, finding] = check_counts(material(np.arange(30.0), validation=np.arange(12.0)))
     assert (finding.code, finding.gravity) == ("few_validation_samples", NOTE)
     # χ² quantiles for 12 degrees of freedom, from a table: 23.337 and 4.404; √(12/23.337) − 1, √(12/4.404) − 1.
-    assert "-28 % to +65 %" in finding.evidence
+    assert "-28\N{NO-BREAK SPACE}% to +65\N{NO-BREAK SPACE}%" in finding.evidence
     [_, finding] = check_counts(material(np.arange(30.0), validation=np.arange(4.0)))
     assert finding.gravity == DOUBT
 

@@ -215,6 +215,34 @@ def test_damage_is_found_where_it_was_done(look, clean, damage, code, gravity, s
     assert result.accepted == (gravity != STOP)
 
 
+def test_one_foreign_spectrum_does_not_hide_exchanged_labels(look):
+    def damage(s):
+        transmittance(s)
+        order = np.argsort(s.values[:, 0])
+        s.values[[order[0], order[-1]]] = s.values[[order[-1], order[0]]]
+
+    result = look(damage)
+    assert result.found("wrong_quantity")
+    [finding] = result.found("exchanged_labels")
+    assert finding.gravity == STOP
+
+
+@pytest.mark.parametrize(
+    ("config", "doubts"),
+    [
+        ("dryer_solvent", []),
+        ("starting_material", []),
+        ("gasoline", ["validation_unlike_calibration"]),  # the README tells of samples 51 to 60 beyond 1680 nm
+    ],
+)
+def test_ready_recipes_raise_what_is_known_of_them(repository, config, doubts):
+    result = inspect(load_recipe(repository / "configs" / f"{config}.toml"))
+    assert [finding.code for finding in result.findings if finding.gravity != NOTE] == doubts
+    assert result.accepted
+    for finding in result.found("validation_unlike_calibration"):
+        assert set(finding.samples) == {str(number) for number in range(51, 61)}
+
+
 def test_carbon_dioxide_is_told_and_does_no_harm(look, clean):
     [before] = clean.found("carbon_dioxide")
     [finding] = look(carbon_dioxide).found("carbon_dioxide")

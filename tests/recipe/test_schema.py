@@ -17,7 +17,7 @@ SMALLEST = 'title = "t"\n[spectra]\nfiles = ["x"]\n[reference]\nfile = "x"\n[[an
 
 
 def test_every_default_is_in_force():
-    audit = "[decision]\nlimit = 1.0\n[acceptance]\nmin_samples = 1\n"
+    audit = "[decision]\nlimit = 1.0\n[acceptance]\nmin_samples = 1\n[chemistry]\nanalyte = [1715]\n"
     recipe = recipe_from_text(f'{SMALLEST}{audit}[validation]\nsplit = "random"')
     for name, keys in DEFAULTS.items():
         table = getattr(recipe, name)

@@ -7,6 +7,7 @@ import pytest
 
 from quant.calibration.calibrate import calibrate
 from quant.calibration.result import CalibrationResult
+from quant.calibration.sealed import Ledger
 from quant.recipe.load import recipe_from_text
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.provenance import Source
@@ -32,6 +33,13 @@ samples = ["V1..V6"]
 """
 PLS = "max_factors = 2"
 BAND = 'method = "band_area"\nbands = [{ signal = "area", range = [1030, 1010] }]'
+AUDIT = """[decision]
+limit = 2.5
+name = "drying, step 3"
+[acceptance]
+max_rmsep = 0.05
+min_samples = 10
+"""
 NOTES = {"technique": "ATR", "resolution": "4"}
 IDS = (*(f"S{i:02d}" for i in range(1, 10)), *(f"V{i}" for i in range(1, 7)))
 
@@ -44,16 +52,22 @@ def smallest(
     names=("acetone",),
     laboratory_error: float | None = 0.02,
     repeats: bool = False,
+    replicates: int = 1,
+    levels: int = 13,
+    ledger: Ledger | None = None,
 ) -> CalibrationResult:
     """Calibrate on nine samples of six points, and six to validate; the disturbances are no random numbers.
 
+    With `replicates`, every sample has so many spectra; with few `levels`, reference values come again.
     With `repeats`, every value is the mean of two determinations, and S08 lies below a detection limit.
     """
     i = np.arange(len(ids))
-    values = 1.0 + (5 * i) % 13 * 0.25
+    values = 1.0 + (5 * i) % levels * 0.25
     band, matrix = np.array([0.1, 0.4, 1.0, 0.4, 0.1, 0.0]), np.array([0.3, 0.2, 0.2, 0.5, 1.0, 0.6])
     spectra = values[:, None] * band + (1 + 0.1 * np.cos(2.0 * i))[:, None] * matrix
-    spectra += 0.01 * np.sin(np.outer(i + 1, np.arange(1, 7)) ** 1.5)
+    spectra = np.repeat(spectra, replicates, axis=0)
+    spectra += 0.01 * np.sin(np.outer(np.arange(1, len(spectra) + 1), np.arange(1, 7)) ** 1.5)
+    each = [sample for sample in ids for _ in range(replicates)]
     axis = SpectralAxis(np.arange(1040.0, 980.0, -10.0), "cm-1")
     source = Source("paste.csv", 1234, "0123456789abcdef" * 4)
     below = np.full((len(ids) + 1, len(names)), np.nan)
@@ -68,8 +82,8 @@ def smallest(
         determinations=2 if repeats else 1,
         repeatability=dict.fromkeys(names, Repeatability(0.03, 14, 14)) if repeats else {},
     )
-    samples = pair_samples(SpectraSet(spectra, axis, ids, notes=[NOTES] * len(ids), sources=[source]), table)
-    result = calibrate(recipe_from_text(recipe.replace("{regression}", regression)), samples=samples)
+    samples = pair_samples(SpectraSet(spectra, axis, each, notes=[NOTES] * len(each), sources=[source]), table)
+    result = calibrate(recipe_from_text(recipe.replace("{regression}", regression)), samples=samples, ledger=ledger)
     versions = {"quant": "0.0.0", "numpy": "0.0.0", "python": "0.0.0"}  # of the golden texts
     analytes = tuple(replace(found, model=replace(found.model, versions=versions)) for found in result.analytes)
     return replace(result, analytes=analytes)
@@ -92,6 +106,20 @@ def pls():
 @pytest.fixture(scope="session")
 def band():
     return smallest(BAND)
+
+
+@pytest.fixture(scope="session")
+def audited(tmp_path_factory):
+    """Two spectra a sample, a limit, criteria of which one is not met, and a validation set looked at twice."""
+    ledger = Ledger(tmp_path_factory.mktemp("ledger") / "looks.json")
+    smallest(recipe=RECIPE, replicates=2, ledger=ledger)
+    return smallest(recipe=RECIPE + AUDIT, replicates=2, ledger=ledger)
+
+
+@pytest.fixture(scope="session")
+def undecided():
+    """The area of a band whose levels come again, and a limit below what it can see."""
+    return smallest(BAND, recipe=RECIPE + "[decision]\nlimit = 0.001\n", levels=7)
 
 
 @pytest.fixture(scope="session")

@@ -50,7 +50,7 @@ def read(page: str) -> Checker:
     return checker
 
 
-@pytest.fixture(scope="module", params=["pls", "band", "unvalidated", "hostile"])
+@pytest.fixture(scope="module", params=["pls", "band", "unvalidated", "audited", "undecided", "hostile"])
 def page(request):
     return render_page(request.getfixturevalue(request.param))
 
@@ -109,7 +109,8 @@ def test_sections_stand_in_order_each_once(pls):
     page = render_page(pls)
     anchors = [f"a1-{section.name}" if section.each_analyte else section.name for section in SECTIONS]
     assert re.findall(r'<section id="([^"]*)">', page) == anchors
-    assert len(re.findall(r"<svg ", page)) == 6  # as read, factors, agreement, errors, regression vector, limits
+    # as read, factors, agreement, errors, influence, ellipse, importance, regression vector, limits
+    assert len(re.findall(r"<svg ", page)) == 9
 
 
 def test_several_analytes_have_a_block_each(pls):

@@ -22,6 +22,15 @@ CASES = [(name, "pls") for name in BY_NAME] + [
     ("view", "band"),
     ("limits", "band"),
     ("limits", "unvalidated"),
+    ("answer", "audited"),
+    ("standards", "audited"),
+    ("standards", "unvalidated"),
+    ("diagnostics", "band"),
+    ("uncertainty", "audited"),
+    ("uncertainty", "unvalidated"),
+    ("detection", "band"),
+    ("decision", "audited"),
+    ("decision", "undecided"),
 ]
 
 

@@ -20,7 +20,13 @@ def paths(value: object, at: str = "") -> set[str]:
 
 def named(path: str, keys: dict[str, str]) -> bool:
     """Whether a path is documented; the names below a mapping are data, not keys."""
-    mappings = ("analytes[].cross_validation.choices", "provenance[].domain", "provenance[].versions", "keys")
+    mappings = (
+        "analytes[].cross_validation.choices",
+        "analytes[].audit.uncertainty.budget.shares",
+        "provenance[].domain",
+        "provenance[].versions",
+        "keys",
+    )
     if path.startswith(tuple(f"{mapping}." for mapping in mappings)):
         return True
     head, found, tail = path.partition("by_origin.")
@@ -50,15 +56,15 @@ def test_the_numbers_are_the_result_and_come_back(pls):
     ]
 
 
-def test_every_key_is_documented(pls, band, unvalidated):
-    for result in (pls, band, unvalidated):
+def test_every_key_is_documented(pls, band, unvalidated, audited):
+    for result in (pls, band, unvalidated, audited):
         record = json.loads(report_json(result))
         keys = record["keys"]
         assert {path for path in paths(record) if not named(path, keys)} == set()
         assert all(keys.values())
 
 
-def test_every_documented_key_exists(pls, make):
-    records = [json.loads(report_json(result)) for result in (pls, make(repeats=True))]
+def test_every_documented_key_exists(pls, make, audited, undecided):
+    records = [json.loads(report_json(result)) for result in (pls, make(repeats=True), audited, undecided)]
     existing = {path.replace("by_origin.spiked", "by_origin.*") for record in records for path in paths(record)}
     assert set(records[0]["keys"]) - existing == set()

@@ -101,8 +101,9 @@ def _about_calibration(result: AnalyteResult) -> list[str]:
         if len(crossed.choices) and factors == crossed.factor_counts[-1]:
             found.append(f"{factors} is the largest number of factors looked at; raise max_factors and look again.")
     limit = result.audit.decision
-    if limit is not None and not limit.decidable:
-        found.append(f"This method cannot decide this limit: {limit.remark}.")
+    if limit is not None and limit.remark:
+        why = limit.remark if limit.decidable else f"this method cannot decide this limit: {limit.remark}"
+        found.append(f"{why[:1].upper()}{why[1:]}.")
     named = [row.sample for row in result.audit.diagnostics.outstanding]
     if named:
         found.append(f"Calibration samples that stand out: {name_some(named)}. See the diagnostics.")

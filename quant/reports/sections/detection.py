@@ -14,7 +14,7 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
     more: list[Row] = [
         ("method standard deviation (ISO 8466-1)", found.method_sd, analyte.unit),
         ("the same over the mean content", found.method_cv, "%"),
-        ("noise of one point", found.signal_sd, found.signal_sd_source),
+        ("noise of one point", found.signal_sd, f"({found.signal_sd_source})"),
         ("standard error of a reference value", found.reference_sd, f"{analyte.unit} ({found.reference_sd_source})"),
         ("sensitivity", None if found.interval is None else found.interval.sensitivity, f"per {analyte.unit}"),
         ("selectivity", found.selectivity, ""),

@@ -14,7 +14,7 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
     return {
         "unit": analyte.unit,
         "parts": [
-            ("presentation of the sample", _root(parts.presentation)),
+            ("presentation of the sample", None if found.replicates is None else _root(parts.presentation)),
             ("calibration, at the mean leverage", _root(parts.calibration)),
             ("unexplained: model and matrix", _root(parts.unexplained)),
             ("laboratory value", _root(parts.laboratory)),
@@ -33,7 +33,7 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
         "budget": found.budget,
         "remarks": found.remarks,
         "free": analyte.audit.free_intervals,
-        "has_free": analyte.model.left_out is not None,
+        "has_free": analyte.model.left_out is not None and analyte.model.left_out.finite,
     }
 
 
