@@ -35,12 +35,12 @@ class RegionShare(Result):
     """One region of the axis, and what part of the predictions comes from it."""
 
     region: str = documented("Name of the region")
-    bands: tuple[str, ...] = documented("Its bands that lie on the axis, in words", "cm-1")
+    bands: tuple[str, ...] = documented("Its bands that lie on the axis, one entry a name, in words", "cm-1")
     ranges: tuple[tuple[float, float], ...] = documented(
         "The stretches of the axis it has got, low to high", "axis unit"
     )
     n_points: int = documented("Points in them")
-    n_contested: int = documented("Of these, points that lie in bands of a later region, too")
+    n_contested: int = documented("Of these, points that also lie in bands of the matrix, for the analyte")
     share: float = documented("cov(sum of b·x over its points, prediction)/var(prediction); may be negative")
 
 
@@ -78,16 +78,16 @@ def band_shares(evidence: Evidence, table: ChemistryTable | None) -> tuple[Regio
     free, found = np.ones(axis.size, dtype=bool), []
     for place, (name, bands) in enumerate(known):
         own = free if name == NOWHERE else claimed[place] & free
-        later = np.any([np.zeros_like(own), *claimed[place + 1 :]], axis=0)
+        rival = claimed[place + 1] & own if name == ANALYTE else np.zeros_like(own)
         free = free & ~own
         if own.any():
             found.append(
                 RegionShare(
                     region=name,
-                    bands=tuple(dict.fromkeys(_told(band) for band in bands if _in(wavenumbers, band).any())),
+                    bands=_told([band for band in bands if _in(wavenumbers, band).any()]),
                     ranges=_ranges(axis, own, runs),
                     n_points=int(own.sum()),
-                    n_contested=int((own & later).sum()),
+                    n_contested=int(rival.sum()),
                     share=float(shares[own].sum()),
                 )
             )
@@ -96,7 +96,7 @@ def band_shares(evidence: Evidence, table: ChemistryTable | None) -> tuple[Regio
 
 def why_no_shares(evidence: Evidence) -> str:
     """Say why no shares can be stated, or return an empty text."""
-    if evidence.vector is None or evidence.band_area:
+    if evidence.vector is None or evidence.vector.size != evidence.axis_after.size:
         return "the method has no regression vector"
     if evidence.model.axis.unit == "point":
         return "the axis counts points; bands need wavenumbers or wavelengths"
@@ -163,5 +163,9 @@ def _ranges(axis: FloatArray, mask: BoolArray, runs: Sequence[slice]) -> tuple[t
     return tuple(found)
 
 
-def _told(band: Band) -> str:
-    return f"{band.name} {band.low:g} to {band.high:g}"
+def _told(bands: Sequence[Band]) -> tuple[str, ...]:
+    """Return "aromatic ring 1575 to 1625, 1450 to 1525", one a name."""
+    by_name: dict[str, list[str]] = {}
+    for band in bands:
+        by_name.setdefault(band.name, []).append(f"{band.low:g} to {band.high:g}")
+    return tuple(f"{name} {', '.join(dict.fromkeys(ranges))}" for name, ranges in by_name.items())

@@ -95,7 +95,7 @@ def _calibrate_one(
     axis_after = axis_behind(unfitted, axis)
     most = factor_limit(recipe, make_folds(training, recipe.cross_validation), axis_after.size)
     analyte, values = training.analyte(name)
-    steps, full, processed = fit_pipeline(training, values, unfitted, build_method(recipe, axis_after, most))
+    steps, full, processed = fit_pipeline(training, values, unfitted, build_method(recipe, axis_after, most, name))
     factors, rule = _found(full, factors, rule)
     model = _model(recipe, training, crossed, steps, full.with_factors(factors), factors, processed, name)
     evidence, detection = equip(Evidence(recipe, model, training, values, crossed, processed, axis_after))
@@ -160,7 +160,7 @@ def _chosen(recipe: Recipe, crossed: CrossValidationResult) -> tuple[int, str]:
     """Return the number of factors and the rule behind it."""
     asked = recipe.regression.factors
     if not crossed.choices:
-        return crossed.factor_counts[-1], "a straight line"
+        return recipe.regression.fixed_terms(len(recipe.analyte))
     if isinstance(asked, int):
         return asked, "fixed in the recipe"
     return crossed.choices[asked], asked.replace("_", " ")

@@ -119,9 +119,9 @@ def _remarks(
         if declared and name not in found:
             remarks.append(f"None of the {name} lies where the calibration looks.")
     own = found.get(ANALYTE)
-    if own is not None and table is not None and table.matrix and own.n_contested:
+    if own is not None and own.n_contested:
         remarks.append(
-            f"{own.n_contested} of {own.n_points} points in {ANALYTE} may hold something else, too: they also lie in "
-            "bands of the matrix or of the air. They count as the analyte's."
+            f"{own.n_contested} of the {own.n_points} points in {ANALYTE} also lie in bands of the matrix; they count "
+            "as the analyte's."
         )
     return tuple(remarks)

@@ -7,6 +7,7 @@ from itertools import takewhile
 import numpy as np
 
 from quant.arrays import BoolArray, FloatArray, IntArray
+from quant.calibration.companions import with_companions
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.folds import Folds, make_folds
 from quant.checks import name_some
@@ -65,7 +66,7 @@ def cross_validate(samples: SampleSet, recipe: Recipe, analyte: str | None = Non
     most = factor_limit(recipe, folds, axis.size)
     tasks = [(repeat, labels == fold) for repeat, labels in enumerate(folds.repeats) for fold in np.unique(labels)]
     parts = [
-        (repeat, _left_out(samples, values, out, steps, build_method(recipe, axis, most)))
+        (repeat, _left_out(samples, values, out, steps, build_method(recipe, axis, most, substance.name)))
         for repeat, out in progress(tasks, f"cross-validating {substance.name}")
     ]
     return _collect(samples, substance, values, folds, factor_counts(recipe, most), parts)
@@ -124,7 +125,7 @@ def factor_limit(recipe: Recipe, folds: Folds, n_points: int) -> int:
     table = recipe.regression
     smallest = min(int(labels.size - np.bincount(labels).max()) for labels in folds.repeats)
     possible = min(smallest - 1, n_points)
-    if table.method != "pls":
+    if not table.on_factors:
         return 1
     if possible < 1:
         raise NotEnoughDataError(
@@ -145,10 +146,9 @@ def factor_limit(recipe: Recipe, folds: Folds, n_points: int) -> int:
 
 
 def factor_counts(recipe: Recipe, most: int) -> tuple[int, ...]:
-    """Return the numbers of factors that a cross-validation compares: 0 to `most`, or the one of a straight line."""
-    if recipe.regression.method == "pls":
-        return tuple(range(most + 1))
-    return (0,) if recipe.regression.through_origin else (1,)
+    """Return the numbers of factors that a cross-validation compares: 0 to `most`, or the one there is."""
+    table = recipe.regression
+    return tuple(range(most + 1)) if table.on_factors else (table.fixed_terms(len(recipe.analyte))[0],)
 
 
 def fit_pipeline(
@@ -164,10 +164,11 @@ def fit_pipeline(
     weights = samples.weights
     fitted, processed = fit_chain(steps, samples.spectra.values, values[samples.sample_index], weights)
     regression = unfitted_copy(method)
+    targets = with_companions(samples, values, method.companions)
     if method.averages_replicates:
-        regression.fit(samples.mean_by_sample(processed), values)
+        regression.fit(samples.mean_by_sample(processed), targets)
     else:
-        regression.fit(processed, values[samples.sample_index], sample_weight=weights)
+        regression.fit(processed, targets[samples.sample_index], sample_weight=weights)
     return fitted, regression, processed
 
 

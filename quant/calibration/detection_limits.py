@@ -10,8 +10,11 @@ from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.errors import NotEnoughDataError, ParameterError
 from quant.model.calibration import Calibration
 from quant.regression.band_area import BandArea
+from quant.regression.classical_least_squares import ClassicalLeastSquares
 from quant.result import Result, documented
 from quant.statistics.detection import (
+    NONCENTRAL_T,
+    QUANTIFICATION_FACTOR,
     DetectionLimits,
     critical_value,
     detection_limit,
@@ -124,6 +127,8 @@ def detect(
 
 def _of_line(model: Calibration, method: BandArea) -> DetectionResult:
     line = method.line_
+    if method.curve_ is not None or method.line_weights != "equal":
+        return _of_curve(model, method)
     found = detection_limits(line)
     sd, cv = method_standard_deviation(line)
     return _result(
@@ -136,10 +141,32 @@ def _of_line(model: Calibration, method: BandArea) -> DetectionResult:
     )
 
 
+def _of_curve(model: Calibration, method: BandArea) -> DetectionResult:
+    """Of weighted lines and quadratics: from the standard error of a result at zero, the weight there in it."""
+    freedom = model.uncertainty.degrees_of_freedom
+    zero = float(method.inverse_interval(method.signal_at([0.0]), model.uncertainty.t).standard_error[0])
+    found = DetectionLimits(
+        zero_sd=zero,
+        degrees_of_freedom=freedom,
+        readings=1,
+        alpha=0.05,
+        beta=0.05,
+        way=NONCENTRAL_T,
+        critical=critical_value(zero, freedom),
+        detection=detection_limit(zero, freedom),
+        quantification=QUANTIFICATION_FACTOR * zero,
+    )
+    limits = {"limit of quantification": found.quantification, "detection limit": found.detection}
+    return _result(model, line=found, limits=limits)
+
+
 def _of_vector(
     model: Calibration, values: FloatArray, mean: FloatArray, crossed: CrossValidationResult
 ) -> DetectionResult | None:
-    coefficients = getattr(model.method, "coefficients_", None)
+    method = model.method
+    if isinstance(method, ClassicalLeastSquares):
+        method = method.unconstrained()  # holding at zero hides the scatter of blanks
+    coefficients = getattr(method, "coefficients_", None)
     if coefficients is None:
         return None
     known, centred = model.uncertainty, values - values.mean()

@@ -163,13 +163,13 @@ def _of_the_line(e: Evidence) -> tuple[MandelTest | None, LackOfFitTest | None]:
     signals = e.model.method.signals(e.mean)
     return (
         _if_possible(lambda: mandel_test(e.values, signals)),
-        _if_possible(lambda: lack_of_fit_test(e.values, signals)),
+        _if_possible(lambda: lack_of_fit_test(e.values, signals)) if e.model.method.curve_ is None else None,
     )
 
 
 def _joint(e: Evidence, predicted: FloatArray, reference: FloatArray) -> JointTest | None:
-    """Reference on predicted for PLS, predicted on reference for band area."""
-    if e.band_area:
+    """Reference on predicted for PLS and PCR, predicted on reference for classical calibrations."""
+    if e.classical:
         return _if_possible(lambda: joint_test(reference, predicted))
     return _if_possible(lambda: joint_test(predicted, reference))
 

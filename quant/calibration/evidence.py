@@ -88,5 +88,10 @@ class Evidence:
 
     @property
     def band_area(self) -> bool:
-        """Whether a band is read off a line: a classical calibration, whose predictions scatter about the truth."""
+        """Whether a band is read off a line."""
         return isinstance(self.model.method, BandArea)
+
+    @property
+    def classical(self) -> bool:
+        """Whether spectra are a function of the values, read backwards: predictions scatter about the truth."""
+        return self.model.method.classical

@@ -87,7 +87,7 @@ def left_out_models(
             vectors=short,
             offsets=offsets,
             fold=fold,
-            residuals=np.abs(errors),
+            residuals=errors,
             left_out=left_out,
             level=np.array([level.intercept, level.slope, level.least]),
         ),
@@ -116,6 +116,8 @@ def _difference(
     """Difference of the regression vector, and of the prediction at features zero, of a model without some samples."""
     _, found, _ = fit_pipeline(prepared.subset(kept), values[kept], [], unfitted_copy(method))
     if isinstance(method, BandArea) and isinstance(found, BandArea):
+        if method.curve_ is not None:
+            return None
         line, own = method.line_, found.line_
         offset = line.intercept / line.slope - own.intercept / own.slope
         return np.array([1 / own.slope - 1 / line.slope]), offset

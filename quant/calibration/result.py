@@ -93,8 +93,14 @@ class AnalyteResult(Result):
                 *self.cross_validation.guard_notes,
                 *left_out,
                 *self.remarks,
+                *self._chemistry_told(),
             ]
         )
+
+    def _chemistry_told(self) -> list[str]:
+        """The verdict where the recipe says something of chemistry."""
+        found = self.chemistry
+        return [str(found)] if found is not None and (found.declared or found.test is not None) else []
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)

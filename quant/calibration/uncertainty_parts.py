@@ -1,7 +1,7 @@
 """What the error of a calibration is made of, and what would make it smaller."""
 
 import math
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -122,16 +122,23 @@ def _corrected(rmse: float, n_samples: int, e: Evidence) -> CorrectedRmsep | Non
 def _budget(e: Evidence, scatter: float, unexplained: float, laboratory: float) -> ErrorBudget | None:
     if unexplained < 0:
         return None
+    known = e.model.uncertainty
     try:
-        return error_budget(
+        found = error_budget(
             Situation(
                 presentation=scatter,
                 unexplained=unexplained,
                 laboratory=laboratory,
                 n_standards=len(e.training),
                 n_factors=max(e.n_terms - 1, 0),
-                replicates=e.model.uncertainty.replicates,
+                replicates=known.replicates,
             )
         )
     except NotEnoughDataError:
         return None
+    # What is not known cannot be told to help or not.
+    silent = [
+        *([] if known.replicate_sd is not None else ["twice the replicates"]),
+        *([] if known.laboratory_error is not None else ["twice the laboratory values a standard"]),
+    ]
+    return replace(found, steps=tuple(step for step in found.steps if step.name not in silent))

@@ -12,7 +12,6 @@ from quant.model.calibration import Calibration
 from quant.prediction.applicability import check_acquisition, judge
 from quant.prediction.predict import evaluate
 from quant.recipe.audit_schema import AcceptanceTable
-from quant.regression.band_area import BandArea
 from quant.result import Result, documented
 from quant.spectra.concentration import refuse_other_scale
 from quant.spectra.sample_set import NOT_STATED, SampleSet
@@ -129,7 +128,7 @@ def validate(
 def regression_direction(model: Calibration) -> str:
     """Return which way the line of predicted and reference values is fitted for a model.
 
-    Inverse predictions (PLS) scatter about the truth, so the reference is regressed on them; a band area is a classical
-    calibration, whose predictions scatter about the reference: the other way round.
+    Inverse predictions (PLS) scatter about the truth, so the reference is regressed on them; predictions of classical
+    calibrations (band area, classical least squares) scatter about the reference: the other way round.
     """
-    return PREDICTED_ON_REFERENCE if isinstance(model.method, BandArea) else REFERENCE_ON_PREDICTED
+    return PREDICTED_ON_REFERENCE if model.method.classical else REFERENCE_ON_PREDICTED

@@ -7,7 +7,6 @@ import click
 from quant.errors import ExitCode
 from quant.files import write_text
 from quant.model.storage import load_model
-from quant.prediction.decisions import decision_rule
 from quant.prediction.predict import predict
 from quant.readers.options import ReadingOptions
 from quant.readers.read import read_spectra
@@ -58,6 +57,8 @@ def command(
     calibration = load_model(model)
     rule, own = None, lower_limit if limit is None else limit
     if own is not None:
+        from quant.prediction.decisions import decision_rule  # deferred: start-up
+
         rule = decision_rule(calibration, own, kind="lower" if limit is None else "upper", risk=risk)
     reading = dict(calibration.reading)
     if any(naming.values()):

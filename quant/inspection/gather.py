@@ -13,7 +13,8 @@ from quant.preprocessing.chain import apply_chain, fit_chain
 from quant.readers.read import find_files, read_spectra
 from quant.recipe.load import read_recipe_reference
 from quant.recipe.pipeline import axis_behind, build_steps
-from quant.recipe.schema import BandTable, Recipe
+from quant.recipe.regression_schema import BandTable
+from quant.recipe.schema import Recipe
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.sample_ids import expand_ids
 from quant.spectra.sample_set import SampleSet, pair_samples

@@ -9,6 +9,7 @@ from quant.inspection.robust import FALSE_ALARM, FEWEST, largest_z, robust_sd
 from quant.units import AXIS_UNITS
 
 WINDOWS = 9  # stretches of the axis, each with the same share of slope; composition moves one, the axis all
+STEADY = 0.1  # of a point's spacing: where the others scatter by more, composition moves bands, and nothing can be told
 LEAST_SHIFT = 0.1  # of a point's spacing: less hardly matters
 
 
@@ -18,6 +19,8 @@ def check_shift(material: Material) -> list[Finding]:
     if len(a) < FEWEST or a.shape[1] < 10 * WINDOWS:
         return []
     shifts, alike = axis_shifts(a, axis.values)
+    if robust_sd(shifts) > STEADY * axis.spacing:
+        return []
     centre = float(np.median(shifts))
     spread = max(robust_sd(shifts), LEAST_SHIFT * axis.spacing / largest_z(len(a), both_sides=True))
     out = alike & (np.abs(shifts - centre) > largest_z(len(a), both_sides=True) * spread)

@@ -169,6 +169,8 @@ def check_counts(material: Material) -> list[Finding]:
                     )
                 )
             continue
+        if not table.on_factors:
+            continue
         factors = table.factors if isinstance(table.factors, int) else None
         wanted = LEAST_CALIBRATION if factors is None else max(LEAST_CALIBRATION, 6 * (factors + 1))
         if n < wanted:
@@ -206,7 +208,7 @@ def _validation_counts(material: Material) -> list[Finding]:
         return [] if len(material.readings) > 1 else [_no_validation()]
     n = len(validation)
     factors = table.factors if isinstance(table.factors, int) else 1
-    wanted = max(LEAST_VALIDATION, 4 * factors) if table.method == "pls" else FEW_VALIDATION
+    wanted = max(LEAST_VALIDATION, 4 * factors) if table.on_factors else FEW_VALIDATION
     if n >= wanted:
         return []
     kind = INTERNAL if material.recipe.validation is not None and material.recipe.validation.split else "validation"
@@ -218,7 +220,7 @@ def _validation_counts(material: Material) -> list[Finding]:
             title=f"Only {plural(n, 'sample')} in the {kind}",
             samples=(),
             evidence=f"RMSEP from {n} is known to {signed_percent(low)} to {signed_percent(high)} (95 %)"
-            + (f"; {wanted} are wanted (ASTM E1655, from memory)." if table.method == "pls" else "."),
+            + (f"; {wanted} are wanted (ASTM E1655, from memory)." if table.on_factors else "."),
             advice="Prepare more, separately from the calibration and over its whole range.",
         )
     ]

@@ -11,7 +11,7 @@ from quant.inspection.left_out import best_smoother, make_smoothers, studentised
 from quant.inspection.material import Material
 from quant.inspection.robust import FALSE_ALARM, FEWEST, largest_z, robust_z
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
-from quant.regression.bands import place_bands
+from quant.spectra.bands import place_bands
 
 PLAIN = 0.5  # left-out error falls to this share of what it was: more than a suspicion
 USEFUL = 0.5  # share of the values' variance that spectra have to explain, left out, before they may contradict any

@@ -144,7 +144,8 @@ class Calibration:
     def __str__(self) -> str:
         """Analyte, method, size, calibrated range, state."""
         unit, limits = self.analyte.printed_unit, self.limits
-        kind = f"PLS, {self.factors} factors" if self.factors > 1 else type(self.method).__name__
+        name = type(self.method).__name__
+        kind = f"{name}, {self.factors} factors" if len(self.method.factor_counts_) > 2 else name
         return (
             f"{self.analyte.name}: {kind}, {self.n_samples} samples, "
             f"{limits.lowest:g} to {limits.highest:g} {unit}, state: {self.state}"

@@ -5,7 +5,7 @@ for a band area the band's signal. Only differences to the whole model are kept,
 """
 
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Self
 
 import numpy as np
 
@@ -14,9 +14,6 @@ from quant.errors import ParameterError
 from quant.regression.band_area import BandArea
 from quant.regression.method import Method
 from quant.statistics.conformal import Intervals, LevelFunction, jackknife_plus, least_samples
-
-PLAIN = ("way", "probability")
-ARRAYS = ("vectors", "offsets", "fold", "residuals", "left_out", "level")
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -36,7 +33,7 @@ class LeftOutModels:
     fold : array of int, shape (n_samples,)
         The model that each calibration sample was left out of.
     residuals, left_out : arrays of shape (n_samples,)
-        Left-out errors, their signs gone, and left-out predictions. [unit of the analyte]
+        Left-out errors (predicted - reference) and left-out predictions. [unit of the analyte]
     level : array of shape (3,)
         Intercept, slope and floor of the line that tells the size of errors at a level.
     """
@@ -55,7 +52,8 @@ class LeftOutModels:
         fits = self.offsets.shape == (n_models,) and self.fold.shape == self.left_out.shape == (n_samples,)
         if not (fits and self.level.shape == (3,) and n_samples and 0 <= self.fold.min() <= self.fold.max() < n_models):
             raise ParameterError("The left-out models and their residuals do not fit together; expected one fold each.")
-        if not all(np.isfinite(getattr(self, name)).all() for name in ARRAYS):
+        numbers = (self.vectors, self.offsets, self.residuals, self.left_out, self.level)
+        if not all(np.isfinite(array).all() for array in numbers):
             raise ParameterError("The left-out models hold numbers that are not finite. Calibrate again.")
 
     def predictions(self, method: Method, mean: FloatArray, value: FloatArray) -> FloatArray:
@@ -106,8 +104,25 @@ class LeftOutModels:
         return f"{self.way}, {100 * self.probability:g} %, marginal coverage"
 
     def state(self) -> tuple[dict[str, Any], dict[str, AnyArray]]:
-        """Return plain values and arrays, for the manifest."""
-        return {name: getattr(self, name) for name in PLAIN}, {name: getattr(self, name) for name in ARRAYS}
+        """Return plain values and arrays for the manifest; few arrays, since each costs everyday prediction time."""
+        samples = np.column_stack([self.fold, self.residuals, self.left_out])
+        plain = {"way": self.way, "probability": self.probability, "level": self.level.tolist()}
+        return plain, {"vectors": self.vectors, "offsets": self.offsets, "samples": samples}
+
+    @classmethod
+    def from_state(cls, plain: dict[str, Any], arrays: dict[str, AnyArray]) -> Self:
+        """Return what `state` described."""
+        fold, residuals, left_out = arrays["samples"].T
+        return cls(
+            way=plain["way"],
+            probability=plain["probability"],
+            vectors=arrays["vectors"],
+            offsets=arrays["offsets"],
+            fold=fold.astype(np.intp),
+            residuals=residuals,
+            left_out=left_out,
+            level=np.array(plain["level"]),
+        )
 
 
 def linear_features(method: Method, mean: FloatArray) -> FloatArray:

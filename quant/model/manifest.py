@@ -114,10 +114,7 @@ def _split(estimator: Estimator | LeftOutModels, prefix: str, arrays: Arrays) ->
 
 
 def _left_out(plain: Mapping[str, Any] | None, arrays: Arrays) -> LeftOutModels | None:
-    if not plain:
-        return None
-    values: dict[str, Any] = {**plain, **_own(arrays, "left_out")}
-    return LeftOutModels(**values)
+    return LeftOutModels.from_state(dict(plain), _own(arrays, "left_out")) if plain else None
 
 
 def _own(arrays: Arrays, prefix: str) -> Arrays:

@@ -91,7 +91,10 @@ def plot_calibration_line(result: AnalyteResult, ax: Axes | None = None) -> Axes
     if picture.signals is not None and picture.line is not None:
         slope, intercept = picture.line
         ax.plot(result.reference, picture.signals, **{**FITTED.options(), "label": "calibration samples"}, zorder=3)
-        ax.axline((0.0, intercept), slope=slope, color=INK, linewidth=LINE, zorder=2).set_label("calibration line")
+        if picture.curve is not None:
+            ax.plot(*picture.curve, color=INK, linewidth=LINE, zorder=2, label="calibration quadratic")
+        else:
+            ax.axline((0.0, intercept), slope=slope, color=INK, linewidth=LINE, zorder=2).set_label("calibration line")
         ax.set_xlim(left=min(0.0, float(result.reference.min())))
         ax.set_ylim(bottom=min(0.0, intercept, float(picture.signals.min())))
         legend(ax, loc="upper left")

@@ -1,7 +1,7 @@
 """Decisions on predictions: accept, reject, undecided, and what would settle it."""
 
 import math
-from dataclasses import dataclass
+from typing import Any
 
 from quant.checks import one_of
 from quant.errors import ParameterError
@@ -19,20 +19,10 @@ from quant.statistics.conformity import (
 HIGHEST_RISK = 0.5  # beyond it a result is accepted that rather does not conform than does
 
 
-@dataclass(frozen=True, kw_only=True)
-class Verdict:
-    """What was decided on one sample, and in words what would settle it or why nothing was decided."""
-
-    outcome: str
-    guard_band: float | None = None  # [unit of the analyte]
-    conformity: float | None = None  # probability that the true value conforms
-    remark: str = ""
-
-
 def decide_sample(
     model: Calibration, rule: DecisionRule, *, value: float, uncertainty: float, n_spectra: int, applicable: bool
-) -> Verdict:
-    """Decide one sample.
+) -> dict[str, Any]:
+    """Decide one sample; what was decided comes by the names of the fields of `Prediction`.
 
     Parameters
     ----------
@@ -47,7 +37,8 @@ def decide_sample(
         Whether the model applies to the spectrum at all.
     """
     if not (math.isfinite(uncertainty) and math.isfinite(value)):
-        return Verdict(outcome=CANNOT_DECIDE, remark="the uncertainty of this value has no bound")
+        remark = "the uncertainty of this value has no bound"
+        return {"decision": CANNOT_DECIDE, "limit": rule.limit, "decision_remark": remark}
     found = decide(
         value,
         uncertainty,
@@ -64,7 +55,14 @@ def decide_sample(
         remark = f"the limit lies below the {model.smallest_from} of {least}"
     elif found.outcome == UNDECIDED:
         remark = _settle(model, rule, value, uncertainty, n_spectra)
-    return Verdict(outcome=found.outcome, guard_band=found.guard_band, conformity=found.conformity, remark=remark)
+    return {
+        "decision": found.outcome,
+        "limit": rule.limit,
+        "uncertainty": uncertainty,
+        "guard_band": found.guard_band,
+        "conformity": found.conformity,
+        "decision_remark": remark,
+    }
 
 
 def _settle(model: Calibration, rule: DecisionRule, value: float, uncertainty: float, n_spectra: int) -> str:

@@ -2,6 +2,7 @@
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -9,10 +10,8 @@ from quant.arrays import FloatArray, IntArray
 from quant.model.calibration import Calibration
 from quant.model.decision_rule import DecisionRule
 from quant.prediction.applicability import NOT_APPLICABLE, check_acquisition, judge
-from quant.prediction.decisions import Verdict, decide_sample
 from quant.prediction.result import Prediction, PredictionResult
 from quant.prediction.uncertainty import (
-    FreeInterval,
     error_parts,
     fewer_replicates,
     free_intervals,
@@ -64,9 +63,10 @@ def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | Non
     index = np.array([number[sample] for sample in aligned.sample_ids], dtype=np.intp)
     processed, rule = model.process(aligned.values), rule or model.decision
     found = evaluate(model, processed, index, len(samples))
-    free = free_intervals(model, mean_by_sample(processed, index, len(samples)), found.value)
+    mean = mean_by_sample(processed, index, len(samples))
+    free, own = free_intervals(model, mean, found.value), model.method.remarks_each(mean)
     rows = tuple(
-        _row(model, sample, found, i, _remarks(model, aligned, np.flatnonzero(index == i)), free[i], rule)
+        _row(model, sample, found, i, _remarks(model, aligned, np.flatnonzero(index == i), own[i]), free[i], rule)
         for i, sample in enumerate(samples)
     )
     told = rule.told(model.analyte.printed_unit) if rule else ""
@@ -112,20 +112,25 @@ def _row(
     found: Evaluation,
     i: int,
     remarks: tuple[str, ...],
-    free: FreeInterval,
+    free: dict[str, Any],
     rule: DecisionRule | None,
 ) -> Prediction:
     value, error, low, high = (float(a[i]) for a in (found.value, found.standard_error, found.low, found.high))
     residual, leverage, count = float(found.residual[i]), float(found.leverage[i]), int(found.count[i])
     judged = judge(model.limits, residual=residual, leverage=leverage, value=value, standard_error=error)
     true = true_value_interval(model, value, error, low, high)
-    spread, parts = float(found.spread[i]), error_parts(model, error, leverage, count)
-    uncertainty = standard_uncertainty(model, error) if rule else None
-    verdict = Verdict(outcome="")
-    if rule is not None and uncertainty is not None:
-        applicable = judged.verdict != NOT_APPLICABLE
-        verdict = decide_sample(
-            model, rule, value=value, uncertainty=uncertainty, n_spectra=count, applicable=applicable
+    spread = float(found.spread[i])
+    decided: dict[str, Any] = {"decision": ""}
+    if rule is not None:
+        from quant.prediction.decisions import decide_sample  # deferred: start-up, most models have no limit
+
+        decided = decide_sample(
+            model,
+            rule,
+            value=value,
+            uncertainty=standard_uncertainty(model, error),
+            n_spectra=count,
+            applicable=judged.verdict != NOT_APPLICABLE,
         )
     return Prediction(
         sample=sample,
@@ -138,21 +143,9 @@ def _row(
         true_low=None if isinstance(true, str) else true[0],
         true_high=None if isinstance(true, str) else true[1],
         true_note=true if isinstance(true, str) else "",
-        free_low=free.low,
-        free_high=free.high,
-        scaled_low=free.scaled_low,
-        scaled_high=free.scaled_high,
-        free_note=free.note,
-        part_presentation=parts.presentation,
-        part_calibration=parts.calibration,
-        part_laboratory=parts.laboratory,
-        part_unexplained=parts.unexplained,
-        decision=verdict.outcome,
-        limit=rule.limit if rule else None,
-        uncertainty=uncertainty,
-        guard_band=verdict.guard_band,
-        conformity=verdict.conformity,
-        decision_remark=verdict.remark,
+        **free,
+        **error_parts(model, error, leverage, count),
+        **decided,
         applicability=judged.verdict,
         reasons=judged.reasons,
         residual=residual / model.limits.residual_warn,
@@ -164,9 +157,11 @@ def _row(
     )
 
 
-def _remarks(model: Calibration, spectra: SpectraSet, rows: Sequence[int] | IntArray) -> tuple[str, ...]:
+def _remarks(model: Calibration, spectra: SpectraSet, rows: Sequence[int] | IntArray, own: str) -> tuple[str, ...]:
     notes = [spectra.notes[i] for i in rows]
     found = [f"{note} not stated" for note in model.domain if not all(row.get(note) for row in notes)]
     if any("resampled" in row for row in notes):
         found.append("resampled onto the model's axis")
+    if own:
+        found.append(own)
     return tuple(found)

@@ -7,8 +7,9 @@ from dataclasses import dataclass
 
 from quant.prediction.applicability import NOT_APPLICABLE
 from quant.result import Result, documented
-from quant.statistics.conformity import ACCEPT
 from quant.text_table import format_columns
+
+ACCEPT = "accept"  # as `quant.statistics.conformity` has it, which is loaded only where there is a limit
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -50,13 +51,19 @@ class Prediction(Result):
     decision: str = documented(
         "accept, reject, undecided, or why nothing was decided; empty where the model has no limit"
     )
-    limit: float | None = documented("The limit decided against", "unit of the analyte")
+    limit: float | None = documented("The limit decided against", "unit of the analyte", default=None)
     uncertainty: float | None = documented(
-        "Standard uncertainty decided with: against the true value where it can be told", "unit of the analyte"
+        "Standard uncertainty decided with: against the true value where it can be told",
+        "unit of the analyte",
+        default=None,
     )
-    guard_band: float | None = documented("Guard band for the risk accepted", "unit of the analyte")
-    conformity: float | None = documented("Probability that the true value conforms, where a decision was made")
-    decision_remark: str = documented("What would settle an undecided case, or why the method cannot decide")
+    guard_band: float | None = documented("Guard band for the risk accepted", "unit of the analyte", default=None)
+    conformity: float | None = documented(
+        "Probability that the true value conforms, where a decision was made", default=None
+    )
+    decision_remark: str = documented(
+        "What would settle an undecided case, or why the method cannot decide", default=""
+    )
     applicability: str = documented("applicable, warning, or not applicable: then the value must not be used")
     reasons: tuple[str, ...] = documented("Why not plainly applicable")
     residual: float = documented("Residual spectrum as a multiple of its warning limit")

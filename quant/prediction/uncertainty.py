@@ -1,7 +1,7 @@
 """What the uncertainty of a prediction is made of, and the intervals beside the one by Student's t."""
 
 import math
-from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 
@@ -12,30 +12,6 @@ from quant.statistics.intervals import NOT_RESOLVABLE, true_value_share
 
 NOT_STATED = "no laboratory error stated"
 NO_LEFT_OUT_MODELS = "the model holds no left-out models"
-
-
-@dataclass(frozen=True, kw_only=True)
-class ErrorShares:
-    """Parts of the standard error against a new reference result, as standard errors; their squares add up.
-
-    None where a part is not known. [unit of the analyte]
-    """
-
-    presentation: float | None
-    calibration: float
-    laboratory: float | None
-    unexplained: float | None
-
-
-@dataclass(frozen=True, kw_only=True)
-class FreeInterval:
-    """Distribution-free intervals of one sample, of constant width and scaled by level; None where there are none."""
-
-    low: float | None
-    high: float | None
-    scaled_low: float | None
-    scaled_high: float | None
-    note: str
 
 
 def fewer_replicates(model: Calibration, count: IntArray) -> FloatArray:
@@ -74,8 +50,10 @@ def standard_uncertainty(model: Calibration, error: float) -> float:
     return error * share if isinstance(share, float) else error
 
 
-def error_parts(model: Calibration, error: float, leverage: float, count: int) -> ErrorShares:
+def error_parts(model: Calibration, error: float, leverage: float, count: int) -> dict[str, Any]:
     """Split a standard error: var = presentation + calibration + laboratory + unexplained.
+
+    The parts come by the names of the fields of `Prediction`, None where one is not known. [unit of the analyte]
 
     Parameters
     ----------
@@ -94,16 +72,16 @@ def error_parts(model: Calibration, error: float, leverage: float, count: int) -
     extra = float(fewer_replicates(model, np.array([count]))[0])
     calibration = (error**2 - extra) * leverage / (1 + leverage)  # s0²·h
     rest = error**2 - calibration - (presentation or 0.0) ** 2 - (laboratory or 0.0) ** 2
-    return ErrorShares(
-        presentation=presentation,
-        calibration=math.sqrt(max(calibration, 0.0)),
-        laboratory=laboratory,
-        unexplained=math.sqrt(rest) if rest >= 0 else None,
-    )
+    return {
+        "part_presentation": presentation,
+        "part_calibration": math.sqrt(max(calibration, 0.0)),
+        "part_laboratory": laboratory,
+        "part_unexplained": math.sqrt(rest) if rest >= 0 else None,
+    }
 
 
-def free_intervals(model: Calibration, mean: FloatArray, value: FloatArray) -> list[FreeInterval]:
-    """Return the distribution-free intervals of samples, one entry a sample.
+def free_intervals(model: Calibration, mean: FloatArray, value: FloatArray) -> list[dict[str, Any]]:
+    """Return the distribution-free intervals, one entry a sample, by the names of the fields of `Prediction`.
 
     Parameters
     ----------
@@ -113,26 +91,20 @@ def free_intervals(model: Calibration, mean: FloatArray, value: FloatArray) -> l
     value : array of shape (n_samples,)
         Predictions. [unit of the analyte]
     """
+    ends: list[tuple[float | None, ...]]
     if model.left_out is None:
-        note = model.left_out_note or NO_LEFT_OUT_MODELS
-        return [FreeInterval(low=None, high=None, scaled_low=None, scaled_high=None, note=note)] * value.size
-    plain = model.left_out.intervals(model.method, mean, value)
-    scaled = model.left_out.intervals(model.method, mean, value, scaled=True)
-    ends = zip(plain.low, plain.high, scaled.low, scaled.high, strict=True)
-    return [
-        FreeInterval(
-            low=_bound(low),
-            high=_bound(high),
-            scaled_low=_bound(scaled_low),
-            scaled_high=_bound(scaled_high),
-            note=model.left_out.note,
-        )
-        for low, high, scaled_low, scaled_high in ends
-    ]
+        ends, note = [(None,) * 4] * value.size, model.left_out_note or NO_LEFT_OUT_MODELS
+    else:
+        plain = model.left_out.intervals(model.method, mean, value)
+        scaled = model.left_out.intervals(model.method, mean, value, scaled=True)
+        bounds = np.array([*plain, *scaled]).T.tolist()
+        ends, note = [tuple(map(_bound, row)) for row in bounds], model.left_out.note
+    names = ("free_low", "free_high", "scaled_low", "scaled_high")
+    return [{**dict(zip(names, row, strict=True)), "free_note": note} for row in ends]
 
 
 def _bound(end: float) -> float | None:
-    return float(end) if math.isfinite(end) else None
+    return end if math.isfinite(end) else None
 
 
 def _true_share(model: Calibration, error: float) -> float | str:

@@ -9,8 +9,6 @@ from quant.chemistry.bands import Band, named_bands
 from quant.errors import ParameterError
 from quant.recipe.table import DEFAULTS, Table, Text
 
-STATED = "stated in the recipe"
-
 Wavenumber = Annotated[FiniteFloat, Field(gt=0)]
 Range = Annotated[list[Wavenumber], Field(min_length=2, max_length=2)]
 Bands = list[Text | Wavenumber | Range]
@@ -50,25 +48,25 @@ class ChemistryTable(Table):
 
     def analyte_bands(self) -> tuple[Band, ...]:
         """Return the analyte's bands, positions widened. [cm⁻¹]"""
-        return self._resolved(self.analyte, "analyte")
+        return self._resolved(self.analyte)
 
     def matrix_bands(self) -> tuple[Band, ...]:
         """Return the bands of the rest of the samples, positions widened. [cm⁻¹]"""
-        return self._resolved(self.matrix, "matrix")
+        return self._resolved(self.matrix)
 
-    def _resolved(self, entries: Bands, whose: str) -> tuple[Band, ...]:
+    def _resolved(self, entries: Bands) -> tuple[Band, ...]:
         return tuple(
             band if band.low < band.high else _widened(band, self.half_width)
             for entry in entries
-            for band in _bands_of(entry, whose)
+            for band in _bands_of(entry)
         )
 
 
-def _bands_of(entry: str | float | list[float], whose: str) -> tuple[Band, ...]:
+def _bands_of(entry: str | float | list[float]) -> tuple[Band, ...]:
     if isinstance(entry, str):
         return named_bands(entry)
     ends = entry if isinstance(entry, list) else [entry]
-    return (Band(whose, min(ends), max(ends), source=STATED),)
+    return (Band("stated", min(ends), max(ends), source="stated in the recipe"),)
 
 
 def _widened(band: Band, half_width: float) -> Band:

@@ -9,7 +9,9 @@ from quant.preprocessing.chain import chain_axes, place_on_axis
 from quant.recipe.schema import Recipe
 from quant.recipe.steps import make_step
 from quant.regression.band_area import BandArea
+from quant.regression.classical_least_squares import ClassicalLeastSquares
 from quant.regression.method import Method
+from quant.regression.pcr import PCR
 from quant.regression.pls import PLS
 from quant.spectra.axis import SpectralAxis
 from quant.units import QUANTITIES
@@ -50,14 +52,40 @@ def axis_behind(steps: Sequence[Step], axis: SpectralAxis) -> FloatArray:
     return chain_axes(steps, axis.values)[-1]
 
 
-def build_method(recipe: Recipe, axis_after_steps: FloatArray, max_factors: int) -> Method:
-    """Return the recipe's regression, not yet fitted."""
+def build_method(recipe: Recipe, axis_after_steps: FloatArray, max_factors: int, analyte: str | None = None) -> Method:
+    """Return the recipe's regression, not yet fitted.
+
+    Parameters
+    ----------
+    recipe : Recipe
+    axis_after_steps : array of shape (n_points_after,)
+        [axis unit]
+    max_factors : int
+        The most factors, of a method that has any.
+    analyte : str, optional
+        The analyte to predict; default: the first. The others are components beside it.
+    """
     table = recipe.regression
     if table.method == "pls":
         return PLS(n_factors=max_factors)
+    if table.method == "pcr":
+        return PCR(n_factors=max_factors)
+    if table.method == "classical_least_squares":
+        names = [entry.name for entry in recipe.analyte]
+        own = names[0] if analyte is None else analyte
+        return ClassicalLeastSquares(
+            components=[name for name in [*names, *table.components] if name != own],
+            background=table.background,
+            baseline=table.baseline,
+            non_negative=table.non_negative,
+            axis=axis_after_steps,
+        )
     return BandArea(
         bands=[band.model_dump(exclude_none=True) for band in table.bands or []],
         reference_band=table.reference_band.model_dump(exclude_none=True) if table.reference_band else None,
         through_origin=table.through_origin,
         axis=axis_after_steps,
+        curve=table.curve,
+        line_weights=table.line_weights,
+        sd_column=table.sd_column,
     )

@@ -9,6 +9,7 @@ from quant.readers.options import ReadingOptions
 from quant.recipe.audit_schema import Acceptances, Decisions, UncertaintyTable, check_analytes
 from quant.recipe.chemistry_schema import Chemistries, check_chemistry
 from quant.recipe.reference_schema import AnalyteTable, ReferenceSection
+from quant.recipe.regression_schema import RegressionTable, check_regression
 from quant.recipe.table import DEFAULTS, Positive, Table, Text
 
 
@@ -75,54 +76,6 @@ class ExcludeTable(Table):
 
     samples: list[Text] = Field(min_length=1, description='Sample IDs; ranges such as "S08..S11" are written out.')
     reason: Text = Field(description="Why.")
-
-
-class BandTable(Table):
-    """A band: where its signal is taken, and above which baseline."""
-
-    signal: Literal["area", "height", "height_at"] = Field(
-        "area", description="Area, greatest height, or height at a position."
-    )
-    range: list[float] | None = Field(None, min_length=2, max_length=2, description="From, to. [axis unit]")
-    position: float | None = Field(None, description="height_at: the position. [axis unit]")
-    baseline: list[float] | None = Field(
-        None,
-        min_length=2,
-        max_length=2,
-        description="Two positions that carry the straight baseline; none: no baseline. [axis unit]",
-    )
-
-
-class RegressionTable(Table):
-    """[regression]: the method and its size."""
-
-    method: Literal["pls", "band_area"] = Field(DEFAULTS["regression"]["method"], description="PLS or band area.")
-    max_factors: Positive | Literal["auto"] = Field(
-        DEFAULTS["regression"]["max_factors"], description="pls: largest number of factors looked at."
-    )
-    factors: Positive | Literal["one_standard_error", "minimum", "f_ratio", "randomisation"] = Field(
-        DEFAULTS["regression"]["factors"],
-        description="pls: the rule that chooses the number of factors, or the number.",
-    )
-    bands: list[BandTable] | None = Field(None, description="band_area: bands whose signals are summed.")
-    reference_band: BandTable | None = Field(
-        None, description="band_area: band whose signal divides (internal standard, path)."
-    )
-    through_origin: bool = Field(
-        DEFAULTS["regression"]["through_origin"], description="band_area: line through the origin."
-    )
-
-    @model_validator(mode="after")
-    def _belongs_together(self) -> "RegressionTable":
-        given = self.model_fields_set
-        if self.method == "band_area" and not self.bands:
-            raise ValueError('method = "band_area" needs bands = [{ signal = "area", range = [from, to] }]')
-        foreign = given & (
-            {"bands", "reference_band", "through_origin"} if self.method == "pls" else {"max_factors", "factors"}
-        )
-        if foreign:
-            raise ValueError(f'{", ".join(sorted(foreign))} does not belong to method = "{self.method}"; remove it')
-        return self
 
 
 class CrossValidationTable(Table):
@@ -210,6 +163,7 @@ class Recipe(Table):
             raise ValueError(f"more than one [[analyte]] is called {', '.join(twice)}; expected one each")
         check_analytes("acceptance", self.acceptance, names)
         check_analytes("decision", self.decision, names)
+        check_regression(self.regression, names, [str(table.get("step")) for table in self.preprocessing])
         check_chemistry(self.chemistry, names)
         return self
 

@@ -10,13 +10,14 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import one_of
 from quant.errors import NotEnoughDataError, ParameterError
-from quant.regression.bands import BandSet, BandSpec, place_bands
 from quant.regression.line_weights import LAWS, level_table, standard_weights, told_weight, weight_at
 from quant.regression.method import Method
+from quant.spectra.bands import BandSet, BandSpec, place_bands
 from quant.statistics.curve import (
     QuadraticFit,
     check_branch,
     curve_leverage,
+    curve_value,
     fit_quadratic,
     inverse_quadratic,
     inverse_quadratic_interval,
@@ -34,7 +35,7 @@ from quant.statistics.straight_line import (
 
 
 class BandArea(Method):
-    """Line of a band's signal against concentration (Beer-Lambert), straight or bent, predicted by reading it backwards.
+    """Line or quadratic of a band's signal against concentration (Beer-Lambert), predicted by reading it backwards.
 
     Parameters
     ----------
@@ -67,8 +68,8 @@ class BandArea(Method):
         x: concentration, y: signal. Beside a quadratic only to compare.
     curve_ : QuadraticFit or None
         The quadratic, if there is one.
-    standards_ : array of shape (2, levels)
-        Concentrations of the standards and 1/√w of each; empty for equal weights.
+    standards_ : array of shape (2, levels) or None
+        Concentrations of the standards and 1/√w of each; None for equal weights.
     n_samples_ : float
         Number of training rows.
     residual_basis_ : array of shape (rank, points)
@@ -86,7 +87,7 @@ class BandArea(Method):
         *("n_samples_", "line_values_", "residual_basis_", "curve_values_", "standards_"),
     )
     curve_values_: dict[str, Any] | None = None
-    standards_: FloatArray = np.empty((2, 0))
+    standards_: FloatArray | None = None
 
     def __init__(
         self,
@@ -173,7 +174,7 @@ class BandArea(Method):
             curve = fit_quadratic(values, signal, weights)
             check_branch(curve)
             self.curve_values_ = asdict(curve)
-        self.standards_ = np.empty((2, 0)) if self.line_weights == "equal" else level_table(values, weights)
+        self.standards_ = None if self.line_weights == "equal" else level_table(values, weights)
         self.n_samples_ = float(values.size)
         self.residual_basis_ = _leading_directions(bands.profiles(matrix))
         return self
@@ -241,6 +242,12 @@ class BandArea(Method):
     def weights_at(self, concentration: ArrayLike) -> FloatArray:
         """Weight of a signal at concentrations of shape (n,), the mean weight of the standards being 1."""
         return weight_at(self.line_weights, self.standards_, np.asarray(concentration, dtype=np.float64))
+
+    def signal_at(self, concentration: ArrayLike) -> FloatArray:
+        """Signal that the line or quadratic has at concentrations of any shape."""
+        line, curve, x = self.line_, self.curve_, np.asarray(concentration, dtype=np.float64)
+        signal: FloatArray = line.y_mean + line.slope * (x - line.x_mean) if curve is None else curve_value(curve, x)
+        return signal
 
     def remarks_each(self, X: ArrayLike) -> tuple[str, ...]:
         """State the weight of each signal, where standards are weighted."""

@@ -52,8 +52,8 @@ class ClassicalLeastSquares(Method):
 
     Notes
     -----
-    The leverage of a spectrum is ĉ'(C'WC)⁻¹ĉ of its estimated contents ĉ: the share of the calibration in the variance of
-    a prediction, σ²·(1 + h)/|net analyte signal|². `factor_counts_` holds one number, p − 1 (p with a background).
+    The leverage of a spectrum is ĉ'(C'WC)⁻¹ĉ of its estimated contents ĉ: the share of the calibration in the variance
+    of a prediction, σ²·(1 + h)/|net analyte signal|². `factor_counts_` holds one number, p − 1 (p with a background).
 
     References
     ----------
@@ -100,9 +100,16 @@ class ClassicalLeastSquares(Method):
             The prediction is not linear in the spectrum.
         """
         if self.non_negative:
-            raise AttributeError("With non_negative = true the prediction is not linear: there is no regression vector.")
+            raise AttributeError("non_negative = true: the prediction is not linear and has no regression vector.")
         basis, triangle = self._decompose()
-        return np.linalg.solve(triangle, basis.T)[:1]
+        vectors = np.asarray(np.linalg.solve(triangle, basis.T), dtype=np.float64)
+        return vectors[:1]
+
+    def unconstrained(self) -> Self:
+        """Return a fitted copy that lets contents fall below zero: linear in the spectrum."""
+        free = type(self)(**{**self.get_params(), "non_negative": False})
+        free.__dict__.update({**self.__dict__, "non_negative": False})
+        return free
 
     def fit(self, X: ArrayLike, y: ArrayLike | None = None, sample_weight: ArrayLike | None = None) -> Self:
         """Estimate the pure spectra.
@@ -131,7 +138,7 @@ class ClassicalLeastSquares(Method):
         contents = np.column_stack([*([np.ones(values.size)] if self.background else []), values, others])
         root = np.sqrt(weight)[:, None]
         self._check_contents(contents * root)
-        spectra = np.linalg.lstsq(contents * root, matrix * root, rcond=None)[0]
+        spectra: FloatArray = np.linalg.lstsq(contents * root, matrix * root, rcond=None)[0]
         self.n_samples_ = float(weight.sum())
         self.background_ = spectra[0] if self.background else np.zeros(matrix.shape[1])
         self.pure_spectra_ = spectra[int(self.background) :]
@@ -146,7 +153,7 @@ class ClassicalLeastSquares(Method):
         """Estimate the contents of all components, shape (n, p). [unit of y]"""
         basis, triangle = self._decompose()
         projected = (self.check_new(X) - self.background_) @ basis
-        found: FloatArray = np.linalg.solve(triangle, projected.T).T
+        found = np.asarray(np.linalg.solve(triangle, projected.T).T, dtype=np.float64)
         if self.non_negative:
             for row in np.flatnonzero((found < 0).any(axis=1)):
                 found[row] = non_negative_least_squares(triangle, projected[row])
@@ -165,7 +172,8 @@ class ClassicalLeastSquares(Method):
         """Leverage ĉ'(C'WC)⁻¹ĉ, shape (1, n)."""
         found = self.contents(X)
         terms = np.column_stack([np.ones(len(found)), found]) if self.background else found
-        return np.einsum("np,pq,nq->n", terms, self.inverse_cross_products_, terms)[None, :]
+        leverage: FloatArray = np.einsum("np,pq,nq->n", terms, self.inverse_cross_products_, terms)
+        return leverage[None, :]
 
     def residual_each(self, X: ArrayLike) -> FloatArray:
         """Sum of squares of the residual spectra, shape (1, n). [(unit of X)²]"""

@@ -94,9 +94,9 @@ def fast_left_out(
     Returns
     -------
     LeftOut
-        With "rotated", same guard and notes as `PLS` refitted in every fold, and predictions and leverages equal to
-        1e-8 of the range of y and of themselves while the norm of scores before scaling is above 1e-6 of that of the
-        spectra (the guard is at about 1e-12: between, two programs differ more and more, and neither is right).
+        With "rotated", same guard and notes as `PLS` refitted in every fold. Either way predictions and leverages equal
+        refitting to 1e-8 (of the range of y; of themselves) while scores and weights before scaling are above 1e-6 of
+        the norm of the spectra. The guard is at about 1e-12: between, two programs differ more and more.
 
     Raises
     ------

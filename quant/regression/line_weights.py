@@ -41,7 +41,7 @@ def standard_weights(law: str, content: FloatArray, sd: FloatArray | None = None
     return np.asarray(relative / relative.mean())
 
 
-def weight_at(law: str, standards: FloatArray, content: FloatArray) -> FloatArray:
+def weight_at(law: str, standards: FloatArray | None, content: FloatArray) -> FloatArray:
     """Return the weight of a signal at contents of shape (n,), on the scale of the standards' weights.
 
     By the law itself for 1/x and 1/x^2, else by the standards' standard deviations interpolated linearly; outside the
@@ -50,7 +50,7 @@ def weight_at(law: str, standards: FloatArray, content: FloatArray) -> FloatArra
     Parameters
     ----------
     law : {"equal", "1/x", "1/x^2", "1/s^2"}
-    standards : array of shape (2, levels)
+    standards : array of shape (2, levels), or None for equal weights
         Different contents of the standards, rising, and the mean relative standard deviation 1/√w at each.
     content : array of shape (n,)
         [unit of the analyte]
@@ -62,7 +62,7 @@ def weight_at(law: str, standards: FloatArray, content: FloatArray) -> FloatArra
     """
     if law not in LAWS:
         raise ParameterError(f"line_weights = {law!r}; expected one of {', '.join(LAWS)}.")
-    if law == "equal":
+    if standards is None:
         return np.ones_like(content)
     levels, sd = standards
     if law in POWERS:

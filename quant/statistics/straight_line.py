@@ -184,9 +184,10 @@ def inverse_interval(
 ) -> InverseInterval:
     """Read the line backwards, with standard error and interval.
 
-    With D = (y0 − ȳ)/b, c = 1/(m·w) + 1/n (n the sum of weights) and g = t²·s_b²/b²: s_x0 = (s/|b|)·sqrt(c + D²/Sxx). Below g = 0.05 the interval
-    is x0 ± t·s_x0, above it is Fieller's, x̄ + [D ± sqrt(g·D² + (1 − g)·t²·s²·c/b²)] / (1 − g); from g = 1 on there is
-    no finite one. Through the origin x̄ = ȳ = 0, c = 1/(m·w) and Sxx = Σx².
+    With D = (y0 − ȳ)/b, c = 1/(m·w) + 1/n and g = t²·s_b²/b²: s_x0 = (s/|b|)·sqrt(c + D²/Sxx), n being the sum of the
+    weights. Below g = 0.05 the interval is x0 ± t·s_x0, above it is Fieller's,
+    x̄ + [D ± sqrt(g·D² + (1 − g)·t²·s²·c/b²)] / (1 − g); from g = 1 on there is no finite one. Through the origin
+    x̄ = ȳ = 0, c = 1/(m·w) and Sxx = Σw·x².
 
     Parameters
     ----------
@@ -249,9 +250,7 @@ def inverse_interval(
     return InverseInterval(value=value, standard_error=standard_error, low=low, high=high, form=form)
 
 
-def present_pairs(
-    x: FloatArray, y: FloatArray, weights: ArrayLike | None
-) -> tuple[FloatArray, FloatArray, FloatArray]:
+def present_pairs(x: FloatArray, y: FloatArray, weights: ArrayLike | None) -> tuple[FloatArray, FloatArray, FloatArray]:
     """Return x, y and weights of the pairs that weigh anything; all weigh one by default.
 
     Raises

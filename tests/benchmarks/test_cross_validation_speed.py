@@ -80,6 +80,11 @@ def own_gram(X, window):
     return processed @ processed.T
 
 
+def in_turn(works):
+    for work in works:  # results are let go: holding them would take fresh memory for each
+        work()
+
+
 def seconds(works, rounds=7, clock=time.process_time):
     """Median time of each work, done in turn, after one round that warms up."""
     taken = {name: [] for name in works}
@@ -131,8 +136,8 @@ def test_candidates_against_scikit_learn_on_one_core(one_core, show):
             "one fit a fold": partial(one_fit_a_fold, X, y, fold),
             "cross-validation": together,
             "cross-validation, one Gram matrix, many y": partial(cross_validate_many, [G], shuffled, [fold], FACTORS),
-            "preprocessing": lambda: [preprocessed(X, window) for window in windows],
-            "Gram matrix": lambda: [gram(X) for _ in windows],
+            "preprocessing": lambda: in_turn(partial(preprocessed, X, window) for window in windows),
+            "Gram matrix": lambda: in_turn(partial(gram, X) for _ in windows),
             "all three": partial(cross_validate_many, own, y, [fold], FACTORS),
             "one set with residuals (fast_left_out)": partial(fast_left_out, X, y, [fold], FACTORS),
         },

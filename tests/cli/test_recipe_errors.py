@@ -46,9 +46,9 @@ RECIPES = {
         "recipe.toml, [regression]: max_factors = 'four'; expected a valid integer or 'auto'.",
     ),
     "two problems at once": (
-        ("max_factors = 4", 'method = "pcr"\nmax_factors = 0'),
+        ("max_factors = 4", 'method = "mlr"\nmax_factors = 0'),
         USAGE,
-        "recipe.toml, [regression]: method = 'pcr'; expected 'pls' or 'band_area'.\n"
+        "recipe.toml, [regression]: method = 'mlr'; expected 'pls', 'pcr', 'classical_least_squares' or 'band_area'.\n"
         "recipe.toml, [regression]: max_factors = 0; expected greater than or equal to 1 or 'auto'.",
     ),
     "unknown step": (

@@ -46,6 +46,15 @@ def test_seven_validation_samples_have_their_twin_among_the_calibration_samples(
     assert not found.accepted
 
 
+def test_no_doubt_but_those_known(found):
+    # Absorbance up to 5.5 is this instrument's; one wide band of water leaves nothing to be said of the axis.
+    assert [finding.code for finding in found.findings if finding.gravity == DOUBT] == [
+        "high_absorbance",
+        "exact_duplicates",
+        "analytes_together",
+    ]
+
+
 def test_it_names_analytes_that_vary_together(found):
     [finding] = found.found("analytes_together")
     assert finding.evidence.startswith("fat and moisture: r = -0.99; ")

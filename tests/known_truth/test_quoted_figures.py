@@ -21,6 +21,10 @@ def test_the_readme_quotes_the_counts_of_the_long_tests(repository):
         rows.append(
             (f'spectra of five foreign kinds called "not applicable", {n} standards', "all_foreign", "asked", totals)
         )
+    labels = found["exchanged_labels"]
+    pair = "exchanged pair of labels (values a third of the range apart or more) named first"
+    rows.append((pair, "named_first", "sets", labels))
+    rows.append(("clean sets in which a pair is suspected (nominal 2 %)", "alarms", "clean_sets", labels))
     readme = (repository / "README.md").read_text("utf-8")
     for claim, part, whole, counts in rows:
         assert f"| {claim} | {counts[part]} of {counts[whole]} |" in readme

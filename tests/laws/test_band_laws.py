@@ -6,7 +6,7 @@ from hypothesis import given, settings
 from hypothesis import strategies as st
 
 from quant.regression.band_area import BandArea
-from quant.regression.bands import place_bands
+from quant.spectra.bands import place_bands
 
 laws = settings(max_examples=50, deadline=None, derandomize=True)
 

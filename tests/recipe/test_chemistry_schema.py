@@ -25,7 +25,7 @@ def test_names_positions_and_ranges():
     recipe = load('[chemistry]\nanalyte = ["ketone C=O", 1363, [1230, 1215]]\nmatrix = ["toluene"]\nhalf_width = 10')
     table = chemistry_of(recipe.chemistry, "acetone")
     found = [(band.name, band.low, band.high) for band in table.analyte_bands()]
-    assert found == [("ketone C=O", 1705, 1725), ("analyte", 1353, 1373), ("analyte", 1215, 1230)]
+    assert found == [("ketone C=O", 1705, 1725), ("stated", 1353, 1373), ("stated", 1215, 1230)]
     assert next((band.low, band.high) for band in table.matrix_bands()) == (3017, 3037)  # toluene 3027, widened
 
 

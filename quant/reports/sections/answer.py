@@ -2,12 +2,14 @@
 
 from typing import Any
 
+from quant.calibration.indirect import INDIRECT
 from quant.calibration.result import NOT_PROVEN, AnalyteResult, CalibrationResult
 from quant.calibration.split import INDEPENDENT
 from quant.checks import name_some
 from quant.prediction.applicability import NOT_APPLICABLE
 from quant.regression.band_area import BandArea
-from quant.regression.pls import PLS
+from quant.regression.classical_least_squares import ClassicalLeastSquares
+from quant.regression.factor_regression import FactorRegression
 from quant.text_table import format_number
 
 # Numbers of samples below which a multivariate calibration rests on little: ASTM E1655 (from memory).
@@ -70,8 +72,12 @@ def method(result: AnalyteResult) -> str:
     """Name the regression and its size."""
     regression = result.model.method
     if isinstance(regression, BandArea):
-        return f"band area, straight line{' through the origin' if regression.through_origin else ''}"
-    return f"PLS, {result.factors} factor{'s' if result.factors != 1 else ''} ({result.rule})"
+        kind = "straight line" if regression.curve == "line" else regression.curve
+        weights = "" if regression.line_weights == "equal" else f", weights {regression.line_weights}"
+        return f"band area, {kind}{' through the origin' if regression.through_origin else ''}{weights}"
+    if isinstance(regression, ClassicalLeastSquares):
+        return f"classical least squares, {result.rule}"
+    return f"{type(regression).__name__}, {result.factors} factor{'s' if result.factors != 1 else ''} ({result.rule})"
 
 
 def bias_verdict(result: AnalyteResult) -> str:
@@ -94,7 +100,7 @@ def warnings_of(result: AnalyteResult) -> list[str]:
 def _about_calibration(result: AnalyteResult) -> list[str]:
     crossed, n, factors = result.cross_validation, result.n_samples, result.factors
     found = []
-    if isinstance(result.model.method, PLS):
+    if isinstance(result.model.method, FactorRegression):
         wanted = max(FEWEST_SAMPLES, SAMPLES_A_FACTOR * (factors + 1))
         if n < wanted:
             found.append(f"Few samples: {n} for {factors} factors; at least {wanted} would be usual.")
@@ -104,6 +110,9 @@ def _about_calibration(result: AnalyteResult) -> list[str]:
     if limit is not None and limit.remark:
         why = limit.remark if limit.decidable else f"this method cannot decide this limit: {limit.remark}"
         found.append(f"{why[:1].upper()}{why[1:]}.")
+    behind = result.chemistry
+    if behind is not None and behind.verdict == INDIRECT:
+        found.append(f"The calibration {behind.statement}: {behind.reason}.")
     named = [row.sample for row in result.audit.diagnostics.outstanding]
     if named:
         found.append(f"Calibration samples that stand out: {name_some(named)}. See the diagnostics.")

@@ -10,15 +10,15 @@ from quant.text_table import Row
 def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> dict[str, Any]:  # noqa: ARG001
     """Return the parts of the standard error, corrected errors, the budget, and what could not be told."""
     found = analyte.audit.uncertainty
-    parts = found.parts
+    parts, stated = found.parts, analyte.uncertainty.laboratory_error is not None
     return {
         "unit": analyte.unit,
         "parts": [
             ("presentation of the sample", None if found.replicates is None else _root(parts.presentation)),
             ("calibration, at the mean leverage", _root(parts.calibration)),
             ("unexplained: model and matrix", _root(parts.unexplained)),
-            ("laboratory value", _root(parts.laboratory)),
-            ("against the true value", _root(parts.true_value)),
+            ("laboratory value", _root(parts.laboratory) if stated else None),
+            ("against the true value", _root(parts.true_value) if stated else None),
             ("against a new reference result", _root(parts.reference_result)),
         ],
         "replicates": _replicates(analyte),

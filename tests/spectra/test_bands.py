@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from quant.errors import AxisMismatchError, ParameterError
-from quant.regression.bands import place_bands
+from quant.spectra.bands import place_bands
 
 
 def signal(values, axis, *bands, reference=None):
