@@ -1,8 +1,8 @@
 """A calibration that sees only an interferent is told from one that sees its analyte.
 
-Three kinds of simulated sets, the interferent's values known: the analyte has no band and the interferent goes along with
-it (r = 0.95); the analyte absorbs and the interferent varies by itself; the analyte absorbs and the interferent goes along
-with it all the same.
+Simulated sets, the interferent's values known: the analyte has no band and the interferent goes along with it (r = 0.95);
+the analyte absorbs and the interferent varies by itself; the analyte absorbs and the interferent goes along with it all the
+same; the analyte has no band and nothing goes along with it.
 """
 
 from collections import Counter
@@ -12,7 +12,7 @@ import pytest
 
 from quant.calibration.calibrate import calibrate
 from quant.calibration.indirect import DIRECT, INDIRECT, UNKNOWN
-from quant.calibration.result import AnalyteResult
+from quant.calibration.result import AnalyteResult, CalibrationResult
 from quant.recipe.load import recipe_from_text
 from quant.reports.contents import SECTIONS
 from quant.reports.page import render_section
@@ -30,7 +30,12 @@ MATRIX = PureComponent("matrix", [(1690.0, 25.0, 0.3, "mixed"), (1510.0, 15.0, 0
 NOISE = 0.001  # absorbance, white
 LABORATORY = 0.03  # standard error of a reference value; contents lie about 2 with a standard deviation of 0.5
 SAMPLES = 40
-KINDS = {"invisible": (0.0, 0.95), "clean": (1.0, 0.0), "clean, correlated": (1.0, 0.95)}  # visibility, r
+KINDS = {  # visibility, r
+    "invisible": (0.0, 0.95),
+    "clean": (1.0, 0.0),
+    "clean, correlated": (1.0, 0.95),
+    "invisible, alone": (0.0, 0.0),  # control: there is nothing to predict
+}
 RECIPE = """title = "known truth"
 [spectra]
 files = ["none.csv"]
@@ -77,16 +82,18 @@ def q2(result: AnalyteResult) -> float:
     return float(result.cross_validation.q2[result.cross_validation.factor_counts.index(result.factors)])
 
 
-def check(counts: dict[str, Counter[str]], bounds) -> None:
+def check(counts: dict[str, Counter[str]]) -> None:
+    """Few false alarms, few misses; a set that predicts nothing gets no verdict."""
     n_sets = counts["clean"].total()
-    assert counts["clean"][DIRECT] == n_sets
-    assert counts["clean, correlated"][INDIRECT] == 0  # the false alarm
-    assert counts["clean, correlated"][DIRECT] >= 0.95 * n_sets
-    assert counts["invisible"][DIRECT] == 0
+    for kind in ("clean", "clean, correlated"):
+        assert counts[kind][INDIRECT] <= 0.01 * n_sets, kind  # the false alarm
+        assert counts[kind][DIRECT] >= 0.95 * n_sets, kind
+    assert counts["invisible"][DIRECT] <= 0.01 * n_sets
     assert counts["invisible"][INDIRECT] >= 0.95 * n_sets
+    assert counts["invisible, alone"][UNKNOWN] >= 0.9 * n_sets
 
 
-def test_good_looks_and_the_verdict(monkeypatch):
+def test_good_looks_and_the_verdict():
     result = calibrated("invisible", 0)
     assert q2(result) > 0.8  # looks good: RMSECV is less than half of the standard deviation
     behind = result.chemistry
@@ -105,3 +112,45 @@ def test_the_clean_set_is_not_accused():
         own, water = result.chemistry.test.effects
         assert own.low < 1 < own.high + 0.1
         assert abs(water.coefficient) < 0.1
+
+
+@pytest.mark.parametrize(
+    ("kind", "statement"),
+    [
+        ("invisible", "predicts indirectly through the bands of the matrix"),
+        ("clean", "predicts the analyte"),
+        ("clean, correlated", "predicts the analyte"),
+    ],
+)
+def test_bands_alone_lead_to_the_same(kind, statement):
+    assert calibrated(kind, 0, BANDS).chemistry.statement == statement
+
+
+def test_without_columns_and_bands_it_cannot_be_told():
+    assert calibrated("invisible", 0, "").chemistry.statement == UNKNOWN
+
+
+def test_a_laboratory_error_that_is_not_stated_is_a_condition():
+    assert "unless the standard error of one laboratory value" in calibrated("invisible", 0, laboratory=False).chemistry.reason
+    assert "unless" not in calibrated("invisible", 0).chemistry.reason
+
+
+def test_the_report_says_it():
+    sections = {section.name: section for section in SECTIONS}
+    for kind, words in (("invisible", "Predicts indirectly through water"), ("clean", "Predicts the analyte")):
+        result = CalibrationResult(
+            title="", recipe="", analytes=(calibrated(kind, 0),), spectra_without_values=(), values_without_spectra=()
+        )
+        assert words in render_section(sections["chemistry"], result)
+        assert ("predicts indirectly" in render_section(sections["answer"], result)) == (kind == "invisible")
+
+
+def test_few_false_alarms_and_few_misses():
+    check({kind: count(kind, 60) for kind in KINDS})
+
+
+@pytest.mark.long
+def test_few_false_alarms_and_few_misses_in_1000_sets(keep_result):
+    counts = {kind: count(kind, 1000) for kind in KINDS}
+    keep_result("indirect", {kind: dict(sorted(found.items())) for kind, found in counts.items()})
+    check(counts)
