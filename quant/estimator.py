@@ -146,11 +146,13 @@ class Step(Estimator):
     """A preprocessing step: `fit` learns, `transform` applies.
 
     `axis` (where a step has that parameter) holds the axis values of its input; `axis_after` gives those of its output.
-    A step that learns from other spectra has `learns = True`, and its `fit` takes `sample_weight`.
+    A step that learns from other spectra has `learns = True`, and its `fit` takes `sample_weight`. One that turns a sum
+    of spectra into the sum of its results has `linear = True`: differences and pure spectra may go through it, too.
     """
 
     name: ClassVar[str]
     learns: ClassVar[bool] = False
+    linear: ClassVar[bool] = False
 
     def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # noqa: ARG002 (the contract's signature)
         """Note the width of the spectra; steps that learn more override this."""
@@ -339,6 +341,8 @@ def _plain(value: object) -> object:
 def _brief(value: object) -> str:
     if isinstance(value, np.ndarray) and value.ndim == 1 and value.size > 6:
         return f"<{value.size} values from {value[0]:g} to {value[-1]:g}>"
+    if isinstance(value, np.ndarray) and value.ndim == 2:
+        return f"<{value.shape[0]} rows of {value.shape[1]} values>"
     return repr(value)
 
 

@@ -9,11 +9,12 @@ from quant.arrays import FloatArray, IntArray
 from quant.calibration.audit import audit, equip
 from quant.calibration.below_limit import check_below_limit
 from quant.calibration.chemistry import chemistry_behind
-from quant.calibration.cross_validation import cross_validate, factor_limit, fit_pipeline
+from quant.calibration.cross_validation import cross_validate, factor_limit
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.evidence import Evidence
 from quant.calibration.folds import make_folds
 from quant.calibration.laboratory import laboratory_of
+from quant.calibration.leave_out import fit_pipeline
 from quant.calibration.limits import applicability_limits, degrees_of_freedom, interval_parts
 from quant.calibration.picture import picture_of
 from quant.calibration.result import AnalyteResult, CalibrationResult

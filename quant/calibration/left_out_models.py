@@ -6,9 +6,9 @@ from dataclasses import replace
 import numpy as np
 
 from quant.arrays import BoolArray, FloatArray
-from quant.calibration.cross_validation import fit_pipeline
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.folds import make_folds
+from quant.calibration.leave_out import fit_pipeline
 from quant.errors import NotEnoughDataError
 from quant.estimator import Step, unfitted_copy
 from quant.model.left_out_models import LeftOutModels, linear_features

@@ -40,7 +40,7 @@ def asymmetric_baseline(
     spectra : array of shape (spectra, points)
         [any unit]
     smoothness : float
-        λ, above 0, for neighbouring points: 10² to 10⁹. At twice the points in the same range take 16 times as much. [1]
+        λ, above 0: 10² to 10⁹. It counts points: at twice the points in the same range take 16 times as much. [1]
     asymmetry : float
         p, between 0 and 1: 0.001 to 0.1 for bands that point upwards, 0.5 for plain smoothing. [1]
     iterations : int

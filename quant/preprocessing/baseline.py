@@ -79,6 +79,7 @@ class StraightBaseline(Step):
     """
 
     name: ClassVar[str] = "straight_baseline"
+    linear = True
 
     def __init__(self, first: float | None = None, second: float | None = None, axis: ArrayLike | None = None) -> None:
         self.first = first

@@ -27,9 +27,10 @@ def emsc(
     interferents: ArrayLike | None = None,
     analytes: ArrayLike | None = None,
 ) -> FloatArray:
-    """Fit x = b·reference + Σ cₖ·tᵏ + Σ dⱼ·interferentⱼ + Σ hⱼ·analyteⱼ + e; return (x − Σ cₖ·tᵏ − Σ dⱼ·interferentⱼ)/b.
+    """Fit each spectrum by a reference, a polynomial and known spectra; take out the last two and divide by b.
 
-    t is the axis scaled to −1 … 1. What the analytes explain is fitted, so that it does not disturb b, but it stays.
+    x = b·reference + Σ cₖ·tᵏ + Σ dⱼ·interferentⱼ + Σ hⱼ·analyteⱼ + e, with t the axis scaled to −1 ... 1, becomes
+    (x − Σ cₖ·tᵏ − Σ dⱼ·interferentⱼ)/b. The analytes are fitted so that they do not disturb b, but they stay.
 
     Parameters
     ----------

@@ -9,9 +9,8 @@ from quant.arrays import FloatArray
 from quant.checks import as_matrix, name_some
 from quant.errors import NotEnoughDataError, ParameterError, QuantityError
 from quant.estimator import Step
-from quant.preprocessing.rounding import vanishes
-from quant.spectra.bands import BandSet, BandSpec, place_bands
-from quant.spectra.segments import axis_values, segments
+from quant.spectra.bands import SAME_PLACE, BandSet, BandSpec, place_bands
+from quant.spectra.segments import axis_values, describe_segment, median_step, segments
 
 LEAST_SIGNAL = 1e-9  # of the spectrum times the band's width: less is rounding error, and no spectrum's size
 
@@ -105,9 +104,7 @@ def normalise_band(spectra: ArrayLike, band: BandSpec | None = None, axis: Array
     Raises
     ------
     AxisMismatchError, ParameterError
-        The band or the axis does not fit.
-    NotEnoughDataError
-        An area of fewer than two points.
+        The band or the axis does not fit, or the band meets a gap of the axis.
     QuantityError
         Spectra in which the band shows no signal above zero.
     """
@@ -117,25 +114,16 @@ def normalise_band(spectra: ArrayLike, band: BandSpec | None = None, axis: Array
 
 def _place(band: BandSpec | None, axis: ArrayLike | None, points: int) -> BandSet:
     x = axis_values(axis, points)
-    if band is None and points < 2:
-        raise NotEnoughDataError(
-            f"The area of a band needs at least two points; found n_features = {points}. Keep wider ranges, or take "
-            "the signal height_at."
-        )
     placed = place_bands(None if band is None else [band], None, x, points)
-    where = placed.bands[0].x
-    if len(inside := segments(x[(x >= where.min()) & (x <= where.max())])) > 1 or _cut_between(x, where):
+    where, slack = placed.bands[0].x, SAME_PLACE * median_step(x)
+    held = [run for run in segments(x) if x[run].max() >= where.min() - slack and x[run].min() <= where.max() + slack]
+    if len(held) != 1:
         raise ParameterError(
-            f"normalise_band: the band ({placed.bands[0].where}) reaches over {len(inside)} contiguous ranges of the "
-            "axis; expected one without a gap. Move the band, or cut the ranges after this step."
+            f"normalise_band: the band ({placed.bands[0].where}) meets a gap of the axis, whose contiguous ranges are "
+            f"{name_some(describe_segment(x, run) for run in segments(x))}; expected a band inside one of them. Move "
+            "the band, or cut the ranges after this step."
         )
     return placed
-
-
-def _cut_between(axis: FloatArray, where: FloatArray) -> bool:
-    """Tell whether points have been left out inside a band, judged by the steps of the whole axis."""
-    low, high = where.min(), where.max()
-    return sum(bool((axis[run].max() > low) and (axis[run].min() < high)) for run in segments(axis)) > 1
 
 
 def _divide(X: FloatArray, placed: BandSet) -> FloatArray:
@@ -156,4 +144,97 @@ def _refuse(bad: ArrayLike, what: str, expected: str) -> None:
         raise QuantityError(
             f"{rows.size} spectra have no {what}, in row(s) {name_some(rows)} (counted from 0); {expected}. Leave them "
             "out, measure them again, or normalise in another way."
+        )
+
+
+class UnitLength(Step):
+    """Divide each spectrum by its length, the root of the sum of squares."""
+
+    name: ClassVar[str] = "unit_length"
+
+    def transform(self, X: ArrayLike) -> FloatArray:
+        """Return spectra of length 1, shape (n, points)."""
+        return unit_length(self.check_new(X))
+
+
+class UnitArea(Step):
+    """Divide each spectrum by its area, the modulus summed by trapezia within each contiguous segment.
+
+    Parameters
+    ----------
+    axis : array of shape (points,), optional
+        Axis values of the input; None numbers the points 0, 1, 2, ... [axis unit]
+    """
+
+    name: ClassVar[str] = "unit_area"
+
+    def __init__(self, axis: ArrayLike | None = None) -> None:
+        self.axis = axis
+
+    def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # noqa: ARG002 (the contract's signature)
+        """Check the axis; nothing is learnt."""
+        _widths(axis_values(self.axis, self.check_fit(X).shape[1]))
+        return self
+
+    def transform(self, X: ArrayLike) -> FloatArray:
+        """Return spectra of area 1, shape (n, points)."""
+        return unit_area(self.check_new(X), self.axis)
+
+
+class NormaliseBand(Step):
+    """Divide each spectrum by the signal of a band (internal standard, path length).
+
+    Parameters
+    ----------
+    signal : {"area", "height", "height_at"}
+        Area, greatest height, or height at a position.
+    range : pair, optional
+        From, to, for area and height; by default the whole axis. [axis unit]
+    position : float, optional
+        Where, for height_at. [axis unit]
+    baseline : pair, optional
+        Two positions that carry a straight baseline under the band; none: no baseline. [axis unit]
+    axis : array of shape (points,), optional
+        Axis values of the input; None numbers the points 0, 1, 2, ... [axis unit]
+    """
+
+    name: ClassVar[str] = "normalise_band"
+
+    def __init__(
+        self,
+        signal: Literal["area", "height", "height_at"] = "area",
+        range: tuple[float, float] | None = None,  # noqa: A002 (the word for it wherever a recipe speaks of bands)
+        position: float | None = None,
+        baseline: tuple[float, float] | None = None,
+        axis: ArrayLike | None = None,
+    ) -> None:
+        self.signal = signal
+        self.range = range
+        self.position = position
+        self.baseline = baseline
+        self.axis = axis
+
+    def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # noqa: ARG002 (the contract's signature)
+        """Check that the axis holds the band; nothing is learnt."""
+        points = self.check_fit(X).shape[1]
+        _place(self._band(axis_values(self.axis, points)), self.axis, points)
+        return self
+
+    def transform(self, X: ArrayLike) -> FloatArray:
+        """Return spectra in which the band has the signal 1, shape (n, points)."""
+        matrix = self.check_new(X)
+        return normalise_band(matrix, self._band(axis_values(self.axis, matrix.shape[1])), self.axis)
+
+    def axis_after(self, axis: FloatArray) -> FloatArray:
+        """Return the axis unchanged, once it is known to hold the band. [axis unit]"""
+        _place(self._band(axis), axis, axis.size)
+        return axis
+
+    def _band(self, axis: FloatArray) -> dict[str, Any]:
+        given = {"range": self.range, "position": self.position, "baseline": self.baseline}
+        band = {"signal": self.signal, **{key: value for key, value in given.items() if value is not None}}
+        return (
+            band
+            if self.position is not None or self.range is not None or self.signal == "height_at"
+            else {**band, "range": (axis[0], axis[-1])}
         )

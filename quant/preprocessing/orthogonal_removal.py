@@ -88,7 +88,9 @@ class OrthogonalRemoval(Step):
     def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # noqa: ARG002 (the contract's signature)
         """Find the directions; nothing is learnt from the training spectra."""
         points = self.check_fit(X).shape[1]
-        self.directions_ = orthogonal_directions(known_spectra("differences", self.differences, points), self.components)
+        self.directions_ = orthogonal_directions(
+            known_spectra("differences", self.differences, points), self.components
+        )
         return self
 
     def transform(self, X: ArrayLike) -> FloatArray:

@@ -56,6 +56,7 @@ class _Ranges(Step):
     """What keeping and leaving out have in common."""
 
     fitted = ("kept_",)
+    linear = True
     allow_nan = True
     leave_out: ClassVar[bool]
 

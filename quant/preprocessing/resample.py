@@ -25,7 +25,8 @@ def equal_grid(
     axis : array of shape (points,)
         The axis that the defaults are taken from. [axis unit]
     start, stop : float, optional
-        First value, and the bound of the last, included if the points hit it; by default the ends of `axis`. [axis unit]
+        First value, and the bound of the last, included if the points hit it; by default the ends of `axis`.
+        [axis unit]
     spacing : float, optional
         Distance of neighbours, above zero; by default the median step of `axis`. [axis unit]
 
@@ -63,8 +64,8 @@ class Resample(Step):
     Parameters
     ----------
     start, stop : float, optional
-        First value of the new axis, and the bound of its last, included if the points hit it; by default the ends of the
-        axis. The output runs from start to stop, whichever way the input runs. [axis unit]
+        First value of the new axis, and the bound of its last, included if the points hit it; by default the ends of
+        the axis. The output runs from start to stop, whichever way the input runs. [axis unit]
     spacing : float, optional
         Distance of neighbours; by default the median step of the axis. [axis unit]
     axis : array of shape (points,), optional
@@ -72,6 +73,7 @@ class Resample(Step):
     """
 
     name: ClassVar[str] = "resample"
+    linear = True
     fitted = ("sources_", "weights_")
 
     def __init__(

@@ -177,6 +177,7 @@ class SavitzkyGolay(Step):
     """
 
     name: ClassVar[str] = "savitzky_golay"
+    linear = True
     fitted = ("coefficients_", "bounds_")
 
     def __init__(

@@ -1,12 +1,14 @@
 """The pipeline that a recipe describes: fresh steps and a fresh regression for one axis."""
 
 from collections.abc import Sequence
+from functools import partial
 
 from quant.arrays import FloatArray
 from quant.errors import QuantityError
 from quant.estimator import Step
 from quant.preprocessing.chain import chain_axes, place_on_axis
 from quant.recipe.schema import Recipe
+from quant.recipe.step_files import step_spectra
 from quant.recipe.steps import make_step
 from quant.regression.band_area import BandArea
 from quant.regression.classical_least_squares import ClassicalLeastSquares
@@ -23,11 +25,13 @@ def build_steps(recipe: Recipe, axis: SpectralAxis, quantity: str) -> list[Step]
     Raises
     ------
     RecipeError
-        An unknown step or option.
+        An unknown step or option, or a file of spectra for a step behind one that is not linear.
     ParameterError
         A range or position that does not fit the axis.
     QuantityError
         Transmittance that no step turns into absorbance, or absorbance that a step would turn again.
+    AxisMismatchError, FileFormatError
+        A file that a step names does not fit, or cannot be read.
     """
     names = [table.get("step") for table in recipe.preprocessing]
     if quantity == "transmittance" and "absorbance" not in names:
@@ -40,10 +44,11 @@ def build_steps(recipe: Recipe, axis: SpectralAxis, quantity: str) -> list[Step]
             f"The step 'absorbance' needs transmittance, but the spectra are {QUANTITIES[quantity]}. "
             'Remove the step, or state quantity = "percent_transmittance" under [spectra] if that is what they are.'
         )
-    steps = [
-        make_step(table, f"{recipe.name}, [[preprocessing]] number {number}")
-        for number, table in enumerate(recipe.preprocessing, 1)
-    ]
+    steps: list[Step] = []
+    for number, table in enumerate(recipe.preprocessing, 1):
+        place = f"{recipe.name}, [[preprocessing]] number {number}"
+        read = partial(step_spectra, recipe=recipe, axis=axis, quantity=quantity, before=tuple(steps), place=place)
+        steps.append(make_step(table, place, read))
     return place_on_axis(steps, axis.values)
 
 

@@ -97,7 +97,8 @@ class RegressionTable(Table):
                 return 2, "a quadratic"
             return int(not self.through_origin), "a straight line"
         n = n_analytes + len(self.components)
-        return n - 1 + self.background, f"{n} components{' and a background' if self.background else ''}"
+        named = f"{n} component{'s' if n > 1 else ''}{' and a background' if self.background else ''}"
+        return n - 1 + self.background, named
 
     @model_validator(mode="after")
     def _belongs_together(self) -> "RegressionTable":

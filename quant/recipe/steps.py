@@ -1,17 +1,29 @@
-"""Recipe options of a preprocessing step, derived from the signature of its class."""
+"""Recipe options of a preprocessing step, derived from the signature of its class.
+
+A parameter that takes spectra, such as `interferents`, becomes an option that names a file: `interferent_file`.
+"""
 
 import inspect
 import json
 import re
+from collections.abc import Callable
 from functools import cache
 from typing import Any
 
+from numpy.typing import ArrayLike
 from pydantic import ConfigDict, Field, ValidationError, create_model
 
+from quant.arrays import FloatArray
 from quant.errors import RecipeError
 from quant.estimator import Step
 from quant.preprocessing.registry import STEPS
 from quant.recipe.messages import did_you_mean, problems
+from quant.recipe.table import Text
+
+IN_A_FILE = (
+    "A file, counted from the recipe's folder and read as those of [spectra]; its spectra go through the steps before "
+    "this one, which have to be linear."
+)
 
 
 def parameter_docs(cls: type) -> dict[str, str]:
@@ -39,16 +51,28 @@ def steps_schema() -> dict[str, Any]:
 
 @cache
 def options_model(name: str) -> Any:
-    """Return the pydantic model of a step's options: its constructor's parameters but the axis."""
+    """Return the pydantic model of a step's options: its constructor's parameters but the axis, files for spectra."""
     fields: dict[str, Any] = {}
-    explained = parameter_docs(STEPS[name])
+    explained, files = parameter_docs(STEPS[name]), file_options(name)
     for key, parameter in inspect.signature(STEPS[name]).parameters.items():
-        if key != "axis":
+        if key in files:
+            fields[files[key]] = (Text | None, Field(None, description=f"{explained.get(key)} {IN_A_FILE}"))
+        elif key != "axis":
             fields[key] = (parameter.annotation, Field(parameter.default, description=explained.get(key)))
     return create_model(f"{name}_options", __config__=ConfigDict(extra="forbid"), **fields)
 
 
-def make_step(table: dict[str, Any], place: str) -> Step:
+def file_options(name: str) -> dict[str, str]:
+    """Return the parameters of a step that take spectra, with the options that name their files."""
+    parameters = inspect.signature(STEPS[name]).parameters.items()
+    return {
+        key: f"{key.removesuffix('s')}_file"
+        for key, parameter in parameters
+        if key != "axis" and parameter.annotation == (ArrayLike | None)
+    }
+
+
+def make_step(table: dict[str, Any], place: str, read: Callable[[str], FloatArray]) -> Step:
     """Return the step that a ``[[preprocessing]]`` table describes, not yet knowing its axis.
 
     Parameters
@@ -57,6 +81,8 @@ def make_step(table: dict[str, Any], place: str) -> Step:
         ``step`` and its options.
     place : str
         Where the table stands, for messages.
+    read : callable
+        Returns the spectra of a file that the step names, in the form in which spectra arrive at it.
 
     Raises
     ------
@@ -71,6 +97,10 @@ def make_step(table: dict[str, Any], place: str) -> Step:
     model = options_model(name)
     try:
         # By way of JSON: strict there lets a list be a tuple, as TOML has no other, but no text or truth be a number.
-        return STEPS[name](**dict(model.model_validate_json(json.dumps(options, default=str), strict=True)))
+        given = dict(model.model_validate_json(json.dumps(options, default=str), strict=True))
     except ValidationError as error:
         raise RecipeError(problems(error, f"{place}, step {name!r}", model)) from None
+    for key, option in file_options(name).items():
+        file = given.pop(option)
+        given[key] = None if file is None else read(file)
+    return STEPS[name](**given)

@@ -8,8 +8,9 @@ from sklearn.cross_decomposition import PLSRegression
 from sklearn.model_selection import PredefinedSplit, cross_val_predict
 from sklearn.pipeline import make_pipeline
 
-from quant.calibration.cross_validation import cross_validate, factor_counts, fit_pipeline
+from quant.calibration.cross_validation import cross_validate, factor_counts
 from quant.calibration.folds import make_folds
+from quant.calibration.leave_out import fit_pipeline
 from quant.errors import NotEnoughDataError, ParameterError
 from quant.preprocessing.msc import MSC
 from quant.preprocessing.savitzky_golay import SavitzkyGolay

@@ -1,8 +1,8 @@
 """A calibration that sees only an interferent is told from one that sees its analyte.
 
-Simulated sets, the interferent's values known: the analyte has no band and the interferent goes along with it (r = 0.95);
-the analyte absorbs and the interferent varies by itself; the analyte absorbs and the interferent goes along with it all the
-same; the analyte has no band and nothing goes along with it.
+Simulated sets with known values of the interferent: the analyte has no band, and the interferent goes along with it
+(r = 0.95); the analyte absorbs, and the interferent varies by itself; the analyte absorbs, and the interferent goes
+along with it; the analyte has no band, and nothing goes along with it.
 """
 
 from collections import Counter
@@ -68,7 +68,9 @@ def calibrated(kind: str, number: int, chemistry: str = TESTED, *, laboratory: b
     values = 2 + 0.5 * truth + LABORATORY * rng.normal(size=SAMPLES)
     ids = [f"S{i:02d}" for i in range(SAMPLES)]
     notes = [{"water": f"{2 + 0.5 * each:.4f}"} for each in water]
-    table = ReferenceTable(ids, [Analyte("acetate", "% m/m", LABORATORY if laboratory else None)], values[:, None], notes)
+    table = ReferenceTable(
+        ids, [Analyte("acetate", "% m/m", LABORATORY if laboratory else None)], values[:, None], notes
+    )
     samples = pair_samples(SpectraSet(spectra, SpectralAxis(AXIS, "cm-1"), ids), table)
     stated = f"laboratory_error = {LABORATORY}" if laboratory else ""
     return calibrate(recipe_from_text(RECIPE.replace("LABORATORY", stated) + chemistry), samples=samples).analytes[0]
@@ -131,7 +133,10 @@ def test_without_columns_and_bands_it_cannot_be_told():
 
 
 def test_a_laboratory_error_that_is_not_stated_is_a_condition():
-    assert "unless the standard error of one laboratory value" in calibrated("invisible", 0, laboratory=False).chemistry.reason
+    assert (
+        "unless the standard error of one laboratory value"
+        in calibrated("invisible", 0, laboratory=False).chemistry.reason
+    )
     assert "unless" not in calibrated("invisible", 0).chemistry.reason
 
 

@@ -21,7 +21,7 @@ def test_arrays_are_named_by_where_they_belong(model):
     manifest, arrays = to_manifest(model)
     assert {"axis", "test_spectra", "test_predictions"} <= set(arrays)
     heads = {name.partition("/")[0] for name in arrays}
-    assert heads <= {"axis", "test_spectra", "test_predictions", "steps", "method"}
+    assert heads <= {"axis", "test_spectra", "test_predictions", "steps", "method", "left_out"}
     assert [step["name"] for step in manifest["steps"]] in (
         [],
         ["leave_out_ranges", "msc", "savitzky_golay", "scale_columns"],

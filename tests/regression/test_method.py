@@ -5,7 +5,9 @@ import pytest
 
 from quant.errors import ParameterError
 from quant.regression.band_area import BandArea
+from quant.regression.classical_least_squares import ClassicalLeastSquares
 from quant.regression.method import Method
+from quant.regression.pcr import PCR
 from quant.regression.pls import PLS
 from quant.regression.registry import METHODS
 
@@ -18,7 +20,8 @@ def samples():
 
 
 def test_registry_names_the_methods():
-    assert {"pls": PLS, "band_area": BandArea} == METHODS
+    named = {"pls": PLS, "pcr": PCR, "classical_least_squares": ClassicalLeastSquares, "band_area": BandArea}
+    assert named == METHODS
 
 
 @pytest.mark.parametrize("method", METHODS.values(), ids=METHODS.keys())
@@ -56,10 +59,38 @@ def test_every_method_cuts_to_what_it_has_and_to_nothing_else(method, samples):
 
 def test_who_averages_replicates():
     assert BandArea.averages_replicates
-    assert not PLS.averages_replicates
+    assert not any(method.averages_replicates for method in (PLS, PCR, ClassicalLeastSquares))
+
+
+def test_which_methods_are_classical():
+    assert [method.classical for method in METHODS.values()] == [False, False, True, True]
+
+
+@pytest.mark.parametrize("method", METHODS.values(), ids=METHODS.keys())
+def test_methods_have_nothing_to_remark_by_themselves(method, samples):
+    assert method().fit(*samples).remarks_each(samples[0][:3]) == ("", "", "")
+
+
+@pytest.mark.parametrize("method", METHODS.values(), ids=METHODS.keys())
+def test_a_parameter_younger_than_a_saved_model_has_its_default(method, samples):
+    parameters, arrays = method().fit(*samples).state()
+    youngest = method.parameter_names()[-1]
+    parameters.pop(youngest)
+    back = method.from_state(parameters, arrays)
+    assert getattr(back, youngest) == getattr(method(), youngest)
+    assert np.isfinite(back.predict(samples[0])).all()
 
 
 def test_residual_degrees_of_freedom():
     assert PLS().residual_degrees_of_freedom(30, 4) == 25
     assert BandArea().residual_degrees_of_freedom(7, 1) == 5
     assert BandArea(through_origin=True).residual_degrees_of_freedom(7, 0) == 6
+
+
+def test_companions_are_columns_of_y(samples):
+    X, y = samples
+    two = np.column_stack([y, y[::-1] ** 2])
+    fitted = ClassicalLeastSquares(components=["water"]).fit(X, two)
+    assert fitted.factor_counts_ == (1,)
+    with pytest.raises(ParameterError, match="expected 2 columns: the reference values, then water"):
+        ClassicalLeastSquares(components=["water"]).fit(X, y)

@@ -40,6 +40,11 @@ name = "drying, step 3"
 max_rmsep = 0.05
 min_samples = 10
 """
+CHEMISTRY = """[chemistry]
+analyte = [[1035, 1015]]
+matrix = [1000]
+interferents = ["water"]
+"""
 NOTES = {"technique": "ATR", "resolution": "4"}
 IDS = (*(f"S{i:02d}" for i in range(1, 10)), *(f"V{i}" for i in range(1, 7)))
 
@@ -55,10 +60,12 @@ def smallest(
     replicates: int = 1,
     levels: int = 13,
     ledger: Ledger | None = None,
+    water: bool = False,
 ) -> CalibrationResult:
     """Calibrate on nine samples of six points, and six to validate; the disturbances are no random numbers.
 
     With `replicates`, every sample has so many spectra; with few `levels`, reference values come again.
+    With `water`, the reference table has a column of it.
     With `repeats`, every value is the mean of two determinations, and S08 lies below a detection limit.
     """
     i = np.arange(len(ids))
@@ -77,7 +84,11 @@ def smallest(
         [*ids, "X1"],
         [Analyte(name, "% m/m", laboratory_error) for name in names],
         np.append(values, 1.0)[:, None].repeat(len(names), axis=1),
-        [{"origin": "process" if k % 2 else "spiked"} for k in range(len(ids) + 1)],
+        [
+            {"origin": "process" if k % 2 else "spiked"}
+            | ({"water": f"{1 + 0.1 * np.cos(2.0 * k):.4f}"} if water else {})
+            for k in range(len(ids) + 1)
+        ],
         censored=below,
         determinations=2 if repeats else 1,
         repeatability=dict.fromkeys(names, Repeatability(0.03, 14, 14)) if repeats else {},
@@ -114,6 +125,12 @@ def audited(tmp_path_factory):
     ledger = Ledger(tmp_path_factory.mktemp("ledger") / "looks.json")
     smallest(recipe=RECIPE, replicates=2, ledger=ledger)
     return smallest(recipe=RECIPE + AUDIT, replicates=2, ledger=ledger)
+
+
+@pytest.fixture(scope="session")
+def chemical():
+    """Bands and an interferent are named."""
+    return smallest(recipe=RECIPE + CHEMISTRY, water=True)
 
 
 @pytest.fixture(scope="session")

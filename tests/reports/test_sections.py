@@ -31,6 +31,8 @@ CASES = [(name, "pls") for name in BY_NAME] + [
     ("detection", "band"),
     ("decision", "audited"),
     ("decision", "undecided"),
+    ("chemistry", "band"),
+    ("chemistry", "chemical"),
 ]
 
 

@@ -56,15 +56,16 @@ def test_the_numbers_are_the_result_and_come_back(pls):
     ]
 
 
-def test_every_key_is_documented(pls, band, unvalidated, audited):
-    for result in (pls, band, unvalidated, audited):
+def test_every_key_is_documented(pls, band, unvalidated, audited, chemical):
+    for result in (pls, band, unvalidated, audited, chemical):
         record = json.loads(report_json(result))
         keys = record["keys"]
         assert {path for path in paths(record) if not named(path, keys)} == set()
         assert all(keys.values())
 
 
-def test_every_documented_key_exists(pls, make, audited, undecided):
-    records = [json.loads(report_json(result)) for result in (pls, make(repeats=True), audited, undecided)]
+def test_every_documented_key_exists(pls, make, audited, undecided, chemical):
+    results = (pls, make(repeats=True), audited, undecided, chemical)
+    records = [json.loads(report_json(result)) for result in results]
     existing = {path.replace("by_origin.spiked", "by_origin.*") for record in records for path in paths(record)}
     assert set(records[0]["keys"]) - existing == set()
