@@ -52,9 +52,7 @@ def equip(evidence: Evidence) -> tuple[Evidence, DetectionResult | None]:
     evidence : Evidence
     """
     e, model = evidence, evidence.model
-    found, note = left_out_models(
-        e.recipe, e.training, e.values, e.crossed, model.steps, model.method, e.processed, e.axis_after
-    )
+    found, note = left_out_models(e.recipe, e.training, e.values, e.crossed, model.steps, model.method, e.processed)
     detection = detect(model, e.values, e.mean, e.crossed)
     analyte = next(each for each in e.recipe.analyte if each.name == model.analyte.name)
     table: DecisionTable | None = table_of(e.recipe.decision, model.analyte.name)

@@ -124,14 +124,18 @@ def blurring_remarks(steps: Sequence[Step]) -> list[str]:
             f"The preprocessing works in moving windows: bands were widened by half a window, {reach} "
             f"point{'s' if reach > 1 else ''} each way."
         )
-    wide = [step.name for step in steps if step.name not in LOCAL]
+    wide = [_printed(step.name) for step in steps if step.name not in LOCAL]
     if wide:
         remarks.append(
-            f"After {' and '.join(name.replace('_', ' ') for name in wide)} every ordinate also holds something of the "
+            f"After {' and '.join(wide)} every ordinate also holds something of the "
             "rest of the spectrum: the shares are those of the preprocessed ordinates, and part of a share may come "
             "from bands elsewhere."
         )
     return remarks
+
+
+def _printed(step: str) -> str:
+    return step.upper() if step in ("snv", "msc", "emsc") else step.replace("_", " ")
 
 
 def _reached(wavenumbers: FloatArray, bands: Sequence[Band], reach: int, runs: Sequence[slice]) -> BoolArray:

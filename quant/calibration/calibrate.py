@@ -18,9 +18,9 @@ from quant.calibration.leave_out import fit_pipeline
 from quant.calibration.limits import applicability_limits, degrees_of_freedom, interval_parts
 from quant.calibration.picture import picture_of
 from quant.calibration.result import AnalyteResult, CalibrationResult
-from quant.calibration.sealed import Ledger, seal_of
-from quant.calibration.split import split_samples
-from quant.calibration.validate import regression_direction, validate
+from quant.calibration.sealed import Ledger, SealResult, seal_of
+from quant.calibration.split import Split, split_samples
+from quant.calibration.validate import ValidationResult, regression_direction, validate
 from quant.errors import NotEnoughDataError
 from quant.estimator import Step
 from quant.model.calibration import Calibration
@@ -105,11 +105,7 @@ def _calibrate_one(
     below = check_below_limit(model, split.below_limit)
     mean = training.mean_by_sample(processed)
     fitted = model.method.predict(mean)
-    seal, validated = None, None
-    if split.validation is not None:
-        seal = seal_of(recipe, training, split.validation, name, ledger)  # the look is counted before it is taken
-        criteria = table_of(recipe.acceptance, name)
-        validated = validate(model, split.validation, kind=split.kind, how=split.how, acceptance=criteria)
+    seal, validated = _validated(recipe, split, model, name, ledger)
     return AnalyteResult(
         analyte=analyte.name,
         unit=analyte.printed_unit,
@@ -146,6 +142,17 @@ def _calibrate_one(
         chemistry=chemistry_behind(evidence),
         picture=picture_of(model, training, full, axis_after, processed, values),
     )
+
+
+def _validated(
+    recipe: Recipe, split: Split, model: Calibration, name: str, ledger: Ledger | None
+) -> tuple[SealResult | None, ValidationResult | None]:
+    """Predict the validation samples, if there are any; the look at them is counted before it is taken."""
+    if split.validation is None:
+        return None, None
+    seal = seal_of(recipe, split.calibration, split.validation, name, ledger)
+    criteria = table_of(recipe.acceptance, name)
+    return seal, validate(model, split.validation, kind=split.kind, how=split.how, acceptance=criteria)
 
 
 def _rmsecv_by_origin(origins: Sequence[str], crossed: CrossValidationResult, factors: int) -> dict[str, float]:

@@ -18,7 +18,6 @@ from quant.statistics.detection import (
     DetectionLimits,
     critical_value,
     detection_limit,
-    detection_limits,
 )
 from quant.statistics.detection_interval import DetectionInterval, blank_leverages, detection_interval
 from quant.statistics.method_limits import IchLimits, ich_limits, method_standard_deviation
@@ -29,6 +28,7 @@ FROM_REPLICATES = "scatter of replicates' predictions, times the sensitivity, fo
 FROM_RESIDUALS = "residual spectra of left-out samples; there are no replicates"
 STATED_LABORATORY = "laboratory error"
 FROM_LEFT_OUT = "s0 of left-out samples, which is rather too large: no laboratory error is known"
+ALPHA = 0.05  # shares of false alarms and of misses
 FAR = 1.0  # zero lies more than this many times the calibrated range's width below it
 EXTRAPOLATED = "zero lies far below the calibrated range: these figures are extrapolated and refuse no limit"
 
@@ -126,38 +126,33 @@ def detect(
 
 
 def _of_line(model: Calibration, method: BandArea) -> DetectionResult:
-    line = method.line_
-    if method.curve_ is not None or method.line_weights != "equal":
-        return _of_curve(model, method)
-    found = detection_limits(line)
-    sd, cv = method_standard_deviation(line)
-    return _result(
-        model,
-        line=found,
-        ich=ich_limits(line),
-        method_sd=sd,
-        method_cv=cv,
-        limits={"limit of quantification": found.quantification, "detection limit": found.detection},
-    )
-
-
-def _of_curve(model: Calibration, method: BandArea) -> DetectionResult:
-    """Of weighted lines and quadratics: from the standard error of a result at zero, the weight there in it."""
+    """By the standard error of a result at zero, whatever the curve and the weights."""
     freedom = model.uncertainty.degrees_of_freedom
-    zero = float(method.inverse_interval(method.signal_at([0.0]), model.uncertainty.t).standard_error[0])
+    at_zero = method.inverse_interval(method.signal_at(np.zeros(1)), model.uncertainty.t)
+    zero = float(at_zero.standard_error[0])
     found = DetectionLimits(
         zero_sd=zero,
         degrees_of_freedom=freedom,
         readings=1,
-        alpha=0.05,
-        beta=0.05,
+        alpha=ALPHA,
+        beta=ALPHA,
         way=NONCENTRAL_T,
-        critical=critical_value(zero, freedom),
-        detection=detection_limit(zero, freedom),
+        critical=critical_value(zero, freedom, ALPHA),
+        detection=detection_limit(zero, freedom, ALPHA, ALPHA),
         quantification=QUANTIFICATION_FACTOR * zero,
     )
-    limits = {"limit of quantification": found.quantification, "detection limit": found.detection}
-    return _result(model, line=found, limits=limits)
+    # The guideline's ways and the standard's figure are those of a straight, unweighted line.
+    plain = method.curve_ is None and method.line_weights == "equal"
+    spread = plain and not method.line_.through_origin
+    sd, cv = method_standard_deviation(method.line_) if spread else (None, None)
+    return _result(
+        model,
+        line=found,
+        ich=ich_limits(method.line_) if plain else (),
+        method_sd=sd,
+        method_cv=cv,
+        limits={"limit of quantification": found.quantification, "detection limit": found.detection},
+    )
 
 
 def _of_vector(

@@ -88,7 +88,7 @@ def diagnose(evidence: Evidence, validated: ValidationResult | None) -> Diagnost
     e, n = evidence, len(evidence.training)
     factors = max(e.n_terms - 1, 1)
     errors = e.left_out - e.values
-    studentised = _if_possible(lambda: studentised_residuals(e.errors, e.leverage, e.n_terms)[1])
+    studentised = _if_possible(lambda: studentised_residuals(e.weighted_errors, e.leverage, e.n_terms)[1])
     nearest = _if_possible(lambda: _own_neighbours(e.scores))
     mandel, lack = _of_the_line(e)
     found = DiagnosticsResult(
@@ -105,7 +105,7 @@ def diagnose(evidence: Evidence, validated: ValidationResult | None) -> Diagnost
         gap_limit=None if nearest is None else float(nearest.max()),
         studentised=studentised,
         studentised_limit=_if_possible(lambda: bonferroni_limit(n, e.n_terms, PROBABILITY)),
-        influence=_if_possible(lambda: cooks_distance(e.errors, e.leverage, e.n_terms)),
+        influence=_if_possible(lambda: cooks_distance(e.weighted_errors, e.leverage, e.n_terms)),
         vip=_vip(e.model.method) if isinstance(e.model.method, PLS) else None,
         selectivity_ratio=None if e.vector is None else _selectivity_ratio(e.mean, e.vector),
         vector_error=_vector_error(e),

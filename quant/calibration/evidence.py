@@ -56,6 +56,12 @@ class Evidence:
         return self.model.method.predict(self.mean) - self.values
 
     @cached_property
+    def weighted_errors(self) -> FloatArray:
+        """The same, each times the root of its standard's weight where a line is weighted. [unit of the analyte]"""
+        method = self.model.method
+        return self.errors * np.sqrt(method.weights_at(self.values)) if isinstance(method, BandArea) else self.errors
+
+    @cached_property
     def leverage(self) -> FloatArray:
         """Leverages, 1/n included, shape (n_samples,)."""
         leverages: FloatArray = self.model.method.leverage_each(self.mean)[-1]

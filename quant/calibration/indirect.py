@@ -18,9 +18,11 @@ from quant.readers.reference_column import MISSING
 from quant.result import Result, documented
 from quant.spectra.sample_set import SampleSet
 from quant.statistics.quantiles import t_quantile
+from quant.text_table import format_number
 
 DIRECT, INDIRECT, UNKNOWN = "predicts the analyte", "predicts indirectly", "cannot be told"
 HALF = 0.5  # of the slope: a model that owes more than this to the interferents predicts them
+MOST_LOST = 1 / 3  # of the variance with the others held: above, taking the laboratory's error out amplifies chance
 FEWEST_FREEDOM = 5  # degrees of freedom, below which intervals say nothing
 CONFIDENCE = 0.95
 FIXED = 1e-6  # smallest singular value of the quantities, each of length 1: below, they go along exactly
@@ -126,34 +128,21 @@ def partial_test(
     ----------
     W. A. Fuller, Measurement Error Models, 1987, section 2.2 (method of moments), from memory.
     """
-    n, k = others.shape
-    errors = np.array([each or 0.0 for each in laboratory_errors or [None] * (k + 1)])
-    freedom = n - k - 2
-    if freedom < FEWEST_FREEDOM:
-        least = FEWEST_FREEDOM + k + 2
-        return _untested(n, f"{n} samples have all the values; at least {least} are needed")
-    design = np.column_stack([reference, others])
-    design, p = design - design.mean(axis=0), predicted - predicted.mean()
-    if same := [name for name, spread in zip(names, np.ptp(design, axis=0), strict=True) if spread == 0]:
-        return _untested(n, f"{name_some(same)} has the same value in all samples")
-    length = np.linalg.norm(design, axis=0)
-    if np.linalg.matrix_rank(design / length, tol=FIXED) <= k:
-        return _untested(n, "the standards vary these quantities in one fixed proportion")
-    moments = design.T @ design
-    apart = 1 / np.diag(np.linalg.inv(moments / np.outer(length, length))) * length**2  # of each, the others held
-    if blurred := [name for name, lost in zip(names, (n - 1) * errors**2 > HALF * apart, strict=True) if lost]:
-        return _untested(
-            n, f"with the others held, {name_some(blurred)} varies little more than the error of the laboratory"
+    design, p = np.column_stack([reference, others]), predicted
+    n, errors = len(design), np.array([each or 0.0 for each in laboratory_errors or [None] * len(names)])
+    if reason := _why_not(design, names, errors):
+        return IndirectTest(
+            verdict=UNKNOWN, through="", reason=reason, n_samples=n, slope=None, effects=(), laboratory_error=None
         )
-    inverse = np.linalg.inv(moments - (n - 1) * np.diag(errors**2))
-    coefficients = inverse @ (design.T @ p)
-    spread = np.sqrt(np.sum((p - design @ coefficients) ** 2) / freedom * np.diag(inverse @ moments @ inverse))
-    half = t_quantile((1 + CONFIDENCE) / 2, freedom) * spread
+    design, p = design - design.mean(axis=0), p - p.mean()
+    moments = design.T @ design
     variance = moments[0, 0] - (n - 1) * errors[0] ** 2
     slope = float(design[:, 0] @ p) / variance  # of the predictions on the analyte alone
-    towards = np.array([1.0, *(moments[0, 1:] / variance)])  # change of each quantity with the analyte
     rest = p - slope * design[:, 0]
     slope_error = t_quantile((1 + CONFIDENCE) / 2, n - 2) * float(np.sqrt(rest @ rest / ((n - 2) * variance)))
+    towards = np.array([1.0, *(moments[0, 1:] / variance)])  # change of each quantity with the analyte
+    coefficients, half = _coefficients(design, p, errors)
+    correlations = moments[0] / np.sqrt(moments[0, 0] * np.diag(moments))
     effects = tuple(
         PartialEffect(
             name=name,
@@ -161,13 +150,13 @@ def partial_test(
             low=float(coefficients[j] - half[j]),
             high=float(coefficients[j] + half[j]),
             share=float(coefficients[j] * towards[j] / slope) if slope else 0.0,
-            correlation=float(moments[0, j] / (length[0] * length[j])),
+            correlation=float(correlations[j]),
         )
         for j, name in enumerate(names)
     )
     verdict, through, reason = _judged(effects, slope, slope_error)
     if verdict == INDIRECT and not errors[0]:
-        reason += _unless(float(apart[0]) / (n - 1), effects[0], slope)
+        reason += _unless(float(1 / np.linalg.inv(moments)[0, 0]) / (n - 1), effects[0], slope)
     return IndirectTest(
         verdict=verdict,
         through=through,
@@ -179,13 +168,47 @@ def partial_test(
     )
 
 
+def _why_not(quantities: FloatArray, names: Sequence[str], errors: FloatArray) -> str:
+    """Say why the values cannot tell, or return an empty text."""
+    n, k = quantities.shape
+    if n - k - 1 < FEWEST_FREEDOM:
+        return f"{n} samples have all the values; at least {FEWEST_FREEDOM + k + 1} are needed"
+    if same := [name for name, spread in zip(names, np.ptp(quantities, axis=0), strict=True) if spread == 0]:
+        return f"{name_some(same)} has the same value in all samples"
+    centred = quantities - quantities.mean(axis=0)
+    length = np.linalg.norm(centred, axis=0)
+    if np.linalg.matrix_rank(centred / length, tol=FIXED) < k:
+        return "the standards vary these quantities in one fixed proportion"
+    # Share of the variance, in the direction where it is largest, that is the laboratory's error.
+    lost = np.linalg.inv(centred.T @ centred) * np.outer(errors, errors) * (n - 1)
+    if np.linalg.eigvalsh(lost)[-1] > MOST_LOST:
+        worst = names[int(np.argmax(np.diag(lost)))]
+        return f"with the others held, {worst} varies little more than the error of the laboratory"
+    return ""
+
+
+def _coefficients(design: FloatArray, p: FloatArray, errors: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Return partial coefficients, the laboratory's errors taken out of the moments, and half their 95 % intervals."""
+    n, k = design.shape
+    moments = design.T @ design
+    inverse = np.linalg.inv(moments - (n - 1) * np.diag(errors**2))
+    coefficients = inverse @ (design.T @ p)
+    freedom = n - k - 1
+    variance = np.sum((p - design @ coefficients) ** 2) / freedom
+    spread = np.sqrt(variance * np.diag(inverse @ moments @ inverse))
+    return coefficients, t_quantile((1 + CONFIDENCE) / 2, freedom) * spread
+
+
 def _judged(effects: Sequence[PartialEffect], slope: float, slope_error: float) -> tuple[str, str, str]:
     own, others = effects[0], effects[1:]
     names = name_some(effect.name for effect in others)
-    held = f"with {names} held, predictions follow {own.name} with a slope of {own.coefficient:.2g}"
-    between = f"{held} (95 %: {own.low:.2g} to {own.high:.2g}; {slope:.2g} without holding)"
+    coefficient, low, high = (format_number(value, 3) for value in (own.coefficient, own.low, own.high))
+    between = (
+        f"with {names} held, predictions follow {own.name} with a slope of {coefficient} (95 %: {low} to {high}; "
+        f"{format_number(slope, 3)} without holding)"
+    )
     if slope - slope_error <= 0:
-        return UNKNOWN, "", f"left-out predictions do not follow {own.name} at all (slope {slope:.2g})"
+        return UNKNOWN, "", f"left-out predictions do not follow {own.name} at all (slope {format_number(slope, 3)})"
     if own.high < HALF * slope:
         followed = [effect for effect in others if effect.significant and effect.share > 0]
         if followed:
@@ -204,12 +227,6 @@ def _unless(apart: float, own: PartialEffect, slope: float) -> str:
     return (
         f". That holds unless the standard error of one laboratory value is above {error:.2g}; state it as "
         "laboratory_error"
-    )
-
-
-def _untested(n: int, reason: str) -> IndirectTest:
-    return IndirectTest(
-        verdict=UNKNOWN, through="", reason=reason, n_samples=n, slope=None, effects=(), laboratory_error=None
     )
 
 

@@ -1,14 +1,13 @@
 """Models without each sample or fold, kept as differences to the whole one for intervals without a distribution."""
 
 from collections.abc import Sequence
-from dataclasses import replace
 
 import numpy as np
 
 from quant.arrays import BoolArray, FloatArray
+from quant.calibration.companions import with_companions
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.folds import make_folds
-from quant.calibration.leave_out import fit_pipeline
 from quant.errors import NotEnoughDataError
 from quant.estimator import Step, unfitted_copy
 from quant.model.left_out_models import LeftOutModels, linear_features
@@ -16,7 +15,6 @@ from quant.preprocessing.chain import chain_learns
 from quant.recipe.schema import Recipe
 from quant.regression.band_area import BandArea
 from quant.regression.method import Method
-from quant.spectra.axis import SpectralAxis
 from quant.spectra.sample_set import SampleSet
 from quant.statistics.conformal import fit_level_function
 
@@ -35,7 +33,6 @@ def left_out_models(
     steps: Sequence[Step],
     method: Method,
     processed: FloatArray,
-    axis_after: FloatArray,
 ) -> tuple[LeftOutModels | None, str]:
     """Return what jackknife+ or CV+ needs, or None and the reason.
 
@@ -54,9 +51,7 @@ def left_out_models(
     method : Method
         The fitted regression with the number of factors chosen.
     processed : array of shape (n_spectra, n_points_after)
-        Processed calibration spectra.
-    axis_after : array of shape (n_points_after,)
-        [axis unit]
+        Processed calibration spectra, which are the same in every fold since no step learns.
     """
     if not recipe.uncertainty.distribution_free:
         return None, SWITCHED_OFF
@@ -66,8 +61,8 @@ def left_out_models(
     left_out = crossed.predicted[0, crossed.factor_counts.index(method.factor_counts_[-1])]
     mean = training.mean_by_sample(processed)
     features, whole = linear_features(method, mean), method.predict(mean)
-    prepared = _behind_the_steps(training, processed, axis_after)
-    rows = [_difference(prepared, values, fold != number, method) for number in range(int(fold.max()) + 1)]
+    targets = with_companions(training, values, method.companions)
+    rows = [_difference(training, targets, processed, fold != number, method) for number in range(int(fold.max()) + 1)]
     if None in rows:
         return None, NOT_LINEAR
     vectors, offsets = (np.array(part) for part in zip(*(row for row in rows if row), strict=True))
@@ -103,18 +98,15 @@ def regression_vectors(models: LeftOutModels | None, vector: FloatArray) -> Floa
     return each
 
 
-def _behind_the_steps(training: SampleSet, processed: FloatArray, axis_after: FloatArray) -> SampleSet:
-    """The same samples with their processed spectra, so that no step has to be taken again."""
-    spectra = training.spectra
-    changed = replace(spectra, values=processed, axis=SpectralAxis(axis_after, spectra.axis.unit))
-    return replace(training, spectra=changed)
-
-
 def _difference(
-    prepared: SampleSet, values: FloatArray, kept: BoolArray, method: Method
+    training: SampleSet, targets: FloatArray, processed: FloatArray, kept: BoolArray, method: Method
 ) -> tuple[FloatArray, float] | None:
     """Difference of the regression vector, and of the prediction at features zero, of a model without some samples."""
-    _, found, _ = fit_pipeline(prepared.subset(kept), values[kept], [], unfitted_copy(method))
+    found, rows = unfitted_copy(method), kept[training.sample_index]
+    if method.averages_replicates:
+        found.fit(training.mean_by_sample(processed)[kept], targets[kept])
+    else:
+        found.fit(processed[rows], targets[training.sample_index[rows]], sample_weight=training.weights[rows])
     if isinstance(method, BandArea) and isinstance(found, BandArea):
         if method.curve_ is not None:
             return None

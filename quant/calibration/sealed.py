@@ -110,8 +110,8 @@ def fingerprint(*parts: str | bytes) -> str:
 
 
 def recipe_fingerprint(recipe: Recipe) -> str:
-    """Fingerprint of what a recipe does to the data: comments, title, criteria and limits play no part."""
-    return fingerprint(recipe.model_dump_json(exclude={"title", "acceptance", "decision"}))
+    """Fingerprint of what a recipe does to the data: comments, title, criteria, limits and bands play no part."""
+    return fingerprint(recipe.model_dump_json(exclude={"title", "acceptance", "decision", "chemistry"}))
 
 
 def criteria_fingerprint(recipe: Recipe) -> str:

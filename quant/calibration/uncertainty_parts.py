@@ -13,6 +13,7 @@ from quant.statistics.error_budget import ErrorBudget, Situation, error_budget
 from quant.statistics.error_parts import CorrectedRmsep, ErrorParts, corrected_rmsep, error_parts
 from quant.statistics.replicate_parts import ReplicateComponents, replicate_components
 
+TOO_SMALL = "what is unexplained is too small to be seen beside the other parts"
 ONE_SPECTRUM = "every calibration sample has one spectrum: presentation is part of what is unexplained"
 NO_LABORATORY = "no laboratory error is known: it is part of what is unexplained"
 OVERSTATED = (
@@ -51,20 +52,26 @@ def split_uncertainty(evidence: Evidence, validated: ValidationResult | None) ->
     """
     e, known = evidence, evidence.model.uncertainty
     found, packing = _replicates(e)
-    scatter = 0.0 if known.replicate_sd is None else known.replicate_sd**2
+    presentation = _of_means(e, found)
     laboratory = 0.0 if known.laboratory_error is None else known.laboratory_error**2
     leverage = float(e.crossed.at(e.model.factors)[1].mean())
     parts = error_parts(
         known.s0**2,
         leverage,
-        presentation=scatter / known.replicates,
-        presentation_calibration=scatter / known.replicates,
+        presentation=presentation,
+        presentation_calibration=presentation,
         laboratory=laboratory,
     )
+    # Two standard errors of the difference: a variance with ν degrees of freedom has the relative one √(2/ν).
+    freedom = max(0 if found is None else found.pack_degrees_of_freedom or found.scan_degrees_of_freedom, 1)
+    chance = math.hypot(
+        known.s0**2 * math.sqrt(2 / known.degrees_of_freedom), parts.presentation * math.sqrt(2 / freedom)
+    )
+    overstated = parts.unexplained < -2 * chance
     remarks = [
         *([] if known.replicate_sd is not None else [ONE_SPECTRUM]),
         *([] if known.laboratory_error is not None else [NO_LABORATORY]),
-        *([OVERSTATED] if parts.unexplained < 0 else []),
+        *([OVERSTATED] if overstated else [TOO_SMALL] if parts.unexplained < 0 else []),
     ]
     return UncertaintyResult(
         unit=e.unit,
@@ -79,7 +86,9 @@ def split_uncertainty(evidence: Evidence, validated: ValidationResult | None) ->
         corrected_validation=None
         if validated is None
         else _corrected(validated.figures.rmse, validated.figures.n_samples, e),
-        budget=_budget(e, scatter, parts.unexplained, laboratory),
+        budget=None
+        if overstated
+        else _budget(e, presentation * known.replicates, max(parts.unexplained, 0.0), laboratory),
         remarks=tuple(remarks),
     )
 
@@ -104,6 +113,21 @@ def _replicates(e: Evidence) -> tuple[ReplicateComponents | None, str]:
         return None, note or ""
 
 
+def _of_means(e: Evidence, found: ReplicateComponents | None) -> float:
+    """Variance that presentation gives the mean of a sample's spectra, mean over samples. [(unit of the analyte)²]"""
+    known = e.model.uncertainty
+    if known.replicate_sd is None:
+        return 0.0
+    if found is None or found.pack_variance is None:
+        return known.replicate_sd**2 / known.replicates
+    note = e.recipe.uncertainty.packing
+    packs = [
+        len({e.training.spectra.notes[row][note or ""] for row in np.flatnonzero(e.training.sample_index == i)})
+        for i in range(len(e.training))
+    ]
+    return max(found.pack_variance, 0.0) * float(np.mean(1 / np.array(packs))) + found.scan_variance / known.replicates
+
+
 def _white_noise(e: Evidence) -> float | None:
     """SD of a prediction from the replicates' variances alone, their covariances left out."""
     if e.vector is None:
@@ -120,8 +144,6 @@ def _corrected(rmse: float, n_samples: int, e: Evidence) -> CorrectedRmsep | Non
 
 
 def _budget(e: Evidence, scatter: float, unexplained: float, laboratory: float) -> ErrorBudget | None:
-    if unexplained < 0:
-        return None
     known = e.model.uncertainty
     try:
         found = error_budget(

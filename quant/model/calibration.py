@@ -11,6 +11,8 @@ from quant.errors import QuantityError
 from quant.estimator import Step
 from quant.model.decision_rule import DecisionRule
 from quant.model.left_out_models import LeftOutModels
+from quant.model.lineage import Lineage
+from quant.model.revalidation_basis import RevalidationBasis
 from quant.regression.method import Method
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.provenance import Source
@@ -115,6 +117,10 @@ class Calibration:
         What distribution-free intervals are made of ...
     left_out_note : str
         ... or why there are none.
+    lineage : Lineage
+        The model's number, and what it was made from.
+    revalidation : RevalidationBasis or None
+        What it is judged by after a service visit.
     """
 
     analyte: Analyte
@@ -140,14 +146,17 @@ class Calibration:
     smallest_from: str = ""
     left_out: LeftOutModels | None = None
     left_out_note: str = ""
+    lineage: Lineage = field(default_factory=Lineage)
+    revalidation: RevalidationBasis | None = None
 
     def __str__(self) -> str:
         """Analyte, method, size, calibrated range, state."""
         unit, limits = self.analyte.printed_unit, self.limits
         name = type(self.method).__name__
         kind = f"{name}, {self.factors} factors" if len(self.method.factor_counts_) > 2 else name
+        numbered = f", model {self.lineage.number}" if self.lineage.number > 1 else ""
         return (
-            f"{self.analyte.name}: {kind}, {self.n_samples} samples, "
+            f"{self.analyte.name}{numbered}: {kind}, {self.n_samples} samples, "
             f"{limits.lowest:g} to {limits.highest:g} {unit}, state: {self.state}"
         )
 

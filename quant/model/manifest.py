@@ -10,7 +10,9 @@ from quant.estimator import Estimator
 from quant.model.calibration import Calibration, Limits, ModelState, Uncertainty
 from quant.model.decision_rule import DecisionRule
 from quant.model.left_out_models import LeftOutModels
-from quant.preprocessing.registry import STEPS
+from quant.model.lineage import Lineage
+from quant.model.revalidation_basis import RevalidationBasis
+from quant.preprocessing.registry import CORRECTIONS, STEPS
 from quant.regression.registry import METHODS
 from quant.spectra.axis import SpectralAxis
 from quant.spectra.provenance import Source
@@ -21,6 +23,8 @@ FORMAT_VERSION = 1
 
 Arrays = dict[str, AnyArray]
 
+_STEPS = {**STEPS, **CORRECTIONS}
+
 
 def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:
     """Return what a model file holds: a manifest that JSON can write, and arrays by name."""
@@ -29,7 +33,7 @@ def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:
         "test_spectra": model.test_spectra,
         "test_predictions": model.test_predictions,
     }
-    step_names = {cls: name for name, cls in STEPS.items()}
+    step_names = {cls: name for name, cls in _STEPS.items()}
     method_names = {cls: name for name, cls in METHODS.items()}
     steps = [
         {"name": step_names[type(step)], "parameters": _split(step, f"steps/{i}", arrays)}
@@ -59,6 +63,8 @@ def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:
         "smallest_from": model.smallest_from,
         "left_out": _split(model.left_out, "left_out", arrays) if model.left_out else None,
         "left_out_note": model.left_out_note,
+        "lineage": asdict(model.lineage),
+        "revalidation": asdict(model.revalidation) if model.revalidation else None,
     }
     return manifest, arrays
 
@@ -84,7 +90,7 @@ def from_manifest(manifest: Mapping[str, Any], arrays: Arrays) -> Calibration:
         quantity=manifest["quantity"],
         reading=manifest["reading"],
         domain={note: tuple(values) for note, values in manifest["domain"].items()},
-        steps=tuple(_join(STEPS, step, f"steps/{i}", arrays) for i, step in enumerate(manifest["steps"])),
+        steps=tuple(_join(_STEPS, step, f"steps/{i}", arrays) for i, step in enumerate(manifest["steps"])),
         method=_join(METHODS, manifest["method"], "method", arrays),
         factors=manifest["factors"],
         n_samples=manifest["n_samples"],
@@ -103,6 +109,8 @@ def from_manifest(manifest: Mapping[str, Any], arrays: Arrays) -> Calibration:
         smallest_from=manifest.get("smallest_from", ""),
         left_out=_left_out(manifest.get("left_out"), arrays),
         left_out_note=manifest.get("left_out_note", ""),
+        lineage=Lineage.from_plain(manifest.get("lineage")),
+        revalidation=RevalidationBasis.from_plain(manifest.get("revalidation")),
     )
 
 

@@ -9,6 +9,7 @@ import numpy as np
 from quant.arrays import FloatArray, IntArray
 from quant.model.calibration import Calibration
 from quant.model.decision_rule import DecisionRule
+from quant.model.identity import trace
 from quant.prediction.applicability import NOT_APPLICABLE, check_acquisition, judge
 from quant.prediction.result import Prediction, PredictionResult
 from quant.prediction.uncertainty import (
@@ -70,7 +71,7 @@ def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | Non
         for i, sample in enumerate(samples)
     )
     told = rule.told(model.analyte.printed_unit) if rule else ""
-    return PredictionResult(model=str(model), rule=told, predictions=rows)
+    return PredictionResult(model=str(model), rule=told, predictions=rows, lineage=trace(model))
 
 
 def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_samples: int) -> Evaluation:

@@ -81,6 +81,9 @@ class PredictionResult(Result):
     model: str = documented("The model in one line")
     rule: str = documented("The limit decided against, its kind, source and risk; empty without one", default="")
     predictions: tuple[Prediction, ...] = documented("One entry a sample, in the order read")
+    lineage: tuple[str, ...] = documented(
+        "The model's number and fingerprint, and its ancestors back to the first calibration", default=()
+    )
 
     @property
     def accepted(self) -> bool:
@@ -105,13 +108,16 @@ class PredictionResult(Result):
                 row.unit,
                 *(f"{number:.{digits}f}" for number in (row.standard_error, row.low, row.high)),
                 row.applicability,
+                *((row.decision, _probability(row)) if self.rule else ()),
             )
             for row in self.predictions
         ]
-        lines = [self.model, format_columns(header, table)]
+        header += ("decision", "conforms") if self.rule else ()
+        lines = [self.model, *([self.rule] if self.rule else []), format_columns(header, table)]
         common = [text for text in self._remarks() if all(text in row.remarks for row in self.predictions)]
         for row in self.predictions:
-            told = [*row.reasons, *(text for text in row.remarks if text not in common)]
+            told = [*row.reasons, *(text for text in row.remarks if text not in common), row.decision_remark]
+            told = [text for text in told if text]
             lines += [f"{row.sample}: {'; '.join(told)}"] if told else []
         return "\n".join([*lines, *(f"all samples: {text}" for text in common)])
 

@@ -16,11 +16,10 @@ REFINEMENTS = 2  # of the last solution: its rounding error falls from the condi
 
 
 class _Factors(NamedTuple):
-    """L·D·Lᵀ of a pentadiagonal matrix for each spectrum; all of shape (points, spectra)."""
+    """L·E·Lᵀ of W/λ + Dᵀ·D, pentadiagonal, for each spectrum; both of shape (points, spectra)."""
 
-    first: FloatArray  # L just below the diagonal; row i couples points i and i − 1
-    second: FloatArray  # L two below the diagonal; row i couples points i and i − 2
-    inverse: FloatArray  # 1/D
+    beside: FloatArray  # L just below its diagonal of ones: row i couples points i and i − 1
+    inverse: FloatArray  # 1/E; as points two apart are coupled by 1, also L two below its diagonal, at i + 2
 
 
 def asymmetric_baseline(
@@ -108,13 +107,14 @@ def _baseline(y: FloatArray, smoothness: float, asymmetry: float, iterations: in
     rest = y - line
     weights = np.ones_like(y)
     for _ in range(iterations):
-        factors = _factorise(weights, smoothness)
-        z = _solve(factors, weights * rest)
+        share = weights / smoothness
+        factors = _factorise(share)
+        z = _solve(factors, share * rest)
         last, weights = weights, np.where(rest > z, asymmetry, 1.0 - asymmetry)
         if np.array_equal(weights, last):
             break
     for _ in range(REFINEMENTS):
-        z += _solve(factors, last * (rest - z) - smoothness * _roughness_gradient(z))
+        z += _solve(factors, share * (rest - z) - _roughness_gradient(z))
     return line + z
 
 
@@ -128,36 +128,37 @@ def _roughness_gradient(z: FloatArray) -> FloatArray:
     return result
 
 
-def _factorise(weights: FloatArray, smoothness: float) -> _Factors:
-    """Return the factors of W + λ Dᵀ·D for weights of shape (points, spectra)."""
-    points = len(weights)
-    bends = np.ones(points - 2)
-    diagonal = weights + smoothness * np.convolve(bends, [1.0, 4.0, 1.0])[:, np.newaxis]
-    beside = smoothness * np.convolve(bends, [-2.0, -2.0])  # couples points i and i + 1; λ couples i and i + 2
-    first, second, inverse = (np.zeros_like(weights) for _ in range(3))
-    np.divide(1.0, diagonal[0], out=inverse[0])
-    for i in range(1, points):
-        coupling = beside[i - 1] - smoothness * first[i - 1]  # first[0] is 0
-        np.multiply(coupling, inverse[i - 1], out=first[i])
-        pivot = diagonal[i] - first[i] * coupling
-        if i > 1:
-            np.multiply(smoothness, inverse[i - 2], out=second[i])
-            pivot -= smoothness * second[i]
-        np.divide(1.0, pivot, out=inverse[i])
-    return _Factors(first, second, inverse)
+def _factorise(share: FloatArray) -> _Factors:
+    """Return the factors of W/λ + Dᵀ·D for W/λ of shape (points, spectra)."""
+    bends = np.ones(len(share) - 2)
+    pivots = share + np.convolve(bends, [1.0, 4.0, 1.0])[:, np.newaxis]  # become E, row by row
+    couplings = np.convolve(bends, [-2.0, -2.0]).tolist()
+    beside, inverse = np.zeros_like(share), np.empty_like(share)
+    before, last = np.zeros_like(share[0]), np.divide(1.0, pivots[0], out=inverse[0])
+    factor = beside[0]
+    for coupling, pivot, row, inverted in zip(couplings, pivots[1:], beside[1:], inverse[1:], strict=True):
+        coupled = coupling - factor
+        factor = np.multiply(coupled, last, out=row)
+        pivot -= factor * coupled
+        pivot -= before
+        before, last = last, np.divide(1.0, pivot, out=inverted)
+    return _Factors(beside, inverse)
 
 
 def _solve(factors: _Factors, right: FloatArray) -> FloatArray:
     """Return the solution for a right-hand side of shape (points, spectra), which is left as it was."""
-    first, second, inverse = factors
+    beside, inverse = factors
     z = right.copy()
-    z[1] -= first[1] * z[0]
-    for i in range(2, len(z)):
-        z[i] -= first[i] * z[i - 1] + second[i] * z[i - 2]
+    z[1] -= beside[1] * z[0]
+    for far, near, row, farther, nearer in zip(inverse[:-2], beside[2:], z[2:], z[:-2], z[1:-1], strict=True):
+        row -= near * nearer + far * farther
     z *= inverse
-    z[-2] -= first[-1] * z[-1]
-    for i in range(len(z) - 3, -1, -1):
-        z[i] -= first[i + 1] * z[i + 1] + second[i + 2] * z[i + 2]
+    z[-2] -= beside[-1] * z[-1]
+    back = slice(None, None, -1)
+    for far, near, row, farther, nearer in zip(
+        inverse[:-2][back], beside[1:-1][back], z[:-2][back], z[2:][back], z[1:-1][back], strict=True
+    ):
+        row -= near * nearer + far * farther
     return z
 
 

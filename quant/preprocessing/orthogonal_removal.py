@@ -86,8 +86,20 @@ class OrthogonalRemoval(Step):
         self.components = components
 
     def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # noqa: ARG002 (the contract's signature)
-        """Find the directions; nothing is learnt from the training spectra."""
+        """Find the directions; nothing is learnt from the training spectra.
+
+        Raises
+        ------
+        ParameterError
+            No difference spectra.
+        """
         points = self.check_fit(X).shape[1]
+        if self.differences is None and self.components != 0:
+            raise ParameterError(
+                f"orthogonal_removal: no difference spectra for {self.components} component(s); expected spectra "
+                "of what is to be removed. Name their file as difference_file in the recipe, or give differences in "
+                "Python."
+            )
         self.directions_ = orthogonal_directions(
             known_spectra("differences", self.differences, points), self.components
         )

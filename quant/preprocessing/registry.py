@@ -16,6 +16,7 @@ from quant.preprocessing.resample import Resample
 from quant.preprocessing.savitzky_golay import SavitzkyGolay
 from quant.preprocessing.scale import ScaleColumns
 from quant.preprocessing.snv import SNV
+from quant.preprocessing.spectral_map import SpectralMap
 
 STEPS: dict[str, type[Step]] = {
     "absorbance": Absorbance,
@@ -37,3 +38,6 @@ STEPS: dict[str, type[Step]] = {
     "mean_centre": MeanCentre,
     "scale_columns": ScaleColumns,
 }
+
+CORRECTIONS: dict[str, type[Step]] = {"spectral_map": SpectralMap}
+"""Steps that no recipe asks for, but a model corrected after service carries."""

@@ -13,7 +13,14 @@ _OWN_KEYS = {
     "classical_least_squares": {"components", "background", "baseline", "non_negative"},
     "band_area": {"bands", "reference_band", "through_origin", "curve", "line_weights", "sd_column"},
 }
-_NO_SUMS = ("snv", "msc", "mean_centre")  # steps after which spectra are no sums of pure spectra
+_NO_SUMS = (
+    "snv",
+    "msc",
+    "emsc",
+    "unit_length",
+    "unit_area",
+    "mean_centre",
+)  # steps after which spectra are no sums of pure spectra
 _OWN = DEFAULTS["regression"]
 
 

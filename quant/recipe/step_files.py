@@ -26,8 +26,8 @@ def step_spectra(
     """Read the spectra that a step names, in the form in which spectra arrive at that step.
 
     They are read with the axis unit, quantity and signs of [spectra] (a file that names its ordinate is believed),
-    turned into absorbance where the recipe does so, put on the axis by local cubics, and taken through the steps before,
-    which therefore have to be linear.
+    turned into absorbance where the recipe does so, put on the axis by local cubics, and taken through the steps
+    before, which therefore have to be linear.
 
     Parameters
     ----------

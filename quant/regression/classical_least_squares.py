@@ -225,7 +225,7 @@ class ClassicalLeastSquares(Method):
 
     def _check_contents(self, contents: FloatArray) -> None:
         n, terms = int(np.count_nonzero(contents.any(axis=1))), contents.shape[1]
-        if n < terms or not _independent(contents):
+        if n < terms or not _independent(contents, np.linalg.norm(contents, axis=0)):
             background = " and a background" if self.background else ""
             raise NotEnoughDataError(
                 f"{1 + len(self.companions)} component(s){background} cannot be told apart: the contents of the {n} "
@@ -234,17 +234,17 @@ class ClassicalLeastSquares(Method):
             )
 
     def _check_spectra(self) -> None:
-        if not _independent(self._without_baseline(self.pure_spectra_).T):
+        lengths = np.linalg.norm(self.pure_spectra_, axis=1)  # those with their baselines: rounding error stays small
+        if not _independent(self._without_baseline(self.pure_spectra_).T, lengths):
             raise NotEnoughDataError(
                 f"The {len(self.pure_spectra_)} component(s) have no spectra that differ from each other and from the "
                 "baseline. Keep ranges in which each absorbs, or take a simpler baseline."
             )
 
 
-def _independent(columns: FloatArray) -> bool:
-    """Whether no column is a combination of the others, to rounding error."""
-    lengths = np.linalg.norm(columns, axis=0)
+def _independent(columns: FloatArray, lengths: FloatArray) -> bool:
+    """Whether no column, of about these lengths, is zero or a combination of the others, to rounding error."""
     if not lengths.all():
         return False
     sizes = np.linalg.svd(columns / lengths, compute_uv=False)
-    return bool(sizes[-1] > 10 * max(columns.shape) * EPS * sizes[0])
+    return bool(sizes[-1] > 10 * max(columns.shape) * EPS)

@@ -93,7 +93,7 @@ def test_remarks_name_what_mixes_and_what_blurs():
     assert blurring_remarks([]) == []
     remarks = blurring_remarks([SavitzkyGolay(window=11), SNV()])
     assert "5 points each way" in remarks[0]
-    assert remarks[1].startswith("After snv every ordinate")
+    assert remarks[1].startswith("After SNV every ordinate")
 
 
 @pytest.mark.parametrize(

@@ -4,7 +4,8 @@ import pytest
 
 USAGE, DATA = 2, 3
 STEPS = (
-    "absorbance, keep_ranges, leave_out_ranges, resample, snv, msc, savitzky_golay, straight_baseline, mean_centre, "
+    "absorbance, keep_ranges, leave_out_ranges, resample, snv, msc, emsc, unit_length, unit_area, normalise_band, "
+    "savitzky_golay, gap_derivative, straight_baseline, detrend, asymmetric_baseline, orthogonal_removal, mean_centre, "
     "scale_columns"
 )
 
@@ -27,8 +28,8 @@ RECIPES = {
     "key unlike any": (
         ("max_factors = 4", "zzz = 4"),
         USAGE,
-        "recipe.toml, [regression]: unknown key 'zzz'. Keys there are: method, max_factors, factors, bands, "
-        "reference_band, through_origin.",
+        "recipe.toml, [regression]: unknown key 'zzz'. Keys there are: method, max_factors, factors, components, "
+        "background, baseline, non_negative, bands, reference_band, through_origin, curve, line_weights, sd_column.",
     ),
     "missing key": (
         ('title = "Acid in a powder"\n', ""),

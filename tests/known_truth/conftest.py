@@ -111,7 +111,12 @@ def keep_result(repository: Path) -> Callable[[str, dict[str, object]], None]:
 
     def keep(name: str, found: dict[str, object]) -> None:
         content = json.loads(path.read_text("utf-8")) if path.exists() else {}
-        content[name] = {**found, "seed": SEED, "numpy": np.__version__, "python": platform.python_version()}
+        content[name] = {
+            **found,
+            "seed": found.get("seed", SEED),
+            "numpy": np.__version__,
+            "python": platform.python_version(),
+        }
         path.write_text(json.dumps(dict(sorted(content.items())), indent=2) + "\n", encoding="utf-8")
 
     return keep

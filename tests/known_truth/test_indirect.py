@@ -157,5 +157,5 @@ def test_few_false_alarms_and_few_misses():
 @pytest.mark.long
 def test_few_false_alarms_and_few_misses_in_1000_sets(keep_result):
     counts = {kind: count(kind, 1000) for kind in KINDS}
-    keep_result("indirect", {kind: dict(sorted(found.items())) for kind, found in counts.items()})
+    keep_result("indirect", {kind: dict(sorted(found.items())) for kind, found in counts.items()} | {"seed": SEED})
     check(counts)

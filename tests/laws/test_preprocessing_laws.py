@@ -7,9 +7,15 @@ from hypothesis import strategies as st
 from sklearn.base import clone
 
 from quant.preprocessing.absorbance import Absorbance
+from quant.preprocessing.asymmetric_baseline import AsymmetricBaseline, asymmetric_baseline
 from quant.preprocessing.baseline import StraightBaseline, straight_baseline
 from quant.preprocessing.centre import MeanCentre
+from quant.preprocessing.detrend import Detrend, detrend
+from quant.preprocessing.emsc import EMSC, emsc
+from quant.preprocessing.gap_derivative import GapDerivative, gap_derivative
 from quant.preprocessing.msc import MSC, msc
+from quant.preprocessing.normalise import NormaliseBand, UnitArea, UnitLength, normalise_band, unit_area, unit_length
+from quant.preprocessing.orthogonal_removal import OrthogonalRemoval, orthogonal_directions, remove_directions
 from quant.preprocessing.ranges import KeepRanges, LeaveOutRanges, inside_ranges
 from quant.preprocessing.registry import STEPS
 from quant.preprocessing.resample import Resample
@@ -21,6 +27,8 @@ seeds = st.integers(0, 2**32 - 1)
 factors = st.floats(0.01, 100)
 offsets = st.floats(-10, 10)
 AXIS = np.concatenate([np.arange(2000.0, 1900.0, -4.0), np.arange(1800.0, 1700.0, -4.0)])  # falling, with a cut
+BANDS = np.stack([np.exp(-(((AXIS - centre) / 20) ** 2)) for centre in (1960.0, 1930.0, 1750.0)])
+SPECTRA_GIVEN = ("interferents", "analytes", "differences")  # parameters that are spectra
 
 
 def random_spectra(seed, n_spectra=6, points=AXIS.size):
@@ -94,6 +102,16 @@ def equivariant_steps():
         LeaveOutRanges([[1950, 1780]], AXIS),
         SNV(),
         MSC(),
+        EMSC(2, BANDS[:2], BANDS[2:], AXIS),
+        UnitLength(),
+        UnitArea(AXIS),
+        NormaliseBand("area", (1990, 1920), axis=AXIS),
+        NormaliseBand("height_at", position=1733.3, axis=AXIS),
+        GapDerivative(3, 5, 1, AXIS),
+        GapDerivative(4, 3, 2, AXIS),
+        Detrend(2, AXIS),
+        AsymmetricBaseline(1e3, 0.05, axis=AXIS),
+        OrthogonalRemoval(BANDS, 2),
         SavitzkyGolay(7, 2, 0, AXIS),
         SavitzkyGolay(9, 3, 1, AXIS),
         SavitzkyGolay(11, 2, 2, AXIS),
@@ -112,6 +130,7 @@ def test_reversed_spectra_on_a_reversed_axis_give_the_reversed_result(step, seed
     mirrored = clone(step)
     if "axis" in step.get_params():
         mirrored.set_params(axis=AXIS[::-1])
+    mirrored.set_params(**{name: value[:, ::-1] for name, value in step.get_params().items() if name in SPECTRA_GIVEN})
     there = clone(step).fit_transform(spectra)
     back = mirrored.fit_transform(spectra[:, ::-1])[:, ::-1]
     np.testing.assert_allclose(back, there, rtol=1e-10, atol=1e-12)
@@ -157,7 +176,7 @@ def test_a_straight_line_added_is_taken_away_again(seed, first, second, offset, 
 def test_the_order_of_the_samples_does_not_matter(seed):
     spectra = random_spectra(seed)
     order = np.random.default_rng(seed).permutation(len(spectra))
-    for step in (MSC(), MeanCentre(), ScaleColumns()):
+    for step in (MSC(), EMSC(axis=AXIS), MeanCentre(), ScaleColumns()):
         shuffled = clone(step).fit(spectra[order]).transform(spectra)
         np.testing.assert_allclose(shuffled, clone(step).fit_transform(spectra), rtol=1e-11, atol=1e-12)
 
@@ -165,7 +184,7 @@ def test_the_order_of_the_samples_does_not_matter(seed):
 @given(seeds, st.lists(st.integers(1, 3), min_size=6, max_size=6))
 def test_a_weight_of_k_is_the_same_spectrum_k_times(seed, times):
     spectra = random_spectra(seed)
-    for step in (MSC(), MeanCentre(), ScaleColumns()):
+    for step in (MSC(), EMSC(axis=AXIS), MeanCentre(), ScaleColumns()):
         weighted = clone(step).fit(spectra, sample_weight=times).transform(spectra)
         repeated = clone(step).fit(np.repeat(spectra, times, axis=0)).transform(spectra)
         np.testing.assert_allclose(weighted, repeated, rtol=1e-11, atol=1e-12)
@@ -178,3 +197,102 @@ def test_absorbances_of_stacked_layers_add(seed, factor):
     np.testing.assert_allclose(
         total, Absorbance().fit_transform(first) + Absorbance().fit_transform(second), atol=1e-14
     )
+
+
+@pytest.mark.parametrize("step", [*equivariant_steps(), Resample(spacing=3.0, axis=AXIS[:25])], ids=repr)
+@given(seed=seeds)
+@settings(max_examples=10)
+def test_the_steps_called_linear_are_those_that_learn_nothing_and_turn_sums_into_sums(step, seed):
+    points = 25 if isinstance(step, Resample) else AXIS.size
+    first, second = random_spectra(seed, points=points), random_spectra(seed + 1, points=points)
+    fitted = clone(step).fit(first)
+    together = fitted.transform(0.2 * first + 0.3 * second)
+    apart = 0.2 * fitted.transform(first) + 0.3 * fitted.transform(second)
+    assert step.linear == (not step.learns and np.allclose(together, apart, rtol=1e-9, atol=1e-11))
+
+
+@given(seeds, st.lists(st.tuples(factors, *[offsets] * 5), min_size=1, max_size=5))
+def test_emsc_finds_the_reference_under_baseline_and_interferents_and_leaves_analytes(seed, numbers):
+    reference = random_spectra(seed, 1)[0]
+    t = (AXIS - 1850) / 150
+    b, offset, line, bend, interferent, analyte = np.array(numbers).T[..., np.newaxis]
+    kept = b * reference + analyte * BANDS[2]
+    spectra = kept + offset + line * t + bend * t**2 + interferent * BANDS[0]
+    corrected = emsc(spectra, reference, AXIS, 2, BANDS[:1], BANDS[2:])
+    np.testing.assert_allclose(corrected * b, kept, rtol=1e-9, atol=1e-7)
+
+
+@given(seeds)
+def test_emsc_with_nothing_but_an_offset_is_msc(seed):
+    spectra = random_spectra(seed)
+    reference = 0.5 * spectra.mean(axis=0) + random_spectra(seed + 1, 1)[0]
+    ours = emsc(spectra + reference, reference, AXIS, polynomial=0)
+    np.testing.assert_allclose(ours, msc(spectra + reference, reference), rtol=1e-9, atol=1e-10)
+
+
+@given(seeds, st.integers(0, 5), offsets, offsets)
+def test_a_polynomial_added_is_taken_out_by_detrend_and_then_nothing_is_left_to_do(seed, degree, constant, highest):
+    spectra = random_spectra(seed)
+    once = detrend(spectra, AXIS, degree)
+    t = (AXIS - 1850) / 150
+    np.testing.assert_allclose(detrend(spectra + constant + highest * t**degree, AXIS, degree), once, atol=1e-12)
+    np.testing.assert_allclose(detrend(once, AXIS, degree), once, atol=1e-13)
+
+
+@given(seeds, st.floats(1, 9), st.floats(0.001, 0.5), offsets, st.floats(-0.1, 0.1))
+@settings(max_examples=25, deadline=None)
+def test_a_line_is_its_own_smooth_baseline_and_shifts_that_of_what_it_is_added_to(seed, power, p, offset, slope):
+    line = offset + slope * (AXIS - 1850)
+    straight = asymmetric_baseline(line[np.newaxis], 10**power, p, axis=AXIS)
+    np.testing.assert_allclose(straight[0], line, rtol=1e-12, atol=1e-12)
+    spectra = random_spectra(seed, 3)
+    plain = asymmetric_baseline(spectra, 10**power, p, axis=AXIS)
+    np.testing.assert_allclose(asymmetric_baseline(spectra + line, 10**power, p, axis=AXIS), plain + line, atol=1e-9)
+
+
+@given(seeds, factors)
+def test_normalising_ignores_scale(seed, factor):
+    spectra = random_spectra(seed) - 0.3  # of either sign
+    band = {"signal": "area", "range": [1996, 1904], "baseline": [1996, 1904]}
+    banded = random_spectra(seed) + 5 * BANDS[0]
+    np.testing.assert_allclose(unit_length(factor * spectra), unit_length(spectra), rtol=1e-11)
+    np.testing.assert_allclose(unit_area(factor * spectra, AXIS), unit_area(spectra, AXIS), rtol=1e-11)
+    once = normalise_band(banded, band, AXIS)
+    np.testing.assert_allclose(normalise_band(factor * banded, band, AXIS), once, rtol=1e-10)
+    np.testing.assert_allclose(normalise_band(once, band, AXIS), once, rtol=1e-10)
+
+
+@given(seeds)
+def test_normalised_spectra_have_the_size_one(seed):
+    spectra = random_spectra(seed) - 0.3
+    np.testing.assert_allclose(np.linalg.norm(unit_length(spectra), axis=1), 1, rtol=1e-13)
+    scaled = np.abs(unit_area(spectra, AXIS))
+    areas = [-np.trapezoid(scaled[:, part], AXIS[part], axis=1) for part in (slice(25), slice(25, 50))]
+    np.testing.assert_allclose(np.sum(areas, axis=0), 1, rtol=1e-12)
+
+
+@given(
+    st.tuples(*[st.floats(-3, 3)] * 3),
+    st.integers(1, 5),
+    st.sampled_from([1, 3, 5]),
+    st.sampled_from([1, 2]),
+    st.sampled_from([1.0, -1.0]),
+    st.floats(0.25, 8),
+)
+def test_gap_derivatives_of_parabolas_are_exact_on_rising_and_falling_axes(numbers, gap, segment, order, sign, step):
+    axis = 1500 + sign * step * np.arange(30)
+    parabola = np.polynomial.Polynomial(numbers, domain=[axis.min(), axis.max()])
+    kept = GapDerivative(gap, segment, order).axis_after(axis)
+    ours = gap_derivative(parabola(axis)[np.newaxis], gap, segment, order, axis)[0]
+    np.testing.assert_allclose(ours, parabola.deriv(order)(kept), rtol=1e-9, atol=1e-12 / step**order)
+
+
+@given(seeds, st.integers(1, 3), offsets)
+def test_what_is_removed_orthogonally_may_be_there_in_any_amount(seed, components, amount):
+    spectra = random_spectra(seed)
+    directions = orthogonal_directions(BANDS, components)
+    once = remove_directions(spectra, directions)
+    np.testing.assert_allclose(once @ directions.T, 0, atol=1e-13)
+    np.testing.assert_allclose(remove_directions(spectra + amount * directions[-1], directions), once, atol=1e-12)
+    if components == len(BANDS):
+        np.testing.assert_allclose(remove_directions(spectra + amount * BANDS[1], directions), once, atol=1e-12)

@@ -134,7 +134,7 @@ def other_manifest(saved: Path, **changes: object) -> None:
         ),
         (
             {"method": {"name": "magic", "parameters": {}}},
-            r"a\.model: The model uses 'magic'.* expected pls, band_area",
+            r"a\.model: The model uses 'magic'.* expected pls, pcr, classical_least_squares, band_area",
         ),
         ({"steps": 3}, "no intact model file"),
         ({"limits": {"lowest": 1}}, "no intact model file"),

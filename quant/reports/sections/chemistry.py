@@ -30,12 +30,12 @@ def context(result: CalibrationResult, analyte: AnalyteResult, place: str) -> di
 def _shares(found: ChemistryResult) -> list[tuple[str, str, str, str]]:
     """Return a row a region: name, bands, points, share in percent; and the total."""
     rows = [
-        (each.region, "; ".join(each.bands), format_number(each.n_points), f"{100 * each.share:.1f}")
+        (each.region, "; ".join(each.bands), format_number(each.n_points), _percent(each.share, 1))
         for each in found.shares
     ]
     total = sum(each.share for each in found.shares)
     points = sum(each.n_points for each in found.shares)
-    return [*rows, ("together", "", format_number(points), f"{100 * total:.1f}")] if rows else []
+    return [*rows, ("together", "", format_number(points), _percent(total, 1))] if rows else []
 
 
 def _effect(each: PartialEffect) -> tuple[str, str, str, str, str]:
@@ -44,8 +44,13 @@ def _effect(each: PartialEffect) -> tuple[str, str, str, str, str]:
         format_number(each.correlation, 3),
         format_number(each.coefficient, 3),
         f"{format_number(each.low, 3)} to {format_number(each.high, 3)}",
-        f"{100 * each.share:.0f}",
+        _percent(each.share, 0),
     )
+
+
+def _percent(share: float, places: int) -> str:
+    """Return a share in percent; nothing is printed as "-0"."""
+    return f"{round(100 * share, places) + 0.0:.{places}f}"
 
 
 def _pictures(analyte: AnalyteResult, place: str) -> list[Picture]:

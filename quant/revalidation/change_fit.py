@@ -1,0 +1,153 @@
+"""Changes of each standard, estimated together from its spectra before and after."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from quant.arrays import FloatArray
+from quant.revalidation.change_terms import RESOLUTION, Ground, blurred, changed, terms
+
+ROUNDS = 4  # Gauss-Newton steps; from 2 on, steps are below 1 % of the standard errors
+SMOOTH = 15  # points over which the scatter between standards is averaged to give weights
+MOST_DIRECTIONS = 4  # ways in which the standards' composition may differ
+
+
+@dataclass(frozen=True, eq=False)
+class Fit:
+    """What was found.
+
+    Attributes
+    ----------
+    kinds : tuple of str
+    sizes : array of shape (n_standards, n_kinds)
+        Size of each change for each standard.
+    composition : array of shape (n_standards, n_directions)
+        Change along the directions in which the standards differ from each other.
+    rest : array of shape (n_standards, n_points)
+        What no change explains, zero at points not used. [absorbance]
+    covariance : array of shape (n_kinds + n_directions, n_kinds + n_directions)
+        Of the estimates of one standard, for noise of weight 1; mean over standards.
+    """
+
+    kinds: tuple[str, ...]
+    sizes: FloatArray
+    composition: FloatArray
+    rest: FloatArray
+    covariance: FloatArray
+
+
+def fit_changes(
+    ground: Ground,
+    before: FloatArray,
+    after: FloatArray,
+    kinds: Sequence[str],
+    directions: FloatArray,
+    weights: FloatArray,
+) -> Fit:
+    """Estimate all changes of each standard together, by weighted least squares, iterated.
+
+    Terms are taken from the mean of the two spectra, so that exchanging before and after only turns the signs and noise
+    in the spectra does not pull the sizes to one side.
+
+    Parameters
+    ----------
+    ground : Ground
+    before, after : arrays of shape (n_standards, n_points)
+        Mean spectra of the same standards, row by row. [absorbance]
+    kinds : sequence of str
+        What may have changed, see `change_terms.terms`.
+    directions : array of shape (n_directions, n_points)
+        How spectra of the standards differ by composition.
+    weights : array of shape (n_points,)
+        Of the squared residuals.
+    """
+    n, used = len(before), ground.used
+    sizes = np.zeros((n, len(kinds)))
+    composition = np.zeros((n, len(directions)))
+    root = np.sqrt(weights[used])
+    additive = np.broadcast_to(directions, (n, *directions.shape))
+    covariance = np.zeros((len(kinds) + len(directions),) * 2)
+    for round_number in range(ROUNDS + 1):
+        model, target = _both_sides(ground, before, after, kinds, sizes)
+        model = model + composition @ directions
+        rest = np.where(used, target - model, 0.0)
+        if round_number == ROUNDS:
+            break
+        columns = np.concatenate([terms(ground, 0.5 * (model + target), kinds), additive], axis=1)[:, :, used] * root
+        step, covariance = _solve(columns, rest[:, used] * root)
+        sizes, composition = sizes + step[:, : len(kinds)], composition + step[:, len(kinds) :]
+    return Fit(kinds=tuple(kinds), sizes=sizes, composition=composition, rest=rest, covariance=covariance)
+
+
+def _both_sides(
+    ground: Ground, before: FloatArray, after: FloatArray, kinds: Sequence[str], sizes: FloatArray
+) -> tuple[FloatArray, FloatArray]:
+    """Spectra before as they should look by now, and spectra after; where lines got narrower those are blurred."""
+    each = [dict(zip(kinds, row, strict=True)) for row in sizes.tolist()]
+    model = np.stack([changed(ground, row, own) for row, own in zip(before, each, strict=True)])
+    narrower = [-own.get(RESOLUTION, 0.0) for own in each]
+    return model, np.stack([blurred(ground, row, width) for row, width in zip(after, narrower, strict=True)])
+
+
+def _solve(columns: FloatArray, rest: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Least squares for every standard, shape (n, n_terms), and the mean covariance for unit noise."""
+    scale = np.linalg.norm(columns, axis=2, keepdims=True)
+    scaled = columns / np.where(scale > 0, scale, 1.0)
+    inverse = np.linalg.pinv(scaled @ scaled.transpose(0, 2, 1), rcond=1e-12, hermitian=True)
+    step = (inverse @ (scaled @ rest[:, :, None]))[:, :, 0] / scale[:, :, 0]
+    return step, np.asarray((inverse / scale / scale.transpose(0, 2, 1)).mean(axis=0))
+
+
+def composition_directions(ground: Ground, rows: FloatArray, most: int, weights: FloatArray) -> FloatArray:
+    """Return how the standards' spectra differ from each other by composition, shape (n_directions, n_points).
+
+    Leading principal directions of the spectra after each is brought to one size and baseline (all against their
+    mean): what evaporation, or any other change of the standards themselves, can do to them.
+
+    Parameters
+    ----------
+    ground : Ground
+    rows : array of shape (n_standards, n_points)
+        One spectrum a standard. [absorbance]
+    most : int
+        Not more than this.
+    weights : array of shape (n_points,)
+        Of the squares.
+    """
+    n, used = len(rows), ground.used
+    count = min(most, MOST_DIRECTIONS, (n - 1) // 2)
+    u = ground.u
+    design = np.stack([rows.mean(axis=0), np.ones_like(u), u, 0.5 * (3.0 * u * u - 1.0)])
+    root = np.sqrt(weights[used])
+    found = np.linalg.lstsq((design[:, used] * root).T, (rows[:, used] * root).T, rcond=None)[0]
+    alike = (rows - found[1:].T @ design[1:]) / found[0][:, None]
+    alike = alike - alike.mean(axis=0)
+    left, size, _ = np.linalg.svd(alike[:, used] * root, full_matrices=False)
+    kept = size[:count] > 1e-9 * max(float(size[0]), 1e-300)
+    return np.asarray(left[:, :count][:, kept].T @ alike)
+
+
+def scatter_weights(ground: Ground, rest: FloatArray) -> FloatArray:
+    """Return weights 1/variance from the scatter of residuals between standards, averaged over neighbours.
+
+    Parameters
+    ----------
+    ground : Ground
+    rest : array of shape (n_standards, n_points)
+        Residuals of a first fit.
+
+    Returns
+    -------
+    array of shape (n_points,)
+        Mean 1 over the points used, 0 elsewhere.
+    """
+    used = ground.used
+    variance = (rest[:, used] - rest[:, used].mean(axis=0)).var(axis=0)
+    window = min(SMOOTH, variance.size)
+    kernel = np.ones(window)
+    smooth = np.convolve(variance, kernel, "same") / np.convolve(np.ones_like(variance), kernel, "same")
+    smooth = np.maximum(smooth, 1e-2 * float(np.median(smooth)))
+    weights = np.zeros(ground.axis.size)
+    weights[used] = 1.0 / smooth if smooth.min() > 0 else 1.0
+    return np.asarray(weights / weights[used].mean())

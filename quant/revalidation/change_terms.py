@@ -1,0 +1,190 @@
+"""What a change of the instrument does to a spectrum, small changes as terms of a straight sum, larger ones exactly."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from quant.arrays import BoolArray, FloatArray
+from quant.spectra.segments import segments
+from quant.spectra.simulate_effects import VAPOUR_RESOLUTION, water_vapour_spectrum
+
+WIDTH_TO_VARIANCE = 1.0 / (8.0 * np.log(2.0))  # σ² of a Gaussian = FWHM² · this
+EDGE = 4  # points at either end of a run that derivatives and shifted spectra do not reach well
+LARGEST_SHIFT = 5.0  # points; beyond, a search about the measured axis is lost
+CARBON_DIOXIDE = ((2280.0, 2390.0), (655.0, 680.0))  # cm⁻¹, Herzberg, from memory: says nothing of the instrument
+LEAST_VAPOUR = 0.05  # height of the strongest vapour line in the range, of the strongest of all, to be looked for
+
+SHIFT, STRETCH, GAIN, OFFSET = "shift", "stretch", "gain", "offset"
+SLOPE, CURVATURE, RESOLUTION, VAPOUR = "baseline_slope", "baseline_curvature", "resolution", "vapour"
+SPECTRAL_KINDS = (SHIFT, STRETCH, GAIN, OFFSET, SLOPE, CURVATURE, RESOLUTION, VAPOUR)
+"""Changes of the spectrum that are estimated together, in this order."""
+
+
+@dataclass(frozen=True, eq=False)
+class Ground:
+    """The axis that changes are looked for on.
+
+    Attributes
+    ----------
+    axis : array of shape (n_points,)
+        [axis unit]
+    used : array of bool, shape (n_points,)
+        Points that the estimate rests on.
+    light : bool
+        Whether 10^(−ordinate) is light, on which line shapes act; else they act on the ordinate itself.
+    vapour : array of shape (n_points,)
+        Water vapour, strongest line 1; zero where there can be none.
+    """
+
+    axis: FloatArray
+    used: BoolArray
+    light: bool
+    vapour: FloatArray
+
+    @property
+    def u(self) -> FloatArray:
+        """The axis from −1 to 1 over the points used, shape (n_points,)."""
+        inside = self.axis[self.used]
+        low, high = inside.min(), inside.max()
+        return np.asarray(2.0 * (self.axis - low) / (high - low) - 1.0)
+
+    @property
+    def kinds(self) -> tuple[str, ...]:
+        """The kinds of change that can be looked for on this axis."""
+        visible = np.abs(self.vapour[self.used]).max(initial=0.0) > LEAST_VAPOUR
+        return SPECTRAL_KINDS if visible else SPECTRAL_KINDS[:-1]
+
+
+def ground_for(axis: FloatArray, unit: str, used: BoolArray, *, light: bool, resolution: float | None) -> Ground:
+    """Return the ground: points used without the ends of each run and without carbon dioxide.
+
+    Parameters
+    ----------
+    axis : array of shape (n_points,)
+        [unit]
+    unit : str
+        Of the axis.
+    used : array of bool, shape (n_points,)
+        Points that may be used.
+    light : bool
+        Whether 10^(−ordinate) is light.
+    resolution : float or None
+        Width of the line shape [cm⁻¹]; that at which vapour lines are known if None.
+    """
+    kept = used.copy()
+    for run in segments(axis):
+        kept[run.start : run.start + EDGE] = False
+        kept[max(run.stop - EDGE, run.start) : run.stop] = False
+    vapour = np.zeros_like(axis)
+    if unit == "cm-1":
+        for low, high in CARBON_DIOXIDE:
+            kept &= ~((axis > low) & (axis < high))
+        vapour = np.asarray(water_vapour_spectrum(axis, resolution or VAPOUR_RESOLUTION))
+    return Ground(axis=axis, used=kept, light=light, vapour=vapour)
+
+
+def terms(ground: Ground, rows: FloatArray, kinds: Sequence[str]) -> FloatArray:
+    """Return what a unit of each change adds to spectra, to first order, shape (n, n_kinds, n_points).
+
+    Parameters
+    ----------
+    ground : Ground
+    rows : array of shape (n, n_points)
+        Spectra, absorbance.
+    kinds : sequence of str
+        Which changes: a band at ν goes to ν·(1 + stretch) + shift [axis unit; relative]; ordinates become
+        (1 + gain) times; offset, slope and curvature are coefficients of 1, u and (3u² − 1)/2 over the range used;
+        resolution is what is added to the square of the line width [(axis unit)²]; vapour the height of its strongest
+        line.
+    """
+    slope, bend = derivatives(ground, rows)
+    u, ones = ground.u, np.ones_like(ground.axis)
+    made = {
+        SHIFT: -slope,
+        STRETCH: -slope * ground.axis,
+        GAIN: rows,
+        OFFSET: ones,
+        SLOPE: u,
+        CURVATURE: 0.5 * (3.0 * u * u - 1.0),
+        RESOLUTION: 0.5 * WIDTH_TO_VARIANCE * bend,
+        VAPOUR: ground.vapour,
+    }
+    return np.stack([np.broadcast_to(made[kind], rows.shape) for kind in kinds], axis=1)
+
+
+def derivatives(ground: Ground, rows: FloatArray) -> tuple[FloatArray, FloatArray]:
+    """Return the slope of spectra and what line broadening adds per unit of variance, each of shape (n, n_points).
+
+    Where the ordinate is absorbance, a line shape acts on T = 10^(−A): T''/T = −ln 10·A'' + (ln 10·A')², so that
+    the absorbance gains A'' − ln 10·A'² per half a unit of variance.
+    """
+    slope, bend = np.zeros_like(rows), np.zeros_like(rows)
+    for run in segments(ground.axis):
+        if run.stop - run.start > 2 * EDGE:
+            slope[:, run] = np.gradient(rows[:, run], ground.axis[run], axis=1)
+            bend[:, run] = np.gradient(slope[:, run], ground.axis[run], axis=1)
+    return slope, bend - np.log(10.0) * slope**2 if ground.light else bend
+
+
+def changed(ground: Ground, row: FloatArray, sizes: dict[str, float]) -> FloatArray:
+    """Return one spectrum as it looks after changes of the sizes given, shape (n_points,).
+
+    Parameters
+    ----------
+    ground : Ground
+    row : array of shape (n_points,)
+        Spectrum, absorbance.
+    sizes : mapping
+        Size by kind, in the units of `terms`; kinds not named do not change. A resolution below 0 is left to the
+        caller, who blurs the other spectrum.
+    """
+    result = blurred(ground, row * (1.0 + sizes.get(GAIN, 0.0)), max(sizes.get(RESOLUTION, 0.0), 0.0))
+    result = moved(ground, result, sizes.get(SHIFT, 0.0), sizes.get(STRETCH, 0.0))
+    u = ground.u
+    result = result + sizes.get(OFFSET, 0.0) + sizes.get(SLOPE, 0.0) * u
+    return np.asarray(
+        result + sizes.get(CURVATURE, 0.0) * 0.5 * (3.0 * u * u - 1.0) + sizes.get(VAPOUR, 0.0) * ground.vapour
+    )
+
+
+def moved(ground: Ground, row: FloatArray, shift: float, stretch: float) -> FloatArray:
+    """Return a spectrum with a band at ν moved to ν·(1 + stretch) + shift, by a cubic spline through each run."""
+    from scipy.interpolate import CubicSpline  # deferred: start-up
+
+    if shift == 0.0 and stretch == 0.0:
+        return row
+    result = row.copy()
+    for run in segments(ground.axis):
+        x, y = ground.axis[run], row[run]
+        if x.size <= 2 * EDGE:
+            continue
+        if x[0] > x[-1]:
+            x, y = x[::-1], y[::-1]
+        step = LARGEST_SHIFT * float(np.median(np.diff(x)))
+        wanted = (ground.axis[run] - shift) / (1.0 + stretch)
+        near = np.clip(wanted, ground.axis[run] - step, ground.axis[run] + step)
+        result[run] = CubicSpline(x, y)(np.clip(near, x[0], x[-1]))
+    return result
+
+
+def blurred(ground: Ground, row: FloatArray, squared_width: float) -> FloatArray:
+    """Return a spectrum seen through a further Gaussian line shape of FWHM² = `squared_width` [(axis unit)²].
+
+    By Fourier transform of each run, mirrored at its ends, so that widths below a point's spacing are right as well.
+    """
+    if squared_width <= 0.0:
+        return row
+    result = row.copy()
+    for run in segments(ground.axis):
+        size = run.stop - run.start
+        if size <= 2 * EDGE:
+            continue
+        step = float(np.abs(np.median(np.diff(ground.axis[run]))))
+        light = 10.0 ** -row[run] if ground.light else row[run]
+        mirrored = np.concatenate([light, light[::-1]])
+        frequency = np.fft.rfftfreq(2 * size, step)
+        damping = np.exp(-2.0 * np.pi**2 * frequency**2 * WIDTH_TO_VARIANCE * squared_width)
+        seen = np.fft.irfft(np.fft.rfft(mirrored) * damping, 2 * size)[:size]
+        result[run] = -np.log10(np.maximum(seen, 1e-6)) if ground.light else seen
+    return result

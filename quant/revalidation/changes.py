@@ -1,0 +1,209 @@
+"""What changed in the spectra of the same standards, before and after."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+
+from quant.arrays import FloatArray
+from quant.model.calibration import Calibration
+from quant.result import Result, documented
+from quant.revalidation.change_fit import Fit, composition_directions, fit_changes, scatter_weights
+from quant.revalidation.change_pairs import Pairs, pair_spectra
+from quant.revalidation.change_terms import RESOLUTION, changed
+from quant.revalidation.change_tests import dempster_p, mean_p
+from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, describe
+from quant.revalidation.multiple_tests import holm_adjusted
+from quant.spectra.spectra_set import SpectraSet
+from quant.statistics.groups import connected_groups
+from quant.text_table import format_columns
+from quant.units import AXIS_UNITS
+
+SIGNIFICANCE = 0.05  # of the whole family, held by Holm
+SAME_CLASS = 0.95  # correlation of two estimates beyond which the two changes cannot be told apart on this range
+
+
+@dataclass(frozen=True, kw_only=True, eq=False)
+class Change(Result):
+    """One thing that may have changed."""
+
+    kind: str = documented("What changed: shift, stretch, gain, offset, baseline_slope, ...")
+    size: float = documented("How much, mean over the standards; in a class of several as if it were the only one")
+    unit: str = documented("Unit of the size")
+    standard_error: float = documented("Standard error of the size, from the scatter between standards; in its unit")
+    p_value: float = documented("Probability of as much by chance, adjusted by Holm for the number of questions asked")
+    significant: bool = documented("Whether chance does not explain it, at 5 % for all kinds together")
+    effect: float | None = documented("Mean change of the predictions that this alone causes, in the analyte's unit")
+    words: str = documented("The finding in words")
+    usual_cause: str = documented("Where such a change usually comes from")
+    same_class_as: tuple[str, ...] = documented("Kinds that cannot be told apart from it on this range")
+
+    def __str__(self) -> str:
+        """The finding, and the usual cause where it is one."""
+        return f"{self.words}. {self.usual_cause}" if self.significant else self.words
+
+
+def format_changes(changes: Sequence[Change]) -> str:
+    """Return changes as a table: kind, size, standard error, unit, p, significance, effect, class."""
+    header = ("change", "size", "standard error", "unit", "p", "significant", "effect", "same class as")
+    rows = [
+        (c.kind, c.size, c.standard_error, c.unit, c.p_value, c.significant, c.effect, ", ".join(c.same_class_as))
+        for c in changes
+    ]
+    return format_columns(header, rows)
+
+
+def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) -> tuple[Change, ...]:
+    """Estimate what changed between two measurements of the same standards, in the range that the model uses.
+
+    Axis shift and stretch, gain, offset, slope and curvature of the baseline, width of the line shape and water vapour
+    are fitted together to each standard's pair of mean spectra, beside the ways in which the standards' composition
+    differs. The mean over standards is the size; the scatter between standards gives its standard error and test. Kinds
+    whose estimates correlate by more than 0.95 on this range form one class, tested together. Noise, the analyte's
+    content and what is left unexplained are tested beside them, all in one family held by Holm.
+
+    Parameters
+    ----------
+    before, after : SpectraSet
+        Spectra of the same standards, paired by sample ID; replicates are averaged. Standards in one set only are not
+        used.
+    model : Calibration
+        Its axis, and the range it uses.
+
+    Returns
+    -------
+    tuple of Change
+        All that was looked for: significant ones first, those with the largest effect on the predictions at the top.
+
+    Raises
+    ------
+    NotEnoughDataError
+        Fewer than four standards in both sets, or too few points in the range.
+    AxisMismatchError, QuantityError
+        The spectra are not on the model's axis, or have points without absorbance.
+
+    References
+    ----------
+    .. [1] A.P. Dempster, Ann. Math. Statist. 29 (1958) 995-1010: the test of what is left (from memory).
+    """
+    pairs = pair_spectra(before, after, model)
+    ground, a, b = pairs.ground, pairs.before, pairs.after
+    kinds = ground.kinds
+    light = 10.0 ** (-2.0 * (a + b).mean(axis=0) / 2.0) if ground.light else np.ones(ground.axis.size)
+    directions = composition_directions(ground, 0.5 * (a + b), max(model.factors, 1), light)
+    weights = scatter_weights(ground, fit_changes(ground, a, b, kinds, directions, light).rest)
+    fit = fit_changes(ground, a, b, kinds, directions, weights)
+    content = _content(pairs, model, directions)
+    classes = _classes(fit, content)
+    family = [(members, _columns(fit, content, members)) for members in classes]
+    extra = [((NOISE,), pairs.noise_ratios[:, None])]
+    p_values = [mean_p(columns) for _, columns in [*family, *extra]]
+    p_values.append(dempster_p(fit.rest[:, ground.used] * np.sqrt(weights[ground.used])))
+    adjusted = holm_adjusted(np.array(p_values)).tolist()
+    changes = []
+    for (members, columns), p in zip([*family, *extra], adjusted, strict=False):
+        for i, kind in enumerate(members):
+            alone = columns[:, i]
+            if len(members) > 1:
+                fewer = [k for k in kinds if k == kind or k not in members]
+                alone = fit_changes(ground, a, b, fewer, directions, weights).sizes[:, fewer.index(kind)]
+            changes.append(_change(pairs, model, kind, alone, p, members))
+    changes.append(_unexplained(pairs, model, fit, adjusted[-1]))
+    return tuple(sorted(changes, key=lambda c: (not c.significant, -abs(c.effect or 0.0))))
+
+
+def _content(pairs: Pairs, model: Calibration, directions: FloatArray) -> FloatArray:
+    """Analyte per unit of each direction, from what the model found of the standards before, shape (n_directions,)."""
+    value = model.predict_values(pairs.ordinates(pairs.before))
+    return np.asarray([model.predict_values(pairs.ordinates(pairs.before + d)).mean() for d in directions]) - value.mean()
+
+
+def _columns(fit: Fit, content: FloatArray, members: Sequence[str]) -> FloatArray:
+    """Sizes of each standard, one column a kind."""
+    made = [fit.composition @ content if k == CONTENT else fit.sizes[:, fit.kinds.index(k)] for k in members]
+    return np.column_stack(made)
+
+
+def _classes(fit: Fit, content: FloatArray) -> list[tuple[str, ...]]:
+    """Kinds in groups that cannot be told apart: their estimates correlate beyond `SAME_CLASS`."""
+    k = len(fit.kinds)
+    names = [*fit.kinds, *([CONTENT] if content.size else [])]
+    onto = np.zeros((len(names), len(fit.covariance)))
+    onto[:k, :k] = np.eye(k)
+    onto[k:, k:] = content
+    covariance = onto @ fit.covariance @ onto.T
+    sd = np.sqrt(np.maximum(np.diag(covariance), np.finfo(float).tiny))
+    alike = np.abs(covariance / np.outer(sd, sd)) > SAME_CLASS
+    alike[k:, :] = alike[:, k:] = False  # the standards themselves are not the instrument
+    marks = [[(min(i, j), max(i, j)) for j in np.flatnonzero(alike[i]) if i != j] for i in range(len(names))]
+    group = connected_groups(marks)
+    return [tuple(n for n, g in zip(names, group, strict=True) if g == number) for number in dict.fromkeys(group.tolist())]
+
+
+def _change(
+    pairs: Pairs, model: Calibration, kind: str, each: FloatArray, p_value: float, members: Sequence[str]
+) -> Change:
+    """Put what was found of one kind into words."""
+    size, error = float(each.mean()), float(each.std(ddof=1) / np.sqrt(each.size))
+    effect = None if kind == NOISE else size if kind == CONTENT else _effect(pairs, model, kind, size)
+    unit = {CONTENT: model.analyte.printed_unit, **UNITS}.get(kind, AXIS_UNITS[pairs.unit])
+    if kind == NOISE:
+        size, error = float(np.expm1(size)), float(np.exp(size) * error)
+    if kind == RESOLUTION:
+        size, error = _width(pairs.resolution, size, error)
+    significant = p_value <= SIGNIFICANCE
+    others = tuple(other for other in members if other != kind)
+    return Change(
+        kind=kind,
+        size=size,
+        unit=unit,
+        standard_error=error,
+        p_value=p_value,
+        significant=significant,
+        effect=effect,
+        words=describe(kind, size, error, unit, significant=significant, others=others),
+        usual_cause=CAUSES[kind],
+        same_class_as=others,
+    )
+
+
+def _width(width: float, added: float, error: float) -> tuple[float, float]:
+    """Turn what is added to the square of the line width into a change of the width, with its standard error."""
+    now = float(np.sqrt(max(width**2 + added, 0.0)))
+    return now - width, error / (2.0 * max(now, 0.5 * width))
+
+
+def _effect(pairs: Pairs, model: Calibration, kind: str, size: float) -> float:
+    """Mean change of the predictions of the standards before, had only this changed. [unit of the analyte]"""
+    ground, rows = pairs.ground, pairs.before
+    if kind == RESOLUTION and size < 0:
+        return -_effect(pairs, model, kind, -size)
+    now = np.stack([changed(ground, row, {kind: size}) for row in rows])
+    return _mean_step(pairs, model, now - rows)
+
+
+def _mean_step(pairs: Pairs, model: Calibration, added: FloatArray) -> float:
+    """Mean change of prediction when something is added to the absorbances of the standards before."""
+    now, then = (model.predict_values(pairs.ordinates(pairs.before + part)) for part in (added, 0.0 * added))
+    return float((now - then).mean())
+
+
+def _unexplained(pairs: Pairs, model: Calibration, fit: Fit, p_value: float) -> Change:
+    """What all standards have in common beyond every kind of change: a band of something new, say."""
+    used, mean = pairs.ground.used, fit.rest.mean(axis=0)
+    place = int(np.argmax(np.abs(np.where(used, mean, 0.0))))
+    error = float(fit.rest[:, place].std(ddof=1) / np.sqrt(len(fit.rest)))
+    significant = p_value <= SIGNIFICANCE
+    where = f"{pairs.ground.axis[place]:g} {AXIS_UNITS[pairs.unit]}"
+    return Change(
+        kind=UNEXPLAINED,
+        size=float(mean[place]),
+        unit="absorbance",
+        standard_error=error,
+        p_value=p_value,
+        significant=significant,
+        effect=_mean_step(pairs, model, np.broadcast_to(mean, fit.rest.shape)),
+        words=describe(UNEXPLAINED, float(mean[place]), error, "absorbance", significant=significant, where=where),
+        usual_cause=CAUSES[UNEXPLAINED],
+        same_class_as=(),
+    )

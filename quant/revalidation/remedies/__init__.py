@@ -1,0 +1,1 @@
+"""What restores a calibration: one remedy, one function; each fitted to standards, judged on those it had not seen."""

@@ -1,0 +1,189 @@
+"""The check standards as remedies and judgements see them: one row a standard, before and after."""
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+
+from quant.arrays import FloatArray, IntArray
+from quant.checks import name_some
+from quant.errors import SampleMismatchError
+from quant.model.calibration import Calibration
+from quant.prediction.applicability import NOT_APPLICABLE, check_acquisition, judge
+from quant.prediction.predict import Evaluation, evaluate
+from quant.recipe.load import load_samples, load_validation_samples
+from quant.recipe.schema import Recipe
+from quant.spectra.sample_set import SampleSet, mean_by_sample, pair_samples
+from quant.spectra.spectra_set import SpectraSet
+from quant.calibration.split import split_samples
+
+
+@dataclass(frozen=True, eq=False)
+class Training:
+    """The calibration's own spectra behind the model's steps, with values and weights (1/m a replicate)."""
+
+    processed: FloatArray
+    values: FloatArray
+    weights: FloatArray
+
+
+@dataclass(frozen=True, eq=False)
+class Standards:
+    """Check standards measured after the visit, and before it where that was done.
+
+    Attributes
+    ----------
+    model : Calibration
+    sample_ids : tuple of str
+        The standards, n of them.
+    reference : array of shape (n,)
+        [unit of the analyte]
+    after_spectra : SpectraSet
+        On the model's axis.
+    after_index : array of int, shape (n_spectra,)
+        The standard that each belongs to.
+    before_spectra, before_index
+        The same from before the visit, or None.
+    training : Training or None
+        The calibration's own spectra, for remedies that fit anew.
+    """
+
+    model: Calibration
+    sample_ids: tuple[str, ...]
+    reference: FloatArray
+    after_spectra: SpectraSet
+    after_index: IntArray
+    before_spectra: SpectraSet | None = None
+    before_index: IntArray | None = None
+    training: Training | None = None
+
+    def __len__(self) -> int:
+        return len(self.sample_ids)
+
+    @property
+    def paired(self) -> bool:
+        """Whether there are spectra from before."""
+        return self.before_spectra is not None
+
+    @cached_property
+    def after_raw(self) -> FloatArray:
+        """Mean spectra after, shape (n, n_points)."""
+        return mean_by_sample(self.after_spectra.values, self.after_index, len(self))
+
+    @cached_property
+    def before_raw(self) -> FloatArray:
+        """Mean spectra before, shape (n, n_points)."""
+        assert self.before_spectra is not None
+        assert self.before_index is not None
+        return mean_by_sample(self.before_spectra.values, self.before_index, len(self))
+
+    @cached_property
+    def after_processed(self) -> FloatArray:
+        """Mean spectra after, behind the model's steps, shape (n, n_points_after)."""
+        return mean_by_sample(self.model.process(self.after_spectra.values), self.after_index, len(self))
+
+    @cached_property
+    def before_processed(self) -> FloatArray:
+        """Mean spectra before, behind the model's steps, shape (n, n_points_after)."""
+        assert self.before_spectra is not None
+        assert self.before_index is not None
+        return mean_by_sample(self.model.process(self.before_spectra.values), self.before_index, len(self))
+
+    @cached_property
+    def after(self) -> Evaluation:
+        """What the model says of the standards now."""
+        return self.evaluated(self.model, np.arange(len(self)))
+
+    @cached_property
+    def before(self) -> FloatArray:
+        """What it said of them before, shape (n,). [unit of the analyte]"""
+        return np.asarray(self.model.method.predict(self.before_processed))
+
+    @cached_property
+    def target(self) -> FloatArray:
+        """What remedies have to bring back: predictions before, else reference values, shape (n,)."""
+        return self.before if self.paired else self.reference
+
+    def evaluated(self, model: Calibration, rows: IntArray) -> Evaluation:
+        """Evaluate a model (the standards' own, or one corrected) on some of the standards as measured after."""
+        place = np.full(len(self), -1)
+        place[rows] = np.arange(rows.size)
+        index = place[self.after_index]
+        chosen = index >= 0
+        return evaluate(model, model.process(self.after_spectra.values[chosen]), index[chosen], rows.size)
+
+
+def not_applicable(model: Calibration, found: Evaluation) -> int:
+    """Count the samples to which a model does not apply."""
+    verdicts = [
+        judge(model.limits, residual=r, leverage=h, value=v, standard_error=s).verdict
+        for r, h, v, s in zip(found.residual, found.leverage, found.value, found.standard_error, strict=True)
+    ]
+    return verdicts.count(NOT_APPLICABLE)
+
+
+def gather(
+    model: Calibration,
+    samples: SampleSet,
+    before: SpectraSet | None,
+    training: Training | None = None,
+) -> Standards:
+    """Bring standards measured before and after into one order.
+
+    Parameters
+    ----------
+    model : Calibration
+    samples : SampleSet
+        Standards as measured after, with reference values.
+    before : SpectraSet, optional
+        Spectra of the same standards from before.
+    training : Training, optional
+
+    Raises
+    ------
+    SampleMismatchError
+        A standard measured after lacks spectra from before.
+    """
+    resample = bool(model.reading.get("resample", False))
+    check_acquisition(model, samples.spectra)
+    _, values = samples.analyte(model.analyte.name)
+    after = samples.spectra.on_axis(model.axis, resample=resample)
+    if before is None:
+        return Standards(model, samples.sample_ids, values, after, samples.sample_index, training=training)
+    check_acquisition(model, before)
+    lacking = [sample for sample in samples.sample_ids if sample not in set(before.sample_ids)]
+    if lacking:
+        raise SampleMismatchError(
+            f"No spectrum from before of {name_some(lacking)}; expected the same standards before and after. Leave "
+            "these out of the spectra after, or leave the spectra before out altogether."
+        )
+    chosen = before.select(samples.sample_ids).on_axis(model.axis, resample=resample)
+    place = {sample: i for i, sample in enumerate(samples.sample_ids)}
+    index = np.array([place[sample] for sample in chosen.sample_ids], dtype=np.intp)
+    return Standards(model, samples.sample_ids, values, after, samples.sample_index, chosen, index, training)
+
+
+def training_of(model: Calibration, samples: SampleSet) -> Training:
+    """Return the calibration's own samples as remedies need them.
+
+    Parameters
+    ----------
+    model : Calibration
+    samples : SampleSet
+        Its calibration samples.
+    """
+    _, values = samples.analyte(model.analyte.name)
+    spectra = samples.spectra.on_axis(model.axis, resample=bool(model.reading.get("resample", False)))
+    return Training(model.process(spectra.values), values[samples.sample_index], samples.weights)
+
+
+def calibration_samples(recipe: Recipe, analyte: str) -> SampleSet:
+    """Return the calibration samples that a recipe names.
+
+    Parameters
+    ----------
+    recipe : Recipe
+    analyte : str
+    """
+    return split_samples(recipe, load_samples(recipe), load_validation_samples(recipe), analyte).calibration

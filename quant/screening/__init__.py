@@ -1,0 +1,1 @@
+"""Many candidate recipes, honestly compared."""
