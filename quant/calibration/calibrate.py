@@ -19,6 +19,7 @@ from quant.calibration.limits import applicability_limits, degrees_of_freedom, i
 from quant.calibration.picture import picture_of
 from quant.calibration.result import AnalyteResult, CalibrationResult
 from quant.calibration.sealed import Ledger, SealResult, seal_of
+from quant.calibration.sensitivity import with_revalidation
 from quant.calibration.split import Split, split_samples
 from quant.calibration.validate import ValidationResult, regression_direction, validate
 from quant.errors import NotEnoughDataError
@@ -109,7 +110,7 @@ def _calibrate_one(
     return AnalyteResult(
         analyte=analyte.name,
         unit=analyte.printed_unit,
-        model=model,
+        model=with_revalidation(model, training, recipe, validated),
         factors=factors,
         rule=rule,
         n_samples=len(training),

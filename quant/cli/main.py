@@ -13,11 +13,16 @@ from quant.errors import QuantError
 COMMANDS = {
     "plan": ("quant.cli.plan", "Design the standards to prepare, or judge those that exist."),
     "inspect": ("quant.cli.inspect", "Look over the spectra and reference values that a recipe names."),
+    "screen": ("quant.cli.screen", "Compare many candidate recipes, honestly; write the winner as a recipe."),
     "calibrate": (
         "quant.cli.calibrate",
         "Make, cross-validate and validate the calibrations of a recipe; write the report.",
     ),
     "predict": ("quant.cli.predict", "Predict new spectra with a saved model."),
+    "revalidate": (
+        "quant.cli.revalidate",
+        "After a service visit: does the calibration hold, and what restores it with the least work.",
+    ),
     "recipe": ("quant.cli.recipe", "Print the keys a recipe may have: JSON schema, or defaults with comments."),
 }
 

@@ -113,7 +113,8 @@ class PredictionResult(Result):
             for row in self.predictions
         ]
         header += ("decision", "conforms") if self.rule else ()
-        lines = [self.model, *([self.rule] if self.rule else []), format_columns(header, table)]
+        ancestry = self.lineage if len(self.lineage) > 1 else ()  # a first calibration has nothing to tell
+        lines = [self.model, *ancestry, *([self.rule] if self.rule else []), format_columns(header, table)]
         common = [text for text in self._remarks() if all(text in row.remarks for row in self.predictions)]
         for row in self.predictions:
             told = [*row.reasons, *(text for text in row.remarks if text not in common), row.decision_remark]

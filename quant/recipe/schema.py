@@ -10,6 +10,7 @@ from quant.recipe.audit_schema import Acceptances, Decisions, UncertaintyTable, 
 from quant.recipe.chemistry_schema import Chemistries, check_chemistry
 from quant.recipe.reference_schema import AnalyteTable, ReferenceSection
 from quant.recipe.regression_schema import RegressionTable, check_regression
+from quant.recipe.revalidation_schema import Revalidations, check_revalidation
 from quant.recipe.screen_schema import ScreenTable
 from quant.recipe.table import DEFAULTS, Positive, Table, Text
 
@@ -154,6 +155,9 @@ class Recipe(Table):
     )
     acceptance: Acceptances = Field(default_factory=list, description="What validation has to show.")
     decision: Decisions = Field(default_factory=list, description="The limit that results are decided against.")
+    revalidation: Revalidations = Field(
+        default_factory=list, description="What the calibration may lose before it has to be corrected."
+    )
     chemistry: Chemistries = Field(default_factory=list, description="What is known of bands and interferents.")
     screen: ScreenTable | None = Field(None, description="Alternatives that `quant screen` compares.")
 
@@ -167,6 +171,7 @@ class Recipe(Table):
         check_analytes("decision", self.decision, names)
         check_regression(self.regression, names, [str(table.get("step")) for table in self.preprocessing])
         check_chemistry(self.chemistry, names)
+        check_revalidation(self.revalidation, names)
         return self
 
     _folder: str = PrivateAttr(default=".")

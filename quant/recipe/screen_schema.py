@@ -66,9 +66,16 @@ class ChanceTable(Table):
 class ScreenTable(Table):
     """[screen]: alternatives to compare, behind the steps under [[preprocessing]]."""
 
-    choice: list[ChoiceTable] = Field(default_factory=list, description="Places in the preprocessing.")
+    choice: list[ChoiceTable] = Field(
+        default_factory=list, description="Places in the preprocessing; every combination of their steps is compared."
+    )
     orders: list[list[Text]] | None = Field(
         None, description="Orders of the places to compare, each naming all of them; default: as they are written."
+    )
+    chains: list[list[dict[str, Any]]] = Field(
+        default_factory=list,
+        description="Whole preprocessings to compare beside those of [[screen.choice]], or instead: lists of steps, in "
+        "which vary is allowed, too; [] is no step.",
     )
     ranges: RangesTable | None = Field(None, description="Ranges to compare; none: all points.")
     budget: Positive = Field(

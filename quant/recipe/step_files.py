@@ -8,6 +8,7 @@ from pathlib import Path
 import numpy as np
 
 from quant.arrays import FloatArray
+from quant.checks import name_some
 from quant.errors import AxisMismatchError, QuantError, QuantityError, RecipeError
 from quant.estimator import Step
 from quant.preprocessing.chain import chain_axes, fit_chain, place_on_axis
@@ -62,8 +63,9 @@ def step_spectra(
     bent = [step.name for step in rest if not step.linear]
     if bent:
         raise RecipeError(
-            f"{place}: the spectra of {file} go through the steps before, and {', '.join(bent)} has no meaning for "
-            "spectra of single substances or differences; expected linear steps only. Put it behind this step."
+            f"{place}: the spectra of {file} go through the steps before; expected linear ones, but found "
+            f"{name_some(bent)}, without meaning for spectra of single substances or differences. Put it behind this "
+            "step."
         )
     turned = any(step.name == "absorbance" for step in cuts)
     spectra = _in_quantity(_read(file, recipe), "absorbance" if turned else quantity, f"{place}: {file}")

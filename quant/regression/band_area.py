@@ -194,9 +194,13 @@ class BandArea(Method):
         return self._read(self.signals(X)).reshape(1, -1)
 
     def leverage_each(self, X: ArrayLike) -> FloatArray:
-        """Leverage 1/n + (x̂ − x̄)²/Sxx, through the origin x̂²/Σx², or that of the quadratic, shape (1, n)."""
+        """Leverage 1/n + (x̂ − x̄)²/Sxx, through the origin x̂²/Σx², or that of the quadratic, shape (1, n).
+
+        With weights it is w(x̂) times as much: the share of the calibration over that of the reading itself.
+        """
         predicted, curve = self.predict_each(X), self.curve_
-        return line_leverage(self.line_, predicted) if curve is None else curve_leverage(curve, predicted)
+        leverage = line_leverage(self.line_, predicted) if curve is None else curve_leverage(curve, predicted)
+        return leverage * self.weights_at(predicted[0])
 
     def residual_each(self, X: ArrayLike) -> FloatArray:
         """Sum of squares of what `residual_basis_` leaves of the bands' profiles, shape (1, n). [(unit of X)²]

@@ -7,7 +7,9 @@ from typing import Any, get_args, get_origin, get_type_hints
 from quant.calibration.result import CalibrationResult
 from quant.calibration.split import LeftOut
 from quant.model.calibration import Limits, Uncertainty
+from quant.model.revalidation_basis import MonitoringLimit, RevalidationBasis
 from quant.result import Result, field_docs
+from quant.spectra.provenance import Source
 
 # Records that are no results themselves and so carry no documentation of their own.
 PLAIN: dict[type[Any], dict[str, str]] = {
@@ -30,6 +32,23 @@ PLAIN: dict[type[Any], dict[str, str]] = {
         "replicates": "Spectra a sample in the calibration (harmonic mean)",
         "laboratory_error_source": "Where the laboratory error comes from, in words; empty where there is none",
     },
+    MonitoringLimit: {
+        "kind": "shift, stretch, gain, offset, slope, resolution, noise or vapour",
+        "size": "Smallest size that costs the allowed bias or SEP, or null where none up to `tried` does",
+        "tried": "Largest size tried",
+        "unit": "Unit of both",
+        "costs": "bias or SEP: what is used up first; empty where nothing is",
+    },
+    RevalidationBasis: {
+        "allowed_bias": "Largest bias allowed, its sign gone [unit of the analyte]",
+        "allowed_sep": "Largest SEP allowed [unit of the analyte]",
+        "source": "Where these two come from",
+        "sep": "SEP before any service [unit of the analyte]",
+        "n_samples": "Samples behind it",
+        "sep_source": "Independent validation, internal test, or cross-validation",
+        "monitoring": "What would break the calibration, one entry a kind of change",
+    },
+    Source: {"name": "File name", "size": "Size [bytes]", "sha256": "SHA-256 of its content"},
 }
 
 

@@ -11,7 +11,10 @@ from quant.inspection.inspect import InspectionResult
 from quant.reports.inspection_page import inspection_json, render_inspection
 from quant.reports.keys import key_docs
 from quant.reports.page import render_page
+from quant.reports.revalidation_page import render_revalidation, revalidation_json
 from quant.result import Result, documented, jsonable
+from quant.revalidation.history import ControlChart
+from quant.revalidation.result import RevalidationResult
 
 
 @dataclass(frozen=True)
@@ -69,6 +72,25 @@ def write_inspection(result: InspectionResult, folder: str | Path) -> ReportPath
     """Write `inspection.html` and `inspection.json`, as `write_report` writes those of a calibration."""
     paths = ReportPaths(Path(folder) / "inspection.html", Path(folder) / "inspection.json")
     page, numbers = render_inspection(result), inspection_json(result)
+    write_text(paths.html, page)
+    write_text(paths.json, numbers)
+    return paths
+
+
+def write_revalidation(
+    result: RevalidationResult, folder: str | Path, history: ControlChart | None = None
+) -> ReportPaths:
+    """Write `revalidation.html` and `revalidation.json`, as `write_report` writes those of a calibration.
+
+    Parameters
+    ----------
+    result : RevalidationResult
+    folder : str or Path
+    history : ControlChart, optional
+        The check sample over the months.
+    """
+    paths = ReportPaths(Path(folder) / "revalidation.html", Path(folder) / "revalidation.json")
+    page, numbers = render_revalidation(result, history), revalidation_json(result, history)
     write_text(paths.html, page)
     write_text(paths.json, numbers)
     return paths

@@ -6,10 +6,13 @@ from dataclasses import dataclass
 import numpy as np
 
 from quant.arrays import FloatArray
-from quant.revalidation.change_terms import RESOLUTION, Ground, blurred, changed, terms
+from quant.revalidation.change_terms import RESOLUTION, VAPOUR, Ground, blurred, changed, terms
 
 ROUNDS = 4  # Gauss-Newton steps; from 2 on, steps are below 1 % of the standard errors
+ROUNDS_ON = 2  # steps from an earlier fit
 SMOOTH = 15  # points over which the scatter between standards is averaged to give weights
+NEW_BAND = 4.0  # robust standard errors of the mean residual beyond which a point counts less than half
+ROBUST_ROUNDS = 6
 MOST_DIRECTIONS = 4  # ways in which the standards' composition may differ
 
 
@@ -44,6 +47,7 @@ def fit_changes(
     kinds: Sequence[str],
     directions: FloatArray,
     weights: FloatArray,
+    start: Fit | None = None,
 ) -> Fit:
     """Estimate all changes of each standard together, by weighted least squares, iterated.
 
@@ -61,18 +65,21 @@ def fit_changes(
         How spectra of the standards differ by composition.
     weights : array of shape (n_points,)
         Of the squared residuals.
+    start : Fit, optional
+        An earlier fit of the same kinds, to go on from.
     """
     n, used = len(before), ground.used
-    sizes = np.zeros((n, len(kinds)))
-    composition = np.zeros((n, len(directions)))
+    sizes = np.zeros((n, len(kinds))) if start is None else start.sizes
+    composition = np.zeros((n, len(directions))) if start is None else start.composition
+    rounds = ROUNDS if start is None else ROUNDS_ON
     root = np.sqrt(weights[used])
     additive = np.broadcast_to(directions, (n, *directions.shape))
     covariance = np.zeros((len(kinds) + len(directions),) * 2)
-    for round_number in range(ROUNDS + 1):
+    for round_number in range(rounds + 1):
         model, target = _both_sides(ground, before, after, kinds, sizes)
         model = model + composition @ directions
         rest = np.where(used, target - model, 0.0)
-        if round_number == ROUNDS:
+        if round_number == rounds:
             break
         columns = np.concatenate([terms(ground, 0.5 * (model + target), kinds), additive], axis=1)[:, :, used] * root
         step, covariance = _solve(columns, rest[:, used] * root)
@@ -102,8 +109,8 @@ def _solve(columns: FloatArray, rest: FloatArray) -> tuple[FloatArray, FloatArra
 def composition_directions(ground: Ground, rows: FloatArray, most: int, weights: FloatArray) -> FloatArray:
     """Return how the standards' spectra differ from each other by composition, shape (n_directions, n_points).
 
-    Leading principal directions of the spectra after each is brought to one size and baseline (all against their
-    mean): what evaporation, or any other change of the standards themselves, can do to them.
+    Leading principal directions of the spectra after each is brought to one size, baseline and vapour (all against
+    their mean): what evaporation, or any other change of the standards themselves, can do to them.
 
     Parameters
     ----------
@@ -118,7 +125,7 @@ def composition_directions(ground: Ground, rows: FloatArray, most: int, weights:
     n, used = len(rows), ground.used
     count = min(most, MOST_DIRECTIONS, (n - 1) // 2)
     u = ground.u
-    design = np.stack([rows.mean(axis=0), np.ones_like(u), u, 0.5 * (3.0 * u * u - 1.0)])
+    design = np.stack([rows.mean(axis=0), np.ones_like(u), u, 0.5 * (3.0 * u * u - 1.0), ground.vapour])
     root = np.sqrt(weights[used])
     found = np.linalg.lstsq((design[:, used] * root).T, (rows[:, used] * root).T, rcond=None)[0]
     alike = (rows - found[1:].T @ design[1:]) / found[0][:, None]
@@ -151,3 +158,42 @@ def scatter_weights(ground: Ground, rest: FloatArray) -> FloatArray:
     weights = np.zeros(ground.axis.size)
     weights[used] = 1.0 / smooth if smooth.min() > 0 else 1.0
     return np.asarray(weights / weights[used].mean())
+
+
+def robust_weights(ground: Ground, rest: FloatArray, weights: FloatArray) -> FloatArray:
+    """Return weights that leave out where all standards show something new, so that it does not pull at the terms.
+
+    Parameters
+    ----------
+    ground : Ground
+    rest : array of shape (n_standards, n_points)
+        Residuals of the last fit.
+    weights : array of shape (n_points,)
+        Weights from the scatter between standards.
+
+    Returns
+    -------
+    array of shape (n_points,)
+        Cauchy's: down by half where the mean residual is `NEW_BAND` standard errors.
+    """
+    z = rest.mean(axis=0) * np.sqrt(weights)
+    scale = 1.4826 * float(np.median(np.abs(z[ground.used])))
+    return np.asarray(weights / (1.0 + (z / (NEW_BAND * scale)) ** 2)) if scale > 0 else weights
+
+
+def vapour_heights(ground: Ground, rows: FloatArray, directions: FloatArray, weights: FloatArray) -> FloatArray:
+    """Return the vapour in each of several spectra against their mean, shape (n_spectra,). [absorbance]
+
+    Parameters
+    ----------
+    ground : Ground
+    rows : array of shape (n_spectra, n_points)
+        Measured under the same conditions. [absorbance]
+    directions : array of shape (n_directions, n_points)
+        How spectra differ by composition.
+    weights : array of shape (n_points,)
+        Of the squared residuals.
+    """
+    middle = np.broadcast_to(rows.mean(axis=0), rows.shape)
+    fit = fit_changes(ground, middle, rows, ground.kinds, directions, weights)
+    return fit.sizes[:, fit.kinds.index(VAPOUR)]

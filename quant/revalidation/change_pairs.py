@@ -55,7 +55,7 @@ def pair_spectra(before: SpectraSet, after: SpectraSet, model: Calibration) -> P
     if len(shared) < FEWEST_STANDARDS:
         raise NotEnoughDataError(
             f"{len(shared)} standard(s) measured both before and after ({name_some(shared) or 'none'}); at least "
-            f"{FEWEST_STANDARDS} are needed to tell a change from scatter. Measure the same standards, under the same IDs."
+            f"{FEWEST_STANDARDS} are needed to tell a change from scatter. Measure the same ones, under the same IDs."
         )
     resample = bool(model.reading.get("resample", False))
     sets = [s.select(shared).on_axis(model.axis, resample=resample) for s in (before, after)]

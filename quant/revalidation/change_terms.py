@@ -11,6 +11,7 @@ from quant.spectra.simulate_effects import VAPOUR_RESOLUTION, water_vapour_spect
 
 WIDTH_TO_VARIANCE = 1.0 / (8.0 * np.log(2.0))  # σ² of a Gaussian = FWHM² · this
 EDGE = 4  # points at either end of a run that derivatives and shifted spectra do not reach well
+MARGIN = 20  # points around those used
 LARGEST_SHIFT = 5.0  # points; beyond, a search about the measured axis is lost
 CARBON_DIOXIDE = ((2280.0, 2390.0), (655.0, 680.0))  # cm⁻¹, Herzberg, from memory: says nothing of the instrument
 LEAST_VAPOUR = 0.05  # height of the strongest vapour line in the range, of the strongest of all, to be looked for
@@ -35,12 +36,15 @@ class Ground:
         Whether 10^(−ordinate) is light, on which line shapes act; else they act on the ordinate itself.
     vapour : array of shape (n_points,)
         Water vapour, strongest line 1; zero where there can be none.
+    runs : tuple of slice
+        Where spectra are moved and blurred: unbroken stretches that hold points used, and `MARGIN` points around them.
     """
 
     axis: FloatArray
     used: BoolArray
     light: bool
     vapour: FloatArray
+    runs: tuple[slice, ...]
 
     @property
     def u(self) -> FloatArray:
@@ -76,12 +80,16 @@ def ground_for(axis: FloatArray, unit: str, used: BoolArray, *, light: bool, res
     for run in segments(axis):
         kept[run.start : run.start + EDGE] = False
         kept[max(run.stop - EDGE, run.start) : run.stop] = False
-    vapour = np.zeros_like(axis)
+    vapour, runs = np.zeros_like(axis), []
+    for run in segments(axis):
+        inside = run.start + np.flatnonzero(kept[run])
+        if inside.size and run.stop - run.start > 2 * EDGE:
+            runs.append(slice(max(run.start, int(inside[0]) - MARGIN), min(run.stop, int(inside[-1]) + MARGIN + 1)))
     if unit == "cm-1":
         for low, high in CARBON_DIOXIDE:
             kept &= ~((axis > low) & (axis < high))
         vapour = np.asarray(water_vapour_spectrum(axis, resolution or VAPOUR_RESOLUTION))
-    return Ground(axis=axis, used=kept, light=light, vapour=vapour)
+    return Ground(axis=axis, used=kept, light=light, vapour=vapour, runs=tuple(runs))
 
 
 def terms(ground: Ground, rows: FloatArray, kinds: Sequence[str]) -> FloatArray:
@@ -120,10 +128,9 @@ def derivatives(ground: Ground, rows: FloatArray) -> tuple[FloatArray, FloatArra
     the absorbance gains A'' − ln 10·A'² per half a unit of variance.
     """
     slope, bend = np.zeros_like(rows), np.zeros_like(rows)
-    for run in segments(ground.axis):
-        if run.stop - run.start > 2 * EDGE:
-            slope[:, run] = np.gradient(rows[:, run], ground.axis[run], axis=1)
-            bend[:, run] = np.gradient(slope[:, run], ground.axis[run], axis=1)
+    for run in ground.runs:
+        slope[:, run] = np.gradient(rows[:, run], ground.axis[run], axis=1)
+        bend[:, run] = np.gradient(slope[:, run], ground.axis[run], axis=1)
     return slope, bend - np.log(10.0) * slope**2 if ground.light else bend
 
 
@@ -155,10 +162,8 @@ def moved(ground: Ground, row: FloatArray, shift: float, stretch: float) -> Floa
     if shift == 0.0 and stretch == 0.0:
         return row
     result = row.copy()
-    for run in segments(ground.axis):
+    for run in ground.runs:
         x, y = ground.axis[run], row[run]
-        if x.size <= 2 * EDGE:
-            continue
         if x[0] > x[-1]:
             x, y = x[::-1], y[::-1]
         step = LARGEST_SHIFT * float(np.median(np.diff(x)))
@@ -176,10 +181,8 @@ def blurred(ground: Ground, row: FloatArray, squared_width: float) -> FloatArray
     if squared_width <= 0.0:
         return row
     result = row.copy()
-    for run in segments(ground.axis):
+    for run in ground.runs:
         size = run.stop - run.start
-        if size <= 2 * EDGE:
-            continue
         step = float(np.abs(np.median(np.diff(ground.axis[run]))))
         light = 10.0 ** -row[run] if ground.light else row[run]
         mirrored = np.concatenate([light, light[::-1]])

@@ -58,3 +58,18 @@ def dempster_p(rows: FloatArray) -> float:
     r = max(square_of / max(of_square, np.finfo(float).tiny), 1.0)
     r = min(r, float(rows.shape[1]))
     return float(special.fdtrc(r, m * r, n * float(mean @ mean) / trace))
+
+
+def spread_p(before: FloatArray, after: FloatArray) -> float:
+    """Probability by chance of two variances as different, two-sided F.
+
+    Parameters
+    ----------
+    before, after : arrays of shape (n_before,), (n_after,)
+        Two at least, normally distributed.
+    """
+    first, second = float(before.var(ddof=1)), float(after.var(ddof=1))
+    if first <= 0 or second <= 0:
+        return float(first == second)
+    above = float(special.fdtrc(after.size - 1, before.size - 1, second / first))
+    return min(1.0, 2.0 * min(above, 1.0 - above))

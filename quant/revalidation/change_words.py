@@ -5,7 +5,7 @@ from collections.abc import Sequence
 from quant.revalidation import change_terms as kinds
 from quant.text_table import format_number
 
-NOISE, CONTENT, UNEXPLAINED = "noise", "content", "unexplained"
+NOISE, CONTENT, UNEXPLAINED, VAPOUR_SPREAD = "noise", "content", "unexplained", "vapour_spread"
 
 CAUSES = {
     kinds.SHIFT: "Usual cause: the interferometer or its laser was re-aligned, the accessory or the sample sits "
@@ -18,12 +18,14 @@ CAUSES = {
     "way than for the background.",
     kinds.SLOPE: "Usual cause: another source temperature since the background, a new source or beam splitter, "
     "scattering in the sample.",
-    kinds.CURVATURE: "Usual cause: a new source, detector or beam splitter since the background, or an accessory that is "
-    "not aligned.",
-    kinds.RESOLUTION: "Usual cause: alignment of the interferometer, another aperture, or another setting of resolution "
-    "or apodisation.",
+    kinds.CURVATURE: "Usual cause: a new source, detector or beam splitter since the background, or an "
+    "accessory that is out of line.",
+    kinds.RESOLUTION: "Usual cause: alignment of the interferometer, another aperture, or another setting of "
+    "resolution or apodisation.",
     kinds.VAPOUR: "Usual cause: the instrument was opened: purge it longer, look at seals and desiccant, measure the "
     "background more often.",
+    VAPOUR_SPREAD: "Usual cause: an unsteady purge, or a background measured too seldom: look at the purge gas, "
+    "seals and desiccant.",
     NOISE: "Usual cause: source or detector old or exchanged, fewer scans, less light (alignment, a dirty crystal).",
     CONTENT: "Usual cause: the standards themselves, not the instrument: vials that were opened or leak, evaporation, "
     "water taken up. Have them assayed again.",
@@ -51,6 +53,7 @@ _NAMES = {
     kinds.CURVATURE: "curvature of the baseline",
     kinds.RESOLUTION: "line width (resolution)",
     kinds.VAPOUR: "water vapour",
+    VAPOUR_SPREAD: "how much water vapour varies",
     NOISE: "noise",
     CONTENT: "analyte in the standards",
     UNEXPLAINED: "bands of something new",
@@ -62,11 +65,20 @@ _SENTENCES = {
     kinds.STRETCH: ("The axis is longer by {0}", "The axis is shorter by {0}"),
     kinds.GAIN: ("Absorbances are larger by {0}", "Absorbances are smaller by {0}"),
     kinds.OFFSET: ("The baseline lies {0} higher", "The baseline lies {0} lower"),
-    kinds.SLOPE: ("The baseline rises towards higher axis values, {0} from its middle to the end",)
-    + ("The baseline falls towards higher axis values, {0} from its middle to the end",),
-    kinds.CURVATURE: ("The baseline is bent upwards at the ends, {0}", "The baseline is bent downwards at the ends, {0}"),
+    kinds.SLOPE: (
+        "The baseline rises towards higher axis values, {0} from its middle to the end",
+        "The baseline falls towards higher axis values, {0} from its middle to the end",
+    ),
+    kinds.CURVATURE: (
+        "The baseline is bent upwards at the ends, {0}",
+        "The baseline is bent downwards at the ends, {0}",
+    ),
     kinds.RESOLUTION: ("The line width (resolution) grew by {0}", "The line width (resolution) fell by {0}"),
     kinds.VAPOUR: ("There is more water vapour, strongest line {0}", "There is less water vapour, strongest line {0}"),
+    VAPOUR_SPREAD: (
+        "Water vapour varies more from standard to standard, strongest line {0} (standard deviation)",
+        "Water vapour varies less from standard to standard, strongest line {0} (standard deviation)",
+    ),
     NOISE: ("Noise is larger by {0}", "Noise is smaller by {0}"),
     CONTENT: ("The standards seem to have gained {0} of analyte", "The standards seem to have lost {0} of analyte"),
     UNEXPLAINED: ("Something new absorbs, most at {1}: {0}", "Something absorbs less, most at {1}: {0}"),

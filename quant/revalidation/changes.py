@@ -8,11 +8,19 @@ import numpy as np
 from quant.arrays import FloatArray
 from quant.model.calibration import Calibration
 from quant.result import Result, documented
-from quant.revalidation.change_fit import Fit, composition_directions, fit_changes, scatter_weights
+from quant.revalidation.change_fit import (
+    ROBUST_ROUNDS,
+    Fit,
+    composition_directions,
+    fit_changes,
+    robust_weights,
+    scatter_weights,
+    vapour_heights,
+)
 from quant.revalidation.change_pairs import Pairs, pair_spectra
-from quant.revalidation.change_terms import RESOLUTION, changed
-from quant.revalidation.change_tests import dempster_p, mean_p
-from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, describe
+from quant.revalidation.change_terms import RESOLUTION, VAPOUR, changed
+from quant.revalidation.change_tests import dempster_p, mean_p, spread_p
+from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, VAPOUR_SPREAD, describe
 from quant.revalidation.multiple_tests import holm_adjusted
 from quant.spectra.spectra_set import SpectraSet
 from quant.statistics.groups import connected_groups
@@ -60,7 +68,9 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     are fitted together to each standard's pair of mean spectra, beside the ways in which the standards' composition
     differs. The mean over standards is the size; the scatter between standards gives its standard error and test. Kinds
     whose estimates correlate by more than 0.95 on this range form one class, tested together. Noise, the analyte's
-    content and what is left unexplained are tested beside them, all in one family held by Holm.
+    content, how much vapour varies, and what is left unexplained are tested beside them, all in one family held by
+    Holm.
+    Where something is left that chance does not explain, the fit is repeated with little weight on it.
 
     Parameters
     ----------
@@ -88,34 +98,52 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     """
     pairs = pair_spectra(before, after, model)
     ground, a, b = pairs.ground, pairs.before, pairs.after
-    kinds = ground.kinds
-    light = 10.0 ** (-2.0 * (a + b).mean(axis=0) / 2.0) if ground.light else np.ones(ground.axis.size)
+    light = 10.0 ** -(a + b).mean(axis=0) if ground.light else np.ones(ground.axis.size)
     directions = composition_directions(ground, 0.5 * (a + b), max(model.factors, 1), light)
-    weights = scatter_weights(ground, fit_changes(ground, a, b, kinds, directions, light).rest)
-    fit = fit_changes(ground, a, b, kinds, directions, weights)
+    fit = fit_changes(ground, a, b, ground.kinds, directions, light)
+    weights = scatter_weights(ground, fit.rest)
+    fit = fit_changes(ground, a, b, ground.kinds, directions, weights, start=fit)
+    root = np.sqrt(weights[ground.used])
+    unexplained_p, used_weights = dempster_p(fit.rest[:, ground.used] * root), weights
+    if unexplained_p <= SIGNIFICANCE:
+        for _ in range(ROBUST_ROUNDS):
+            used_weights = robust_weights(ground, fit.rest, weights)
+            fit = fit_changes(ground, a, b, ground.kinds, directions, used_weights, start=fit)
     content = _content(pairs, model, directions)
-    classes = _classes(fit, content)
-    family = [(members, _columns(fit, content, members)) for members in classes]
-    extra = [((NOISE,), pairs.noise_ratios[:, None])]
-    p_values = [mean_p(columns) for _, columns in [*family, *extra]]
-    p_values.append(dempster_p(fit.rest[:, ground.used] * np.sqrt(weights[ground.used])))
-    adjusted = holm_adjusted(np.array(p_values)).tolist()
-    changes = []
-    for (members, columns), p in zip([*family, *extra], adjusted, strict=False):
+    found = [(members, _columns(fit, content, members)) for members in _classes(fit, content)]
+    found.append(((NOISE,), pairs.noise_ratios[:, None]))
+    p_values = [mean_p(columns) for _, columns in found]
+    spread = None
+    if VAPOUR in ground.kinds:
+        heights = [vapour_heights(ground, rows, directions, weights) for rows in (a, b)]
+        spread = heights[0].std(ddof=1), heights[1].std(ddof=1)
+        p_values.append(spread_p(heights[0], heights[1]))
+    adjusted = holm_adjusted([*p_values, unexplained_p]).tolist()
+    strange = adjusted[-1] <= SIGNIFICANCE
+    changes = [_unexplained(pairs, model, fit, adjusted[-1])]
+    if spread is not None:
+        changes.append(_vapour_spread(float(spread[0]), float(spread[1]), len(a), adjusted[-2]))
+    for (members, columns), p in zip(found, adjusted, strict=False):
         for i, kind in enumerate(members):
-            alone = columns[:, i]
-            if len(members) > 1:
-                fewer = [k for k in kinds if k == kind or k not in members]
-                alone = fit_changes(ground, a, b, fewer, directions, weights).sizes[:, fewer.index(kind)]
-            changes.append(_change(pairs, model, kind, alone, p, members))
-    changes.append(_unexplained(pairs, model, fit, adjusted[-1]))
+            each = columns[:, i] if len(members) == 1 else _alone(pairs, kind, members, directions, used_weights)
+            # A new substance may look like more or less of the old ones.
+            alike = (CONTENT, UNEXPLAINED) if strange and kind == CONTENT else members
+            changes.append(_change(pairs, model, kind, each, p, alike))
     return tuple(sorted(changes, key=lambda c: (not c.significant, -abs(c.effect or 0.0))))
+
+
+def _alone(pairs: Pairs, kind: str, members: Sequence[str], directions: FloatArray, weights: FloatArray) -> FloatArray:
+    """Size of a change for each standard as if the others of its class had not happened, shape (n_standards,)."""
+    kinds = [k for k in pairs.ground.kinds if k == kind or k not in members]
+    fit = fit_changes(pairs.ground, pairs.before, pairs.after, kinds, directions, weights)
+    return fit.sizes[:, kinds.index(kind)]
 
 
 def _content(pairs: Pairs, model: Calibration, directions: FloatArray) -> FloatArray:
     """Analyte per unit of each direction, from what the model found of the standards before, shape (n_directions,)."""
     value = model.predict_values(pairs.ordinates(pairs.before))
-    return np.asarray([model.predict_values(pairs.ordinates(pairs.before + d)).mean() for d in directions]) - value.mean()
+    moved = [float((model.predict_values(pairs.ordinates(pairs.before + d)) - value).mean()) for d in directions]
+    return np.array(moved)
 
 
 def _columns(fit: Fit, content: FloatArray, members: Sequence[str]) -> FloatArray:
@@ -137,7 +165,9 @@ def _classes(fit: Fit, content: FloatArray) -> list[tuple[str, ...]]:
     alike[k:, :] = alike[:, k:] = False  # the standards themselves are not the instrument
     marks = [[(min(i, j), max(i, j)) for j in np.flatnonzero(alike[i]) if i != j] for i in range(len(names))]
     group = connected_groups(marks)
-    return [tuple(n for n, g in zip(names, group, strict=True) if g == number) for number in dict.fromkeys(group.tolist())]
+    return [
+        tuple(n for n, g in zip(names, group, strict=True) if g == number) for number in dict.fromkeys(group.tolist())
+    ]
 
 
 def _change(
@@ -205,5 +235,23 @@ def _unexplained(pairs: Pairs, model: Calibration, fit: Fit, p_value: float) -> 
         effect=_mean_step(pairs, model, np.broadcast_to(mean, fit.rest.shape)),
         words=describe(UNEXPLAINED, float(mean[place]), error, "absorbance", significant=significant, where=where),
         usual_cause=CAUSES[UNEXPLAINED],
+        same_class_as=(CONTENT,) if significant and fit.composition.size else (),
+    )
+
+
+def _vapour_spread(before: float, after: float, n: int, p_value: float) -> Change:
+    """Whether water vapour varies more, or less, from standard to standard; its mean is another question."""
+    size, significant = after - before, p_value <= SIGNIFICANCE
+    error = float(np.hypot(before, after) / np.sqrt(2.0 * (n - 1)))  # of two standard deviations of n values
+    return Change(
+        kind=VAPOUR_SPREAD,
+        size=size,
+        unit="absorbance",
+        standard_error=error,
+        p_value=p_value,
+        significant=significant,
+        effect=None,
+        words=describe(VAPOUR_SPREAD, size, error, "absorbance", significant=significant),
+        usual_cause=CAUSES[VAPOUR_SPREAD],
         same_class_as=(),
     )

@@ -14,8 +14,8 @@ from scipy import stats
 from quant.arrays import FloatArray
 from quant.checks import as_vector, paired_vectors
 from quant.errors import NotEnoughDataError, ParameterError
-from quant.revalidation.multiple_tests import holm_adjusted
 from quant.revalidation.judgements import AdvisoryTest, BiasEquivalence, ScatterEquivalence
+from quant.revalidation.multiple_tests import holm_adjusted
 from quant.statistics.joint_ellipse import joint_test
 from quant.statistics.quantiles import t_quantile
 

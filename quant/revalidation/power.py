@@ -137,9 +137,7 @@ def standards_needed(
         raise ParameterError(f"chance = {chance}; expected a probability inside (0, 1).")
 
     def too_few(n: int) -> bool:
-        found = chance_of_holds(
-            n, sd=sd, sep=sep, allowed_bias=allowed_bias, allowed_sep=allowed_sep, paired=paired
-        )
+        found = chance_of_holds(n, sd=sd, sep=sep, allowed_bias=allowed_bias, allowed_sep=allowed_sep, paired=paired)
         return found < chance
 
     low, high = LEAST_STANDARDS - 1, MOST_STANDARDS

@@ -1,12 +1,12 @@
 """The check standards as remedies and judgements see them: one row a standard, before and after."""
 
-from collections.abc import Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
+from quant.calibration.split import split_samples
 from quant.checks import name_some
 from quant.errors import SampleMismatchError
 from quant.model.calibration import Calibration
@@ -14,9 +14,8 @@ from quant.prediction.applicability import NOT_APPLICABLE, check_acquisition, ju
 from quant.prediction.predict import Evaluation, evaluate
 from quant.recipe.load import load_samples, load_validation_samples
 from quant.recipe.schema import Recipe
-from quant.spectra.sample_set import SampleSet, mean_by_sample, pair_samples
+from quant.spectra.sample_set import SampleSet, mean_by_sample
 from quant.spectra.spectra_set import SpectraSet
-from quant.calibration.split import split_samples
 
 
 @dataclass(frozen=True, eq=False)

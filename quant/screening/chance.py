@@ -56,7 +56,9 @@ def chance_level(
 def _one(problem: Problem, chains: list[int] | None, seed: tuple[int, ...]) -> float:
     rng = np.random.default_rng(seed)
     permuted = problem.with_values(problem.values[permutation(len(problem.samples), problem.groups, rng)])
-    candidates, _, _ = score_all(permuted, Workers(), chains)
+    candidates, _, interrupted = score_all(permuted, Workers(), chains)
+    if interrupted:
+        raise KeyboardInterrupt  # again, for the search around this one: half a search is none
     return min(one.rmsecv for one in candidates)
 
 

@@ -1,7 +1,7 @@
 """A candidate fitted to all samples, to predict others."""
 
 from quant.arrays import FloatArray
-from quant.calibration.cross_validation import fit_pipeline
+from quant.calibration.leave_out import fit_pipeline
 from quant.preprocessing.chain import apply_chain
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
 from quant.regression.method import Method

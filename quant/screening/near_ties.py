@@ -23,7 +23,9 @@ class NearTie(Result):
 
     rank: int = documented("Its place among the leaders, from 1")
     p: float = documented("Randomisation test (van der Voet): its squared errors against the winner's, one-sided")
-    rms_difference: float = documented("Root mean square difference of its predictions to the winner's", "unit of the analyte")
+    rms_difference: float = documented(
+        "Root mean square difference of its predictions to the winner's", "unit of the analyte"
+    )
     largest_difference: float = documented("Largest of these differences", "unit of the analyte")
 
 

@@ -65,8 +65,8 @@ def _outer_fold(problem: Problem, task: tuple[int, BoolArray]) -> _Outer:
     repeat, out = task
     inner = problem.part(~out)
     found = search(inner, Workers())
-    if found is None:
-        raise KeyboardInterrupt
+    if found is None or found.interrupted:
+        raise KeyboardInterrupt  # again, for the search around this one: half a search is none
     winner = found.winner.candidate
     left = problem.samples.subset(out)
     predicted = left.mean_by_sample(FittedCandidate(inner, winner).predict(left.spectra.values))

@@ -1,7 +1,7 @@
 """Ranges to compare: pieces of the axis, and which of them are kept together."""
 
 from collections.abc import Sequence
-from itertools import combinations
+from itertools import combinations, pairwise
 from math import comb
 from typing import TypeAlias
 
@@ -39,9 +39,11 @@ def pieces_of(table: RangesTable | None, axis: FloatArray) -> tuple[slice, ...]:
         return tuple(slice(start, min(start + table.block, axis.size)) for start in starts)
     if table.number is not None:
         if table.number > axis.size:
-            raise ParameterError(f"number = {table.number} intervals of {axis.size} points; expected no more than them.")
+            raise ParameterError(
+                f"number = {table.number} intervals of {axis.size} points; expected no more than them."
+            )
         ends = np.linspace(0, axis.size, table.number + 1).round().astype(int).tolist()
-        return tuple(slice(start, stop) for start, stop in zip(ends[:-1], ends[1:], strict=True))
+        return tuple(slice(start, stop) for start, stop in pairwise(ends))
     return _given(table.intervals or [], axis)
 
 
@@ -51,7 +53,7 @@ def _given(intervals: Sequence[Sequence[float]], axis: FloatArray) -> tuple[slic
         points = np.flatnonzero(inside_ranges(axis, [(low, high)]))
         slices.append(slice(int(points[0]), int(points[-1]) + 1))
     slices.sort(key=lambda piece: piece.start)
-    for before, after in zip(slices[:-1], slices[1:], strict=True):
+    for before, after in pairwise(slices):
         if after.start < before.stop:
             raise ParameterError(
                 f"Two intervals share the point at {axis[after.start]:g}; expected intervals that do not overlap. "

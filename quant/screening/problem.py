@@ -87,10 +87,17 @@ class Problem:
             note = BATCH if all(batches) and len(set(batches)) >= FEWEST_BATCHES else None
         return groups_together(self.samples, note, duplicates=table.duplicates_together)
 
-    def axis(self, chain: int) -> FloatArray:
-        """Axis values behind a preprocessing, before ranges are cut. [axis unit]"""
-        spectra = self.samples.spectra
-        return axis_behind(build_steps(self.chain_recipe(chain), spectra.axis, spectra.quantity), spectra.axis)
+    @cached_property
+    def _axes(self) -> dict[int, tuple[FloatArray, tuple[slice, ...]]]:
+        return {}
+
+    def layout(self, chain: int) -> tuple[FloatArray, tuple[slice, ...]]:
+        """Axis values behind a preprocessing, before ranges are cut, and the pieces to choose from. [axis unit]"""
+        if chain not in self._axes:
+            spectra = self.samples.spectra
+            axis = axis_behind(build_steps(self.chain_recipe(chain), spectra.axis, spectra.quantity), spectra.axis)
+            self._axes[chain] = axis, pieces_of(self.table.ranges, axis)
+        return self._axes[chain]
 
     def chain_recipe(self, chain: int) -> Recipe:
         """Return the recipe with one preprocessing, keeping all points."""
@@ -98,8 +105,8 @@ class Problem:
 
     def ranges(self, candidate: Candidate) -> tuple[tuple[float, float], ...]:
         """Return the ranges a candidate keeps; empty: all points. [axis unit]"""
-        axis = self.axis(candidate.chain)
-        return ranges_kept(pieces_of(self.table.ranges, axis), candidate.kept, axis)
+        axis, pieces = self.layout(candidate.chain)
+        return ranges_kept(pieces, candidate.kept, axis)
 
     def candidate_recipe(self, candidate: Candidate) -> Recipe:
         """Return a candidate as a recipe of its own: its steps, its ranges, and no more factors than it can carry."""

@@ -1,7 +1,7 @@
 """The winner as a recipe for `calibrate`."""
 
 import os
-from pathlib import Path, PurePosixPath
+from pathlib import Path
 from typing import Any
 
 import tomli_w
@@ -38,6 +38,6 @@ def _moved(path: str, old: str | Path, new: str | Path) -> str:
         return path
     joined = Path(old).resolve() / path
     try:
-        return PurePosixPath(Path(os.path.relpath(joined, Path(new).resolve()))).as_posix()
+        return Path(os.path.relpath(joined, Path(new).resolve())).as_posix()
     except ValueError:  # another drive
         return joined.as_posix()

@@ -13,7 +13,7 @@ from quant.regression.fast_cross_validation_columns import fold_columns
 from quant.regression.fast_cross_validation_gram import Gram, gram_scores
 from quant.regression.fast_cross_validation_many import cross_validate_many
 from quant.regression.fast_cross_validation_windows import WindowGrams
-from quant.screening.pieces import Kept, pieces_of
+from quant.screening.pieces import Kept
 from quant.screening.problem import Candidate, Problem, measure
 from quant.statistics.quantiles import f_quantile
 
@@ -74,8 +74,8 @@ class ChainScores:
         recipe = problem.chain_recipe(chain)
         self.steps = build_steps(recipe, spectra.axis, spectra.quantity)
         check_missing_points(samples, self.steps)
-        self.n_points = problem.axis(chain).size
-        self.pieces = pieces_of(problem.table.ranges, problem.axis(chain))
+        axis, self.pieces = problem.layout(chain)
+        self.n_points = axis.size
         self.block = problem.table.ranges.block if problem.table.ranges else None
         self.y = problem.values[samples.sample_index]
         self.labels = [labels[samples.sample_index] for labels in problem.folds.repeats]

@@ -10,7 +10,7 @@ from quant.arrays import FloatArray
 from quant.calibration.cross_validation import cross_validate
 from quant.errors import ParameterError
 from quant.screening.forward_backward import forward_backward
-from quant.screening.pieces import Kept, count_of, pieces_of, selections
+from quant.screening.pieces import Kept, count_of, selections
 from quant.screening.problem import Candidate, Problem
 from quant.screening.scores import ChainScores
 from quant.screening.work import Workers
@@ -58,7 +58,7 @@ def tasks_of(problem: Problem, chains: Sequence[int] | None = None) -> tuple[lis
     """
     table, wanted = problem.table, range(len(problem.chains)) if chains is None else chains
     ranges = table.ranges
-    pieces = {chain: _piece_count(problem, chain) for chain in wanted}
+    pieces = {chain: len(problem.layout(chain)[1]) for chain in wanted}
     possible = sum(count_of(ranges, pieces[chain]) for chain in wanted)
     share = max(1, table.budget // max(len(problem.chains), 1))
     if len(wanted) > table.budget:  # even all points are too many candidates
@@ -73,11 +73,6 @@ def tasks_of(problem: Problem, chains: Sequence[int] | None = None) -> tuple[lis
         kept = selections(ranges, pieces[chain], most, (table.seed, 2, chain))
         tasks += [Task(chain, tuple(kept[first : first + CHUNK]), 0) for first in range(0, len(kept), CHUNK)]
     return tasks, possible
-
-
-def _piece_count(problem: Problem, chain: int) -> int:
-    ranges = problem.table.ranges
-    return 0 if ranges is None else len(pieces_of(ranges, problem.axis(chain)))
 
 
 def run_task(problem: Problem, task: Task) -> list[Candidate]:

@@ -1,13 +1,13 @@
 """Chains of preprocessing steps to compare."""
 
-from collections.abc import Iterator
+from collections.abc import Sequence
 from dataclasses import dataclass
 from itertools import product
 from typing import Any
 
 from quant.errors import RecipeError
 from quant.recipe.schema import Recipe
-from quant.recipe.screen_schema import ChoiceTable, ScreenTable
+from quant.recipe.screen_schema import ScreenTable
 
 StepTable = dict[str, Any]
 
@@ -58,29 +58,35 @@ def chains_of(recipe: Recipe) -> tuple[Chain, ...]:
         `vary` is no table of lists.
     """
     table = screen_table(recipe)
-    alternatives = {choice.name: list(_alternatives(choice, recipe.name)) for choice in table.choice}
-    orders = table.orders or [list(alternatives)]
+    alternatives: dict[str, list[StepTable | None]] = {}
+    for choice in table.choice:
+        steps = _varied(choice.steps, f"{recipe.name}, [[screen.choice]] {choice.name!r}")
+        alternatives[choice.name] = [None, *steps] if choice.optional else steps
+    listed = [[_varied([step], f"{recipe.name}, [screen] chains") for step in steps] for steps in table.chains]
+    if alternatives or not listed:
+        orders = table.orders or [list(alternatives)]
+        listed += [[alternatives[name] for name in order] for order in orders]
     found: dict[str, Chain] = {}
-    for order in orders:
-        for steps in product(*(alternatives[name] for name in order)):
-            chain = Chain((*recipe.preprocessing, *(step for step in steps if step is not None)))
+    for places in listed:
+        for chosen in product(*places):
+            chain = Chain((*recipe.preprocessing, *(step for step in chosen if step is not None)))
             found.setdefault(repr(chain.steps), chain)
     return tuple(found.values())
 
 
-def _alternatives(choice: ChoiceTable, recipe: str) -> Iterator[StepTable | None]:
-    if choice.optional:
-        yield None
-    for table in choice.steps:
+def _varied(steps: Sequence[StepTable], place: str) -> list[StepTable | None]:
+    """Steps with one value each for every option under `vary`, in every combination."""
+    found: list[StepTable | None] = []
+    for table in steps:
         options = dict(table)
         varied = options.pop("vary", {})
         if not isinstance(varied, dict) or not all(isinstance(values, list) and values for values in varied.values()):
             raise RecipeError(
-                f"{recipe}, [[screen.choice]] {choice.name!r}: vary = {varied!r}; expected a list of values for each "
-                "option, as in vary = { window = [7, 9, 11] }."
+                f"{place}: vary = {varied!r}; expected a list of values for each option, as in "
+                "vary = { window = [7, 9, 11] }."
             )
-        for values in product(*varied.values()):
-            yield {**options, **dict(zip(varied, values, strict=True))}
+        found += [{**options, **dict(zip(varied, values, strict=True))} for values in product(*varied.values())]
+    return found
 
 
 def _told(table: StepTable) -> str:

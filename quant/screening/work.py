@@ -31,9 +31,7 @@ class Workers:
     number: int = 1
     cluster: bool = False
 
-    def run(
-        self, function: Callable[[Task], Found], tasks: Sequence[Task], label: str
-    ) -> tuple[list[Found], bool]:
+    def run(self, function: Callable[[Task], Found], tasks: Sequence[Task], label: str) -> tuple[list[Found], bool]:
         """Return what the function makes of the tasks, in order, and whether the user interrupted.
 
         Each task is worked on by one thread of linear algebra, so that results do not depend on who does it.
@@ -107,7 +105,8 @@ def _client(address: str) -> Any:
             "pip install 'quant[cluster]', or leave --cluster out."
         ) from None
     try:
-        return Client(address, timeout=10)
+        client: Any = Client  # it states no types
+        return client(address, timeout=10)
     except (OSError, ValueError) as problem:
         raise UsageError(
             f"Nobody answers at {address!r} ({problem}); expected the address of a running Dask scheduler, such as "

@@ -4,8 +4,6 @@ from types import SimpleNamespace
 
 import numpy as np
 import pytest
-from hypothesis import given, settings
-from hypothesis import strategies as st
 
 from quant.calibration.band_shares import (
     ANALYTE,
@@ -110,21 +108,3 @@ def test_where_there_are_none(change, words):
         setattr(given, name, value)
     assert words in why_no_shares(given)
     assert band_shares(given, None) == ()
-
-
-@settings(deadline=None, max_examples=60)
-@given(
-    seed=st.integers(0, 2**31),
-    analyte=st.lists(st.floats(1000, 2500), max_size=3),
-    matrix=st.lists(st.floats(1000, 2500), min_size=1, max_size=3),
-)
-def test_shares_add_up_to_one_and_points_to_all(seed, analyte, matrix):
-    rng = np.random.default_rng(seed)
-    axis = np.arange(2500.0, 999.0, -10.0)
-    given = evidence(axis, rng.normal(size=(8, axis.size)), rng.normal(size=axis.size))
-    found = band_shares(given, table(analyte=analyte, matrix=matrix))
-    assert sum(each.share for each in found) == pytest.approx(1)
-    assert sum(each.n_points for each in found) == axis.size
-    back = evidence(axis[::-1], given.mean[:, ::-1], given.vector[::-1])
-    turned = band_shares(back, table(analyte=analyte, matrix=matrix))
-    assert [each.share for each in turned] == pytest.approx([each.share for each in found])

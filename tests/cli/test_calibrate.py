@@ -86,3 +86,19 @@ def test_names_that_differ_in_capitals_only_are_refused() -> None:
     assert model_files(["acid", "ester"]) == {"acid": "acid.model", "ester": "ester.model"}
     with pytest.raises(RecipeError, match=r"'acid', 'ACID' would have one file name \(acid\.model\)"):
         model_files(["acid", "ester", "ACID"])
+
+
+@pytest.mark.parametrize(("largest", "code"), [("0.5", 0), ("1e-6", 1)])
+def test_criteria_decide_on_the_exit_code_and_looks_are_counted(project, largest: str, code: int) -> None:
+    text = f'[validation]\nsamples = ["S03", "S06", "S09"]\n\n[acceptance]\nmax_rmsep = {largest}\n\n[regression]'
+    project.replace("recipe.toml", "[regression]", text)
+    result = project.calibrate()
+    assert result.exit_code == code
+    ledger = project.folder / "out" / "validation-looks.json"
+    assert f"looks   {ledger}\n" in result.stdout
+    first = ledger.read_bytes(), (project.folder / "out" / "calibration.json").read_bytes()
+    assert project.calibrate().exit_code == code
+    assert (ledger.read_bytes(), (project.folder / "out" / "calibration.json").read_bytes()) == first
+    seal = json.loads(first[1])["analytes"][0]["audit"]["seal"]
+    assert (seal["look"], seal["fixed_beforehand"]) == (1, True)
+    assert seal["statement"].startswith("first look at this validation set; the criteria of acceptance were fixed")

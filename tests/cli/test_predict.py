@@ -142,3 +142,29 @@ def test_a_note_is_compared_with_the_calibrations_and_has_a_value(calibrated) ->
     assert result.exit_code == 2
     assert "--note technique: expected a name, =, and a value, such as technique=ATR." in result.stderr
     assert calibrated.run("predict", model, spectra, "--note", "operator=K").exit_code == 0
+
+
+def test_a_limit_given_with_the_samples(calibrated, make_spectra) -> None:
+    new = calibrated.write_spectra(make_spectra(np.array([3.0, 5.0]), 3), "new.csv")
+    model, table = calibrated.folder / "out" / "acid.model", calibrated.folder / "table.json"
+    both = calibrated.run("predict", model, new, "--limit", "8.5", "--risk", "0.01", "--out", table)
+    assert both.exit_code == 0
+    assert both.stdout.splitlines()[1] == "upper limit 8.5 % m/m (given with the samples), risk 1 %"
+    assert [row["decision"] for row in json.loads(table.read_text("utf-8"))["predictions"]] == ["accept", "accept"]
+    one = calibrated.run("predict", model, new, "--lower-limit", "4.0", "--out", table)
+    assert one.exit_code == 1
+    rows = json.loads(table.read_text("utf-8"))["predictions"]
+    assert [(row["decision"], row["limit"]) for row in rows] == [("reject", 4.0), ("accept", 4.0)]
+    refused = calibrated.run("predict", model, new, "--limit", "4", "--lower-limit", "2")
+    assert refused.exit_code == 2
+    assert "--limit and --lower-limit were both given; expected one of them." in refused.stderr
+    assert calibrated.run("predict", model, new, "--limit", "4", "--risk", "0.7").exit_code == 2
+
+
+def test_the_models_own_limit(project, make_spectra) -> None:
+    project.replace("recipe.toml", "[regression]", '[decision]\nlimit = 4.0\nname = "IPC 2"\n\n[regression]')
+    model = project.make_model()
+    new = project.write_spectra(make_spectra(np.array([3.0, 5.0]), 3), "new.csv")
+    result = project.run("predict", model, new)
+    assert result.exit_code == 1
+    assert result.stdout.splitlines()[1] == "IPC 2: upper limit 4 % m/m (stated in the recipe), risk 5 %"

@@ -96,6 +96,6 @@ def test_an_empty_chain_changes_nothing():
 
 
 def test_which_steps_learn_from_other_spectra():
-    assert {name for name, step in STEPS.items() if step.learns} == {"msc", "mean_centre", "scale_columns"}
+    assert {name for name, step in STEPS.items() if step.learns} == {"msc", "emsc", "mean_centre", "scale_columns"}
     assert chain_learns(STEPS_IN_ORDER)
     assert not chain_learns(STEPS_IN_ORDER[:-1])

@@ -75,9 +75,9 @@ def test_steps_that_are_not_linear_go_behind(tmp_path):
     with pytest.raises(RecipeError) as caught:
         build(tmp_path, KEEP, 'step = "snv"', 'step = "mean_centre"', EMSC)
     assert str(caught.value) == (
-        "a.toml, [[preprocessing]] number 4: the spectra of water.csv go through the steps before, and snv, mean_centre "
-        "has no meaning for spectra of single substances or differences; expected linear steps only. Put it behind this "
-        "step."
+        "a.toml, [[preprocessing]] number 4: the spectra of water.csv go through the steps before; expected linear "
+        "ones, but found snv, mean_centre, without meaning for spectra of single substances or differences. Put it "
+        "behind this step."
     )
 
 

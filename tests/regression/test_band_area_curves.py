@@ -104,6 +104,19 @@ def test_weighted_intervals_hold_the_truth_at_both_ends_where_plain_ones_fail():
     assert held["equal"][1] / sets < 0.90  # ... and too narrow at the high end
 
 
+@pytest.mark.parametrize(("parameters", "terms"), [({}, 2), ({"curve": "quadratic"}, 3), ({"through_origin": True}, 1)])
+def test_leverages_of_weighted_standards_add_up_to_the_terms(parameters, terms):
+    x = np.array([1.0, 2, 4, 8, 9])
+    model = calibrated(x, 2 * x + 0.01 * x**2 + 1e-9 * np.sin(x), line_weights="1/x^2", **parameters)
+    on_the_curve = spectra(model.signal_at(x))
+    assert model.leverage_each(on_the_curve).sum() == pytest.approx(terms, rel=1e-9)
+    found = model.inverse_interval(model.signals(on_the_curve), 2.0)
+    fit = model.line_ if model.curve_ is None else model.curve_
+    slope = (model.signal_at(x + 1e-6) - model.signal_at(x - 1e-6)) / 2e-6
+    reading = fit.residual_sd / slope / np.sqrt(model.weights_at(x))
+    assert found.standard_error == pytest.approx(reading * np.sqrt(1 + model.leverage_each(on_the_curve)[0]), rel=1e-6)
+
+
 # Quadratics.
 
 CURVED_X = np.array([0.5, 1, 2, 3, 4, 5, 6])

@@ -27,13 +27,15 @@ def describe_step(step: Step) -> str:
     options = [
         _text(value) if step.name.endswith(name) else f"{name.replace('_', ' ')} {_text(value)}"
         for name, value in step.get_params().items()
-        if name != "axis" and value is not None and not isinstance(value, np.ndarray)
+        if name != "axis" and value is not None
     ]
-    name = step.name.upper() if step.name in ("snv", "msc") else step.name.replace("_", " ")
+    name = step.name.upper() if step.name in ("snv", "msc", "emsc") else step.name.replace("_", " ")
     return f"{name}: {', '.join(options)}" if options else name
 
 
 def _text(value: object) -> str:
+    if isinstance(value, np.ndarray):  # spectra given to the step
+        return f"{len(value)} spectr{'um' if len(value) == 1 else 'a'}"
     if isinstance(value, list | tuple):
         if len(value) == 2 and not isinstance(value[0], list | tuple):
             return f"{value[0]:g} to {value[1]:g}"

@@ -12,11 +12,10 @@ from quant.revalidation.remedies.judge import Judged
 from quant.revalidation.remedies.table import REMEDIES
 from quant.revalidation.standards import Standards
 from quant.spectra.provenance import Source
-from quant.statistics.quantiles import upper_limit
 
 PROVISIONAL = "provisional"
 NO_LEFT_OUT = "the model was corrected after a service visit; the left-out models are those of its parent"
-WARN, STOP = 0.95, 0.997  # as the limits of a calibration
+WARN = 0.95  # share of good samples inside a warning limit, as in a calibration
 
 
 def apply_remedy(
@@ -24,8 +23,8 @@ def apply_remedy(
 ) -> Calibration:
     """Fit a remedy to all standards and return the new model.
 
-    Intervals widen where left-out standards scattered more than the parent's did, and limits of applicability where
-    left-out standards lay further out. Distribution-free intervals are the parent's and are left away.
+    Intervals widen where left-out standards scattered more than the parent's samples did, and limits of applicability
+    grow to hold the left-out standards. Distribution-free intervals are the parent's and are left away.
 
     Parameters
     ----------
@@ -75,13 +74,11 @@ def apply_remedy(
 
 
 def _widened(limits: Limits, entry: Judged) -> Limits:
-    n = entry.residual.size
-    residual = np.maximum(entry.residual, np.finfo(np.float64).tiny)
-    least = float(entry.leverage.min())
+    residual, leverage = entry.residual, entry.leverage
     return replace(
         limits,
-        residual_warn=max(limits.residual_warn, upper_limit(residual, n, WARN, "logarithm")),
-        residual_stop=max(limits.residual_stop, upper_limit(residual, n, STOP, "logarithm")),
-        leverage_warn=max(limits.leverage_warn, least + upper_limit(entry.leverage - least, n, WARN)),
-        leverage_stop=max(limits.leverage_stop, least + upper_limit(entry.leverage - least, n, STOP)),
+        residual_warn=max(limits.residual_warn, float(np.quantile(residual, WARN))),
+        residual_stop=max(limits.residual_stop, float(residual.max())),
+        leverage_warn=max(limits.leverage_warn, float(np.quantile(leverage, WARN))),
+        leverage_stop=max(limits.leverage_stop, float(leverage.max())),
     )

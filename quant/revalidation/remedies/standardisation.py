@@ -3,7 +3,8 @@
 Behind the steps, contact, path and baseline of the single measurement are gone, and what differs between before and
 after is the instrument. Both maps start from "nothing changed but the mean" and are drawn towards it by a ridge whose
 strength the standards choose by leaving each out: with a dozen of standards that differ little, an unrestrained map
-would fit noise and flatten the very band that is to be measured.
+would fit noise and flatten the very band that is to be measured. What counts in that choice is the left-out error of the
+predicted value where the regression has a vector, else that of the spectra.
 """
 
 from dataclasses import replace
@@ -37,7 +38,7 @@ def standardise_directly(standards: Standards, rows: IntArray) -> Calibration:
         Fewer than three standards.
     """
     before, after = _pair(standards, rows)
-    return _with_last(standards.model, direct_map(before, after))
+    return _with_last(standards.model, direct_map(before, after, vector=_vector(standards.model)))
 
 
 def standardise_piecewise(standards: Standards, rows: IntArray) -> Calibration:
@@ -56,10 +57,12 @@ def standardise_piecewise(standards: Standards, rows: IntArray) -> Calibration:
         Fewer than three standards.
     """
     before, after = _pair(standards, rows)
-    return _with_last(standards.model, piecewise_map(before, after))
+    return _with_last(standards.model, piecewise_map(before, after, vector=_vector(standards.model)))
 
 
-def direct_map(before: FloatArray, after: FloatArray, ridge: float | None = None) -> SpectralMap:
+def direct_map(
+    before: FloatArray, after: FloatArray, ridge: float | None = None, vector: FloatArray | None = None
+) -> SpectralMap:
     """Return the map from spectra after to spectra before, a combination of the standards' own directions.
 
     What lies outside the standards' directions passes unchanged, so that the residual of a strange spectrum still shows.
@@ -70,6 +73,8 @@ def direct_map(before: FloatArray, after: FloatArray, ridge: float | None = None
         Spectra of the same standards. [ordinate]
     ridge : float, optional
         Strength of the pull towards "nothing changed but the mean"; chosen by leaving out when not given.
+    vector : array of shape (points,), optional
+        Regression vector that the choice is made by. [unit of the analyte / ordinate]
 
     References
     ----------
@@ -80,13 +85,17 @@ def direct_map(before: FloatArray, after: FloatArray, ridge: float | None = None
     kept = directions[sizes > 1e-9 * sizes.max(initial=0.0)]
     scores = (after - centre) @ kept.T
     difference = before - after
-    coefficients = _ridge(scores[None], difference[None] - difference.mean(axis=0), ridge)[0]
+    coefficients = _ridge(scores[None], difference[None] - difference.mean(axis=0), ridge, vector)[0]
     offset = difference.mean(axis=0) - (centre @ kept.T) @ coefficients
     return low_rank_map(kept.T, coefficients, offset)
 
 
 def piecewise_map(
-    before: FloatArray, after: FloatArray, reach: int = REACH, ridge: float | None = None
+    before: FloatArray,
+    after: FloatArray,
+    reach: int = REACH,
+    ridge: float | None = None,
+    vector: FloatArray | None = None,
 ) -> SpectralMap:
     """Return the map that makes each point before from a window of points after.
 
@@ -98,6 +107,8 @@ def piecewise_map(
         Points to either side of the window's middle; 0: each point by itself.
     ridge : float, optional
         As `direct_map` takes it; 0 is plain least squares.
+    vector : array of shape (points,), optional
+        As `direct_map` takes it.
 
     References
     ----------
@@ -110,13 +121,13 @@ def piecewise_map(
     centre, difference = after.mean(axis=0), before - after
     windows = np.moveaxis((after - centre)[:, sources], 1, 0)  # (points, n, width)
     wanted = (difference - difference.mean(axis=0)).T[:, :, None]  # (points, n, 1)
-    weights = _ridge(windows, wanted, ridge)[:, :, 0]
+    weights = _ridge(windows, wanted, ridge, vector)[:, :, 0]
     offset = difference.mean(axis=0) - np.einsum("pw,pw->p", weights, centre[sources])
     weights = weights + (sources == np.arange(points)[:, None])
     return banded_map(sources, weights, offset)
 
 
-def _ridge(predictors: FloatArray, wanted: FloatArray, ridge: float | None) -> FloatArray:
+def _ridge(predictors: FloatArray, wanted: FloatArray, ridge: float | None, vector: FloatArray | None) -> FloatArray:
     """Ridge regressions, one a leading index: (k, n, p) and (k, n, q) centred give (k, p, q).
 
     One strength serves all, so that it is chosen by many left-out residuals: e/(1 - h), the mean's 1/n in h included.
@@ -133,7 +144,8 @@ def _ridge(predictors: FloatArray, wanted: FloatArray, ridge: float | None) -> F
         if leverage.max() > 1 - 1e-9:  # nothing is left to judge by
             continue
         rest = (wanted - left @ (shrunk[:, :, None] * projected)) / (1 - leverage)[:, :, None]
-        press = float(np.sum(rest**2))
+        spectra = np.moveaxis(rest, 1, 0).reshape(n, -1)  # one left-out residual spectrum a standard
+        press = float(np.sum((spectra if vector is None else spectra @ vector) ** 2))
         if press < best:
             best, chosen = press, strength * unit
     strength = chosen if ridge is None else ridge * unit
@@ -144,6 +156,11 @@ def _ridge(predictors: FloatArray, wanted: FloatArray, ridge: float | None) -> F
 def _share(sizes: FloatArray, strength: float) -> FloatArray:
     squares = sizes**2
     return np.divide(squares, squares + strength, out=np.zeros_like(squares), where=squares > 0)
+
+
+def _vector(model: Calibration) -> FloatArray | None:
+    coefficients = getattr(model.method, "coefficients_", None)
+    return None if coefficients is None else np.asarray(coefficients[-1])
 
 
 def _pair(standards: Standards, rows: IntArray) -> tuple[FloatArray, FloatArray]:

@@ -58,11 +58,10 @@ class Remedy:
 
 REMEDIES = (
     Remedy("bias", "take the mean difference off every result", CORRECTION, correct_bias, moves_values=True),
+    Remedy("slope_bias", "put every result on a new line", CORRECTION, correct_slope_and_bias, moves_values=True),
     Remedy(
-        "slope_bias", "put every result on a new line", CORRECTION, correct_slope_and_bias, moves_values=True
+        "axis", "move the spectra back along the axis (shift and stretch)", CORRECTION, correct_axis, needs_before=True
     ),
-    Remedy("axis", "move the spectra back along the axis (shift and stretch)", CORRECTION, correct_axis,
-           needs_before=True),
     Remedy("direct", "map whole spectra onto those of before", TRANSFER, standardise_directly, needs_before=True),
     Remedy("piecewise", "map each point from its neighbours", TRANSFER, standardise_piecewise, needs_before=True),
     Remedy(

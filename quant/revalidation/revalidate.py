@@ -1,0 +1,253 @@
+"""The whole way from a model and check standards to a verdict and the least remedy."""
+
+from dataclasses import replace
+
+import numpy as np
+
+from quant.calibration.sensitivity import ALLOWED_BIAS, ALLOWED_SEP
+from quant.errors import NotEnoughDataError, ParameterError, QuantError
+from quant.model.calibration import Calibration
+from quant.model.identity import fingerprint_of, trace
+from quant.model.revalidation_basis import RevalidationBasis
+from quant.recipe.schema import Recipe
+from quant.revalidation.changes import Change, estimate_changes
+from quant.revalidation.equivalence import LEAST_STANDARDS, advisory_tests, bias_equivalence, scatter_equivalence
+from quant.revalidation.gathered import InstrumentRecord, gather_evidence
+from quant.revalidation.judgements import Power
+from quant.revalidation.power import power_of
+from quant.revalidation.remedies.judge import judge_remedies
+from quant.revalidation.result import RevalidationResult
+from quant.revalidation.standards import (
+    Standards,
+    calibration_samples,
+    gather,
+    not_applicable,
+    training_of,
+)
+from quant.revalidation.standards_state import standards_evidence
+from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, REBUILD, Facts, Rule, decide
+from quant.spectra.concentration import refuse_other_scale
+from quant.spectra.reference_table import ReferenceTable
+from quant.spectra.sample_set import SampleSet, pair_samples
+from quant.spectra.spectra_set import SpectraSet
+
+NO_RECORD = InstrumentRecord()
+SHARE_OUTSIDE = 0.5  # of the standards outside the model's domain: an unchanged instrument never puts so many there
+
+
+def revalidate(
+    model: Calibration,
+    after: SpectraSet,
+    reference: ReferenceTable,
+    *,
+    before: SpectraSet | None = None,
+    instrument: InstrumentRecord | None = None,
+    training: Recipe | SampleSet | None = None,
+    allowed_bias: float | None = None,
+    allowed_sep: float | None = None,
+) -> RevalidationResult:
+    """Judge a calibration after a service visit.
+
+    Parameters
+    ----------
+    model : Calibration
+    after : SpectraSet
+        Spectra of the check standards, measured now.
+    reference : ReferenceTable
+        Their reference values.
+    before : SpectraSet, optional
+        Spectra of the same standards from before the visit: errors of laboratory and samples then cancel.
+    instrument : InstrumentRecord, optional
+        Spectra of the film and of the empty beam.
+    training : Recipe or SampleSet, optional
+        The calibration's own samples, or the recipe that names them, for remedies that fit anew.
+    allowed_bias, allowed_sep : float, optional
+        Instead of what the model's recipe allows. [unit of the analyte]
+
+    Raises
+    ------
+    AxisMismatchError, QuantityError, AcquisitionMismatchError
+        The spectra were not recorded as the calibration's were.
+    SampleMismatchError
+        Standards without values, or without spectra from before; values on another scale than the calibration's.
+    NotEnoughDataError
+        Fewer than two standards.
+    """
+    samples = _samples(model, after, reference)
+    own = calibration_samples(training, model.analyte.name) if isinstance(training, Recipe) else training
+    standards = gather(model, samples, before, training_of(model, own) if own is not None else None)
+    basis = basis_of(model, allowed_bias, allowed_sep)
+    n = len(standards)
+    outside = not_applicable(model, standards.after)
+    differences = standards.after.value - standards.target
+    errors = standards.after.value - standards.reference
+    enough = n >= LEAST_STANDARDS
+    judged = judge_remedies(standards) if enough else ()
+    rows = tuple(entry.row for entry in judged)
+    labels = standards_evidence(model, samples)
+    evidence = gather_evidence(model, samples, labels, own, instrument or NO_RECORD)
+    facts = Facts(
+        n_standards=n,
+        standards_in_doubt=not labels.trustworthy,
+        applies=outside <= SHARE_OUTSIDE * n,
+        bias=bias_equivalence(differences, basis.allowed_bias),
+        scatter=scatter_equivalence(errors, basis.allowed_sep),
+        tests=advisory_tests(differences, errors, standards.reference, sep=basis.sep, n_validation=basis.n_samples)
+        if enough
+        else (),
+        proposed=next((row for row in rows if row.proposed), None),
+        allowed_sep=basis.allowed_sep,
+    )
+    rule = decide(facts)
+    power = _power(standards, basis)
+    changes, note = _changes(standards)
+    wanted = rule.verdict not in (HOLDS, CANNOT_DECIDE, REBUILD)
+    return RevalidationResult(
+        analyte=model.analyte.name,
+        unit=model.analyte.printed_unit,
+        model=str(model),
+        fingerprint=fingerprint_of(model),
+        lineage=trace(model),
+        state=str(model.state),
+        verdict=rule.verdict,
+        rule=rule.name,
+        reasons=_reasons(rule, facts, power, outside, model, note),
+        sample_ids=standards.sample_ids,
+        reference=standards.reference,
+        before=standards.before if standards.paired else None,
+        after=standards.after.value,
+        not_applicable=outside,
+        basis=basis,
+        bias=facts.bias,
+        scatter=facts.scatter,
+        tests=facts.tests,
+        power=power,
+        changes=changes,
+        evidence=evidence,
+        remedies=rows if wanted else tuple(replace(row, proposed=False) for row in rows),
+        proposed=facts.proposed.name if wanted and facts.proposed else "",
+        files=tuple(dict.fromkeys((*(before.sources if before else ()), *after.sources, *reference.sources))),
+        standards=standards,
+        judged=judged,
+    )
+
+
+def basis_of(
+    model: Calibration, allowed_bias: float | None = None, allowed_sep: float | None = None
+) -> RevalidationBasis:
+    """Return what a model is judged by, with bounds given by hand in place of its own.
+
+    Parameters
+    ----------
+    model : Calibration
+    allowed_bias, allowed_sep : float, optional
+        [unit of the analyte]
+
+    Raises
+    ------
+    ParameterError
+        A bound that is not above zero.
+    """
+    for name, bound in (("allowed_bias", allowed_bias), ("allowed_sep", allowed_sep)):
+        if bound is not None and not bound > 0:
+            raise ParameterError(f"{name} = {bound}; expected a number above zero in the unit of the analyte.")
+    own, s0 = model.revalidation, model.uncertainty.s0
+    if own is None:
+        own = RevalidationBasis(
+            allowed_bias=ALLOWED_BIAS * s0,
+            allowed_sep=ALLOWED_SEP * s0,
+            source="the model states nothing: once and twice s0 of its left-out samples",
+            sep=s0,
+            n_samples=model.uncertainty.degrees_of_freedom + 1,
+            sep_source="left-out samples of the cross-validation",
+        )
+    if allowed_bias is None and allowed_sep is None:
+        return own
+    return replace(
+        own,
+        allowed_bias=allowed_bias or own.allowed_bias,
+        allowed_sep=allowed_sep or own.allowed_sep,
+        source="given with the standards",
+    )
+
+
+def _samples(model: Calibration, after: SpectraSet, reference: ReferenceTable) -> SampleSet:
+    samples = pair_samples(after, reference)
+    analyte, values = samples.analyte(model.analyte.name)
+    refuse_other_scale(model.analyte, analyte)
+    known = np.isfinite(values)
+    if np.count_nonzero(known) < 2:
+        raise NotEnoughDataError(
+            f"{np.count_nonzero(known)} standard(s) with a value of {analyte.name}; expected two or more."
+        )
+    return samples.subset(known)
+
+
+def _power(standards: Standards, basis: RevalidationBasis) -> Power:
+    """Power, by the validated scatter: never by that of the data judged."""
+    sd, source = basis.sep, f"SEP, {basis.sep_source}"
+    replicate_sd = standards.model.uncertainty.replicate_sd
+    if standards.paired and standards.before_index is not None:
+        if replicate_sd is not None:
+            counts = [
+                np.bincount(index, minlength=len(standards))
+                for index in (standards.before_index, standards.after_index)
+            ]
+            sd = replicate_sd * float(np.sqrt(np.mean(1 / counts[0] + 1 / counts[1])))
+            source = "replicate spectra of the calibration, before and after"
+        else:
+            sd, source = basis.sep * float(np.sqrt(2)), f"{source}, before and after as if independent"
+    return power_of(
+        len(standards),
+        sd=sd,
+        sd_source=source,
+        sep=basis.sep,
+        allowed_bias=basis.allowed_bias,
+        allowed_sep=basis.allowed_sep,
+        paired=standards.paired,
+    )
+
+
+def _changes(standards: Standards) -> tuple[tuple[Change, ...], str]:
+    """What changed in the spectra, or why that cannot be told."""
+    if standards.before_spectra is None:
+        return (), "What changed in the spectra cannot be told without spectra from before the visit."
+    try:
+        return estimate_changes(standards.before_spectra, standards.after_spectra, standards.model), ""
+    except QuantError as problem:
+        return (), f"What changed in the spectra cannot be told: {problem}"
+
+
+def _reasons(rule: Rule, facts: Facts, power: Power, outside: int, model: Calibration, note: str) -> tuple[str, ...]:
+    """The reasons in order: what decided, what was shown, what was found, what could have been shown, what helps."""
+    unit = model.analyte.printed_unit
+    bias, scatter, n = facts.bias, facts.scatter, facts.n_standards
+    told = [rule.words]
+    if facts.standards_in_doubt and rule.verdict == CANNOT_DECIDE:
+        told.append("have the standards assayed again, or prepare new ones")
+    if bias is not None and scatter is not None:
+        told.append(
+            f"bias {bias.bias:+.3g} {unit}, 90 % interval {bias.low:.3g} to {bias.high:.3g}, allowed ±{bias.allowed:.3g}: "
+            f"{'shown' if bias.shown else 'not shown'} to be small enough"
+        )
+        told.append(
+            f"SEP {scatter.sep:.3g} {unit}, at most {scatter.high:.3g}, allowed {scatter.allowed:.3g}: "
+            f"{'shown' if scatter.shown else 'not shown'} to be small enough"
+        )
+    if outside:
+        told.append(f"the model does not apply to {outside} of {n} standards as they are measured now")
+    found = [test.name for test in facts.tests if test.significant]
+    if facts.tests:
+        told.append(f"chance does not explain: {', '.join(found)}" if found else "no test of the family finds a change")
+    if rule.verdict == CANNOT_DECIDE:
+        needed = f"{power.needed} standards" if power.needed else "no number of standards up to 200"
+        told.append(
+            f'{n} standards let "holds" be said of an unchanged instrument in {100 * power.chance_of_holds:.0f} % of '
+            f"visits; {needed} would in 90 %"
+        )
+    if facts.proposed is not None and rule.verdict not in (HOLDS, CANNOT_DECIDE):
+        told.append(
+            f"best of the simple: {facts.proposed.name} leaves {facts.proposed.rmse_reference:.3g} {unit} on left-out "
+            "standards"
+        )
+    return tuple([*told, note] if note else told)
