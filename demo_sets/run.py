@@ -1,5 +1,5 @@
 #!/usr/bin/env python3
-"""The main job on both demo sets, on a fresh clone too: `python3 demo_sets/run.py`.
+"""The main job on the demo sets, on a fresh clone too: `python3 demo_sets/run.py`.
 
 The first start makes the project's virtual environment (see environment.py); later ones begin at once. Each command is
 shown as you would type it at the top of the project, then run; what they write goes to demo_sets/results.
@@ -68,6 +68,36 @@ def steps_for(demo_set: str, title: str, model: str, new_samples: str) -> list[S
     ]
 
 
+CHANGED = (
+    "Exit code 1 is as it should be: the calibration no longer holds as it is. The page says what changed, whether it\n"
+    "matters, whether these standards can show it, and the least that restores it; the corrected model is provisional."
+)
+
+
+def steps_after_service() -> list[Step]:
+    """Return the two commands after a service visit: verdict and correction, then confirmation by other standards."""
+    files, results, model = "demo_sets/service_visit", f"{RESULTS}/service_visit", "ethyl-acetate"
+    record = f"--film {files}/film_after.dx --film-before {files}/film_before.dx"
+    blank = f"--blank {files}/blank_after.dx --blank-before {files}/blank_before.dx"
+    return [
+        Step(
+            "After the service visit: does the calibration still hold, and what restores it?",
+            f"quant revalidate {RESULTS}/dryer_solvent/{model}.model --before {files}/before --after {files}/after "
+            f"--reference {files}/reference.csv {record} {blank} --recipe configs/dryer_solvent.toml "
+            f"--apply proposed --out {results}",
+            writes=f"{results}/{model}-2.model",
+            expected=NOT_ACCEPTED,
+            remark=CHANGED,
+        ),
+        Step(
+            "After the service visit: confirm the corrected model by standards that had no part in it",
+            f"quant revalidate {results}/{model}-2.model --after {files}/confirmation "
+            f"--reference {files}/confirmation.csv --out {results}/confirmation",
+            writes=f"{results}/confirmation/{model}-3.model",
+        ),
+    ]
+
+
 STEPS = [
     *steps_for(
         "dryer_solvent", "Residual solvent from the dryer", "ethyl-acetate.model", "demo_sets/dryer_solvent/new/*.dx"
@@ -75,6 +105,7 @@ STEPS = [
     *steps_for(
         "starting_material", "Unreacted starting material", "nitrile-P1.model", "demo_sets/starting_material/new.csv"
     ),
+    *steps_after_service(),
 ]
 
 CLOSING = f"""\
@@ -101,7 +132,7 @@ def main() -> int:
             return code or NOT_ACCEPTED
         if step.remark:
             print(step.remark)
-    reports = sorted((place.root / RESULTS).glob("*/*.html"))
+    reports = sorted((place.root / RESULTS).rglob("*.html"))
     scripts = place.programs.relative_to(place.root)
     activate = f"{scripts}\\activate" if sys.platform == "win32" else f"source {scripts}/activate"
     print("\n" + CLOSING.format(reports="\n    ".join(map(str, reports)), activate=activate), end="")

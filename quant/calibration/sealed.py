@@ -21,6 +21,7 @@ from quant.result import Result, documented
 from quant.spectra.sample_set import SampleSet
 
 FILE = "validation-looks.json"
+NO_PART = {"title", "acceptance", "decision", "chemistry", "screen", "revalidation"}  # they change no prediction
 WHAT = "Looks at validation sets; see the report. Do not edit: the count is the proof of independence."
 NOT_COUNTED = "not counted: calibrated from Python without a ledger"
 
@@ -110,15 +111,18 @@ def fingerprint(*parts: str | bytes) -> str:
 
 
 def recipe_fingerprint(recipe: Recipe) -> str:
-    """Fingerprint of what a recipe does to the data: comments, title, criteria, limits and bands play no part."""
-    return fingerprint(recipe.model_dump_json(exclude={"title", "acceptance", "decision", "chemistry"}))
+    """Fingerprint of what a recipe does to the data: comments, criteria and limits play no part.
+
+    Keys that are not written are left out, so that a table of a later program version changes nothing.
+    """
+    return fingerprint(recipe.model_dump_json(exclude_unset=True, exclude=NO_PART))
 
 
 def criteria_fingerprint(recipe: Recipe) -> str:
     """Fingerprint of the criteria of acceptance, however they are written; empty without any."""
     if not recipe.acceptance:
         return ""
-    tables = [table.model_dump(exclude_none=True) for table in recipe.acceptance]
+    tables = [table.model_dump(exclude_unset=True) for table in recipe.acceptance]
     return fingerprint(json.dumps(tables, sort_keys=True))
 
 

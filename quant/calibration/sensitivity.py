@@ -23,10 +23,12 @@ from quant.spectra.simulate_effects import gaussian_line_shape, water_vapour_spe
 from quant.units import AXIS_UNITS
 
 ALLOWED_BIAS, ALLOWED_SEP = 1.0, 2.0  # defaults, as multiples of the validated SEP
-HALVINGS = 30  # of the interval of sizes: beyond eight digits
+MOST_SAMPLES = 12  # looked at, spread over the range: the time of a calibration must not go here
+GROWTH = 4.0  # from one size tried to the next
+STEPS = 6  # from the first size tried to the last: a factor of 4096
+HALVINGS = 12  # of the interval of sizes: three digits
 SEED = 20260301  # of the noise that is added
-DRAWS = 8  # noisy copies of each spectrum
-DOUBLINGS = 24  # from the first size tried to the last
+NOISY = 120  # noisy spectra altogether
 
 
 @dataclass(frozen=True)
@@ -90,8 +92,10 @@ def sensitivity(model: Calibration, spectra: FloatArray, basis: RevalidationBasi
     basis : RevalidationBasis
         What is allowed, and the SEP before any change.
     """
-    before = model.predict_values(spectra)
-    return tuple(_limit(model, spectra, before, basis, kind) for kind in _kinds(model.axis, spectra, model.quantity))
+    order = np.argsort(model.predict_values(spectra), kind="stable")
+    chosen = spectra[order[np.unique(np.linspace(0, order.size - 1, MOST_SAMPLES).round().astype(int))]]
+    before = model.predict_values(chosen)
+    return tuple(_limit(model, chosen, before, basis, kind) for kind in _kinds(model.axis, chosen, model.quantity))
 
 
 def _limit(
@@ -103,12 +107,11 @@ def _limit(
         shares = [_shares(model, kind.change(spectra, signed), before, basis) for signed in signs]
         return max(shares, key=max)
 
-    size = kind.tried / 2.0**DOUBLINGS
-    while size <= kind.tried and max(used(size)) < 1:
-        size *= 2
-    if size > kind.tried:
+    sizes = kind.tried / GROWTH ** np.arange(STEPS, -1.0, -1.0)
+    high = next((float(size) for size in sizes if max(used(float(size))) >= 1), None)
+    if high is None:
         return MonitoringLimit(kind=kind.name, size=None, tried=kind.tried, unit=kind.unit, costs="")
-    low, high = size / 2, size
+    low = high / GROWTH if high > sizes[0] else 0.0
     for _ in range(HALVINGS):
         middle = (low + high) / 2
         low, high = (middle, high) if max(used(middle)) < 1 else (low, middle)
@@ -135,7 +138,7 @@ def _kinds(axis: SpectralAxis, spectra: FloatArray, quantity: str) -> list[_Kind
     span, step = float(np.ptp(x)), abs(axis.spacing)
     unit, height = AXIS_UNITS[axis.unit], float(np.ptp(spectra))
     u = 2 * (x - x.min()) / span - 1
-    noise = np.random.default_rng(SEED).standard_normal((DRAWS, *spectra.shape))
+    noise = np.random.default_rng(SEED).standard_normal((-(-NOISY // len(spectra)), *spectra.shape))
     kinds = [
         _Kind("shift", unit, 8 * step, lambda s, d: _displaced(s, x, np.full(x.size, d))),
         _Kind("stretch", "%", 100 * 16 * step / span, lambda s, d: _displaced(s, x, d / 100 * (x - x.mean()))),

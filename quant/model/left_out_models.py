@@ -11,8 +11,7 @@ import numpy as np
 
 from quant.arrays import AnyArray, FloatArray, IntArray
 from quant.errors import ParameterError
-from quant.regression.band_area import BandArea
-from quant.regression.method import Method
+from quant.regression.method import LineMethod, Method
 from quant.statistics.conformal import Intervals, LevelFunction, jackknife_plus, least_samples
 
 
@@ -134,7 +133,7 @@ def linear_features(method: Method, mean: FloatArray) -> FloatArray:
     mean : array of shape (n_samples, n_points_after)
         Processed spectra, one a sample.
     """
-    if isinstance(method, BandArea):
+    if isinstance(method, LineMethod):
         return method.signals(mean)[:, None]
     centre: Any = getattr(method, "x_mean_", 0.0)
     features: FloatArray = mean - centre

@@ -23,7 +23,7 @@ FORMAT_VERSION = 1
 
 Arrays = dict[str, AnyArray]
 
-_STEPS = {**STEPS, **CORRECTIONS}
+_STEPS = STEPS | CORRECTIONS
 
 
 def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:

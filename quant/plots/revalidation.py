@@ -1,5 +1,7 @@
 """A revalidation: the bias against what is allowed, the standards one by one, the remedies side by side."""
 
+from typing import Any
+
 import numpy as np
 from matplotlib.axes import Axes
 
@@ -51,7 +53,7 @@ def plot_standards(result: RevalidationResult, ax: Axes | None = None) -> Axes:
     allowed = result.basis.allowed_bias
     ax.axhspan(-allowed, allowed, color=SHADE, zorder=0)
     errors = result.after - result.reference
-    marks = {"linestyle": "none", "markersize": 4.5}
+    marks: dict[str, Any] = {"linestyle": "none", "markersize": 4.5}
     if result.before is not None:
         ax.plot(
             result.reference, result.after - result.before, marker="o", color=VERMILION, label="after − before", **marks

@@ -19,7 +19,7 @@ from quant.prediction.uncertainty import (
     standard_uncertainty,
     true_value_interval,
 )
-from quant.regression.band_area import BandArea
+from quant.regression.method import LineMethod
 from quant.spectra.sample_set import mean_by_sample
 from quant.spectra.spectra_set import SpectraSet
 from quant.statistics.intervals import standard_error
@@ -92,7 +92,7 @@ def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_sampl
     value, leverage = method.predict(mean), method.leverage_each(mean)[-1]
     residual = mean_by_sample(method.residual_each(processed)[-1], index, n_samples)
     extra = fewer_replicates(model, count)
-    if isinstance(method, BandArea):
+    if isinstance(method, LineMethod):
         inverted = method.inverse_interval(method.signals(mean), known.t)
         error, low, high = inverted.standard_error, inverted.low, inverted.high
         total = np.sqrt(error**2 + extra)

@@ -7,7 +7,7 @@ import numpy as np
 
 from quant.arrays import FloatArray, IntArray
 from quant.model.calibration import Calibration
-from quant.regression.band_area import BandArea
+from quant.regression.method import LineMethod
 from quant.statistics.intervals import NOT_RESOLVABLE, true_value_share
 
 NOT_STATED = "no laboratory error stated"
@@ -112,6 +112,6 @@ def _true_share(model: Calibration, error: float) -> float | str:
     laboratory = model.uncertainty.laboratory_error
     if laboratory is None:
         return NOT_STATED
-    base = error if isinstance(model.method, BandArea) else model.uncertainty.s0
+    base = error if isinstance(model.method, LineMethod) else model.uncertainty.s0
     share = true_value_share(error, base, laboratory)
     return NOT_RESOLVABLE if share is None else share

@@ -17,9 +17,7 @@ from quant.files import decode_text
 from quant.readers.delimited import SAMPLE_COLUMNS, groups_in, read_rows, separator_sign
 from quant.readers.detective_choice import Reading, decided, whole
 from quant.readers.detective_layout import Signs, clipped, layouts_of
-from quant.readers.options import DECIMALS, ReadingOptions
-
-HEAD = 2**16  # bytes that `recognises` is shown: enough for the header of some thousand columns
+from quant.readers.options import DECIMALS, HEAD, ReadingOptions
 
 # Judged first; the whole text only if these lines do not decide.
 _FIRST_LINES, _LEAST_LINES, _FIRST_CHARACTERS = 60, 4, 30_000

@@ -8,6 +8,7 @@ from quant.checks import name_some, one_of
 from quant.errors import ParameterError
 from quant.units import AXIS_UNITS, QUANTITIES
 
+HEAD = 2**16  # bytes that a reader is shown to recognise a file: the header of some thousand columns
 FORMATS = ("auto", "jcamp_dx", "matrix", "two_columns", "spreadsheet")
 SEPARATORS = (",", ";", "tab", "space")
 DECIMALS = (".", ",")

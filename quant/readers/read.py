@@ -12,9 +12,7 @@ from quant.checks import name_some
 from quant.errors import AxisMismatchError, FileFormatError, ParameterError, QuantError, QuantityError
 from quant.files import read_bytes
 from quant.readers.archive import is_zip, members_of
-from quant.readers.detective import HEAD
-from quant.readers.matrix import read_matrix
-from quant.readers.options import ReadingOptions
+from quant.readers.options import HEAD, ReadingOptions
 from quant.readers.registry import READERS, Reader
 from quant.spectra.spectra_set import SpectraSet, join_spectra
 
@@ -156,7 +154,7 @@ def _read_file(file: Path, options: ReadingOptions) -> Iterator[tuple[Path, Spec
 def _reason(file: Path, content: bytes, options: ReadingOptions) -> str:
     """Say why a text is no table of spectra."""
     try:
-        read_matrix(file, content, options)
+        next(reader for reader in READERS if reader.name == "matrix").read(file, content, options)
     except QuantError as problem:
         return f"As a table: {str(problem).removeprefix(f'{file}: ').removeprefix(f'{file}, ')} "
     return ""

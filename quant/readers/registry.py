@@ -4,11 +4,9 @@ from collections.abc import Callable
 from dataclasses import dataclass
 from pathlib import Path
 
-from quant.readers.jcamp_dx.reader import read_jcamp_dx, recognises_jcamp_dx
-from quant.readers.matrix import read_matrix, recognises_matrix
+from quant.later import later
+from quant.readers.jcamp_dx.recognise import recognises_jcamp_dx
 from quant.readers.options import ReadingOptions
-from quant.readers.spreadsheet import read_spreadsheet, recognises_spreadsheet
-from quant.readers.two_columns import read_two_columns, recognises_two_columns
 from quant.spectra.spectra_set import SpectraSet
 
 
@@ -35,9 +33,22 @@ class Reader:
 
 
 READERS = (
-    Reader(name="jcamp_dx", recognises=recognises_jcamp_dx, read=read_jcamp_dx),
-    Reader(name="two_columns", recognises=recognises_two_columns, read=read_two_columns),
-    Reader(name="matrix", recognises=recognises_matrix, read=read_matrix),
+    Reader(name="jcamp_dx", recognises=recognises_jcamp_dx, read=later("quant.readers.jcamp_dx.reader:read_jcamp_dx")),
+    Reader(
+        name="two_columns",
+        recognises=later("quant.readers.two_columns:recognises_two_columns"),
+        read=later("quant.readers.two_columns:read_two_columns"),
+    ),
+    Reader(
+        name="matrix",
+        recognises=later("quant.readers.matrix:recognises_matrix"),
+        read=later("quant.readers.matrix:read_matrix"),
+    ),
     # A workbook beside spectra is more often the table of reference values: name it, or state the format.
-    Reader(name="spreadsheet", recognises=recognises_spreadsheet, read=read_spreadsheet, in_folders=False),
+    Reader(
+        name="spreadsheet",
+        recognises=later("quant.readers.spreadsheet:recognises_spreadsheet"),
+        read=later("quant.readers.spreadsheet:read_spreadsheet"),
+        in_folders=False,
+    ),
 )

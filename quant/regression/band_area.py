@@ -11,7 +11,7 @@ from quant.arrays import FloatArray
 from quant.checks import one_of
 from quant.errors import NotEnoughDataError, ParameterError
 from quant.regression.line_weights import LAWS, level_table, standard_weights, told_weight, weight_at
-from quant.regression.method import Method
+from quant.regression.method import LineMethod
 from quant.spectra.bands import BandSet, BandSpec, place_bands
 from quant.statistics.curve import (
     QuadraticFit,
@@ -34,7 +34,7 @@ from quant.statistics.straight_line import (
 )
 
 
-class BandArea(Method):
+class BandArea(LineMethod):
     """Line or quadratic of a band's signal against concentration (Beer-Lambert), predicted by reading it backwards.
 
     Parameters

@@ -1,6 +1,6 @@
 """The contract of a regression method: what cross-validation, the saved model and prediction rely on."""
 
-from typing import ClassVar, Self
+from typing import TYPE_CHECKING, ClassVar, Self
 
 import numpy as np
 from numpy.typing import ArrayLike
@@ -8,6 +8,9 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.errors import ParameterError
 from quant.estimator import Regressor, check_target
+
+if TYPE_CHECKING:
+    from quant.statistics.straight_line import InverseInterval
 
 
 class Method(Regressor):
@@ -119,3 +122,15 @@ class Method(Regressor):
                 f"{type(self).__name__} was asked for {count} factor(s); this fit has {counts[0]} to {counts[-1]}. "
                 "Choose a number among these, or fit again with more factors."
             )
+
+
+class LineMethod(Method):
+    """A method that reads a calibration line of a signal backwards, and knows the interval of what it reads."""
+
+    def signals(self, X: ArrayLike) -> FloatArray:
+        """Signal of each spectrum, shape (n,)."""
+        raise NotImplementedError
+
+    def inverse_interval(self, signal: ArrayLike, t: float, readings: ArrayLike = 1) -> "InverseInterval":
+        """Values, standard errors and intervals from signals of shape (n,)."""
+        raise NotImplementedError

@@ -32,9 +32,7 @@ def render_revalidation(result: RevalidationResult, history: ControlChart | None
     """
     style = Markup("".join((TEMPLATES / name).read_text(encoding="utf-8") for name in ("page.css", "revalidation.css")))
     pictures = [
-        _draw(
-            plot_standards, result, "standards", "Differences of the standards; shaded: the bias allowed.", narrow=True
-        ),
+        _draw(plot_standards, result, "standards", "Differences of the standards, the bias allowed.", narrow=True),
         _draw(plot_remedies, result, "remedies", "Error of each remedy on standards left out.", narrow=True),
     ]
     return (
@@ -106,7 +104,8 @@ def _matters(result: RevalidationResult) -> Answer:
     if bias is None or scatter is None:
         return "Cannot be told", []
     told = [
-        f"bias {_number(bias.bias)} {unit} ({_number(bias.low)} to {_number(bias.high)}); allowed ±{_number(bias.allowed)}",
+        f"bias {_number(bias.bias)} {unit} ({_number(bias.low)} to {_number(bias.high)}); "
+        f"allowed ±{_number(bias.allowed)}",
         f"SEP {_number(scatter.sep)} {unit}, at most {_number(scatter.high)}; allowed {_number(scatter.allowed)}",
     ]
     if result.not_applicable:

@@ -6,13 +6,14 @@ from dataclasses import dataclass
 import numpy as np
 
 from quant.arrays import FloatArray
-from quant.revalidation.change_terms import RESOLUTION, VAPOUR, Ground, blurred, changed, terms
+from quant.revalidation.change_terms import RESOLUTION, VAPOUR, Ground, blurred, changed, largest_sizes, terms
 
 ROUNDS = 4  # Gauss-Newton steps; from 2 on, steps are below 1 % of the standard errors
 ROUNDS_ON = 2  # steps from an earlier fit
 SMOOTH = 15  # points over which the scatter between standards is averaged to give weights
 NEW_BAND = 4.0  # robust standard errors of the mean residual beyond which a point counts less than half
 ROBUST_ROUNDS = 6
+LEAST_SIZE = 0.01  # of the mean spectrum
 MOST_DIRECTIONS = 4  # ways in which the standards' composition may differ
 
 
@@ -71,6 +72,7 @@ def fit_changes(
     n, used = len(before), ground.used
     sizes = np.zeros((n, len(kinds))) if start is None else start.sizes
     composition = np.zeros((n, len(directions))) if start is None else start.composition
+    bounds = largest_sizes(ground, kinds)
     rounds = ROUNDS if start is None else ROUNDS_ON
     root = np.sqrt(weights[used])
     additive = np.broadcast_to(directions, (n, *directions.shape))
@@ -83,7 +85,8 @@ def fit_changes(
             break
         columns = np.concatenate([terms(ground, 0.5 * (model + target), kinds), additive], axis=1)[:, :, used] * root
         step, covariance = _solve(columns, rest[:, used] * root)
-        sizes, composition = sizes + step[:, : len(kinds)], composition + step[:, len(kinds) :]
+        sizes = np.clip(sizes + step[:, : len(kinds)], -bounds, bounds)
+        composition = composition + step[:, len(kinds) :]
     return Fit(kinds=tuple(kinds), sizes=sizes, composition=composition, rest=rest, covariance=covariance)
 
 
@@ -91,10 +94,8 @@ def _both_sides(
     ground: Ground, before: FloatArray, after: FloatArray, kinds: Sequence[str], sizes: FloatArray
 ) -> tuple[FloatArray, FloatArray]:
     """Spectra before as they should look by now, and spectra after; where lines got narrower those are blurred."""
-    each = [dict(zip(kinds, row, strict=True)) for row in sizes.tolist()]
-    model = np.stack([changed(ground, row, own) for row, own in zip(before, each, strict=True)])
-    narrower = [-own.get(RESOLUTION, 0.0) for own in each]
-    return model, np.stack([blurred(ground, row, width) for row, width in zip(after, narrower, strict=True)])
+    each = dict(zip(kinds, sizes.T, strict=True))
+    return changed(ground, before, each), blurred(ground, after, -each.get(RESOLUTION, np.zeros(len(after))))
 
 
 def _solve(columns: FloatArray, rest: FloatArray) -> tuple[FloatArray, FloatArray]:
@@ -128,7 +129,8 @@ def composition_directions(ground: Ground, rows: FloatArray, most: int, weights:
     design = np.stack([rows.mean(axis=0), np.ones_like(u), u, 0.5 * (3.0 * u * u - 1.0), ground.vapour])
     root = np.sqrt(weights[used])
     found = np.linalg.lstsq((design[:, used] * root).T, (rows[:, used] * root).T, rcond=None)[0]
-    alike = (rows - found[1:].T @ design[1:]) / found[0][:, None]
+    size_of = np.where(np.abs(found[0]) > LEAST_SIZE, found[0], 1.0)  # an empty beam has no size to be brought to
+    alike = (rows - found[1:].T @ design[1:]) / size_of[:, None]
     alike = alike - alike.mean(axis=0)
     left, size, _ = np.linalg.svd(alike[:, used] * root, full_matrices=False)
     kept = size[:count] > 1e-9 * max(float(size[0]), 1e-300)

@@ -1,6 +1,6 @@
 """What a change of the instrument does to a spectrum, small changes as terms of a straight sum, larger ones exactly."""
 
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -13,6 +13,7 @@ WIDTH_TO_VARIANCE = 1.0 / (8.0 * np.log(2.0))  # σ² of a Gaussian = FWHM² · 
 EDGE = 4  # points at either end of a run that derivatives and shifted spectra do not reach well
 MARGIN = 20  # points around those used
 LARGEST_SHIFT = 5.0  # points; beyond, a search about the measured axis is lost
+LARGEST_BASELINE = 10.0  # absorbance
 CARBON_DIOXIDE = ((2280.0, 2390.0), (655.0, 680.0))  # cm⁻¹, Herzberg, from memory: says nothing of the instrument
 LEAST_VAPOUR = 0.05  # height of the strongest vapour line in the range, of the strongest of all, to be looked for
 
@@ -121,6 +122,21 @@ def terms(ground: Ground, rows: FloatArray, kinds: Sequence[str]) -> FloatArray:
     return np.stack([np.broadcast_to(made[kind], rows.shape) for kind in kinds], axis=1)
 
 
+def largest_sizes(ground: Ground, kinds: Sequence[str]) -> FloatArray:
+    """Return how far each size is sought in either direction, shape (n_kinds,): beyond lies another kind of spectrum.
+
+    Shift and stretch by `LARGEST_SHIFT` points, line width by twice as much; gain by nine tenths.
+    """
+    reach = LARGEST_SHIFT * float(np.median(np.abs(np.diff(ground.axis))))
+    known = {
+        SHIFT: reach,
+        STRETCH: min(reach / float(np.abs(ground.axis).max()), 0.01),
+        GAIN: 0.9,
+        RESOLUTION: (2.0 * reach) ** 2,
+    }
+    return np.array([known.get(kind, LARGEST_BASELINE) for kind in kinds])
+
+
 def derivatives(ground: Ground, rows: FloatArray) -> tuple[FloatArray, FloatArray]:
     """Return the slope of spectra and what line broadening adds per unit of variance, each of shape (n, n_points).
 
@@ -134,60 +150,85 @@ def derivatives(ground: Ground, rows: FloatArray) -> tuple[FloatArray, FloatArra
     return slope, bend - np.log(10.0) * slope**2 if ground.light else bend
 
 
-def changed(ground: Ground, row: FloatArray, sizes: dict[str, float]) -> FloatArray:
-    """Return one spectrum as it looks after changes of the sizes given, shape (n_points,).
+def changed(ground: Ground, rows: FloatArray, sizes: Mapping[str, FloatArray]) -> FloatArray:
+    """Return spectra as they look after changes of the sizes given, shape (n, n_points).
 
     Parameters
     ----------
     ground : Ground
-    row : array of shape (n_points,)
-        Spectrum, absorbance.
-    sizes : mapping
-        Size by kind, in the units of `terms`; kinds not named do not change. A resolution below 0 is left to the
-        caller, who blurs the other spectrum.
+    rows : array of shape (n, n_points)
+        Spectra, absorbance.
+    sizes : mapping of str to array of shape (n,)
+        Sizes by kind, one a spectrum, in the units of `terms`; kinds not named do not change. A resolution below 0 is
+        left to the caller, who blurs the other spectrum.
     """
-    result = blurred(ground, row * (1.0 + sizes.get(GAIN, 0.0)), max(sizes.get(RESOLUTION, 0.0), 0.0))
-    result = moved(ground, result, sizes.get(SHIFT, 0.0), sizes.get(STRETCH, 0.0))
+    none = np.zeros(len(rows))
+
+    def column(kind: str) -> FloatArray:
+        return np.asarray(sizes.get(kind, none))[:, None]
+
+    result = blurred(ground, rows * (1.0 + column(GAIN)), sizes.get(RESOLUTION, none))
+    result = moved(ground, result, sizes.get(SHIFT, none), sizes.get(STRETCH, none))
     u = ground.u
-    result = result + sizes.get(OFFSET, 0.0) + sizes.get(SLOPE, 0.0) * u
-    return np.asarray(
-        result + sizes.get(CURVATURE, 0.0) * 0.5 * (3.0 * u * u - 1.0) + sizes.get(VAPOUR, 0.0) * ground.vapour
-    )
+    result = result + column(OFFSET) + column(SLOPE) * u + column(CURVATURE) * 0.5 * (3.0 * u * u - 1.0)
+    return np.asarray(result + column(VAPOUR) * ground.vapour)
 
 
-def moved(ground: Ground, row: FloatArray, shift: float, stretch: float) -> FloatArray:
-    """Return a spectrum with a band at ν moved to ν·(1 + stretch) + shift, by a cubic spline through each run."""
+def moved(ground: Ground, rows: FloatArray, shift: FloatArray, stretch: FloatArray) -> FloatArray:
+    """Return spectra with a band at ν moved to ν·(1 + stretch) + shift, by cubic splines through each run.
+
+    Parameters
+    ----------
+    ground : Ground
+    rows : array of shape (n, n_points)
+        Spectra.
+    shift, stretch : arrays of shape (n,)
+        [axis unit; relative]
+    """
     from scipy.interpolate import CubicSpline  # deferred: start-up
 
-    if shift == 0.0 and stretch == 0.0:
-        return row
-    result = row.copy()
+    if not (shift.any() or stretch.any()):
+        return rows
+    result = rows.copy()
+    number = np.arange(len(rows))[:, None]
     for run in ground.runs:
-        x, y = ground.axis[run], row[run]
-        if x[0] > x[-1]:
-            x, y = x[::-1], y[::-1]
-        step = LARGEST_SHIFT * float(np.median(np.diff(x)))
-        wanted = (ground.axis[run] - shift) / (1.0 + stretch)
-        near = np.clip(wanted, ground.axis[run] - step, ground.axis[run] + step)
-        result[run] = CubicSpline(x, y)(np.clip(near, x[0], x[-1]))
+        x = ground.axis[run]
+        step = LARGEST_SHIFT * float(np.median(np.abs(np.diff(x))))
+        wanted = np.clip((x - shift[:, None]) / (1.0 + stretch[:, None]), x - step, x + step)
+        wanted = np.clip(wanted, x.min(), x.max())
+        order = slice(None, None, -1) if x[0] > x[-1] else slice(None)
+        knots = x[order]
+        pieces = CubicSpline(knots, rows[:, run][:, order], axis=1).c  # powers, pieces, spectra
+        left = np.clip(np.searchsorted(knots, wanted, side="right") - 1, 0, knots.size - 2)
+        t = wanted - knots[left]
+        cubic, square, straight, level = (power[left, number] for power in pieces)
+        result[:, run] = ((cubic * t + square) * t + straight) * t + level
     return result
 
 
-def blurred(ground: Ground, row: FloatArray, squared_width: float) -> FloatArray:
-    """Return a spectrum seen through a further Gaussian line shape of FWHM² = `squared_width` [(axis unit)²].
+def blurred(ground: Ground, rows: FloatArray, squared_width: FloatArray) -> FloatArray:
+    """Return spectra seen through a further Gaussian line shape.
 
     By Fourier transform of each run, mirrored at its ends, so that widths below a point's spacing are right as well.
+
+    Parameters
+    ----------
+    ground : Ground
+    rows : array of shape (n, n_points)
+        Spectra.
+    squared_width : array of shape (n,)
+        FWHM² of the line shape; nothing happens where it is not above 0. [(axis unit)²]
     """
-    if squared_width <= 0.0:
-        return row
-    result = row.copy()
+    wider = np.maximum(squared_width, 0.0)[:, None]
+    if not wider.any():
+        return rows
+    result = rows.copy()
     for run in ground.runs:
-        size = run.stop - run.start
         step = float(np.abs(np.median(np.diff(ground.axis[run]))))
-        light = 10.0 ** -row[run] if ground.light else row[run]
-        mirrored = np.concatenate([light, light[::-1]])
-        frequency = np.fft.rfftfreq(2 * size, step)
-        damping = np.exp(-2.0 * np.pi**2 * frequency**2 * WIDTH_TO_VARIANCE * squared_width)
-        seen = np.fft.irfft(np.fft.rfft(mirrored) * damping, 2 * size)[:size]
-        result[run] = -np.log10(np.maximum(seen, 1e-6)) if ground.light else seen
+        light = 10.0 ** -rows[:, run] if ground.light else rows[:, run]
+        mirrored = np.concatenate([light, light[:, ::-1]], axis=1)
+        frequency = np.fft.rfftfreq(mirrored.shape[1], step)
+        damping = np.exp(-2.0 * np.pi**2 * frequency**2 * WIDTH_TO_VARIANCE * wider)
+        seen = np.fft.irfft(np.fft.rfft(mirrored, axis=1) * damping, mirrored.shape[1], axis=1)[:, : light.shape[1]]
+        result[:, run] = -np.log10(np.maximum(seen, 1e-6)) if ground.light else seen
     return result

@@ -28,7 +28,8 @@ from quant.text_table import format_columns
 from quant.units import AXIS_UNITS
 
 SIGNIFICANCE = 0.05  # of the whole family, held by Holm
-SAME_CLASS = 0.95  # correlation of two estimates beyond which the two changes cannot be told apart on this range
+SMALL = 1e-3  # step of a numerical derivative, of the largest absorbance
+SAME_CLASS = 0.9  # correlation of two estimates beyond which the two changes cannot be told apart on this range
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -67,10 +68,12 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     Axis shift and stretch, gain, offset, slope and curvature of the baseline, width of the line shape and water vapour
     are fitted together to each standard's pair of mean spectra, beside the ways in which the standards' composition
     differs. The mean over standards is the size; the scatter between standards gives its standard error and test. Kinds
-    whose estimates correlate by more than 0.95 on this range form one class, tested together. Noise, the analyte's
+    whose estimates correlate by more than 0.9 on this range form one class, tested together. Noise, the analyte's
     content, how much vapour varies, and what is left unexplained are tested beside them, all in one family held by
     Holm.
-    Where something is left that chance does not explain, the fit is repeated with little weight on it.
+    Size (gain) is judged against the mean spectrum: where the analyte makes up much of it, part of a loss looks like
+    smaller absorbances. Where something is left that chance does not explain, the fit is repeated with little weight on
+    it.
 
     Parameters
     ----------
@@ -141,8 +144,10 @@ def _alone(pairs: Pairs, kind: str, members: Sequence[str], directions: FloatArr
 
 def _content(pairs: Pairs, model: Calibration, directions: FloatArray) -> FloatArray:
     """Analyte per unit of each direction, from what the model found of the standards before, shape (n_directions,)."""
-    value = model.predict_values(pairs.ordinates(pairs.before))
-    moved = [float((model.predict_values(pairs.ordinates(pairs.before + d)) - value).mean()) for d in directions]
+    # Small steps: spectra with a whole unit of a direction may be none that the model accepts.
+    largest = float(np.abs(pairs.before[:, pairs.ground.used]).max())
+    steps = [SMALL * largest / max(float(np.abs(d[pairs.ground.used]).max()), 1e-300) for d in directions]
+    moved = [_mean_step(pairs, model, s * d) / s for s, d in zip(steps, directions, strict=True)]
     return np.array(moved)
 
 
@@ -208,8 +213,7 @@ def _effect(pairs: Pairs, model: Calibration, kind: str, size: float) -> float:
     ground, rows = pairs.ground, pairs.before
     if kind == RESOLUTION and size < 0:
         return -_effect(pairs, model, kind, -size)
-    now = np.stack([changed(ground, row, {kind: size}) for row in rows])
-    return _mean_step(pairs, model, now - rows)
+    return _mean_step(pairs, model, changed(ground, rows, {kind: np.full(len(rows), size)}) - rows)
 
 
 def _mean_step(pairs: Pairs, model: Calibration, added: FloatArray) -> float:

@@ -36,8 +36,8 @@ def correct_model(result: RevalidationResult, remedy: str = PROPOSED) -> Calibra
 def confirm_model(result: RevalidationResult) -> Calibration:
     """Return the new, numbered model that is provisional no longer.
 
-    Its state is the one that its nearest ancestor had that was not provisional. That takes the verdict "holds" on standards that had no
-    part in the remedy.
+    Its state is the one that its nearest ancestor had that was not provisional. That takes the verdict "holds" on
+    standards that had no part in the remedy.
 
     Parameters
     ----------

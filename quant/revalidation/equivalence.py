@@ -106,7 +106,7 @@ def advisory_tests(
     errors : array of shape (n_samples,)
         Predicted minus reference. [unit of the analyte]
     reference : array of shape (n_samples,)
-        Reference values, which slopes are drawn over: their errors touch neither before nor after. [unit of the analyte]
+        Reference values, which slopes are drawn over: their errors touch neither before nor after. [as errors]
     sep : float
         Validated SEP. [unit of the analyte]
     n_validation : int
@@ -158,8 +158,8 @@ def extra_sum_of_squares(errors: ArrayLike, abscissa: ArrayLike) -> float:
 
     References
     ----------
-    .. [1] The nested models of slope and bias correction, Bouveresse et al., Anal. Chem. 68 (1996) 982; the ratio of the
-       two residual variances that is often quoted is no F test.
+    .. [1] The nested models of slope and bias correction, Bouveresse et al., Anal. Chem. 68 (1996) 982; the ratio of
+       the two residual variances that is often quoted is no F test.
     """
     d, x = paired_vectors("errors", errors, "abscissa", abscissa, least=3)
     return _slope(d, x)[0]

@@ -6,6 +6,7 @@ that did not change.
 
 import math
 from functools import lru_cache
+from typing import Any
 
 import numpy as np
 from scipy import optimize, stats
@@ -47,7 +48,8 @@ def power_of(
     paired : bool
         Whether bias is judged by differences of the same standards, whose scatter is not that of the errors.
     """
-    known = {"sd": sd, "sep": sep, "allowed_bias": allowed_bias, "allowed_sep": allowed_sep, "paired": paired}
+    known: dict[str, Any] = {"sd": sd, "sep": sep, "allowed_bias": allowed_bias, "allowed_sep": allowed_sep}
+    known["paired"] = paired
     return Power(
         n_samples=n_samples,
         sd=sd,
@@ -94,7 +96,7 @@ def chance_of_holds(
 ) -> float:
     """Return the chance that bias and scatter are both shown to be smaller than allowed.
 
-    Paired, the two are counted as independent; otherwise they share the scatter that is found, which is integrated over.
+    Paired, the two are counted as independent; otherwise they share the scatter found, which is integrated over.
 
     Parameters
     ----------

@@ -64,7 +64,8 @@ class RevalidationResult(Result):
 
     def rows(self) -> list[Row]:
         """Rows of the printed table: what was found, what is allowed, what could be shown."""
-        unit, rows = self.unit, []
+        unit = self.unit
+        rows: list[Row] = []
         if self.bias is not None and self.scatter is not None:
             kind = "after - before" if self.before is not None else "predicted - reference"
             rows = [

@@ -4,14 +4,22 @@ from dataclasses import replace
 
 import numpy as np
 
+from quant.arrays import FloatArray
 from quant.calibration.sensitivity import ALLOWED_BIAS, ALLOWED_SEP
 from quant.errors import NotEnoughDataError, ParameterError, QuantError
 from quant.model.calibration import Calibration
 from quant.model.identity import fingerprint_of, trace
 from quant.model.revalidation_basis import RevalidationBasis
 from quant.recipe.schema import Recipe
+from quant.revalidation.change_words import CONTENT, NOISE
 from quant.revalidation.changes import Change, estimate_changes
-from quant.revalidation.equivalence import LEAST_STANDARDS, advisory_tests, bias_equivalence, scatter_equivalence
+from quant.revalidation.equivalence import (
+    FAMILY_RISK,
+    LEAST_STANDARDS,
+    advisory_tests,
+    bias_equivalence,
+    scatter_equivalence,
+)
 from quant.revalidation.gathered import InstrumentRecord, gather_evidence
 from quant.revalidation.judgements import Power
 from quant.revalidation.power import power_of
@@ -24,12 +32,13 @@ from quant.revalidation.standards import (
     not_applicable,
     training_of,
 )
-from quant.revalidation.standards_state import standards_evidence
+from quant.revalidation.standards_state import StandardsEvidence, standards_evidence
 from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, REBUILD, Facts, Rule, decide
 from quant.spectra.concentration import refuse_other_scale
 from quant.spectra.reference_table import ReferenceTable
 from quant.spectra.sample_set import SampleSet, pair_samples
 from quant.spectra.spectra_set import SpectraSet
+from quant.statistics.quantiles import t_quantile
 
 NO_RECORD = InstrumentRecord()
 SHARE_OUTSIDE = 0.5  # of the standards outside the model's domain: an unchanged instrument never puts so many there
@@ -86,9 +95,10 @@ def revalidate(
     rows = tuple(entry.row for entry in judged)
     labels = standards_evidence(model, samples)
     evidence = gather_evidence(model, samples, labels, own, instrument or NO_RECORD)
+    changes, note = _changes(standards)
     facts = Facts(
         n_standards=n,
-        standards_in_doubt=not labels.trustworthy,
+        standards_in_doubt=in_doubt(labels, changes, differences),
         applies=outside <= SHARE_OUTSIDE * n,
         bias=bias_equivalence(differences, basis.allowed_bias),
         scatter=scatter_equivalence(errors, basis.allowed_sep),
@@ -100,7 +110,6 @@ def revalidate(
     )
     rule = decide(facts)
     power = _power(standards, basis)
-    changes, note = _changes(standards)
     wanted = rule.verdict not in (HOLDS, CANNOT_DECIDE, REBUILD)
     return RevalidationResult(
         analyte=model.analyte.name,
@@ -183,6 +192,37 @@ def _samples(model: Calibration, after: SpectraSet, reference: ReferenceTable) -
     return samples.subset(known)
 
 
+def in_doubt(labels: StandardsEvidence, changes: tuple[Change, ...], differences: FloatArray) -> bool:
+    """Say whether the standards, rather than the instrument, may have changed.
+
+    They are in doubt if one is past its date, or if they are predicted low and the spectra show no change of the
+    instrument that would do so: neither one that explains half of what is seen, nor, where results fell since before
+    the visit, any at all.
+
+    Parameters
+    ----------
+    labels : StandardsEvidence
+    changes : tuple of Change
+        Empty without spectra from before.
+    differences : array of shape (n,)
+        After minus before, or predicted minus reference. [unit of the analyte]
+    """
+    instrument = [change for change in changes if change.significant and change.kind not in (CONTENT, NOISE)]
+    mean = float(differences.mean())
+    explained = any(abs(change.effect or 0.0) >= abs(mean) / 2 for change in instrument)
+    expired = not labels.trustworthy and not labels.loss_suspected
+    fell = bool(changes) and not instrument and mean < 0 and _beyond_chance(differences)
+    return expired or (labels.loss_suspected and not explained) or fell
+
+
+def _beyond_chance(differences: FloatArray) -> bool:
+    """Say whether a mean difference is beyond chance at the risk of the whole family."""
+    n, sd = differences.size, float(differences.std(ddof=1))
+    return (
+        n >= LEAST_STANDARDS and abs(float(differences.mean())) > t_quantile(1 - FAMILY_RISK / 2, n - 1) * sd / n**0.5
+    )
+
+
 def _power(standards: Standards, basis: RevalidationBasis) -> Power:
     """Power, by the validated scatter: never by that of the data judged."""
     sd, source = basis.sep, f"SEP, {basis.sep_source}"
@@ -227,8 +267,8 @@ def _reasons(rule: Rule, facts: Facts, power: Power, outside: int, model: Calibr
         told.append("have the standards assayed again, or prepare new ones")
     if bias is not None and scatter is not None:
         told.append(
-            f"bias {bias.bias:+.3g} {unit}, 90 % interval {bias.low:.3g} to {bias.high:.3g}, allowed ±{bias.allowed:.3g}: "
-            f"{'shown' if bias.shown else 'not shown'} to be small enough"
+            f"bias {bias.bias:+.3g} {unit}, 90 % interval {bias.low:.3g} to {bias.high:.3g}, allowed "
+            f"±{bias.allowed:.3g}: {'shown' if bias.shown else 'not shown'} to be small enough"
         )
         told.append(
             f"SEP {scatter.sep:.3g} {unit}, at most {scatter.high:.3g}, allowed {scatter.allowed:.3g}: "

@@ -114,10 +114,14 @@ class Standards:
 
 
 def not_applicable(model: Calibration, found: Evaluation) -> int:
-    """Count the samples to which a model does not apply."""
+    """Count the samples to whose spectra a model does not apply.
+
+    A value outside the calibrated range does not count: that is how the standard was prepared, not what the visit did.
+    """
+    middle = (model.limits.lowest + model.limits.highest) / 2
     verdicts = [
-        judge(model.limits, residual=r, leverage=h, value=v, standard_error=s).verdict
-        for r, h, v, s in zip(found.residual, found.leverage, found.value, found.standard_error, strict=True)
+        judge(model.limits, residual=r, leverage=h, value=middle, standard_error=s).verdict
+        for r, h, s in zip(found.residual, found.leverage, found.standard_error, strict=True)
     ]
     return verdicts.count(NOT_APPLICABLE)
 

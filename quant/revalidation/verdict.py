@@ -3,7 +3,7 @@
 | rule | applies where | verdict |
 |---|---|---|
 | too few standards | fewer than four | cannot decide |
-| standards in doubt | the standards show a loss: all low, and worse with age | cannot decide |
+| standards in doubt | past their date, or low without a change of the instrument that explains it | cannot decide |
 | equivalent | bias and SEP shown to be within what is allowed, and the model applies to the standards | holds |
 | nothing found | not shown, but no test of the family is significant, and the model applies | cannot decide |
 | no remedy | what was found is real, and no remedy brings left-out standards within the allowed SEP | rebuild |

@@ -97,11 +97,10 @@ class ScreenResult(Result):
         """Return what stands at the top: the nested error first, the naive one beside it."""
         rows: list[Row] = []
         if self.nested is not None:
-            rows += [
-                ("RMSEP, nested (the whole search repeated without the samples)", self.nested.mean, self.unit),
-                (f"  spread over {self.nested.rmsep.size} repeats", self.nested.spread, self.unit),
-                ("  Q²", self.nested.q2, f"± {format_number(self.nested.q2_se, 2)}"),
-            ]
+            rows.append(("RMSEP, nested (the whole search repeated without the samples)", self.nested.mean, self.unit))
+            if self.nested.rmsep.size > 1:
+                rows.append((f"  spread over {self.nested.rmsep.size} repeats", self.nested.spread, self.unit))
+            rows.append(("  Q²", self.nested.q2, f"± {format_number(self.nested.q2_se, 2)}"))
         rows.append(("RMSECV of the winner (took part in choosing: too good)", self.winner.rmsecv, self.unit))
         if self.nested is not None:
             rows.append(("  looks better than it is by", 100 * (1 - self.winner.rmsecv / self.nested.mean), "%"))

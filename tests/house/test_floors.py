@@ -8,6 +8,7 @@ function to keep start-up fast, if the line says so.
 
 import ast
 import graphlib
+import re
 import sys
 from collections.abc import Iterator
 from dataclasses import dataclass
@@ -17,7 +18,7 @@ import pytest
 
 FLOORS = (
     ("errors", "arrays"),
-    ("units", "checks", "text_table", "estimator", "files", "parallel", "result"),
+    ("units", "checks", "text_table", "estimator", "files", "later", "parallel", "result"),
     ("statistics", "spectra", "chemistry"),
     ("readers", "preprocessing", "regression"),
     ("model", "recipe"),
@@ -33,6 +34,7 @@ FLOORS = (
 )
 FLOOR = {room: number for number, rooms in enumerate(FLOORS) for room in rooms}
 DEFERRED = "# deferred: start-up"
+LATER = re.compile(r"quant(\.\w+)+:\w+")  # an entry of a table that is imported when it is first used
 
 
 @dataclass(frozen=True)
@@ -79,6 +81,9 @@ def _imports(node: ast.AST, package: list[str], *, in_function: bool) -> Iterato
             args=[ast.Constant(value=str(module)), *_],
         ) if not module.startswith("."):
             yield Import(node.lineno, module, in_function=in_function)
+        case ast.Constant(value=str(place)) if LATER.fullmatch(place):
+            base, _, name = place.partition(":")
+            yield Import(node.lineno, base, name, in_function=in_function)
     inside = in_function or isinstance(node, ast.FunctionDef | ast.AsyncFunctionDef | ast.Lambda)
     for child in ast.iter_child_nodes(node):
         yield from _imports(child, package, in_function=inside)

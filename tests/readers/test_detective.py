@@ -7,11 +7,11 @@ import pytest
 
 from quant.errors import FileFormatError, QuantityError
 from quant.readers.delimited import groups_in, looks_like_a_number, number_from
-from quant.readers.detective import HEAD, investigate, kinds_of
+from quant.readers.detective import investigate, kinds_of
 from quant.readers.detective_layout import Signs, is_count, layouts_of, sample_row
 from quant.readers.detective_values import axis_unit_of, quantity_of, says_itself
 from quant.readers.naming import names_an_axis, note_name, note_of, words_above
-from quant.readers.options import ReadingOptions
+from quant.readers.options import HEAD, ReadingOptions
 
 FILE = Path("a.csv")
 

@@ -124,7 +124,9 @@ def test_what_is_no_transmission_in_the_mid_infrared_is_refused(visit: ModuleTyp
         film_evidence(SpectraSet(holes, AXIS, film.sample_ids, film.quantity))
     short = AXIS.values < 1500.0
     with pytest.raises(NotEnoughDataError, match="2 of the film's 7 bands"):
-        film_evidence(SpectraSet(film.values[:, short], SpectralAxis(AXIS.values[short], "cm-1"), film.sample_ids, film.quantity))
+        film_evidence(
+            SpectraSet(film.values[:, short], SpectralAxis(AXIS.values[short], "cm-1"), film.sample_ids, film.quantity)
+        )
 
 
 def film_of(**transmittance: float) -> FourierSeries:
@@ -162,7 +164,10 @@ def test_a_scattering_film_is_brought_to_100_percent(visit: ModuleType) -> None:
 
 
 def test_a_coarser_resolution_fills_the_valley_beside_1583(visit: ModuleType) -> None:
-    at = [film_evidence(visit.film_spectrum(np.random.default_rng(9), InstrumentState(resolution=r), NOISE)) for r in (4.0, 8.0)]
+    at = [
+        film_evidence(visit.film_spectrum(np.random.default_rng(9), InstrumentState(resolution=r), NOISE))
+        for r in (4.0, 8.0)
+    ]
     assert at[0].resolution[1].value > 1.2 * at[1].resolution[1].value
     assert at[0].resolution[0].value < 1.1 * at[1].resolution[0].value  # that about 2850 hardly notices
 
@@ -197,6 +202,9 @@ def test_the_noise_of_the_slope_is_as_stated() -> None:
     axis = np.arange(1000.0, 1400.0, 2.0)
     rng = np.random.default_rng(10)
     for smoothing in (0.0, 8.0):
-        slopes = [float(FourierSeries.of(axis, rng.normal(0, 0.01, axis.size)).at(1200.7, 1, smoothing)[0]) for _ in range(600)]
+        slopes = [
+            float(FourierSeries.of(axis, rng.normal(0, 0.01, axis.size)).at(1200.7, 1, smoothing)[0])
+            for _ in range(600)
+        ]
         stated = FourierSeries.of(axis, np.zeros(axis.size)).derivative_noise(0.01, smoothing)
         assert np.std(slopes) == pytest.approx(stated, rel=0.15)

@@ -33,5 +33,7 @@ def test_paths_count_from_the_new_folder(tmp_path):
     content = tomllib.loads(recipe_text(recipe, ROOT / "configs" / "inner", ""))
     assert content["spectra"]["files"] == ["../../demo_sets/dryer_solvent/standards/*.dx"]
     assert content["validation"]["reference_file"] == "../../demo_sets/dryer_solvent/validation.csv"
-    whole = recipe.model_copy(update={"reference": recipe.reference.model_copy(update={"file": str(tmp_path / "r.csv")})})
+    whole = recipe.model_copy(
+        update={"reference": recipe.reference.model_copy(update={"file": str(tmp_path / "r.csv")})}
+    )
     assert tomllib.loads(recipe_text(whole, ".", ""))["reference"]["file"] == str(tmp_path / "r.csv")

@@ -40,7 +40,7 @@ def test_without_alternatives_there_is_the_recipes_own_chain(make_recipe):
 
 def test_vary_has_to_be_lists(make_recipe):
     recipe = make_recipe('chains = [[{ step = "savitzky_golay", vary = { window = 5 } }]]')
-    with pytest.raises(RecipeError, match="vary = .* expected a list of values"):
+    with pytest.raises(RecipeError, match=r"vary = .* expected a list of values"):
         chains_of(recipe)
 
 

@@ -53,7 +53,7 @@ def test_a_terminal_is_told_the_remaining_time(monkeypatch, capfd):
 
 @pytest.mark.parametrize("number", [0, -2, True, 1.5])
 def test_a_number_of_workers_that_is_none(number):
-    with pytest.raises(ParameterError, match="workers = .* expected 1 or more"), workers(number):
+    with pytest.raises(ParameterError, match=r"workers = .* expected 1 or more"), workers(number):
         pass
 
 

@@ -16,14 +16,6 @@ from quant.readers.options import ReadingOptions
 from quant.spectra.provenance import Source, source_of
 from quant.spectra.spectra_set import SpectraSet, join_spectra
 
-SUFFIXES = (".dx", ".jdx", ".jcm")
-
-
-def recognises_jcamp_dx(head: bytes, file_name: str) -> bool:
-    """Tell whether a file begins with a label, or has a name that JCAMP-DX files have. Never raises."""
-    start = head.removeprefix(b"\xef\xbb\xbf").replace(b"\x00", b"").lstrip(b"\xff\xfe \t\r\n")
-    return start.startswith(b"##") or file_name.lower().endswith(SUFFIXES)
-
 
 def read_jcamp_dx(path: Path, content: bytes, options: ReadingOptions) -> SpectraSet:
     """Read every spectrum of a file, or the one that the option ``block`` names.

@@ -11,7 +11,7 @@ from quant.revalidation.judgements import RemedyRow
 from quant.revalidation.remedies.table import NOTHING, REMEDIES, Remedy
 from quant.revalidation.standards import Standards, not_applicable
 
-SHARE_OUTSIDE = 0.1  # of the standards to which a corrected model may fail to apply (one at least)
+SHARE_OUTSIDE = 0.25  # of the standards to which a corrected model may fail to apply (one at least)
 
 
 @dataclass(frozen=True, eq=False)

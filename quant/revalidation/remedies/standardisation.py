@@ -3,8 +3,8 @@
 Behind the steps, contact, path and baseline of the single measurement are gone, and what differs between before and
 after is the instrument. Both maps start from "nothing changed but the mean" and are drawn towards it by a ridge whose
 strength the standards choose by leaving each out: with a dozen of standards that differ little, an unrestrained map
-would fit noise and flatten the very band that is to be measured. What counts in that choice is the left-out error of the
-predicted value where the regression has a vector, else that of the spectra.
+would fit noise and flatten the very band that is to be measured. What counts in that choice is the left-out error of
+the predicted value where the regression has a vector, else that of the spectra.
 """
 
 from dataclasses import replace
@@ -65,7 +65,7 @@ def direct_map(
 ) -> SpectralMap:
     """Return the map from spectra after to spectra before, a combination of the standards' own directions.
 
-    What lies outside the standards' directions passes unchanged, so that the residual of a strange spectrum still shows.
+    What lies outside the standards' directions passes unchanged: a strange spectrum's residual still shows.
 
     Parameters
     ----------
@@ -137,20 +137,36 @@ def _ridge(predictors: FloatArray, wanted: FloatArray, ridge: float | None, vect
     unit = float(np.mean(sizes**2)) or 1.0
     sizes = np.where(sizes > 1e-12 * sizes.max(initial=0.0), sizes, 0.0)
     projected = np.swapaxes(left, 1, 2) @ wanted
-    best, chosen = np.inf, RIDGES[-1] * unit
-    for strength in RIDGES if ridge is None else ():
+    strength = _chosen(left, sizes, wanted, projected, vector, unit) if ridge is None else ridge * unit
+    inverse = np.divide(_share(sizes, strength), sizes, out=np.zeros_like(sizes), where=sizes > 0)
+    return np.asarray(np.swapaxes(right, 1, 2) @ (inverse[:, :, None] * projected))
+
+
+def _chosen(
+    left: FloatArray,
+    sizes: FloatArray,
+    wanted: FloatArray,
+    projected: FloatArray,
+    vector: FloatArray | None,
+    unit: float,
+) -> float:
+    """The strongest ridge within one standard error of the one with the least left-out error."""
+    n = left.shape[1]
+    squares = np.full((len(RIDGES), n), np.inf)
+    for i, strength in enumerate(RIDGES):
         shrunk = _share(sizes, strength * unit)
         leverage = 1 / n + np.einsum("knr,kr->kn", left**2, shrunk)
         if leverage.max() > 1 - 1e-9:  # nothing is left to judge by
             continue
         rest = (wanted - left @ (shrunk[:, :, None] * projected)) / (1 - leverage)[:, :, None]
         spectra = np.moveaxis(rest, 1, 0).reshape(n, -1)  # one left-out residual spectrum a standard
-        press = float(np.sum((spectra if vector is None else spectra @ vector) ** 2))
-        if press < best:
-            best, chosen = press, strength * unit
-    strength = chosen if ridge is None else ridge * unit
-    inverse = np.divide(_share(sizes, strength), sizes, out=np.zeros_like(sizes), where=sizes > 0)
-    return np.asarray(np.swapaxes(right, 1, 2) @ (inverse[:, :, None] * projected))
+        squares[i] = np.sum(spectra**2, axis=1) if vector is None else (spectra @ vector) ** 2
+    press = squares.mean(axis=1)
+    best = int(np.argmin(press))
+    if not np.isfinite(press[best]):
+        return RIDGES[-1] * unit
+    bound = press[best] + squares[best].std(ddof=1) / np.sqrt(n)
+    return RIDGES[int(np.flatnonzero(press <= bound)[-1])] * unit
 
 
 def _share(sizes: FloatArray, strength: float) -> FloatArray:

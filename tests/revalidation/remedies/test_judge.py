@@ -1,0 +1,45 @@
+"""Remedies side by side, on standards left out."""
+
+import numpy as np
+import pytest
+
+from quant.revalidation.remedies.judge import judge_remedies
+from quant.revalidation.remedies.table import REMEDIES
+
+
+def test_a_shift_calls_for_the_axis_and_each_remedy_is_judged_on_what_it_had_not_seen(world):
+    standards = world.standards(np.random.default_rng(3), shift=0.8)
+    judged = {entry.row.name: entry for entry in judge_remedies(standards)}
+    rows = {name: entry.row for name, entry in judged.items()}
+    assert list(rows) == ["none", *(remedy.name for remedy in REMEDIES)]
+    assert [name for name, row in rows.items() if row.proposed] == ["axis"]
+    assert rows["none"].not_applicable == len(standards)
+    assert not rows["bias"].qualifies  # values would be right, but the spectra stay strange
+    differences = standards.after.value - standards.target
+    others = (differences.sum() - differences) / (differences.size - 1)
+    np.testing.assert_allclose(judged["bias"].predicted, standards.after.value - others, rtol=1e-9)
+
+
+def test_the_simplest_within_one_standard_error_is_proposed(world):
+    rows = [entry.row for entry in judge_remedies(world.standards(np.random.default_rng(4), resolution=5.0))]
+    chosen = [row for row in rows if row.qualifies]
+    best = min(chosen, key=lambda row: row.rmse)
+    near = [row for row in chosen if row.rmse**2 <= best.rmse**2 + best.standard_error]
+    assert [row.name for row in rows if row.within_one_se] == [row.name for row in near]
+    assert [row.name for row in rows if row.proposed] == [near[0].name]
+
+
+@pytest.mark.parametrize("name", ["orthogonal", "recalibration"])
+def test_remedies_that_fit_anew_say_that_they_need_the_calibration(world, name):
+    rows = {e.row.name: e.row for e in judge_remedies(world.standards(np.random.default_rng(5), fit_anew=False))}
+    assert not rows[name].available
+    assert "its recipe" in rows[name].note
+    assert rows[name].rmse is None
+
+
+def test_maps_and_new_fits_restore_a_shift(world):
+    standards = world.standards(np.random.default_rng(6), shift=0.8)
+    rows = {entry.row.name: entry.row for entry in judge_remedies(standards)}
+    for name in ("orthogonal", "recalibration", "direct", "piecewise"):
+        assert rows[name].not_applicable <= 3
+        assert rows[name].rmse_reference < 0.6 * rows["none"].rmse_reference
