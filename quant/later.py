@@ -41,6 +41,20 @@ class LaterTable(Mapping[str, Entry], Generic[Entry]):
         entry: Entry = fetch(self._places[name])
         return entry
 
+    def name_of(self, entry: type) -> str:
+        """Return the name of a class that the table holds, without importing any other.
+
+        Raises
+        ------
+        KeyError
+            The table does not hold it.
+        """
+        place = f"{entry.__module__}:{entry.__qualname__}"
+        for name, known in self._places.items():
+            if known == place:
+                return name
+        raise KeyError(place)
+
     def __or__(self, other: "LaterTable[Entry]") -> "LaterTable[Entry]":
         """Return both tables as one."""
         return LaterTable({**self._places, **other._places})

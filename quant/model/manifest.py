@@ -33,10 +33,8 @@ def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:
         "test_spectra": model.test_spectra,
         "test_predictions": model.test_predictions,
     }
-    step_names = {cls: name for name, cls in _STEPS.items()}
-    method_names = {cls: name for name, cls in METHODS.items()}
     steps = [
-        {"name": step_names[type(step)], "parameters": _split(step, f"steps/{i}", arrays)}
+        {"name": _STEPS.name_of(type(step)), "parameters": _split(step, f"steps/{i}", arrays)}
         for i, step in enumerate(model.steps)
     ]
     manifest = {
@@ -48,7 +46,7 @@ def to_manifest(model: Calibration) -> tuple[dict[str, Any], Arrays]:
         "reading": dict(model.reading),
         "domain": {note: list(values) for note, values in model.domain.items()},
         "steps": steps,
-        "method": {"name": method_names[type(model.method)], "parameters": _split(model.method, "method", arrays)},
+        "method": {"name": METHODS.name_of(type(model.method)), "parameters": _split(model.method, "method", arrays)},
         "factors": model.factors,
         "n_samples": model.n_samples,
         "limits": asdict(model.limits),

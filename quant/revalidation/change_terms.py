@@ -2,10 +2,11 @@
 
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
+from itertools import pairwise
 
 import numpy as np
 
-from quant.arrays import BoolArray, FloatArray
+from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.spectra.segments import segments
 from quant.spectra.simulate_effects import VAPOUR_RESOLUTION, water_vapour_spectrum
 
@@ -59,6 +60,15 @@ class Ground:
         """The kinds of change that can be looked for on this axis."""
         visible = np.abs(self.vapour[self.used]).max(initial=0.0) > LEAST_VAPOUR
         return SPECTRAL_KINDS if visible else SPECTRAL_KINDS[:-1]
+
+
+def core_of(ground: Ground) -> tuple[Ground, IntArray]:
+    """Return the ground without all points outside its runs, and the positions of those it keeps."""
+    kept = np.concatenate([np.arange(run.start, run.stop) for run in ground.runs])
+    ends = np.cumsum([0, *(run.stop - run.start for run in ground.runs)]).tolist()
+    runs = tuple(slice(start, stop) for start, stop in pairwise(ends))
+    core = Ground(ground.axis[kept], ground.used[kept], ground.light, ground.vapour[kept], runs)
+    return core, kept
 
 
 def ground_for(axis: FloatArray, unit: str, used: BoolArray, *, light: bool, resolution: float | None) -> Ground:

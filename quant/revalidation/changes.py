@@ -5,7 +5,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from quant.arrays import FloatArray
+from quant.arrays import FloatArray, IntArray
 from quant.model.calibration import Calibration
 from quant.result import Result, documented
 from quant.revalidation.change_fit import (
@@ -18,7 +18,7 @@ from quant.revalidation.change_fit import (
     vapour_heights,
 )
 from quant.revalidation.change_pairs import Pairs, pair_spectra
-from quant.revalidation.change_terms import RESOLUTION, VAPOUR, changed
+from quant.revalidation.change_terms import RESOLUTION, VAPOUR, changed, core_of
 from quant.revalidation.change_tests import dempster_p, mean_p, spread_p
 from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, VAPOUR_SPREAD, describe
 from quant.revalidation.multiple_tests import holm_adjusted
@@ -100,9 +100,11 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     .. [1] A.P. Dempster, Ann. Math. Statist. 29 (1958) 995-1010: the test of what is left (from memory).
     """
     pairs = pair_spectra(before, after, model)
-    ground, a, b = pairs.ground, pairs.before, pairs.after
-    light = 10.0 ** -(a + b).mean(axis=0) if ground.light else np.ones(ground.axis.size)
-    directions = composition_directions(ground, 0.5 * (a + b), max(model.factors, 1), light)
+    both = 0.5 * (pairs.before + pairs.after)
+    light = 10.0 ** (-2.0 * both.mean(axis=0)) if pairs.ground.light else np.ones(pairs.ground.axis.size)
+    wholly = composition_directions(pairs.ground, both, max(model.factors, 1), light)
+    ground, inside = core_of(pairs.ground)
+    a, b, directions, light = (rows[..., inside] for rows in (pairs.before, pairs.after, wholly, light))
     fit = fit_changes(ground, a, b, ground.kinds, directions, light)
     weights = scatter_weights(ground, fit.rest)
     fit = fit_changes(ground, a, b, ground.kinds, directions, weights, start=fit)
@@ -112,7 +114,7 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
         for _ in range(ROBUST_ROUNDS):
             used_weights = robust_weights(ground, fit.rest, weights)
             fit = fit_changes(ground, a, b, ground.kinds, directions, used_weights, start=fit)
-    content = _content(pairs, model, directions)
+    content = _content(pairs, model, wholly)
     found = [(members, _columns(fit, content, members)) for members in _classes(fit, content)]
     found.append(((NOISE,), pairs.noise_ratios[:, None]))
     p_values = [mean_p(columns) for _, columns in found]
@@ -123,23 +125,19 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
         p_values.append(spread_p(heights[0], heights[1]))
     adjusted = holm_adjusted([*p_values, unexplained_p]).tolist()
     strange = adjusted[-1] <= SIGNIFICANCE
-    changes = [_unexplained(pairs, model, fit, adjusted[-1])]
+    changes = [_unexplained(pairs, model, fit, inside, adjusted[-1])]
     if spread is not None:
         changes.append(_vapour_spread(float(spread[0]), float(spread[1]), len(a), adjusted[-2]))
     for (members, columns), p in zip(found, adjusted, strict=False):
         for i, kind in enumerate(members):
-            each = columns[:, i] if len(members) == 1 else _alone(pairs, kind, members, directions, used_weights)
+            each = columns[:, i]
+            if len(members) > 1:  # its size as if the others of its class had not happened
+                kinds = [k for k in ground.kinds if k == kind or k not in members]
+                each = fit_changes(ground, a, b, kinds, directions, used_weights).sizes[:, kinds.index(kind)]
             # A new substance may look like more or less of the old ones.
             alike = (CONTENT, UNEXPLAINED) if strange and kind == CONTENT else members
             changes.append(_change(pairs, model, kind, each, p, alike))
     return tuple(sorted(changes, key=lambda c: (not c.significant, -abs(c.effect or 0.0))))
-
-
-def _alone(pairs: Pairs, kind: str, members: Sequence[str], directions: FloatArray, weights: FloatArray) -> FloatArray:
-    """Size of a change for each standard as if the others of its class had not happened, shape (n_standards,)."""
-    kinds = [k for k in pairs.ground.kinds if k == kind or k not in members]
-    fit = fit_changes(pairs.ground, pairs.before, pairs.after, kinds, directions, weights)
-    return fit.sizes[:, kinds.index(kind)]
 
 
 def _content(pairs: Pairs, model: Calibration, directions: FloatArray) -> FloatArray:
@@ -222,13 +220,15 @@ def _mean_step(pairs: Pairs, model: Calibration, added: FloatArray) -> float:
     return float((now - then).mean())
 
 
-def _unexplained(pairs: Pairs, model: Calibration, fit: Fit, p_value: float) -> Change:
+def _unexplained(pairs: Pairs, model: Calibration, fit: Fit, inside: IntArray, p_value: float) -> Change:
     """What all standards have in common beyond every kind of change: a band of something new, say."""
-    used, mean = pairs.ground.used, fit.rest.mean(axis=0)
-    place = int(np.argmax(np.abs(np.where(used, mean, 0.0))))
+    mean = fit.rest.mean(axis=0)
+    place = int(np.argmax(np.abs(mean)))
+    added = np.zeros(pairs.ground.axis.size)
+    added[inside] = mean
     error = float(fit.rest[:, place].std(ddof=1) / np.sqrt(len(fit.rest)))
     significant = p_value <= SIGNIFICANCE
-    where = f"{pairs.ground.axis[place]:g} {AXIS_UNITS[pairs.unit]}"
+    where = f"{pairs.ground.axis[inside[place]]:g} {AXIS_UNITS[pairs.unit]}"
     return Change(
         kind=UNEXPLAINED,
         size=float(mean[place]),
@@ -236,7 +236,7 @@ def _unexplained(pairs: Pairs, model: Calibration, fit: Fit, p_value: float) -> 
         standard_error=error,
         p_value=p_value,
         significant=significant,
-        effect=_mean_step(pairs, model, np.broadcast_to(mean, fit.rest.shape)),
+        effect=_mean_step(pairs, model, np.broadcast_to(added, pairs.before.shape)),
         words=describe(UNEXPLAINED, float(mean[place]), error, "absorbance", significant=significant, where=where),
         usual_cause=CAUSES[UNEXPLAINED],
         same_class_as=(CONTENT,) if significant and fit.composition.size else (),

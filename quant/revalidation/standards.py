@@ -101,8 +101,23 @@ class Standards:
 
     @cached_property
     def target(self) -> FloatArray:
-        """What remedies have to bring back: predictions before, else reference values, shape (n,)."""
-        return self.before if self.paired else self.reference
+        """What remedies have to bring back, shape (n,). [unit of the analyte]
+
+        Predictions from before and reference values, each weighted by how little it scattered before the visit: the one
+        carries the scatter of presenting the sample, the other that of laboratory and model. Without spectra from
+        before, the reference values.
+        """
+        if not self.paired or self.before_index is None:
+            return self.reference
+        sep = self.model.revalidation.sep if self.model.revalidation else self.model.uncertainty.s0
+        spread = self.model.uncertainty.replicate_sd
+        if spread is None:
+            return (self.before + self.reference) / 2
+        own = spread**2 / float(np.bincount(self.before_index).mean())
+        share = own / (
+            own + max(sep**2 - own, sep**2 / 4)
+        )  # of the reference values; the model's part is never nothing
+        return (1 - share) * self.before + share * self.reference
 
     def evaluated(self, model: Calibration, rows: IntArray) -> Evaluation:
         """Evaluate a model (the standards' own, or one corrected) on some of the standards as measured after."""

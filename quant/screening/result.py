@@ -88,10 +88,21 @@ class ScreenResult(Result):
 
     @property
     def better_than_chance(self) -> bool:
-        """Whether nothing speaks against the winner: nested Q² above 0, and p at most 0.05, where they are known."""
+        """Whether nothing speaks against the winner: nested Q² above 0, and p at most 0.05, where they are known.
+
+        Of fewer than 19 permutations p cannot be so low, whatever they find; then it does not count.
+        """
         nested_fails = self.nested is not None and self.nested.q2 <= 0
-        chance_fails = self.chance is not None and self.chance.p > SIGNIFICANT
-        return not (nested_fails or chance_fails)
+        return not (nested_fails or (self._chance_can_tell and self.chance_p > SIGNIFICANT))
+
+    @property
+    def chance_p(self) -> float:
+        """p of the chance level; NaN where it was not worked out."""
+        return float("nan") if self.chance is None else self.chance.p
+
+    @property
+    def _chance_can_tell(self) -> bool:
+        return self.chance is not None and 1 / (1 + self.chance.lowest.size) <= SIGNIFICANT
 
     def headline(self) -> list[Row]:
         """Return what stands at the top: the nested error first, the naive one beside it."""
@@ -151,8 +162,11 @@ class ScreenResult(Result):
         )
 
     def _verdict(self) -> str:
-        if self.nested is None and self.chance is None:
-            return "Neither nested validation nor chance level: the winner's RMSECV is no statement of performance."
+        if self.nested is None and not self._chance_can_tell:
+            return (
+                "Neither nested validation nor a chance level of 19 permutations: the winner's RMSECV is no statement "
+                "of performance."
+            )
         if self.better_than_chance:
             return "The winner does better than chance; prove it on an independent validation."
         return "NOT BETTER THAN CHANCE: do not use the winner. The spectra may hold nothing of this analyte."

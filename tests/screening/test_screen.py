@@ -157,6 +157,8 @@ def test_an_interruption_keeps_what_was_found(found, make_recipe, make_samples, 
         assert result.chance is None
     if stage == "chance._one":
         assert result.chance.lowest.tolist() == found.chance.lowest[:5].tolist()
+        assert result.chance.p > 0.05  # of five it cannot be less
+        assert result.better_than_chance
 
 
 def test_an_interruption_before_anything_was_found(make_recipe, make_samples, monkeypatch):

@@ -28,7 +28,7 @@ def judge_remedies(standards: Standards) -> tuple[Judged, ...]:
     """Fit every remedy with each standard left out in turn; propose the simplest within one standard error of the best.
 
     The first row is "none": the model as it is. Differences are counted from the target: predictions from before the
-    visit, in which errors of laboratory and samples cancel, or else the reference values.
+    visit and reference values, weighted by their earlier scatter, or the reference values alone.
 
     Parameters
     ----------

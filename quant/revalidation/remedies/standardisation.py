@@ -15,10 +15,16 @@ from quant.arrays import FloatArray, IntArray
 from quant.errors import NotEnoughDataError
 from quant.model.calibration import Calibration
 from quant.preprocessing.spectral_map import SpectralMap, banded_map, low_rank_map
+from quant.regression.factor_regression import FactorRegression
+from quant.revalidation.remedies.values import with_line
 from quant.revalidation.standards import Standards
 
 REACH = 2  # points to either side in a window
-RIDGES = (0.0, *np.logspace(-3, 5, 17).tolist())  # as multiples of the mean variance of the predictors
+# Strengths tried, as multiples of the mean variance of the predictors.
+RIDGES: tuple[float, ...] = (0.0, *np.logspace(-3, 5, 9).tolist())
+    0.0,
+    *np.logspace(-3, 5, 17).tolist(),
+)  # as multiples of the mean variance of the predictors
 FEWEST = 3  # standards for a map
 
 
@@ -38,7 +44,7 @@ def standardise_directly(standards: Standards, rows: IntArray) -> Calibration:
         Fewer than three standards.
     """
     before, after = _pair(standards, rows)
-    return _with_last(standards.model, direct_map(before, after, vector=_vector(standards.model)))
+    return _levelled(standards, rows, direct_map(before, after, vector=_vector(standards.model)))
 
 
 def standardise_piecewise(standards: Standards, rows: IntArray) -> Calibration:
@@ -57,7 +63,7 @@ def standardise_piecewise(standards: Standards, rows: IntArray) -> Calibration:
         Fewer than three standards.
     """
     before, after = _pair(standards, rows)
-    return _with_last(standards.model, piecewise_map(before, after, vector=_vector(standards.model)))
+    return _levelled(standards, rows, piecewise_map(before, after, vector=_vector(standards.model)))
 
 
 def direct_map(
@@ -132,7 +138,6 @@ def _ridge(predictors: FloatArray, wanted: FloatArray, ridge: float | None, vect
 
     One strength serves all, so that it is chosen by many left-out residuals: e/(1 - h), the mean's 1/n in h included.
     """
-    n = predictors.shape[1]
     left, sizes, right = np.linalg.svd(predictors, full_matrices=False)
     unit = float(np.mean(sizes**2)) or 1.0
     sizes = np.where(sizes > 1e-12 * sizes.max(initial=0.0), sizes, 0.0)
@@ -165,7 +170,7 @@ def _chosen(
     best = int(np.argmin(press))
     if not np.isfinite(press[best]):
         return RIDGES[-1] * unit
-    bound = press[best] + squares[best].std(ddof=1) / np.sqrt(n)
+    bound = float(press[best] + squares[best].std(ddof=1) / np.sqrt(n))
     return RIDGES[int(np.flatnonzero(press <= bound)[-1])] * unit
 
 
@@ -185,5 +190,9 @@ def _pair(standards: Standards, rows: IntArray) -> tuple[FloatArray, FloatArray]
     return standards.before_processed[rows], standards.after_processed[rows]
 
 
-def _with_last(model: Calibration, step: SpectralMap) -> Calibration:
-    return replace(model, steps=(*model.steps, step))
+def _levelled(standards: Standards, rows: IntArray, step: SpectralMap) -> Calibration:
+    """The model with the map as its last step, and its values on the mean of the target: that is known better."""
+    mapped = replace(standards.model, steps=(*standards.model.steps, step))
+    if not isinstance(mapped.method, FactorRegression):
+        return mapped
+    return with_line(mapped, float((standards.target[rows] - standards.evaluated(mapped, rows).value).mean()), 1.0)
