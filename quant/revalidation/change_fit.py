@@ -8,11 +8,11 @@ import numpy as np
 from quant.arrays import FloatArray
 from quant.revalidation.change_terms import RESOLUTION, VAPOUR, Ground, blurred, changed, largest_sizes, terms
 
-ROUNDS = 4  # Gauss-Newton steps; from 2 on, steps are below 1 % of the standard errors
-ROUNDS_ON = 2  # steps from an earlier fit
+ROUNDS = 3  # Gauss-Newton steps from nothing
+ROUNDS_ON = 2  # steps from an earlier fit, or where little can have changed
 SMOOTH = 15  # points over which the scatter between standards is averaged to give weights
 NEW_BAND = 4.0  # robust standard errors of the mean residual beyond which a point counts less than half
-ROBUST_ROUNDS = 6
+ROBUST_ROUNDS = 4
 LEAST_SIZE = 0.01  # of the mean spectrum
 MOST_DIRECTIONS = 4  # ways in which the standards' composition may differ
 
@@ -49,6 +49,7 @@ def fit_changes(
     directions: FloatArray,
     weights: FloatArray,
     start: Fit | None = None,
+    rounds: int = ROUNDS,
 ) -> Fit:
     """Estimate all changes of each standard together, by weighted least squares, iterated.
 
@@ -68,12 +69,13 @@ def fit_changes(
         Of the squared residuals.
     start : Fit, optional
         An earlier fit of the same kinds, to go on from.
+    rounds : int
+        Gauss-Newton steps.
     """
     n, used = len(before), ground.used
     sizes = np.zeros((n, len(kinds))) if start is None else start.sizes
     composition = np.zeros((n, len(directions))) if start is None else start.composition
     bounds = largest_sizes(ground, kinds)
-    rounds = ROUNDS if start is None else ROUNDS_ON
     root = np.sqrt(weights[used])
     additive = np.broadcast_to(directions, (n, *directions.shape))
     covariance = np.zeros((len(kinds) + len(directions),) * 2)
@@ -197,5 +199,5 @@ def vapour_heights(ground: Ground, rows: FloatArray, directions: FloatArray, wei
         Of the squared residuals.
     """
     middle = np.broadcast_to(rows.mean(axis=0), rows.shape)
-    fit = fit_changes(ground, middle, rows, ground.kinds, directions, weights)
+    fit = fit_changes(ground, middle, rows, ground.kinds, directions, weights, rounds=ROUNDS_ON)
     return fit.sizes[:, fit.kinds.index(VAPOUR)]

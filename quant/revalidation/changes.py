@@ -10,6 +10,7 @@ from quant.model.calibration import Calibration
 from quant.result import Result, documented
 from quant.revalidation.change_fit import (
     ROBUST_ROUNDS,
+    ROUNDS_ON,
     Fit,
     composition_directions,
     fit_changes,
@@ -18,7 +19,7 @@ from quant.revalidation.change_fit import (
     vapour_heights,
 )
 from quant.revalidation.change_pairs import Pairs, pair_spectra
-from quant.revalidation.change_terms import RESOLUTION, VAPOUR, changed, core_of
+from quant.revalidation.change_terms import RESOLUTION, VAPOUR, Ground, changed, core_of
 from quant.revalidation.change_tests import dempster_p, mean_p, spread_p
 from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, VAPOUR_SPREAD, describe
 from quant.revalidation.multiple_tests import holm_adjusted
@@ -71,6 +72,7 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     whose estimates correlate by more than 0.9 on this range form one class, tested together. Noise, the analyte's
     content, how much vapour varies, and what is left unexplained are tested beside them, all in one family held by
     Holm.
+
     Size (gain) is judged against the mean spectrum: where the analyte makes up much of it, part of a loss looks like
     smaller absorbances. Where something is left that chance does not explain, the fit is repeated with little weight on
     it.
@@ -100,44 +102,72 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     .. [1] A.P. Dempster, Ann. Math. Statist. 29 (1958) 995-1010: the test of what is left (from memory).
     """
     pairs = pair_spectra(before, after, model)
+    best = _best_fit(pairs, model)
+    content = _content(pairs, model, best.wholly)
+    found = [(members, _columns(best.fit, content, members)) for members in _classes(best.fit, content)]
+    found.append(((NOISE,), pairs.noise_ratios[:, None]))
+    heights = _vapour_heights(best) if VAPOUR in best.ground.kinds else None
+    spread = [] if heights is None else [spread_p(heights[0], heights[1])]
+    adjusted = holm_adjusted([best.unexplained_p, *spread, *(mean_p(columns) for _, columns in found)]).tolist()
+    changes = [_unexplained(pairs, model, best, adjusted[0])]
+    if heights is not None:
+        changes.append(_vapour_spread(heights[0], heights[1], adjusted[1]))
+    for (members, columns), p in zip(found, adjusted[len(changes) :], strict=True):
+        # A new substance may look like more or less of the old ones.
+        alike = (CONTENT, UNEXPLAINED) if members == (CONTENT,) and changes[0].significant else members
+        for i, kind in enumerate(members):
+            each = columns[:, i] if len(members) == 1 else _alone(best, kind, members)
+            changes.append(_change(pairs, model, kind, each, p, alike))
+    return tuple(sorted(changes, key=lambda c: (not c.significant, -abs(c.effect or 0.0))))
+
+
+@dataclass(frozen=True, eq=False)
+class _Best:
+    """The fit of all kinds together, and what it rests on."""
+
+    ground: Ground  # without the points far from those used
+    inside: IntArray  # positions of its points on the model's axis
+    before: FloatArray
+    after: FloatArray
+    wholly: FloatArray  # directions of composition on the model's axis ...
+    directions: FloatArray  # ... and on the ground
+    scatter: FloatArray  # weights from the scatter between standards ...
+    weights: FloatArray  # ... and with little of them where all show something new
+    fit: Fit
+    unexplained_p: float
+
+
+def _best_fit(pairs: Pairs, model: Calibration) -> _Best:
+    """Fit, weight by the scatter between standards, fit on; and on, robustly, where something new remains."""
     both = 0.5 * (pairs.before + pairs.after)
     light = 10.0 ** (-2.0 * both.mean(axis=0)) if pairs.ground.light else np.ones(pairs.ground.axis.size)
     wholly = composition_directions(pairs.ground, both, max(model.factors, 1), light)
     ground, inside = core_of(pairs.ground)
     a, b, directions, light = (rows[..., inside] for rows in (pairs.before, pairs.after, wholly, light))
     fit = fit_changes(ground, a, b, ground.kinds, directions, light)
-    weights = scatter_weights(ground, fit.rest)
-    fit = fit_changes(ground, a, b, ground.kinds, directions, weights, start=fit)
-    root = np.sqrt(weights[ground.used])
-    unexplained_p, used_weights = dempster_p(fit.rest[:, ground.used] * root), weights
+    scatter = weights = scatter_weights(ground, fit.rest)
+    fit = fit_changes(ground, a, b, ground.kinds, directions, scatter, start=fit, rounds=ROUNDS_ON)
+    unexplained_p = dempster_p(fit.rest[:, ground.used] * np.sqrt(scatter[ground.used]))
     if unexplained_p <= SIGNIFICANCE:
         for _ in range(ROBUST_ROUNDS):
-            used_weights = robust_weights(ground, fit.rest, weights)
-            fit = fit_changes(ground, a, b, ground.kinds, directions, used_weights, start=fit)
-    content = _content(pairs, model, wholly)
-    found = [(members, _columns(fit, content, members)) for members in _classes(fit, content)]
-    found.append(((NOISE,), pairs.noise_ratios[:, None]))
-    p_values = [mean_p(columns) for _, columns in found]
-    spread = None
-    if VAPOUR in ground.kinds:
-        heights = [vapour_heights(ground, rows, directions, weights) for rows in (a, b)]
-        spread = heights[0].std(ddof=1), heights[1].std(ddof=1)
-        p_values.append(spread_p(heights[0], heights[1]))
-    adjusted = holm_adjusted([*p_values, unexplained_p]).tolist()
-    strange = adjusted[-1] <= SIGNIFICANCE
-    changes = [_unexplained(pairs, model, fit, inside, adjusted[-1])]
-    if spread is not None:
-        changes.append(_vapour_spread(float(spread[0]), float(spread[1]), len(a), adjusted[-2]))
-    for (members, columns), p in zip(found, adjusted, strict=False):
-        for i, kind in enumerate(members):
-            each = columns[:, i]
-            if len(members) > 1:  # its size as if the others of its class had not happened
-                kinds = [k for k in ground.kinds if k == kind or k not in members]
-                each = fit_changes(ground, a, b, kinds, directions, used_weights).sizes[:, kinds.index(kind)]
-            # A new substance may look like more or less of the old ones.
-            alike = (CONTENT, UNEXPLAINED) if strange and kind == CONTENT else members
-            changes.append(_change(pairs, model, kind, each, p, alike))
-    return tuple(sorted(changes, key=lambda c: (not c.significant, -abs(c.effect or 0.0))))
+            weights = robust_weights(ground, fit.rest, scatter)
+            fit = fit_changes(ground, a, b, ground.kinds, directions, weights, start=fit, rounds=ROUNDS_ON)
+    return _Best(ground, inside, a, b, wholly, directions, scatter, weights, fit, unexplained_p)
+
+
+def _alone(best: _Best, kind: str, members: Sequence[str]) -> FloatArray:
+    """Size of a change for each standard as if the others of its class had not happened, shape (n_standards,)."""
+    kinds = [k for k in best.ground.kinds if k == kind or k not in members]
+    fit = fit_changes(best.ground, best.before, best.after, kinds, best.directions, best.weights)
+    return fit.sizes[:, kinds.index(kind)]
+
+
+def _vapour_heights(best: _Best) -> tuple[FloatArray, FloatArray]:
+    """Vapour in each spectrum before and after, against the means of both, shape (n_standards,) each."""
+    before, after = (
+        vapour_heights(best.ground, rows, best.directions, best.scatter) for rows in (best.before, best.after)
+    )
+    return before, after
 
 
 def _content(pairs: Pairs, model: Calibration, directions: FloatArray) -> FloatArray:
@@ -220,15 +250,15 @@ def _mean_step(pairs: Pairs, model: Calibration, added: FloatArray) -> float:
     return float((now - then).mean())
 
 
-def _unexplained(pairs: Pairs, model: Calibration, fit: Fit, inside: IntArray, p_value: float) -> Change:
+def _unexplained(pairs: Pairs, model: Calibration, best: _Best, p_value: float) -> Change:
     """What all standards have in common beyond every kind of change: a band of something new, say."""
-    mean = fit.rest.mean(axis=0)
+    mean = best.fit.rest.mean(axis=0)
     place = int(np.argmax(np.abs(mean)))
     added = np.zeros(pairs.ground.axis.size)
-    added[inside] = mean
-    error = float(fit.rest[:, place].std(ddof=1) / np.sqrt(len(fit.rest)))
+    added[best.inside] = mean
+    error = float(best.fit.rest[:, place].std(ddof=1) / np.sqrt(len(best.fit.rest)))
     significant = p_value <= SIGNIFICANCE
-    where = f"{pairs.ground.axis[inside[place]]:g} {AXIS_UNITS[pairs.unit]}"
+    where = f"{pairs.ground.axis[best.inside[place]]:g} {AXIS_UNITS[pairs.unit]}"
     return Change(
         kind=UNEXPLAINED,
         size=float(mean[place]),
@@ -239,14 +269,15 @@ def _unexplained(pairs: Pairs, model: Calibration, fit: Fit, inside: IntArray, p
         effect=_mean_step(pairs, model, np.broadcast_to(added, pairs.before.shape)),
         words=describe(UNEXPLAINED, float(mean[place]), error, "absorbance", significant=significant, where=where),
         usual_cause=CAUSES[UNEXPLAINED],
-        same_class_as=(CONTENT,) if significant and fit.composition.size else (),
+        same_class_as=(CONTENT,) if significant and best.fit.composition.size else (),
     )
 
 
-def _vapour_spread(before: float, after: float, n: int, p_value: float) -> Change:
+def _vapour_spread(before: FloatArray, after: FloatArray, p_value: float) -> Change:
     """Whether water vapour varies more, or less, from standard to standard; its mean is another question."""
-    size, significant = after - before, p_value <= SIGNIFICANCE
-    error = float(np.hypot(before, after) / np.sqrt(2.0 * (n - 1)))  # of two standard deviations of n values
+    sd = [float(before.std(ddof=1)), float(after.std(ddof=1))]
+    size, significant = sd[1] - sd[0], p_value <= SIGNIFICANCE
+    error = float(np.hypot(sd[0], sd[1]) / np.sqrt(2.0 * (before.size - 1)))  # of two standard deviations of n values
     return Change(
         kind=VAPOUR_SPREAD,
         size=size,

@@ -9,6 +9,7 @@ from quant.result import Result, documented
 from quant.statistics.quantiles import t_two_sided_p
 
 SIGNIFICANCE = 0.05
+AIR = 2.7e-4  # refractive index of air less 1: wavenumbers in air are larger by as much than in vacuum
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -66,6 +67,8 @@ def axis_error(
         f"Axis against {against}: offset {offset:+.3f} ± {errors_of[0]:.3f} cm⁻¹ at {centre:.0f} cm⁻¹, stretch "
         f"{1e6 * stretch:+.0f} ± {1e6 * errors_of[1]:.0f} parts per million ({_told(significant)})"
     )
+    if significant[1] and abs(abs(stretch) - AIR) < 3.0 * errors_of[1]:
+        words += "; that is the step between wavenumbers in air and in vacuum: compare the instrument's settings"
     return AxisError(
         against=against,
         n_bands=x.size,

@@ -65,9 +65,11 @@ class RemedyRow(Result):
     kind: str = documented("none, correction, transfer or recalibration")
     available: bool = documented("Whether it could be fitted to what was given")
     note: str = documented("Why not, or what it found")
-    rmse: float | None = documented("Left-out root mean square difference from the target", ANALYTE)
+    rmse: float | None = documented(
+        "Left-out root mean square difference from the values before, else the references", ANALYTE
+    )
     rmse_reference: float | None = documented("Left-out root mean square error against the reference values", ANALYTE)
-    bias: float | None = documented("Left-out mean difference from the target", ANALYTE)
+    bias: float | None = documented("Left-out mean difference from the same", ANALYTE)
     standard_error: float | None = documented("Standard error of the mean squared difference", f"({ANALYTE})²")
     not_applicable: int | None = documented("Left-out standards to which the corrected model does not apply")
     qualifies: bool = documented("Whether it may be proposed: available, and the model applies to the standards again")

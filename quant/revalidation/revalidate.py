@@ -21,7 +21,7 @@ from quant.revalidation.equivalence import (
     scatter_equivalence,
 )
 from quant.revalidation.gathered import InstrumentRecord, gather_evidence
-from quant.revalidation.judgements import Power
+from quant.revalidation.judgements import Power, RemedyRow
 from quant.revalidation.power import power_of
 from quant.revalidation.remedies.judge import judge_remedies
 from quant.revalidation.result import RevalidationResult
@@ -86,28 +86,12 @@ def revalidate(
     own = calibration_samples(training, model.analyte.name) if isinstance(training, Recipe) else training
     standards = gather(model, samples, before, training_of(model, own) if own is not None else None)
     basis = basis_of(model, allowed_bias, allowed_sep)
-    n = len(standards)
-    outside = not_applicable(model, standards.after)
-    differences = standards.after.value - standards.target
-    errors = standards.after.value - standards.reference
-    enough = n >= LEAST_STANDARDS
-    judged = judge_remedies(standards) if enough else ()
+    judged = judge_remedies(standards) if len(standards) >= LEAST_STANDARDS else ()
     rows = tuple(entry.row for entry in judged)
     labels = standards_evidence(model, samples)
-    evidence = gather_evidence(model, samples, labels, own, instrument or NO_RECORD)
     changes, note = _changes(standards)
-    facts = Facts(
-        n_standards=n,
-        standards_in_doubt=in_doubt(labels, changes, differences),
-        applies=outside <= SHARE_OUTSIDE * n,
-        bias=bias_equivalence(differences, basis.allowed_bias),
-        scatter=scatter_equivalence(errors, basis.allowed_sep),
-        tests=advisory_tests(differences, errors, standards.reference, sep=basis.sep, n_validation=basis.n_samples)
-        if enough
-        else (),
-        proposed=next((row for row in rows if row.proposed), None),
-        allowed_sep=basis.allowed_sep,
-    )
+    outside = not_applicable(model, standards.after)
+    facts = _facts(standards, basis, labels, changes, outside, next((row for row in rows if row.proposed), None))
     rule = decide(facts)
     power = _power(standards, basis)
     wanted = rule.verdict not in (HOLDS, CANNOT_DECIDE, REBUILD)
@@ -132,7 +116,7 @@ def revalidate(
         tests=facts.tests,
         power=power,
         changes=changes,
-        evidence=evidence,
+        evidence=gather_evidence(model, samples, labels, own, instrument or NO_RECORD),
         remedies=rows if wanted else tuple(replace(row, proposed=False) for row in rows),
         proposed=facts.proposed.name if wanted and facts.proposed else "",
         files=tuple(dict.fromkeys((*(before.sources if before else ()), *after.sources, *reference.sources))),
@@ -190,6 +174,35 @@ def _samples(model: Calibration, after: SpectraSet, reference: ReferenceTable) -
             f"{np.count_nonzero(known)} standard(s) with a value of {analyte.name}; expected two or more."
         )
     return samples.subset(known)
+
+
+def _facts(
+    standards: Standards,
+    basis: RevalidationBasis,
+    labels: StandardsEvidence,
+    changes: tuple[Change, ...],
+    outside: int,
+    proposed: RemedyRow | None,
+) -> Facts:
+    """What the rules look at."""
+    n, reference = len(standards), standards.reference
+    errors = standards.after.value - reference
+    differences = standards.after.value - standards.before if standards.paired else errors
+    tests = (
+        advisory_tests(differences, errors, reference, sep=basis.sep, n_validation=basis.n_samples)
+        if n >= LEAST_STANDARDS
+        else ()
+    )
+    return Facts(
+        n_standards=n,
+        standards_in_doubt=in_doubt(labels, changes, differences),
+        applies=outside <= SHARE_OUTSIDE * n,
+        bias=bias_equivalence(differences, basis.allowed_bias),
+        scatter=scatter_equivalence(errors, basis.allowed_sep),
+        tests=tests,
+        proposed=proposed,
+        allowed_sep=basis.allowed_sep,
+    )
 
 
 def in_doubt(labels: StandardsEvidence, changes: tuple[Change, ...], differences: FloatArray) -> bool:

@@ -99,9 +99,14 @@ class Standards:
         """What it said of them before, shape (n,). [unit of the analyte]"""
         return np.asarray(self.model.method.predict(self.before_processed))
 
+    @property
+    def yardstick(self) -> FloatArray:
+        """What left-out values are judged by: predictions from before, in which errors cancel, else the references."""
+        return self.before if self.paired else self.reference
+
     @cached_property
     def target(self) -> FloatArray:
-        """What remedies have to bring back, shape (n,). [unit of the analyte]
+        """What remedies are fitted to, shape (n,). [unit of the analyte]
 
         Predictions from before and reference values, each weighted by how little it scattered before the visit: the one
         carries the scatter of presenting the sample, the other that of laboratory and model. Without spectra from

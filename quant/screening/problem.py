@@ -27,7 +27,7 @@ class Candidate:
     kept : tuple of int or range
         Pieces of the axis; empty: all points.
     n_points, n_ranges, n_steps : int
-        Points and ranges kept (one range where all are), steps of the preprocessing.
+        Points kept; intervals kept (a window is one, and so is everything); steps of the preprocessing.
     factors : int
         By the recipe's rule.
     rmsecv, rmsecv_se : float
@@ -138,12 +138,11 @@ class Problem:
         return Problem(replace(self.samples, values=every), self.recipe, self.analyte)
 
 
-def measure(problem: Problem, chain: int, pieces: tuple[slice, ...], kept: Kept, n_points: int) -> tuple[int, int, int]:
-    """Return points, ranges and steps of a selection."""
-    runs = sum(
-        1 for place, number in enumerate(kept) if place == 0 or pieces[kept[place - 1]].stop != pieces[number].start
-    )
-    return points_kept(pieces, kept, n_points), max(runs, 1), len(problem.chains[chain].steps)
+def measure(problem: Problem, chain: int, kept: Kept) -> tuple[int, int, int]:
+    """Return points, ranges (a window is one, so is everything; else intervals) and steps of a selection."""
+    axis, pieces = problem.layout(chain)
+    n_ranges = len(kept) if isinstance(kept, tuple) and kept else 1
+    return points_kept(pieces, kept, axis.size), n_ranges, len(problem.chains[chain].steps)
 
 
 def capped(recipe: Recipe, most: int) -> Recipe:

@@ -97,7 +97,7 @@ class ScreenResult(Result):
 
     @property
     def chance_p(self) -> float:
-        """p of the chance level; NaN where it was not worked out."""
+        """Share p of the chance level; NaN where it was not worked out."""
         return float("nan") if self.chance is None else self.chance.p
 
     @property

@@ -91,7 +91,7 @@ class ChainScores:
         rule, n = self.problem.recipe.regression.factors, len(self.problem.samples)
         found = []
         for kept, errors, spread in zip(selections, rmsecv, se, strict=True):
-            n_points, n_ranges, n_steps = measure(self.problem, self.chain, self.pieces, kept, self.n_points)
+            n_points, n_ranges, n_steps = measure(self.problem, self.chain, kept)
             if isinstance(rule, int) and rule > n_points:
                 continue
             factors = choose(errors, spread, rule, n)

@@ -99,7 +99,7 @@ def test_the_cause_is_named(name: str, estimate: Estimate, bounds: Callable[[int
 def test_nothing_is_named_where_nothing_changed(
     estimate: Estimate, bounds: Callable[[int, float], tuple[int, int]]
 ) -> None:
-    n = 60
+    n = 40
     found = [estimate(Case({}, ()), number) for number in range(n)]
     most = bounds(n, 0.05)[1]
     assert sum(bool(names(changes)) for changes in found) <= most

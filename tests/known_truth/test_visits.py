@@ -117,23 +117,24 @@ def counts(visits, recipe, names, seeds):
 
 
 def test_an_unchanged_instrument_is_not_called_broken(visits, recipe, bounds):
-    found = counts(visits, recipe, ["nothing"], range(20))["nothing"]
-    assert found[HOLDS] + found[CANNOT_DECIDE] >= 20 - bounds(20, 0.02)[1]
-    assert found[HOLDS] >= 10
+    found = counts(visits, recipe, ["nothing"], range(5))["nothing"]
+    assert found[HOLDS] + found[CANNOT_DECIDE] >= 5 - bounds(5, 0.02)[1]
+    assert found[HOLDS] >= 1
 
 
-def test_visits_that_matter_are_named_and_mended(visits, recipe):
-    names = ["shift 0.5", "resolution 6", "interferent"]
-    for name, found in counts(visits, recipe, names, range(100, 112)).items():
-        assert found["broken"] >= 9, name
-        assert found["wrongly holds"] == 0, name
-        assert found["named"] >= 0.9 * found["broken"] - 1, name
-        assert found["restored"] >= 0.6 * found["proposed"], name  # 90 % nominal, 99.9 % bound of 12
+@pytest.mark.parametrize("name", ["shift 0.5", "resolution 6", "interferent"])
+def test_visits_that_matter_are_named_and_mended(visits, recipe, bounds, name):
+    found = counts(visits, recipe, [name], range(100, 104))[name]
+    assert found["broken"] >= 3  # what follows would say nothing of visits that do not matter
+    assert found["wrongly holds"] == 0
+    assert found["named"] >= bounds(found["broken"], 0.9)[0]
+    assert found["restored"] >= bounds(found["proposed"], 0.9)[0]
 
 
 def test_standards_that_lost_solvent_do_not_condemn_the_instrument(visits, recipe):
-    found = counts(visits, recipe, ["standards lost solvent"], range(200, 212))["standards lost solvent"]
-    assert found[HOLDS] + found[CANNOT_DECIDE] >= 6
+    found = counts(visits, recipe, ["standards lost solvent"], range(200, 204))["standards lost solvent"]
+    assert found[CANNOT_DECIDE] >= 1
+    assert found["proposed"] <= 2
 
 
 @pytest.mark.long

@@ -184,6 +184,16 @@ def test_axis_error_by_hand() -> None:
     assert not bent.offset_significant  # t = 7.1 with one degree of freedom
 
 
+def test_the_step_from_vacuum_to_air_is_told() -> None:
+    # published-values.md 1.3 [computed]: +0.27 cm⁻¹ per 1000 cm⁻¹
+    x = [3060.0, 2849.5, 1942.9, 1601.2, 1028.3]
+    noise = [0.01, -0.01, 0.005, -0.01, 0.008]
+    for stretch, told in ((2.7e-4, True), (1e-4, False)):
+        found = axis_error(x, [stretch * place + e for place, e in zip(x, noise, strict=True)], [1.0] * 5, "a test")
+        assert found.stretch_significant
+        assert ("in air and in vacuum" in found.words) == told
+
+
 def test_the_series_goes_through_the_points_and_knows_its_slope() -> None:
     axis = np.arange(1000.0, 1400.0, 2.0)
     band = Band(1201.3, 20.0, 0.5, "gaussian")

@@ -68,6 +68,11 @@ def test_a_shift_is_corrected_confirmed_and_followed_back(world, judged, tmp_pat
     assert {source.name for source in grown.lineage.ancestors[1].made_from} == {"after 101"}
 
 
+def test_paired_differences_decide_and_errors_judge_the_scatter(judged):
+    assert judged.bias.bias == pytest.approx(float(np.mean(judged.after - judged.before)))
+    assert judged.scatter.sep == pytest.approx(float(np.std(judged.after - judged.reference, ddof=1)))
+
+
 def test_the_parent_is_never_edited(world, judged):
     before = fingerprint_of(world.model)
     for row in judged.remedies:

@@ -7,7 +7,7 @@ from quant.screening.problem import Candidate, capped, measure
 
 
 def candidate(problem, chain, kept):
-    n_points, n_ranges, n_steps = measure(problem, chain, problem.layout(chain)[1], kept, 41)
+    n_points, n_ranges, n_steps = measure(problem, chain, kept)
     return Candidate(chain=chain, kept=kept, n_points=n_points, n_ranges=n_ranges, n_steps=n_steps, factors=1,
                      rmsecv=1.0, rmsecv_se=0.1)  # fmt: skip
 
@@ -18,7 +18,7 @@ RANGES = '[screen.ranges]\nsearch = "intervals"\nnumber = 20\nmost = 3\n'
 def test_a_candidate_is_a_recipe_of_its_own(make_problem):
     problem = make_problem('chains = [[{ step = "snv" }]]\n' + RANGES)
     one = candidate(problem, 0, (3, 4, 7))
-    assert (one.n_points, one.n_ranges, one.n_steps) == (6, 2, 1)
+    assert (one.n_points, one.n_ranges, one.n_steps) == (6, 3, 1)
     recipe = problem.candidate_recipe(one)
     assert recipe.preprocessing == [{"step": "snv"}, {"step": "keep_ranges", "ranges": [[1770, 1755], [1730, 1725]]}]
     assert recipe.screen is None

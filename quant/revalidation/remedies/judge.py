@@ -27,8 +27,8 @@ class Judged:
 def judge_remedies(standards: Standards) -> tuple[Judged, ...]:
     """Fit every remedy with each standard left out in turn; propose the simplest within one standard error of the best.
 
-    The first row is "none": the model as it is. Differences are counted from the target: predictions from before the
-    visit and reference values, weighted by their earlier scatter, or the reference values alone.
+    The first row is "none": the model as it is. Differences are counted from the predictions from before the
+    visit, in which errors of laboratory and samples cancel, or else from the reference values.
 
     Parameters
     ----------
@@ -65,7 +65,7 @@ def _judge(standards: Standards, remedy: Remedy) -> Judged:
         except QuantError as problem:
             note = str(problem)
     available = not note
-    squared = (values - standards.target) ** 2 if available else np.empty(0)
+    squared = (values - standards.yardstick) ** 2 if available else np.empty(0)
     error = values - standards.reference if available else np.empty(0)
     row = RemedyRow(
         name=remedy.name,
@@ -75,7 +75,7 @@ def _judge(standards: Standards, remedy: Remedy) -> Judged:
         note=note,
         rmse=float(np.sqrt(squared.mean())) if available else None,
         rmse_reference=float(np.sqrt(np.mean(error**2))) if available else None,
-        bias=float(np.mean(values - standards.target)) if available else None,
+        bias=float(np.mean(values - standards.yardstick)) if available else None,
         standard_error=float(squared.std(ddof=1) / np.sqrt(n)) if available else None,
         not_applicable=outside if available else None,
         qualifies=available and remedy.name != NOTHING and outside <= max(1, int(SHARE_OUTSIDE * n)),

@@ -22,9 +22,6 @@ from quant.revalidation.standards import Standards
 REACH = 2  # points to either side in a window
 # Strengths tried, as multiples of the mean variance of the predictors.
 RIDGES: tuple[float, ...] = (0.0, *np.logspace(-3, 5, 9).tolist())
-    0.0,
-    *np.logspace(-3, 5, 17).tolist(),
-)  # as multiples of the mean variance of the predictors
 FEWEST = 3  # standards for a map
 
 
