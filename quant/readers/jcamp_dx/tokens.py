@@ -24,7 +24,7 @@ from quant.readers.jcamp_dx.alphabet import (
 )
 from quant.readers.jcamp_dx.scan import EXACT_DIGITS, Lines, TokenError
 
-MOST_POINTS = 10_000_000  # a count of repetitions beyond this is damage, not a spectrum
+MOST_POINTS = 2_000_000  # a count of repetitions beyond this is damage, not a spectrum
 PORTION = 2**17  # bytes decoded at a time
 _LARGEST_SUM = 2**62  # of differences; beyond it 64 bits run over
 
