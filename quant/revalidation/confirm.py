@@ -59,7 +59,7 @@ def confirm_model(result: RevalidationResult) -> Calibration:
         raise ParameterError(f"The model's state is {model.state.name}; only a provisional one is confirmed.")
     if not result.accepted:
         raise ParameterError(f"The verdict is: {result.verdict}; a model is confirmed only when it holds.")
-    known = {source.sha256 for source in own.made_from}
+    known = {source.sha256 for source in (*own.made_from, *model.training)}
     again = [sample for sample in result.sample_ids if sample in own.samples]
     again += [source.name for source in result.files if source.sha256 in known]
     if again:
