@@ -25,6 +25,7 @@ from quant.units import AXIS_UNITS
 ALLOWED_BIAS, ALLOWED_SEP = 1.0, 2.0  # defaults, as multiples of the validated SEP
 MOST_SAMPLES = 12  # looked at, spread over the range: the time of a calibration must not go here
 GROWTH = 4.0  # from one size tried to the next
+FEWEST_POINTS = 4  # below, there is no spectrum to shift or to blur
 STEPS = 6  # from the first size tried to the last: a factor of 4096
 HALVINGS = 12  # of the interval of sizes: three digits
 SEED = 20260301  # of the noise that is added
@@ -76,7 +77,7 @@ def with_revalidation(
         sep_source=source,
     )
     mean = training.mean_by_sample(training.spectra.values)
-    if np.isnan(mean).any():  # spectra with gaps cannot be shifted
+    if np.isnan(mean).any() or mean.shape[1] < FEWEST_POINTS:  # neither gaps nor single points can be shifted
         return replace(model, revalidation=basis)
     return replace(model, revalidation=replace(basis, monitoring=sensitivity(model, mean, basis)))
 

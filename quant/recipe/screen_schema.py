@@ -88,8 +88,14 @@ class ScreenTable(Table):
         "factors, then ranges, then steps; lowest: the lowest RMSECV.",
     )
     seed: int = Field(1, ge=0, description="Of outer folds, permutations and draws.")
-    nested: NestedTable = Field(default_factory=lambda: NestedTable.model_validate({}))
-    chance: ChanceTable = Field(default_factory=lambda: ChanceTable.model_validate({}))
+    nested: NestedTable = Field(
+        default_factory=lambda: NestedTable.model_validate({}),
+        description="The whole search repeated without samples that it is then judged by.",
+    )
+    chance: ChanceTable = Field(
+        default_factory=lambda: ChanceTable.model_validate({}),
+        description="The search repeated on reference values dealt out at random.",
+    )
     new: list[Text] = Field(
         default_factory=list,
         description="Files with new spectra, without values, on which near-ties are compared; default: the spectra of "

@@ -7,7 +7,7 @@ from hypothesis import strategies as st
 from hypothesis.extra.numpy import arrays
 
 from quant.statistics.figures import bias, figures_of_merit, rmse, sep
-from quant.statistics.intervals import base_variance, prediction_interval, true_value_variance
+from quant.statistics.intervals import base_variance, standard_error, true_value_share
 from quant.statistics.kennard_stone import kennard_stone
 from quant.statistics.splits import (
     contiguous_blocks,
@@ -161,12 +161,16 @@ def test_every_choice_of_kennard_stone_is_as_far_as_any_other_would_be(seed, n):
 
 
 @given(SEEDS, st.integers(1, 30), st.floats(1e-3, 1e3))
-def test_intervals_scale_with_the_unit_and_lie_about_the_value(seed, n, factor):
+def test_standard_errors_scale_with_the_unit(seed, n, factor):
     rng = np.random.default_rng(seed)
     errors, h = rng.normal(size=n), rng.uniform(0.01, 2, n)
     variance = base_variance(errors, h)
     assert base_variance(factor * errors, h) == pytest.approx(factor**2 * variance, rel=1e-12)
     assert variance <= np.mean(errors**2)
-    low, high = prediction_interval(errors, np.sqrt(variance), h, 2.0)
-    assert (low + high) / 2 == pytest.approx(errors, abs=1e-12)
-    assert ((high - low) / 4) ** 2 == pytest.approx(true_value_variance(np.sqrt(variance), h, 0.0), rel=1e-9)
+    found = standard_error(np.sqrt(variance), h)
+    assert found**2 == pytest.approx(variance * (1 + h), rel=1e-9)
+    assert standard_error(factor * np.sqrt(variance), h) == pytest.approx(factor * found, rel=1e-9)
+    laboratory = 0.5 * np.sqrt(variance)
+    share = true_value_share(float(found[0]), float(np.sqrt(variance)), float(laboratory))
+    assert share is not None
+    assert (share * found[0]) ** 2 == pytest.approx(found[0] ** 2 - laboratory**2, rel=1e-9, abs=1e-12)

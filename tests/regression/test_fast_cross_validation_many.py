@@ -85,7 +85,8 @@ def test_memory_does_not_grow_with_the_number_of_candidates(jobs):
         return most
 
     few, many = peak(500), peak(3000)
-    assert many - few < 2e6, "2500 Gram matrices of 29 kB were kept"
+    # 2500 Gram matrices of 29 kB are 72 MB; how many wait for a worker at once depends on how busy the machine is.
+    assert many - few < 10e6
 
 
 def test_a_candidate_of_low_rank_stops_and_says_so(data):
