@@ -223,7 +223,7 @@ def _model(
         test_predictions=method.predict(processed[rows]),
         figures={"RMSECV": float(crossed.rmsecv[position])},
         recipe=recipe.text,
-        training=spectra.sources,
+        training=tuple(dict.fromkeys((*spectra.sources, *training.reference_sources))),
         versions=program_versions(),
     )
 

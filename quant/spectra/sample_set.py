@@ -10,6 +10,7 @@ from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.checks import name_some, one_of
 from quant.errors import ParameterError, SampleMismatchError
 from quant.spectra.frozen import FrozenMapping
+from quant.spectra.provenance import Source
 from quant.spectra.reference_table import NO_LIMIT, Analyte, ReferenceTable, Repeatability
 from quant.spectra.spectra_set import SpectraSet
 
@@ -44,6 +45,8 @@ class SampleSet:
         Upper limits of values that are only known to lie below one, NaN for all others. [unit of each analyte]
     determinations : array of int, shape (n_samples, n_analytes)
         How many laboratory determinations each value is the mean of.
+    reference_sources : tuple of Source
+        The files of the reference values.
     repeatability : mapping of str to Repeatability
         By the analyte's name, where the reference table holds repeated determinations.
     """
@@ -59,6 +62,7 @@ class SampleSet:
     censored: FloatArray = field(default_factory=lambda: np.array(NO_LIMIT))
     determinations: IntArray = field(default_factory=lambda: np.array(1))
     repeatability: Mapping[str, Repeatability] = field(default_factory=dict)
+    reference_sources: tuple[Source, ...] = ()
 
     def __post_init__(self) -> None:
         for name in ("censored", "determinations"):  # one number stands for all
@@ -132,6 +136,7 @@ class SampleSet:
             censored=self.censored[chosen],
             determinations=self.determinations[chosen],
             repeatability=self.repeatability,
+            reference_sources=self.reference_sources,
         )
 
     def positions(self, sample_ids: Sequence[str]) -> IntArray:
@@ -240,6 +245,7 @@ def pair_samples(
         limits,
         reference.determinations[chosen],
         reference.repeatability,
+        reference.sources,
     )
 
 
