@@ -122,7 +122,8 @@ def factor_limit(recipe: Recipe, folds: Folds, n_points: int) -> int:
         if number > possible:
             raise ParameterError(
                 f"{number} factors asked for under [regression], but the smallest training set has {smallest} samples "
-                f"of {n_points} points; at most {possible} are possible. Lower max_factors, or add samples."
+                f"of {n_points} points; at most {possible} are possible. Lower factors or max_factors, or add "
+                "samples."
             )
     most = (
         table.max_factors if isinstance(table.max_factors, int) else min(MOST_FACTORS, max(smallest // 2, 1), possible)

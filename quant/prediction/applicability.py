@@ -86,7 +86,8 @@ def check_acquisition(model: Calibration, spectra: SpectraSet) -> None:
     if spectra.quantity != model.quantity:
         raise QuantityError(
             f"The spectra are {QUANTITIES[spectra.quantity]}, but the model was made from {QUANTITIES[model.quantity]}"
-            ". Export them as the calibration's were."
+            f". Export them as the calibration's were, or read them with quantity = {model.quantity!r} if that is what "
+            "they are."
         )
     for note, known in model.domain.items():
         allowed = {_comparable(value) for value in known}

@@ -132,7 +132,7 @@ OTHERWISE = {
     in_another_unit: "The spectra of S01, S02 lie on 1800 → 1600 nm, 41 points, every 5 nm; expected 1800 → 1600 "
     "cm⁻¹, 41 points, every 5 cm⁻¹. The units differ: export them in one unit, or state axis_unit.",
     of_another_quantity: "The spectra are transmittance, but the model was made from absorbance. Export them as the "
-    "calibration's were.",
+    "calibration's were, or read them with quantity = 'absorbance' if that is what they are.",
     by_another_technique: "technique is transmission for S01, S02, but the calibration holds for ATR. Measure as for "
     "the calibration, or make a calibration for this technique.",
     at_another_resolution: "resolution is 8 for S01, S02, but the calibration holds for 4. Measure as for the "

@@ -86,7 +86,7 @@ RECIPES = {
         ("max_factors = 4", "max_factors = 12"),
         USAGE,
         "12 factors asked for under [regression], but the smallest training set has 11 samples of 41 points; at most "
-        "10 are possible. Lower max_factors, or add samples.",
+        "10 are possible. Lower factors or max_factors, or add samples.",
     ),
     "bands missing": (
         with_regression('method = "band_area"'),
