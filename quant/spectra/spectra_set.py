@@ -19,6 +19,8 @@ from quant.units import QUANTITIES
 if TYPE_CHECKING:
     import pandas as pd
 
+LARGEST_ORDINATE = 1e100  # beyond, sums of squares run over
+
 Notes = Mapping[str, str]
 
 
@@ -44,7 +46,9 @@ class SpectraSet:
     Raises
     ------
     ParameterError
-        The parts do not fit each other, or an ordinate is infinite.
+        The parts do not fit each other.
+    QuantityError
+        An ordinate is infinite, or so large that its square would be.
     """
 
     values: FloatArray
@@ -70,10 +74,11 @@ class SpectraSet:
                 f"Spectra of shape {matrix.shape} with {len(sample_ids)} sample IDs, {len(rows)} rows of notes and an "
                 f"axis of {len(axis)} points; expected one ID and one row of notes a spectrum, one column a point."
             )
-        infinite = np.flatnonzero(np.isinf(matrix).any(axis=1))
-        if infinite.size:
-            raise ParameterError(
-                f"Infinite ordinates in {name_some(sample_ids[i] for i in infinite.tolist())}; expected numbers."
+        beyond = np.flatnonzero((np.abs(matrix) > LARGEST_ORDINATE).any(axis=1))
+        if beyond.size:
+            raise QuantityError(
+                f"Ordinates beyond {LARGEST_ORDINATE:g} in {name_some(sample_ids[i] for i in beyond.tolist())}; "
+                "expected numbers that a spectrometer gives. Export them again."
             )
         matrix.flags.writeable = False
         object.__setattr__(self, "values", matrix)

@@ -26,7 +26,6 @@ def three(**changes: object) -> SpectraSet:
         ({"values": VALUES[0]}, r"shape \(5,\)"),
         ({"notes": [{}]}, "1 rows of notes"),
         ({"quantity": "colour"}, "quantity = 'colour'"),
-        ({"values": np.where(VALUES == 14, np.inf, VALUES)}, "Infinite ordinates in B"),
     ],
 )
 def test_parts_that_do_not_fit(changes: dict[str, object], words: str) -> None:
@@ -107,3 +106,13 @@ def test_a_table_for_pandas() -> None:
     assert list(frame.columns) == ["sample", "n", 900.0, 902.0, 904.0, 906.0, 908.0]
     assert frame["sample"].tolist() == ["A", "A", "B"]
     assert frame[904.0].tolist() == [2.0, 7.0, 12.0]
+
+
+@pytest.mark.parametrize("value", [np.inf, -np.inf, 1e101, -1e308])
+def test_ordinates_that_no_spectrometer_gives_are_refused(value):
+    values = np.ones((2, 3))
+    values[1, 2] = value
+    with pytest.raises(
+        QuantityError, match=r"^Ordinates beyond 1e\+100 in B; expected numbers that"
+    ):
+        SpectraSet(values, SpectralAxis([1.0, 2.0, 3.0]), ["A", "B"])
