@@ -112,7 +112,5 @@ def test_a_table_for_pandas() -> None:
 def test_ordinates_that_no_spectrometer_gives_are_refused(value):
     values = np.ones((2, 3))
     values[1, 2] = value
-    with pytest.raises(
-        QuantityError, match=r"^Ordinates beyond 1e\+100 in B; expected numbers that"
-    ):
+    with pytest.raises(QuantityError, match=r"^Ordinates beyond 1e\+100 in B; expected numbers that"):
         SpectraSet(values, SpectralAxis([1.0, 2.0, 3.0]), ["A", "B"])
