@@ -4,9 +4,10 @@ import numpy as np
 from scipy import stats
 
 from quant.arrays import FloatArray
-from quant.calibration.cross_validation import MOST_FACTORS
+from quant.calibration.cross_validation import MOST_FACTORS, check_calibration_values
 from quant.calibration.split import INTERNAL
-from quant.inspection.finding import DOUBT, NOTE, Finding, percent, plural, signed_percent
+from quant.errors import NotEnoughDataError
+from quant.inspection.finding import DOUBT, NOTE, STOP, Finding, percent, plural, signed_percent
 from quant.inspection.material import Material
 
 WIDE_GAP = 0.2  # of the range
@@ -18,6 +19,26 @@ TOGETHER, NEARLY = 0.9, 0.7  # |r|: as good as one variable; half of the varianc
 LEAST_CALIBRATION, LEAST_VALIDATION = 24, 20
 FEW_VALIDATION = 8  # fewer say next to nothing about RMSEP (95 % interval wider than −32 % to +92 %)
 LEAST_LEVELS = 5  # concentrations of a straight-line calibration; ICH Q2, from memory
+
+
+def check_possible(material: Material) -> list[Finding]:
+    """Stop where calibrating would refuse: too few values, or values that do not differ."""
+    findings = []
+    for analyte, column in zip(material.calibration.analytes, material.calibration.values.T, strict=True):
+        try:
+            check_calibration_values(analyte.name, column[np.isfinite(column)])
+        except NotEnoughDataError as problem:
+            findings.append(
+                Finding(
+                    gravity=STOP,
+                    code="nothing_to_learn",
+                    title=f"{analyte.name} cannot be calibrated",
+                    samples=(),
+                    evidence=str(problem),
+                    advice="Calibrating refuses this.",
+                )
+            )
+    return findings
 
 
 def check_range(material: Material) -> list[Finding]:

@@ -3,12 +3,13 @@
 import numpy as np
 import pytest
 
-from quant.inspection.finding import DOUBT, NOTE
+from quant.inspection.finding import DOUBT, NOTE, STOP
 from quant.inspection.gather import gather
 from quant.inspection.spread import (
     check_below_limit,
     check_counts,
     check_origin,
+    check_possible,
     check_range,
     check_together,
     widest_gap,
@@ -127,3 +128,20 @@ def test_values_below_a_limit():
     assert finding.samples == ("S0",)
     assert "below 0.05 %" in finding.evidence
     assert check_below_limit(material([1, 2, 3, 4, 5])) == []
+
+
+@pytest.mark.parametrize(
+    ("values", "evidence"),
+    [
+        ([1.0, 2.0, 3.0], "3 samples with a value of a; at least 4 are needed"),
+        ([2.0] * 6, "All 6 reference values of a are 2"),
+    ],
+)
+def test_what_calibrating_would_refuse_is_a_stop(values, evidence):
+    (found,) = check_possible(material(values))
+    assert (found.gravity, found.code) == (STOP, "nothing_to_learn")
+    assert found.evidence.startswith(evidence)
+
+
+def test_values_that_differ_are_no_stop():
+    assert check_possible(material([1.0, 2.0, 3.0, 4.0])) == []
