@@ -47,11 +47,6 @@ def separator_sign(word: str) -> str:
     return _SIGNS.get(word, word)
 
 
-def split_line(line: str, separator: str) -> list[str]:
-    """Return the cells of a line without quotes, stripped."""
-    return _BLANKS.split(line.strip(" \t")) if separator == " " else [cell.strip() for cell in line.split(separator)]
-
-
 def read_rows(path: Path, text: str, separator: str) -> list[Row]:
     """Return the rows that are not blank, cells stripped of blanks.
 
