@@ -21,7 +21,8 @@ from quant.statistics.quantiles import t_quantile
 
 RISK = 0.05  # of saying "holds" where the bias, or the scatter, is as large as allowed
 FAMILY_RISK = 0.02  # of calling an unchanged instrument changed, over the whole family
-FAMILY = ("bias", "SEP", "slope", "joint ellipse")
+SCATTER = "SEP"
+FAMILY = ("bias", SCATTER, "slope", "joint ellipse")
 """The tests that advise, declared before any value is seen."""
 LEAST_STANDARDS = 4  # below, the slope has one degree of freedom and nothing can be left out in turn
 
@@ -137,7 +138,7 @@ def advisory_tests(
     slope_f, slope = _slope(d, x)
     found = (
         ("bias", mean, t, 2 * float(stats.t.sf(t, n - 1))),
-        ("SEP", float(e.std(ddof=1)), ratio, float(stats.f.sf(ratio, n - 1, n_validation - 1))),
+        (SCATTER, float(e.std(ddof=1)), ratio, float(stats.f.sf(ratio, n - 1, n_validation - 1))),
         ("slope", 1 + slope, slope_f, float(stats.f.sf(slope_f, 1, n - 2))),
         ("joint ellipse", None, *_joint(d, x)),
     )

@@ -66,10 +66,12 @@ class RemedyRow(Result):
     available: bool = documented("Whether it could be fitted to what was given")
     note: str = documented("Why not, or what it found")
     rmse: float | None = documented(
-        "Left-out root mean square difference from the values before, else the references", ANALYTE
+        "Left-out root mean square difference from what is known: predictions from before and references, weighted",
+        ANALYTE,
     )
     rmse_reference: float | None = documented("Left-out root mean square error against the reference values", ANALYTE)
-    bias: float | None = documented("Left-out mean difference from the same", ANALYTE)
+    expected_sep: float | None = documented("SEP to expect of other samples, by these standards", ANALYTE)
+    bias: float | None = documented("Left-out mean difference from what is known", ANALYTE)
     standard_error: float | None = documented("Standard error of the mean squared difference", f"({ANALYTE})²")
     not_applicable: int | None = documented("Left-out standards to which the corrected model does not apply")
     qualifies: bool = documented("Whether it may be proposed: available, and the model applies to the standards again")

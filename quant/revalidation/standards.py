@@ -99,14 +99,28 @@ class Standards:
         """What it said of them before, shape (n,). [unit of the analyte]"""
         return np.asarray(self.model.method.predict(self.before_processed))
 
+    @cached_property
+    def difference_sd(self) -> tuple[float, str]:
+        """Standard deviation of one difference after - before of an unchanged instrument, from earlier data, and which.
+
+        [unit of the analyte]
+        """
+        sep, source = self.validated_sep, self.model.revalidation.sep_source if self.model.revalidation else "s0"
+        replicate_sd = self.model.uncertainty.replicate_sd
+        if replicate_sd is None or self.before_index is None:
+            return sep * float(np.sqrt(2)), f"SEP, {source}, before and after as if independent"
+        counts = [np.bincount(index, minlength=len(self)) for index in (self.before_index, self.after_index)]
+        sd = replicate_sd * float(np.sqrt(np.mean(1 / counts[0] + 1 / counts[1])))
+        return sd, "replicate spectra of the calibration, before and after"
+
     @property
-    def yardstick(self) -> FloatArray:
-        """What left-out values are judged by: predictions from before, in which errors cancel, else the references."""
-        return self.before if self.paired else self.reference
+    def validated_sep(self) -> float:
+        """SEP before any service. [unit of the analyte]"""
+        return self.model.revalidation.sep if self.model.revalidation else self.model.uncertainty.s0
 
     @cached_property
     def target(self) -> FloatArray:
-        """What remedies are fitted to, shape (n,). [unit of the analyte]
+        """What remedies are fitted to and left-out values are judged by, shape (n,). [unit of the analyte]
 
         Predictions from before and reference values, each weighted by how little it scattered before the visit: the one
         carries the scatter of presenting the sample, the other that of laboratory and model. Without spectra from
@@ -114,7 +128,7 @@ class Standards:
         """
         if not self.paired or self.before_index is None:
             return self.reference
-        sep = self.model.revalidation.sep if self.model.revalidation else self.model.uncertainty.s0
+        sep = self.validated_sep
         spread = self.model.uncertainty.replicate_sd
         if spread is None:
             return (self.before + self.reference) / 2

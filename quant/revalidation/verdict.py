@@ -3,11 +3,11 @@
 | rule | applies where | verdict |
 |---|---|---|
 | too few standards | fewer than four | cannot decide |
-| standards in doubt | past their date, or low without a change of the instrument that explains it | cannot decide |
+| standards in doubt | past their date, or changed without a change of the instrument that explains it | cannot decide |
 | equivalent | bias and SEP shown to be within what is allowed, and the model applies to the standards | holds |
-| nothing found | not shown, but no test of the family is significant, and the model applies | cannot decide |
-| no remedy | what was found is real, and no remedy brings left-out standards within the allowed SEP | rebuild |
-| correction | the proposed remedy is a bias, a slope and bias, or a correction of the axis | holds after correction |
+| nothing found | not shown, but no test is significant, no costly change found, and the model applies | cannot decide |
+| no remedy | what was found is real, and no remedy is expected to bring samples within the allowed SEP | rebuild |
+| correction | the proposed remedy is a correction of limits, values, axis or mean spectrum | holds after correction |
 | transfer | the proposed remedy is a map of the spectra, or a new fit | transfer needed |
 """
 
@@ -37,6 +37,7 @@ class Facts:
     tests: tuple[AdvisoryTest, ...]
     proposed: RemedyRow | None
     allowed_sep: float
+    costly: bool = False  # a change of the instrument was found that by itself moves results by more than allowed
 
     @property
     def equivalent(self) -> bool:
@@ -46,12 +47,12 @@ class Facts:
     @property
     def changed(self) -> bool:
         """Something was found that chance does not explain."""
-        return not self.applies or any(test.significant for test in self.tests)
+        return not self.applies or self.costly or any(test.significant for test in self.tests)
 
     @property
     def restorable(self) -> bool:
-        """The proposed remedy brings left-out standards within the allowed SEP."""
-        error = self.proposed.rmse_reference if self.proposed else None
+        """The proposed remedy is expected to bring other samples within the allowed SEP."""
+        error = self.proposed.expected_sep if self.proposed else None
         return error is not None and error <= self.allowed_sep
 
 
@@ -88,7 +89,7 @@ RULES = (
     Rule(
         "no remedy",
         REBUILD,
-        "the change is real, and no remedy brings left-out standards within the allowed SEP",
+        "the change is real, and no remedy brings the expected SEP within what is allowed",
         lambda f: not f.restorable,
     ),
     Rule(

@@ -21,6 +21,7 @@ def row(kind, error=0.03):
         note="",
         rmse=error,
         rmse_reference=error,
+        expected_sep=error,
         bias=0.0,
         standard_error=0.0001,
         not_applicable=0,
@@ -57,6 +58,7 @@ MOVED = replace(GOOD, bias=bias_equivalence(SMALL + 0.3, 0.1), tests=(finding(si
         (replace(MOVED, standards_in_doubt=True), v.CANNOT_DECIDE),  # before the instrument is blamed
         (replace(MOVED, tests=(finding(significant=False),)), v.CANNOT_DECIDE),
         (replace(GOOD, scatter=scatter_equivalence(SMALL, 0.02)), v.CANNOT_DECIDE),
+        (replace(MOVED, tests=(finding(significant=False),), costly=True), v.CORRECT),
         (MOVED, v.CORRECT),
         (replace(MOVED, proposed=row("transfer")), v.TRANSFER),
         (replace(MOVED, proposed=row("recalibration")), v.TRANSFER),

@@ -8,6 +8,7 @@ from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.errors import NotEnoughDataError
 from quant.model.calibration import Calibration
 from quant.preprocessing.spectral_map import SpectralMap, banded_map
+from quant.revalidation.change_pairs import used_points
 from quant.revalidation.standards import Standards
 from quant.spectra.resampling import interpolation_weights
 
@@ -84,15 +85,6 @@ def axis_map(axis: FloatArray, shift: float, stretch: float) -> SpectralMap:
     """
     wanted = np.clip(axis + shift + stretch * (axis - _middle(axis)), axis.min(), axis.max())
     return banded_map(*interpolation_weights(axis, wanted), np.zeros(axis.size))
-
-
-def used_points(model: Calibration) -> BoolArray:
-    """Say which points of the axis reach the regression, shape (n_points,); all, where steps leave the axis' grid."""
-    axis = model.axis.values
-    for step in model.steps:
-        axis = step.axis_after(axis)
-    used = np.isin(model.axis.values, axis)
-    return used if np.count_nonzero(used) == axis.size else np.ones(used.size, dtype=bool)
 
 
 def _middle(axis: FloatArray) -> float:

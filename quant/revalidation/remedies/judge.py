@@ -8,7 +8,8 @@ from quant.arrays import FloatArray, IntArray
 from quant.errors import QuantError
 from quant.model.calibration import Calibration
 from quant.revalidation.judgements import RemedyRow
-from quant.revalidation.remedies.table import NOTHING, REMEDIES, Remedy
+from quant.revalidation.noise_cost import added_by_noise
+from quant.revalidation.remedies.table import LIMITS, NOTHING, REMEDIES, Remedy
 from quant.revalidation.standards import Standards, not_applicable
 
 SHARE_OUTSIDE = 0.25  # of the standards to which a corrected model may fail to apply (one at least)
@@ -27,8 +28,8 @@ class Judged:
 def judge_remedies(standards: Standards) -> tuple[Judged, ...]:
     """Fit every remedy with each standard left out in turn; propose the simplest within one standard error of the best.
 
-    The first row is "none": the model as it is. Differences are counted from the predictions from before the
-    visit, in which errors of laboratory and samples cancel, or else from the reference values.
+    The first row is "none": the model as it is. Proposed is one whose model applies to the standards again; only where
+    no remedy does that, one whose limits of applicability have to be renewed as well.
 
     Parameters
     ----------
@@ -40,12 +41,13 @@ def judge_remedies(standards: Standards) -> tuple[Judged, ...]:
     """
     unchanged = Remedy(NOTHING, "leave the model as it is", NOTHING, lambda s, _: s.model)
     judged = [_judge(standards, remedy) for remedy in (unchanged, *REMEDIES)]
-    qualified = [entry.row for entry in judged[1:] if entry.row.qualifies]
-    if not qualified:
+    rows = [entry.row for entry in judged[1:] if entry.row.available]
+    candidates = [row for row in rows if row.qualifies] or rows
+    if not candidates:
         return tuple(judged)
-    best = min(qualified, key=lambda row: row.rmse or 0.0)
+    best = min(candidates, key=lambda row: row.rmse or 0.0)
     bound = (best.rmse or 0.0) ** 2 + (best.standard_error or 0.0)
-    near = [row.name for row in qualified if (row.rmse or 0.0) ** 2 <= bound]
+    near = [row.name for row in candidates if (row.rmse or 0.0) ** 2 <= bound]
     return tuple(
         replace(
             entry,
@@ -56,33 +58,74 @@ def judge_remedies(standards: Standards) -> tuple[Judged, ...]:
 
 
 def _judge(standards: Standards, remedy: Remedy) -> Judged:
-    n = len(standards)
     note = remedy.lacking(standards)
-    values, residual, leverage, outside = np.empty(0), np.empty(0), np.empty(0), 0
     if not note:
         try:
-            values, residual, leverage, outside = _left_out(standards, remedy)
+            return _judged(standards, remedy, *_left_out(standards, remedy))
         except QuantError as problem:
             note = str(problem)
-    available = not note
-    squared = (values - standards.yardstick) ** 2 if available else np.empty(0)
-    error = values - standards.reference if available else np.empty(0)
     row = RemedyRow(
         name=remedy.name,
         words=remedy.words,
         kind=remedy.kind,
-        available=available,
+        available=False,
         note=note,
-        rmse=float(np.sqrt(squared.mean())) if available else None,
-        rmse_reference=float(np.sqrt(np.mean(error**2))) if available else None,
-        bias=float(np.mean(values - standards.yardstick)) if available else None,
-        standard_error=float(squared.std(ddof=1) / np.sqrt(n)) if available else None,
-        not_applicable=outside if available else None,
-        qualifies=available and remedy.name != NOTHING and outside <= max(1, int(SHARE_OUTSIDE * n)),
+        rmse=None,
+        rmse_reference=None,
+        expected_sep=None,
+        bias=None,
+        standard_error=None,
+        not_applicable=None,
+        qualifies=False,
+        within_one_se=False,
+        proposed=False,
+    )
+    return Judged(row, np.empty(0), np.empty(0), np.empty(0))
+
+
+def _judged(
+    standards: Standards, remedy: Remedy, values: FloatArray, residual: FloatArray, leverage: FloatArray, outside: int
+) -> Judged:
+    n = len(standards)
+    squared = (values - standards.target) ** 2
+    row = RemedyRow(
+        name=remedy.name,
+        words=remedy.words,
+        kind=remedy.kind,
+        available=True,
+        note="",
+        rmse=float(np.sqrt(squared.mean())),
+        rmse_reference=float(np.sqrt(np.mean((values - standards.reference) ** 2))),
+        expected_sep=expected_sep(standards, remedy.fit(standards, np.arange(n)), values),
+        bias=float(np.mean(values - standards.target)),
+        standard_error=float(squared.std(ddof=1) / np.sqrt(n)),
+        not_applicable=outside,
+        qualifies=remedy.name not in (NOTHING, LIMITS) and outside <= max(1, int(SHARE_OUTSIDE * n)),
         within_one_se=False,
         proposed=False,
     )
     return Judged(row, values, residual, leverage)
+
+
+def expected_sep(standards: Standards, model: Calibration, values: FloatArray) -> float:
+    """Return the SEP to expect of other samples: the validated one, and what the visit added.
+
+    That is what differences from before scatter beyond the presentation of samples, or what noise adds, whichever is
+    more. Unlike errors against a dozen of reference values, which laboratory and model dominate, these show what the
+    visit did. Without them, or without the scatter of presenting samples, the left-out error against the references.
+
+    Parameters
+    ----------
+    standards : Standards
+    model : Calibration
+        With the remedy fitted to all standards.
+    values : array of shape (n,)
+        Left-out predictions after. [unit of the analyte]
+    """
+    if not standards.paired or standards.model.uncertainty.replicate_sd is None:
+        return float(np.sqrt(np.mean((values - standards.reference) ** 2)))
+    left = float(np.mean((values - standards.before) ** 2)) - standards.difference_sd[0] ** 2
+    return float(np.sqrt(standards.validated_sep**2 + max(left, added_by_noise(standards, model), 0.0)))
 
 
 def _left_out(standards: Standards, remedy: Remedy) -> tuple[FloatArray, FloatArray, FloatArray, int]:

@@ -1,10 +1,10 @@
-"""Direct and piecewise direct standardisation: a map of the spectra, fitted behind the model's own steps.
+"""Mean difference, direct and piecewise direct standardisation: a map of the spectra behind the model's own steps.
 
 Behind the steps, contact, path and baseline of the single measurement are gone, and what differs between before and
-after is the instrument. Both maps start from "nothing changed but the mean" and are drawn towards it by a ridge whose
-strength the standards choose by leaving each out: with a dozen of standards that differ little, an unrestrained map
-would fit noise and flatten the very band that is to be measured. What counts in that choice is the left-out error of
-the predicted value where the regression has a vector, else that of the spectra.
+after is the instrument. Both standardisations start from "nothing changed but the mean" and are drawn towards it by a
+ridge whose strength the standards choose by leaving each out: with a dozen of standards that differ little, an
+unrestrained map would fit noise and flatten the very band that is to be measured. What counts in that choice is the
+left-out error of the predicted value where the regression has a vector, else that of the spectra.
 """
 
 from dataclasses import replace
@@ -23,6 +23,21 @@ REACH = 2  # points to either side in a window
 # Strengths tried, as multiples of the mean variance of the predictors.
 RIDGES: tuple[float, ...] = (0.0, *np.logspace(-3, 5, 9).tolist())
 FEWEST = 3  # standards for a map
+
+
+def remove_mean_difference(standards: Standards, rows: IntArray) -> Calibration:
+    """Return the model with a last step that takes the mean difference after - before off every spectrum.
+
+    Parameters
+    ----------
+    standards : Standards
+        With spectra from before.
+    rows : array of int
+        The standards that the remedy may see.
+    """
+    difference = standards.before_processed[rows] - standards.after_processed[rows]
+    points = np.arange(difference.shape[1])[:, None]
+    return _levelled(standards, rows, banded_map(points, np.ones(points.shape), difference.mean(axis=0)))
 
 
 def standardise_directly(standards: Standards, rows: IntArray) -> Calibration:

@@ -9,11 +9,15 @@ from quant.regression.band_area import BandArea
 from quant.regression.factor_regression import FactorRegression
 from quant.revalidation.remedies.axis_correction import correct_axis
 from quant.revalidation.remedies.refit import recalibrate, remove_difference
-from quant.revalidation.remedies.standardisation import standardise_directly, standardise_piecewise
+from quant.revalidation.remedies.standardisation import (
+    remove_mean_difference,
+    standardise_directly,
+    standardise_piecewise,
+)
 from quant.revalidation.remedies.values import correct_bias, correct_slope_and_bias
 from quant.revalidation.standards import Standards
 
-NOTHING = "none"
+NOTHING, LIMITS = "none", "limits"
 CORRECTION, TRANSFER, RECALIBRATION = "correction", "transfer", "recalibration"
 
 
@@ -57,10 +61,18 @@ class Remedy:
 
 
 REMEDIES = (
+    Remedy(LIMITS, "keep the model, renew its limits of applicability", CORRECTION, lambda s, _: s.model),
     Remedy("bias", "take the mean difference off every result", CORRECTION, correct_bias, moves_values=True),
     Remedy("slope_bias", "put every result on a new line", CORRECTION, correct_slope_and_bias, moves_values=True),
     Remedy(
         "axis", "move the spectra back along the axis (shift and stretch)", CORRECTION, correct_axis, needs_before=True
+    ),
+    Remedy(
+        "mean_spectrum",
+        "take the mean difference off the spectra",
+        CORRECTION,
+        remove_mean_difference,
+        needs_before=True,
     ),
     Remedy("direct", "map whole spectra onto those of before", TRANSFER, standardise_directly, needs_before=True),
     Remedy("piecewise", "map each point from its neighbours", TRANSFER, standardise_piecewise, needs_before=True),

@@ -1,0 +1,94 @@
+"""What the rules of the verdict look at, gathered from standards, tests, changes and remedies."""
+
+from quant.model.revalidation_basis import RevalidationBasis
+from quant.revalidation.change_words import CONTENT, NOISE
+from quant.revalidation.changes import Change
+from quant.revalidation.equivalence import (
+    LEAST_STANDARDS,
+    SCATTER,
+    advisory_tests,
+    bias_equivalence,
+    scatter_equivalence,
+)
+from quant.revalidation.judgements import AdvisoryTest, RemedyRow
+from quant.revalidation.standards import Standards
+from quant.revalidation.standards_state import StandardsEvidence
+from quant.revalidation.verdict import Facts
+
+SHARE_OUTSIDE = 0.5  # of the standards outside the model's domain: an unchanged instrument never puts so many there
+
+
+def gather_facts(
+    standards: Standards,
+    basis: RevalidationBasis,
+    labels: StandardsEvidence,
+    changes: tuple[Change, ...],
+    outside: int,
+    proposed: RemedyRow | None,
+) -> Facts:
+    """Gather what the rules look at.
+
+    Parameters
+    ----------
+    standards : Standards
+    basis : RevalidationBasis
+        What is allowed.
+    labels : StandardsEvidence
+        Dates of the standards, and signs of loss.
+    changes : tuple of Change
+        Empty without spectra from before.
+    outside : int
+        Standards to which the model does not apply now.
+    proposed : RemedyRow or None
+    """
+    n, reference = len(standards), standards.reference
+    errors = standards.after.value - reference
+    differences = standards.after.value - standards.before if standards.paired else errors
+    tests = (
+        advisory_tests(differences, errors, reference, sep=basis.sep, n_validation=basis.n_samples)
+        if n >= LEAST_STANDARDS
+        else ()
+    )
+    return Facts(
+        n_standards=n,
+        standards_in_doubt=in_doubt(labels, changes, tests, float(differences.mean())),
+        applies=outside <= SHARE_OUTSIDE * n,
+        bias=bias_equivalence(differences, basis.allowed_bias),
+        scatter=scatter_equivalence(errors, basis.allowed_sep),
+        tests=tests,
+        proposed=proposed,
+        allowed_sep=basis.allowed_sep,
+        costly=any(abs(change.effect or 0.0) > basis.allowed_bias for change in of_instrument(changes)),
+    )
+
+
+def of_instrument(changes: tuple[Change, ...]) -> list[Change]:
+    """Significant changes that move results and are not the standards' own."""
+    return [change for change in changes if change.significant and change.kind not in (CONTENT, NOISE)]
+
+
+def in_doubt(
+    labels: StandardsEvidence, changes: tuple[Change, ...], tests: tuple[AdvisoryTest, ...], mean: float
+) -> bool:
+    """Say whether the standards, rather than the instrument, may have changed.
+
+    They are in doubt if one is past its date; if they are low, and lower with age, and no change of the instrument
+    explains half of it; and if results differ beyond chance while the spectra show no change of the instrument at all
+    (scatter alone may also come from noise).
+
+    Parameters
+    ----------
+    labels : StandardsEvidence
+    changes : tuple of Change
+        Empty without spectra from before.
+    tests : tuple of AdvisoryTest
+    mean : float
+        Mean of after minus before, or of predicted minus reference. [unit of the analyte]
+    """
+    instrument = of_instrument(changes)
+    explained = any(abs(change.effect or 0.0) >= abs(mean) / 2 for change in instrument)
+    expired = not labels.trustworthy and not labels.loss_suspected
+    differing = {test.name for test in tests if test.significant}
+    noisy = any(change.significant and change.kind == NOISE for change in changes)
+    unexplained = bool(changes) and not instrument and bool(differing - {SCATTER} if noisy else differing)
+    return expired or (labels.loss_suspected and not explained) or unexplained
