@@ -1,49 +1,80 @@
-"""Simulated service visits with known truth: what is said of them, and what the proposed remedy restores."""
+"""Simulated service visits with known truth: what is said of them, and what the proposed remedy restores.
+
+A visit matters ("broken") where the bias of 300 untouched samples moved by more than is allowed, or their SEP exceeds
+what is allowed. It can be mended ("mendable") where a correction fitted to 500 standards brings their RMSEP to within
+1.15 times what it was; recalibration does not count there, since with 500 new samples it is a new calibration.
+"""
 
 import importlib.util
 import sys
 from collections import Counter
-from dataclasses import replace
+from dataclasses import dataclass, field, replace
+from functools import cached_property
+from typing import Any
 
 import numpy as np
 import pytest
 
 from quant.calibration.calibrate import calibrate
 from quant.recipe.load import load_recipe
-from quant.revalidation.remedies.table import REMEDIES
+from quant.revalidation.remedies.table import RECALIBRATION, REMEDIES
 from quant.revalidation.revalidate import revalidate
-from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS
+from quant.revalidation.standards import gather, training_of
+from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, REBUILD
 from quant.spectra.sample_set import pair_samples
+from quant.spectra.simulate import PureComponent
 from quant.spectra.simulate_instrument import measure
 from quant.spectra.simulate_substances import ACETONE
 
-SEED = 20261201  # fixed before the first run
-UNTOUCHED = 300  # samples that the remedy is judged on
+SEED = 20261201  # fixed before the first run; rules were chosen on seeds below 100, which are not counted
+UNTOUCHED = 300  # samples that remedies are judged on
+MANY = 500  # standards of the best that can be done
 RESTORED = 1.15  # times the RMSEP before the visit
+# A new substance with bands where the solvent has none.
+RESIDUE = PureComponent("residue", [(1640.0, 18.0, 0.01, "mixed"), (1150.0, 20.0, 0.01, "mixed")])
+AXIS = {"shift", "stretch"}
+
+
+@dataclass(frozen=True)
+class Visit:
+    """What a visit changes in the instrument, the kinds that name it (one of each set), what the standards lost."""
+
+    changed: dict[str, Any] = field(default_factory=dict)
+    causes: tuple[set[str], ...] = ()
+    lost: float = 0.0
+
 
 VISITS = {
-    "nothing": {},
-    "shift 0.1": {"shift": 0.1},
-    "shift 0.5": {"shift": 0.5},
-    "shift 2": {"shift": 2.0},
-    "stretch 1e-4": {"stretch": 1e-4},
-    "gain 1.1": {"gain": 1.1},
-    "resolution 6": {"resolution": 6.0},
-    "baseline five times": {"baseline_offset": 2e-2, "baseline_slope": 1e-2, "baseline_curvature": 6e-3},
-    "noise three times": {"noise": 2.4e-3},
-    "vapour ten times": {"water_vapour": 4e-3},
-    "interferent": {"interferent": ACETONE, "interferent_amount": 0.002},
-    "shift and gain": {"shift": 0.5, "gain": 1.05},
-    "standards lost solvent": None,
+    "nothing": Visit(),
+    "shift 0.1": Visit({"shift": 0.1}, (AXIS,)),
+    "shift 0.3": Visit({"shift": 0.3}, (AXIS,)),
+    "shift 1": Visit({"shift": 1.0}, (AXIS,)),
+    "shift 2": Visit({"shift": 2.0}, (AXIS,)),
+    "stretch 1e-4": Visit({"stretch": 1e-4}, (AXIS,)),
+    "stretch 5e-4": Visit({"stretch": 5e-4}, (AXIS,)),
+    "gain 1.1": Visit({"gain": 1.1}, ({"gain"},)),
+    "gain 1.5": Visit({"gain": 1.5}, ({"gain"},)),
+    "resolution 4 to 5": Visit({"resolution": 5.0}, ({"resolution"},)),
+    "resolution 4 to 8": Visit({"resolution": 8.0}, ({"resolution"},)),
+    "offset 0.01": Visit({"offset": 0.01}, ({"offset"},)),
+    "baseline drift five times": Visit(
+        {"baseline_offset": 2e-2, "baseline_slope": 1e-2, "baseline_curvature": 6e-3},
+        ({"offset", "baseline_slope", "baseline_curvature"},),
+    ),
+    "noise twice": Visit({"noise": 1.6e-3}, ({"noise"},)),
+    "noise three times": Visit({"noise": 2.4e-3}, ({"noise"},)),
+    "vapour ten times": Visit({"water_vapour": 4e-3}, ({"vapour", "vapour_spread"},)),
+    "vapour fifty times": Visit({"water_vapour": 2e-2}, ({"vapour", "vapour_spread"},)),
+    "acetone left": Visit({"interferent": ACETONE, "interferent_amount": 0.002}, ({"unexplained"},)),
+    "residue on the crystal": Visit({"interferent": RESIDUE, "interferent_amount": 1.0}, ({"unexplained"},)),
+    # Gain alone costs nothing behind SNV, so that it need not be named.
+    "shift and gain": Visit({"shift": 0.5, "gain": 1.05}, (AXIS,)),
+    "shift and resolution": Visit({"shift": 0.3, "resolution": 5.0}, (AXIS, {"resolution"})),
+    "stretch and noise": Visit({"stretch": 2e-4, "noise": 1.2e-3}, (AXIS,)),
+    "resolution and vapour": Visit({"resolution": 5.0, "water_vapour": 4e-3}, ({"resolution"},)),
+    "standards lost solvent": Visit(lost=0.15),
 }
-CAUSES = {
-    "shift": {"shift", "stretch"},
-    "stretch": {"shift", "stretch"},
-    "resolution": {"resolution"},
-    "noise": {"noise"},
-    "water_vapour": {"vapour", "vapour_spread"},
-    "interferent": {"unexplained"},
-}
+UNCHANGED = ("nothing", "standards lost solvent")  # as far as the instrument goes
 
 
 @pytest.fixture(scope="module")
@@ -55,6 +86,12 @@ def visits(repository):
     sys.modules["visits_of_known_truth"] = module
     specification.loader.exec_module(module)
     return module
+
+
+@pytest.fixture(scope="module")
+def recipe(repository):
+    """The demo's recipe."""
+    return load_recipe(repository / "configs" / "dryer_solvent.toml")
 
 
 class Plant:
@@ -69,79 +106,109 @@ class Plant:
         self.values = part.reference.values[:, 0]
         self.rows = np.repeat(visits.dryer.true_absorbances(part.composition), 2, axis=0)
 
-    def errors(self, model, state):
-        """Errors of the untouched samples, measured in some state of the instrument."""
-        spectra = measure(self.rows, self.visits.dryer.AXIS.values, self.rng, state)
+    @cached_property
+    def validated(self):
+        """Errors of the untouched samples before the visit."""
+        return self.errors(self.model, self.measured(self.visits.BEFORE))
+
+    def measured(self, state):
+        """Spectra of the untouched samples, two each, on the instrument in some state."""
+        return measure(self.rows, self.visits.dryer.AXIS.values, self.rng, state)
+
+    def errors(self, model, spectra):
+        """Errors of the untouched samples."""
         return model.method.predict(model.process(spectra).reshape(UNTOUCHED, 2, -1).mean(axis=1)) - self.values
 
-    def visit(self, name):
+    def ratio(self, model, spectra):
+        """RMSEP of the untouched samples by what it was before the visit."""
+        return float(np.sqrt(np.mean(self.errors(model, spectra) ** 2) / np.mean(self.validated**2)))
+
+    def best_with_many(self, state, spectra):
+        """The least such ratio by corrections fitted to 500 standards."""
+        drawn = self.visits.draw_visit(self.rng, MANY, after=state)
+        samples = pair_samples(drawn.after, drawn.reference)
+        many = gather(self.model, samples, drawn.before, training_of(self.model, self.training))
+        corrections = [remedy for remedy in REMEDIES if remedy.kind != RECALIBRATION]
+        return min(self.ratio(remedy.fit(many, np.arange(MANY)), spectra) for remedy in corrections)
+
+    def visit(self, name, *, with_many=False):
         """One visit: what was said, what was true, and how far the proposed remedy brought the error back."""
-        before, change = self.visits.BEFORE, VISITS[name]
-        state = before if change is None else replace(before, **change)
-        drawn = self.visits.draw_visit(self.rng, 12, after=state, lost=0.15 if change is None else 0.0)
+        visit = VISITS[name]
+        state = replace(self.visits.BEFORE, **visit.changed)
+        drawn = self.visits.draw_visit(self.rng, 12, after=state, lost=visit.lost)
         result = revalidate(self.model, drawn.after, drawn.reference, before=drawn.before, training=self.training)
-        validated, now = self.errors(self.model, before), self.errors(self.model, state)
-        basis = result.basis
-        broken = abs(now.mean() - validated.mean()) > basis.allowed_bias or now.std() > basis.allowed_sep
-        found = {entry.kind for entry in result.changes if entry.significant}
-        wanted = [CAUSES[kind] for kind in change or {} if kind in CAUSES]
-        restored = None
+        spectra = self.measured(state)
+        now, basis = self.errors(self.model, spectra), result.basis
+        broken = abs(now.mean() - self.validated.mean()) > basis.allowed_bias or now.std() > basis.allowed_sep
+        changes = [entry for entry in result.changes if entry.significant]
+        found = {kind for entry in changes for kind in (entry.kind, *entry.same_class_as)}
+        restored = False
         if result.proposed:
             fit = next(remedy.fit for remedy in REMEDIES if remedy.name == result.proposed)
-            after = self.errors(fit(result.standards, np.arange(12)), state)
-            restored = float(np.sqrt(np.mean(after**2) / np.mean(validated**2)))
-        named = all(found & cause for cause in wanted)
-        return result.verdict, bool(broken), bool(named), restored
+            restored = self.ratio(fit(result.standards, np.arange(12)), spectra) <= RESTORED
+        mendable = with_many and broken and self.best_with_many(state, spectra) <= RESTORED
+        said_changed = result.verdict not in (HOLDS, CANNOT_DECIDE)
+        return {
+            "visits": True,
+            result.verdict: True,
+            "broken": broken,
+            "named": broken and all(found & cause for cause in visit.causes),
+            "wrongly holds": broken and result.verdict == HOLDS,
+            "called broken": said_changed,
+            "proposed": bool(result.proposed),
+            "restored": restored,
+            "mendable": mendable,
+            "mendable, restored": mendable and restored,
+            "not mendable": with_many and broken and not mendable,
+            "not mendable, rebuild": with_many and broken and not mendable and result.verdict == REBUILD,
+        }
 
 
-@pytest.fixture(scope="module")
-def recipe(repository):
-    """The demo's recipe."""
-    return load_recipe(repository / "configs" / "dryer_solvent.toml")
-
-
-def counts(visits, recipe, names, seeds):
-    """Count over seeds: verdicts, true states, causes named, remedies that restored, by visit."""
-    table = {name: Counter() for name in names}
+def count(visits, recipe, name, seeds, *, with_many=False):
+    """Count over seeds."""
+    table = Counter()
     for seed in seeds:
-        plant = Plant(visits, recipe, seed)
-        for name, count in table.items():
-            verdict, broken, named, restored = plant.visit(name)
-            count[verdict] += 1
-            count["broken"] += broken
-            count["wrongly holds"] += broken and verdict == HOLDS
-            count["named"] += broken and named
-            count["proposed"] += restored is not None
-            count["restored"] += restored is not None and restored <= RESTORED
+        table.update({key: int(v) for key, v in Plant(visits, recipe, seed).visit(name, with_many=with_many).items()})
     return table
 
 
-def test_an_unchanged_instrument_is_not_called_broken(visits, recipe, bounds):
-    found = counts(visits, recipe, ["nothing"], range(5))["nothing"]
-    assert found[HOLDS] + found[CANNOT_DECIDE] >= 5 - bounds(5, 0.02)[1]
-    assert found[HOLDS] >= 1
+HALVES = [range(100, 110), range(110, 120)]  # of twenty seeds
 
 
-@pytest.mark.parametrize("name", ["shift 0.5", "resolution 6", "interferent"])
-def test_visits_that_matter_are_named_and_mended(visits, recipe, bounds, name):
-    found = counts(visits, recipe, [name], range(100, 104))[name]
-    assert found["broken"] >= 3  # what follows would say nothing of visits that do not matter
+@pytest.mark.parametrize("seeds", HALVES, ids=["first half", "second half"])
+@pytest.mark.parametrize("name", UNCHANGED)
+def test_an_unchanged_instrument_is_not_called_broken(visits, recipe, bounds, name, seeds):
+    found = count(visits, recipe, name, seeds)
+    assert found["broken"] == 0
+    assert found["called broken"] <= bounds(len(seeds), 0.02)[1]
+    assert found[HOLDS] >= 1 or name != "nothing"
+
+
+@pytest.mark.parametrize("seeds", HALVES, ids=["first half", "second half"])
+@pytest.mark.parametrize("name", ["shift 0.3", "resolution 4 to 8", "residue on the crystal", "shift and resolution"])
+def test_visits_that_matter_are_named_and_mended(visits, recipe, bounds, name, seeds):
+    found = count(visits, recipe, name, seeds)
+    assert found["broken"] >= 8  # what follows would say nothing of visits that do not matter
     assert found["wrongly holds"] == 0
     assert found["named"] >= bounds(found["broken"], 0.9)[0]
-    assert found["restored"] >= bounds(found["proposed"], 0.9)[0]
+    assert found["restored"] >= bounds(found["broken"], 0.9)[0]
 
 
-def test_standards_that_lost_solvent_do_not_condemn_the_instrument(visits, recipe):
-    found = counts(visits, recipe, ["standards lost solvent"], range(200, 204))["standards lost solvent"]
-    assert found[CANNOT_DECIDE] >= 1
-    assert found["proposed"] <= 2
+@pytest.mark.parametrize("seeds", HALVES, ids=["first half", "second half"])
+def test_noise_that_matters_is_not_mended_by_a_correction(visits, recipe, bounds, seeds):
+    found = count(visits, recipe, "noise three times", seeds)
+    assert found["broken"] >= 5
+    assert found["wrongly holds"] == 0
+    assert found[REBUILD] >= bounds(found["broken"], 0.9)[0]
 
 
 @pytest.mark.long
 @pytest.mark.parametrize("name", list(VISITS))
 def test_two_hundred_visits(visits, recipe, keep_result, name):
-    found = counts(visits, recipe, [name], range(1000, 1200))[name]
-    keep_result(f"visit_{name.replace(' ', '_')}", {key: int(value) for key, value in sorted(found.items())})
-    assert found["wrongly holds"] <= 10
-    if name == "nothing":
-        assert found[HOLDS] + found[CANNOT_DECIDE] >= 190
+    found = count(visits, recipe, name, range(1000, 1200), with_many=True)
+    keep_result(f"visit: {name}", {key: int(value) for key, value in sorted(found.items())})
+    assert found["wrongly holds"] <= 10  # 5 %
+    assert name not in UNCHANGED or found["called broken"] <= 10
+    assert found["named"] >= 0.9 * found["broken"]
+    assert found["mendable, restored"] >= 0.9 * found["mendable"]
+    assert found["not mendable, rebuild"] >= 0.9 * found["not mendable"]
