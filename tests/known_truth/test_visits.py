@@ -2,14 +2,15 @@
 
 A visit matters ("broken") where the bias of 300 untouched samples moved by more than is allowed, or their SEP exceeds
 what is allowed. It can be mended ("mendable") where a correction fitted to 500 standards brings their RMSEP to within
-1.15 times what it was; recalibration does not count there, since with 500 new samples it is a new calibration.
+1.15 times what it was, and is "beyond mending" where none brings bias and SEP within what is allowed. Recalibration
+does not count there, since with 500 new samples it is a new calibration.
 """
 
 import importlib.util
 import sys
 from collections import Counter
 from dataclasses import dataclass, field, replace
-from functools import cached_property
+from functools import cache, partial
 from typing import Any
 
 import numpy as np
@@ -98,55 +99,60 @@ class Plant:
     """A calibration, and 300 samples that no standard saw."""
 
     def __init__(self, visits, recipe, seed):
-        self.visits, self.rng = visits, np.random.default_rng([SEED, seed])
+        self.visits, self.seed = visits, seed
+        self.rng = np.random.default_rng([SEED, seed])
         drawn = visits.dryer.draw_set(self.rng)
         self.training, validation = (pair_samples(p.spectra, p.reference) for p in (drawn.standards, drawn.validation))
         self.model = calibrate(recipe, self.training, validation).model
         part = visits.dryer.draw_part(self.rng, UNTOUCHED, "V")
         self.values = part.reference.values[:, 0]
-        self.rows = np.repeat(visits.dryer.true_absorbances(part.composition), 2, axis=0)
-
-    @cached_property
-    def validated(self):
-        """Errors of the untouched samples before the visit."""
-        return self.errors(self.model, self.measured(self.visits.BEFORE))
+        self.composition = part.composition
+        self.validated = self.errors(self.model, self.measured(visits.BEFORE))  # before the visit
 
     def measured(self, state):
         """Spectra of the untouched samples, two each, on the instrument in some state."""
-        return measure(self.rows, self.visits.dryer.AXIS.values, self.rng, state)
+        dryer = self.visits.dryer
+        rows = np.repeat(dryer.true_absorbances(self.composition), 2, axis=0)
+        return measure(rows, dryer.AXIS.values, self.rng, state)
 
     def errors(self, model, spectra):
         """Errors of the untouched samples."""
         return model.method.predict(model.process(spectra).reshape(UNTOUCHED, 2, -1).mean(axis=1)) - self.values
 
-    def ratio(self, model, spectra):
+    def ratio(self, errors):
         """RMSEP of the untouched samples by what it was before the visit."""
-        return float(np.sqrt(np.mean(self.errors(model, spectra) ** 2) / np.mean(self.validated**2)))
+        return float(np.sqrt(np.mean(errors**2) / np.mean(self.validated**2)))
 
-    def best_with_many(self, state, spectra):
-        """The least such ratio by corrections fitted to 500 standards."""
+    def within(self, errors, basis):
+        """Whether bias and SEP of the untouched samples are within what is allowed."""
+        return abs(errors.mean() - self.validated.mean()) <= basis.allowed_bias and errors.std() <= basis.allowed_sep
+
+    def with_many(self, state, spectra):
+        """Errors of the untouched samples behind each correction fitted to 500 standards."""
         drawn = self.visits.draw_visit(self.rng, MANY, after=state)
         samples = pair_samples(drawn.after, drawn.reference)
         many = gather(self.model, samples, drawn.before, training_of(self.model, self.training))
         corrections = [remedy for remedy in REMEDIES if remedy.kind != RECALIBRATION]
-        return min(self.ratio(remedy.fit(many, np.arange(MANY)), spectra) for remedy in corrections)
+        return [self.errors(remedy.fit(many, np.arange(MANY)), spectra) for remedy in corrections]
 
     def visit(self, name, *, with_many=False):
         """One visit: what was said, what was true, and how far the proposed remedy brought the error back."""
         visit = VISITS[name]
+        self.rng = np.random.default_rng([SEED, self.seed, list(VISITS).index(name)])
         state = replace(self.visits.BEFORE, **visit.changed)
         drawn = self.visits.draw_visit(self.rng, 12, after=state, lost=visit.lost)
         result = revalidate(self.model, drawn.after, drawn.reference, before=drawn.before, training=self.training)
         spectra = self.measured(state)
-        now, basis = self.errors(self.model, spectra), result.basis
-        broken = abs(now.mean() - self.validated.mean()) > basis.allowed_bias or now.std() > basis.allowed_sep
+        broken = not self.within(self.errors(self.model, spectra), result.basis)
         changes = [entry for entry in result.changes if entry.significant]
         found = {kind for entry in changes for kind in (entry.kind, *entry.same_class_as)}
         restored = False
         if result.proposed:
             fit = next(remedy.fit for remedy in REMEDIES if remedy.name == result.proposed)
-            restored = self.ratio(fit(result.standards, np.arange(12)), spectra) <= RESTORED
-        mendable = with_many and broken and self.best_with_many(state, spectra) <= RESTORED
+            restored = self.ratio(self.errors(fit(result.standards, np.arange(12)), spectra)) <= RESTORED
+        best = self.with_many(state, spectra) if with_many and broken else []
+        mendable = any(self.ratio(errors) <= RESTORED for errors in best)
+        beyond = bool(best) and not mendable and not any(self.within(errors, result.basis) for errors in best)
         said_changed = result.verdict not in (HOLDS, CANNOT_DECIDE)
         return {
             "visits": True,
@@ -159,17 +165,26 @@ class Plant:
             "restored": restored,
             "mendable": mendable,
             "mendable, restored": mendable and restored,
-            "not mendable": with_many and broken and not mendable,
-            "not mendable, rebuild": with_many and broken and not mendable and result.verdict == REBUILD,
+            "not mendable": bool(best) and not mendable,
+            "not mendable, rebuild": bool(best) and not mendable and result.verdict == REBUILD,
+            "beyond mending": beyond,
+            "beyond mending, rebuild": beyond and result.verdict == REBUILD,
         }
 
 
-def count(visits, recipe, name, seeds, *, with_many=False):
+@pytest.fixture(scope="module")
+def count(visits, recipe):
     """Count over seeds."""
-    table = Counter()
-    for seed in seeds:
-        table.update({key: int(v) for key, v in Plant(visits, recipe, seed).visit(name, with_many=with_many).items()})
-    return table
+    plant = cache(partial(Plant, visits, recipe))
+
+    def over(name, seeds, *, with_many=False):
+        table = Counter()
+        for seed in seeds:
+            found = plant(seed).visit(name, with_many=with_many)
+            table.update({key: int(value) for key, value in found.items()})
+        return table
+
+    return over
 
 
 HALVES = [range(100, 110), range(110, 120)]  # of twenty seeds
@@ -177,8 +192,8 @@ HALVES = [range(100, 110), range(110, 120)]  # of twenty seeds
 
 @pytest.mark.parametrize("seeds", HALVES, ids=["first half", "second half"])
 @pytest.mark.parametrize("name", UNCHANGED)
-def test_an_unchanged_instrument_is_not_called_broken(visits, recipe, bounds, name, seeds):
-    found = count(visits, recipe, name, seeds)
+def test_an_unchanged_instrument_is_not_called_broken(count, bounds, name, seeds):
+    found = count(name, seeds)
     assert found["broken"] == 0
     assert found["called broken"] <= bounds(len(seeds), 0.02)[1]
     assert found[HOLDS] >= 1 or name != "nothing"
@@ -186,8 +201,8 @@ def test_an_unchanged_instrument_is_not_called_broken(visits, recipe, bounds, na
 
 @pytest.mark.parametrize("seeds", HALVES, ids=["first half", "second half"])
 @pytest.mark.parametrize("name", ["shift 0.3", "resolution 4 to 8", "residue on the crystal", "shift and resolution"])
-def test_visits_that_matter_are_named_and_mended(visits, recipe, bounds, name, seeds):
-    found = count(visits, recipe, name, seeds)
+def test_visits_that_matter_are_named_and_mended(count, bounds, name, seeds):
+    found = count(name, seeds)
     assert found["broken"] >= 8  # what follows would say nothing of visits that do not matter
     assert found["wrongly holds"] == 0
     assert found["named"] >= bounds(found["broken"], 0.9)[0]
@@ -195,8 +210,8 @@ def test_visits_that_matter_are_named_and_mended(visits, recipe, bounds, name, s
 
 
 @pytest.mark.parametrize("seeds", HALVES, ids=["first half", "second half"])
-def test_noise_that_matters_is_not_mended_by_a_correction(visits, recipe, bounds, seeds):
-    found = count(visits, recipe, "noise three times", seeds)
+def test_noise_that_matters_is_not_mended_by_a_correction(count, bounds, seeds):
+    found = count("noise three times", seeds)
     assert found["broken"] >= 5
     assert found["wrongly holds"] == 0
     assert found[REBUILD] >= bounds(found["broken"], 0.9)[0]
@@ -204,11 +219,11 @@ def test_noise_that_matters_is_not_mended_by_a_correction(visits, recipe, bounds
 
 @pytest.mark.long
 @pytest.mark.parametrize("name", list(VISITS))
-def test_two_hundred_visits(visits, recipe, keep_result, name):
-    found = count(visits, recipe, name, range(1000, 1200), with_many=True)
+def test_two_hundred_visits(count, keep_result, name):
+    found = count(name, range(1000, 1200), with_many=True)
     keep_result(f"visit: {name}", {key: int(value) for key, value in sorted(found.items())})
     assert found["wrongly holds"] <= 10  # 5 %
     assert name not in UNCHANGED or found["called broken"] <= 10
     assert found["named"] >= 0.9 * found["broken"]
     assert found["mendable, restored"] >= 0.9 * found["mendable"]
-    assert found["not mendable, rebuild"] >= 0.9 * found["not mendable"]
+    assert found["beyond mending, rebuild"] >= 0.9 * found["beyond mending"]
