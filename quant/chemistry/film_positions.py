@@ -31,6 +31,22 @@ class FilmBand:
     tolerance: float
 
 
+@dataclass(frozen=True)
+class FilmTable:
+    """Where the bands of a film should be.
+
+    Parameters
+    ----------
+    bands : tuple of FilmBand
+        From high to low wavenumbers.
+    source : str
+        Whose positions and tolerances.
+    """
+
+    bands: tuple[FilmBand, ...]
+    source: str
+
+
 # position, tolerance of Ph. Eur., tolerance of JP [cm⁻¹]
 _FILM = (
     (3060.0, 1.5, 1.5),
@@ -43,8 +59,8 @@ _FILM = (
 )
 
 
-def film_positions(rule: Rule = "ph_eur") -> tuple[FilmBand, ...]:
-    """Return the bands of a polystyrene film with their tolerances, from high to low wavenumbers.
+def film_positions(rule: Rule = "ph_eur") -> FilmTable:
+    """Return the bands of any polystyrene film with their tolerances.
 
     Parameters
     ----------
@@ -57,4 +73,4 @@ def film_positions(rule: Rule = "ph_eur") -> tuple[FilmBand, ...]:
         Another rule.
     """
     column = 1 + list(EDITIONS).index(one_of("rule", rule, tuple(EDITIONS)))
-    return tuple(FilmBand(row[0], row[column]) for row in _FILM)
+    return FilmTable(tuple(FilmBand(row[0], row[column]) for row in _FILM), EDITIONS[rule])

@@ -22,6 +22,11 @@ _FILES: dict[str, Any] = {"multiple": True, "metavar": "FILES"}
 @click.option("--reference", required=True, type=click.Path(path_type=Path), help="Table of their reference values.")
 @click.option("--film", help="Polystyrene film in transmission, now.", **_FILES)
 @click.option("--film-before", help="The film in the instrument's last record.", **_FILES)
+@click.option(
+    "--film-certificate",
+    type=click.Path(path_type=Path),
+    help="Table of the film's certified positions and tolerances, instead of the pharmacopoeia's.",
+)
 @click.option("--blank", help="100 % lines, now.", **_FILES)
 @click.option("--blank-before", help="100 % lines in the last record.", **_FILES)
 @click.option(
@@ -43,6 +48,7 @@ def command(
     model: Path,
     reference: Path,
     recipe: Path | None,
+    film_certificate: Path | None,
     allowed_bias: float | None,
     allowed_sep: float | None,
     sample_pattern: str | None,
@@ -58,6 +64,7 @@ def command(
     if remedy is not None and folder is None:
         raise click.UsageError("--apply needs --out, the folder for the new model.")
     from quant.model.storage import load_model  # deferred, as those below: --help needs none of it
+    from quant.readers.film_certificate import read_film_certificate
     from quant.recipe.load import load_recipe
     from quant.revalidation.confirm import confirm_model, correct_model
     from quant.revalidation.gathered import InstrumentRecord
@@ -67,12 +74,13 @@ def command(
     calibration = load_model(model)
     after = _standards(calibration, files["after"], sample_pattern)
     record = {name: _plain(files[name]) for name in ("film", "film_before", "blank", "blank_before")}
+    certificate = read_film_certificate(film_certificate) if film_certificate else None
     result = revalidate(
         calibration,
         after,
         _reference(calibration, reference),
         before=_standards(calibration, files["before"], sample_pattern) if files["before"] else None,
-        instrument=InstrumentRecord(**record),
+        instrument=InstrumentRecord(**record, film_table=certificate),
         training=load_recipe(recipe) if recipe else None,
         allowed_bias=allowed_bias,
         allowed_sep=allowed_sep,

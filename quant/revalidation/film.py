@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from quant.arrays import FloatArray
-from quant.chemistry.film_positions import EDITIONS, FilmBand, Rule, film_positions
+from quant.chemistry.film_positions import FilmBand, FilmTable, film_positions
 from quant.errors import AcquisitionMismatchError, AxisMismatchError, NotEnoughDataError, QuantityError
 from quant.result import Result, documented
 from quant.revalidation.film_axis import AxisError, axis_error
@@ -43,7 +43,7 @@ FEWEST_BANDS = 3
 class BandPosition(Result):
     """Where one band of the film was found."""
 
-    expected: float = documented("Position in the pharmacopoeia", "cm⁻¹")
+    expected: float = documented("Position that it should have", "cm⁻¹")
     tolerance: float = documented("Largest permitted distance from it", "cm⁻¹")
     found: float = documented("Position found", "cm⁻¹")
     standard_error: float = documented("Standard error of the position, from the noise of the spectrum", "cm⁻¹")
@@ -63,7 +63,7 @@ class FilmEvidence(Result):
     edition: str = documented("Whose positions and tolerances")
     method: str = documented("How positions were found")
     passed: bool = documented("Whether every band is within its tolerance")
-    axis_error: AxisError = documented("Offset and stretch of the axis against the pharmacopoeia")
+    axis_error: AxisError = documented("Offset and stretch of the axis against the positions expected")
     axis_change: AxisError | None = documented("Offset and stretch of the axis against the last record")
     resolution: tuple[ResolutionCheck, ...] = documented("Resolution checks on the film")
     words: tuple[str, ...] = documented("The findings in words")
@@ -86,7 +86,9 @@ class FilmEvidence(Result):
         return "\n".join([*self.words, format_columns(header, rows), f"Tolerances: {self.edition}."])
 
 
-def film_evidence(film: SpectraSet, previous: SpectraSet | None = None, rule: Rule = "ph_eur") -> FilmEvidence:
+def film_evidence(
+    film: SpectraSet, previous: SpectraSet | None = None, expected: FilmTable | None = None
+) -> FilmEvidence:
     """Judge the wavenumber scale and the resolution by spectra of a polystyrene film.
 
     Parameters
@@ -96,8 +98,9 @@ def film_evidence(film: SpectraSet, previous: SpectraSet | None = None, rule: Ru
         averaged.
     previous : SpectraSet, optional
         The same film in the instrument's own last record.
-    rule : {"ph_eur", "jp"}
-        Whose tolerances.
+    expected : FilmTable, optional
+        Positions and tolerances, as `film_positions` or `read_film_certificate` return them; by default those of the
+        European Pharmacopoeia.
 
     Raises
     ------
@@ -110,7 +113,8 @@ def film_evidence(film: SpectraSet, previous: SpectraSet | None = None, rule: Ru
     NotEnoughDataError
         Fewer than three of the bands are on the axis.
     """
-    bands = film_positions(rule)
+    table = expected or film_positions()
+    bands = table.bands
     series, noise = _series(film)
     now = _positions(series, noise, bands)
     before = {} if previous is None else _positions(*_series(previous), bands)
@@ -118,7 +122,10 @@ def film_evidence(film: SpectraSet, previous: SpectraSet | None = None, rule: Ru
         _judged(band, now[band.position], before.get(band.position)) for band in bands if band.position in now
     )
     against = axis_error(
-        [b.expected for b in found], [b.deviation for b in found], [b.tolerance for b in found], "the pharmacopoeia"
+        [b.expected for b in found],
+        [b.deviation for b in found],
+        [b.tolerance for b in found],
+        "the positions expected",
     )
     both = [b for b in found if b.change is not None]
     change = None
@@ -130,7 +137,7 @@ def film_evidence(film: SpectraSet, previous: SpectraSet | None = None, rule: Ru
     return FilmEvidence(
         bands=found,
         not_covered=tuple(band.position for band in bands if band.position not in now),
-        edition=EDITIONS[rule],
+        edition=table.source,
         method=METHOD,
         passed=all(b.passed for b in found),
         axis_error=against,
@@ -179,7 +186,7 @@ def _refuse_what_is_no_transmission(film: SpectraSet) -> None:
             f"The film's ordinate is {QUANTITIES[film.quantity]}; expected transmittance or absorbance. Export it so."
         )
     axis = film.axis
-    if axis.unit != "cm-1" or axis.values.min() > film_positions()[0].position:
+    if axis.unit != "cm-1" or axis.values.min() > film_positions().bands[0].position:
         raise AxisMismatchError(
             f"The film lies on {axis}; expected an axis in cm⁻¹ over the mid-infrared (3100 to 1000). The positions "
             f"are those of fundamental bands; a near-infrared axis (in {AXIS_UNITS['nm']}, or above 4000 cm⁻¹) shows "

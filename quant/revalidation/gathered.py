@@ -2,6 +2,7 @@
 
 from dataclasses import dataclass
 
+from quant.chemistry.film_positions import FilmTable
 from quant.model.calibration import Calibration
 from quant.result import Result, documented
 from quant.revalidation.domain import DomainEvidence, domain_evidence
@@ -22,12 +23,15 @@ class InstrumentRecord:
         A polystyrene film in transmission.
     blank, blank_before : SpectraSet or None
         100 % lines.
+    film_table : FilmTable or None
+        Where the film's bands should be, if its certificate is at hand.
     """
 
     film: SpectraSet | None = None
     film_before: SpectraSet | None = None
     blank: SpectraSet | None = None
     blank_before: SpectraSet | None = None
+    film_table: FilmTable | None = None
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -70,7 +74,7 @@ def gather_evidence(
     record : InstrumentRecord
     """
     return Gathered(
-        film=None if record.film is None else film_evidence(record.film, record.film_before),
+        film=None if record.film is None else film_evidence(record.film, record.film_before, record.film_table),
         instrument=None if record.blank is None else instrument_evidence(record.blank, record.blank_before),
         standards=labels,
         domain=domain_evidence(model, samples.spectra, own.spectra if own is not None else None),

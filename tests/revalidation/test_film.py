@@ -9,7 +9,7 @@ from types import ModuleType
 import numpy as np
 import pytest
 
-from quant.chemistry.film_positions import film_positions
+from quant.chemistry.film_positions import FilmBand, FilmTable, film_positions
 from quant.errors import AcquisitionMismatchError, AxisMismatchError, NotEnoughDataError, QuantityError
 from quant.revalidation.film import film_evidence
 from quant.revalidation.film_axis import axis_error
@@ -45,7 +45,7 @@ def truth(visit: ModuleType) -> dict[float, float]:
     fine = np.arange(640.0, 4010.0, 0.05)
     light = gaussian_line_shape(10.0 ** -visit.FILM.spectrum(fine)[None], 0.05, 4.0)[0]
     places = {}
-    for band in film_positions():
+    for band in film_positions().bands:
         near = np.flatnonzero(np.abs(fine - band.position) < 5.0)
         i = near[np.argmin(light[near])]
         left, middle, right = light[i - 1 : i + 2]
@@ -94,6 +94,17 @@ def test_a_shift_beyond_tolerance_fails_by_name(visit: ModuleType) -> None:
     assert 2849.5 not in failed  # ±2.0
     assert "1583" in bad.words[0]
     assert "from memory" in bad.edition
+
+
+def test_the_films_own_certificate_is_used(visit: ModuleType, truth: dict[float, float]) -> None:
+    # Bands of SRM 1921b (positions approximate, from memory: the certificate of the film in use rules).
+    bands = tuple(FilmBand(p, 0.5) for p in (3060.0, 2849.5, 1601.3, 1583.1, 1154.6, 1028.4))
+    film = visit.film_spectrum(np.random.default_rng(11), AT_4, NOISE)
+    found = film_evidence(film, expected=FilmTable(bands, "the film's certificate"))
+    assert [b.expected for b in found.bands] == [band.position for band in bands]
+    assert found.bands[2].deviation == pytest.approx(truth[1601.2] - 1601.3, abs=0.02)
+    assert str(found).endswith("Tolerances: the film's certificate.")
+    assert not film_evidence(film, expected=FilmTable(tuple(FilmBand(b.position + 1.0, 0.5) for b in bands), "")).passed
 
 
 def test_a_rising_axis_and_absorbance_tell_the_same(visit: ModuleType) -> None:
