@@ -74,16 +74,16 @@ def plot_standards(result: RevalidationResult, ax: Axes | None = None) -> Axes:
 
 
 def plot_remedies(result: RevalidationResult, ax: Axes | None = None) -> Axes:
-    """Draw the left-out error of each remedy, the proposed one marked, with the allowed SEP."""
+    """Draw the SEP to expect behind each remedy, the proposed one marked, with the validated and the allowed SEP."""
     ax = axes_or_new(ax, HALF)
-    rows = [row for row in result.remedies if row.rmse_reference is not None][::-1]
-    sizes = [row.rmse_reference or 0.0 for row in rows]
+    rows = [row for row in result.remedies if row.expected_sep is not None][::-1]
+    sizes = [row.expected_sep or 0.0 for row in rows]
     colours = [OCHRE if row.proposed else RULE if row.qualifies else SHADE for row in rows]
     ax.barh(np.arange(len(rows)), sizes, color=colours, edgecolor=RULE, linewidth=THIN, height=0.62)
     ax.axvline(result.basis.allowed_sep, color=INK, linewidth=THIN, linestyle=(0, (4, 2)))
     ax.axvline(result.basis.sep, color=BLUE, linewidth=THIN)
     ax.set_yticks(np.arange(len(rows)), [row.name.replace("_", " ") for row in rows], fontsize=SMALL)
-    label_axes(ax, with_unit("left-out RMSE; blue: validated SEP, dashed: allowed", result.unit), "")
+    label_axes(ax, with_unit("expected SEP; blue: validated, dashed: allowed", result.unit), "")
     return ax
 
 

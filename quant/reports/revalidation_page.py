@@ -15,7 +15,7 @@ from quant.result import jsonable
 from quant.revalidation.changes import Change
 from quant.revalidation.history import ControlChart
 from quant.revalidation.result import RevalidationResult
-from quant.revalidation.verdict import RULES
+from quant.revalidation.verdict import CANNOT_DECIDE, RULES
 from quant.text_table import format_number
 
 MOST_CHANGES = 4  # on the first screen; the table below names all
@@ -33,7 +33,7 @@ def render_revalidation(result: RevalidationResult, history: ControlChart | None
     style = Markup("".join((TEMPLATES / name).read_text(encoding="utf-8") for name in ("page.css", "revalidation.css")))
     pictures = [
         _draw(plot_standards, result, "standards", "Differences of the standards, the bias allowed.", narrow=True),
-        _draw(plot_remedies, result, "remedies", "Error of each remedy on standards left out.", narrow=True),
+        _draw(plot_remedies, result, "remedies", "SEP to expect with each remedy.", narrow=True),
     ]
     return (
         page_environment()
@@ -112,8 +112,7 @@ def _matters(result: RevalidationResult) -> Answer:
         told.append(f"the model does not apply to {result.not_applicable} of {len(result.sample_ids)} standards now")
     if result.accepted:
         return "No: shown to be within what is allowed", told
-    changed = any(test.significant for test in result.tests) or 2 * result.not_applicable > len(result.sample_ids)
-    return ("Yes" if changed else "Not shown either way"), told
+    return ("Not shown either way" if result.verdict == CANNOT_DECIDE else "Yes"), told
 
 
 def _provable(result: RevalidationResult) -> Answer:

@@ -98,7 +98,7 @@ class RevalidationResult(Result):
         for name, found in self.evidence.parts():
             parts += ["", name, str(found)]
         if self.remedies:
-            names = ("remedy", "left-out RMSE", "against reference", "bias", "not applicable", "")
+            names = ("remedy", "left-out RMSE", "against reference", "expected SEP", "bias", "not applicable", "")
             parts += ["", format_columns(names, [_cells(row) for row in self.remedies])]
             parts += [f"{row.name}: {row.note}" for row in self.remedies if row.note]
         parts += ["", *self.lineage]
@@ -107,4 +107,4 @@ class RevalidationResult(Result):
 
 def _cells(row: RemedyRow) -> tuple[object, ...]:
     mark = "proposed" if row.proposed else "within one SE of the best" if row.within_one_se else ""
-    return row.name, row.rmse, row.rmse_reference, row.bias, row.not_applicable, mark
+    return row.name, row.rmse, row.rmse_reference, row.expected_sep, row.bias, row.not_applicable, mark

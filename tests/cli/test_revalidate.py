@@ -75,7 +75,7 @@ def test_apply_needs_a_folder(project, visit):
 def test_an_unknown_remedy_is_a_wrong_usage(project, visit):
     result = command(project, visit, "moved", "--apply", "luck", "--out", project.folder / "visit")
     assert result.exit_code == 2
-    assert "expected one of bias" in result.output
+    assert "expected one of limits, bias" in result.output
 
 
 def test_a_table_without_the_standards_is_bad_data(project, visit):

@@ -14,6 +14,8 @@ from quant.revalidation.standards import Standards, not_applicable
 
 SHARE_OUTSIDE = 0.25  # of the standards to which a corrected model may fail to apply (one at least)
 
+OF_NO_ACCOUNT = 1e-6  # of the SEP: a bias that only rounding makes
+
 
 @dataclass(frozen=True, eq=False)
 class Judged:
@@ -87,7 +89,7 @@ def _judged(
     standards: Standards, remedy: Remedy, values: FloatArray, residual: FloatArray, leverage: FloatArray, outside: int
 ) -> Judged:
     n = len(standards)
-    squared = (values - standards.target) ** 2
+    squared, bias = (values - standards.target) ** 2, float(np.mean(values - standards.target))
     row = RemedyRow(
         name=remedy.name,
         words=remedy.words,
@@ -97,7 +99,7 @@ def _judged(
         rmse=float(np.sqrt(squared.mean())),
         rmse_reference=float(np.sqrt(np.mean((values - standards.reference) ** 2))),
         expected_sep=expected_sep(standards, remedy.fit(standards, np.arange(n)), values),
-        bias=float(np.mean(values - standards.target)),
+        bias=bias if abs(bias) > OF_NO_ACCOUNT * standards.validated_sep else 0.0,
         standard_error=float(squared.std(ddof=1) / np.sqrt(n)),
         not_applicable=outside,
         qualifies=remedy.name not in (NOTHING, LIMITS) and outside <= max(1, int(SHARE_OUTSIDE * n)),
