@@ -75,7 +75,7 @@ def _helps(proposed: RemedyRow, unit: str, *, rebuild: bool) -> Iterator[str]:
     name = proposed.name.replace("_", " ")
     left = f"leaves {proposed.rmse_reference:.3g} {unit} on left-out standards"
     expected = f"a SEP of {proposed.expected_sep:.3g} {unit} is to be expected"
-    yield f"{'even the best' if rebuild else 'best of the simple'}: {name} {left}; {expected}"
+    yield f"{'even the best' if rebuild else 'proposed'}: {name} {left}; {expected}"
     if not rebuild and not proposed.qualifies:
         yield (
             "spectra stay unlike those of the calibration, so its limits of applicability are widened as well: it then "

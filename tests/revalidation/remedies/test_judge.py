@@ -1,9 +1,11 @@
 """Remedies side by side, on standards left out."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
-from quant.revalidation.remedies.judge import judge_remedies
+from quant.revalidation.remedies.judge import expected_sep, judge_remedies
 from quant.revalidation.remedies.table import REMEDIES
 
 
@@ -43,3 +45,22 @@ def test_maps_and_new_fits_restore_a_shift(world):
     for name in ("orthogonal", "recalibration", "direct", "piecewise"):
         assert rows[name].not_applicable <= 3
         assert rows[name].rmse_reference < 0.6 * rows["none"].rmse_reference
+
+
+def test_the_expected_sep_is_the_validated_one_and_what_pairs_show_beyond_presentation(world):
+    standards = world.standards(np.random.default_rng(11))
+    standards = replace(standards, after_spectra=standards.before_spectra)  # of equal noise
+    sep, sd = standards.validated_sep, standards.difference_sd[0]
+    signs = np.where(np.arange(12) % 2, 1.0, -1.0)
+    for scatter, expected in ((0.5 * sd, sep), (sd, sep), (np.hypot(sd, sep), np.sqrt(2) * sep)):
+        assert expected_sep(standards, world.model, standards.before + scatter * signs) == pytest.approx(expected)
+    alone = replace(standards, before_spectra=None, before_index=None)
+    assert expected_sep(alone, world.model, alone.reference + 0.3 * signs) == pytest.approx(0.3)
+
+
+def test_where_no_model_applies_again_limits_are_renewed_with_the_remedy(world):
+    rows = {e.row.name: e.row for e in judge_remedies(world.standards(np.random.default_rng(12), noise=1.6e-3))}
+    assert not any(row.qualifies for row in rows.values())
+    proposed = next(row for row in rows.values() if row.proposed)
+    assert proposed.not_applicable > 3
+    assert rows["limits"].rmse == rows["none"].rmse
