@@ -3,7 +3,7 @@
 import hashlib
 import os
 import time
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import BinaryIO
@@ -64,6 +64,26 @@ def decode_text(path: str | Path, content: bytes) -> str:
     if "\x00" in text:
         raise FileFormatError(path, "binary content; expected a text file. Export the spectrum as JCAMP-DX or text.")
     return text
+
+
+def refuse_overwriting(option: str, target: str | Path, read: Iterable[str | Path]) -> None:
+    """Refuse to write over a file that was read.
+
+    Parameters
+    ----------
+    option : str
+        What named the target, such as ``--out``.
+    target : str or Path
+    read : iterable of str or Path
+
+    Raises
+    ------
+    UsageError
+        The target is one of those files.
+    """
+    place = Path(target).resolve()
+    if any(Path(file).resolve() == place for file in read):
+        raise UsageError(f"{option} {target}: this file is read by the command and would be lost. Name another file.")
 
 
 @contextmanager

@@ -7,6 +7,8 @@ from typing import Any
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
+from quant.checks import name_some
+from quant.errors import QuantityError
 from quant.model.calibration import Calibration
 from quant.model.decision_rule import DecisionRule
 from quant.model.identity import trace
@@ -62,7 +64,7 @@ def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | Non
     samples = list(dict.fromkeys(aligned.sample_ids))
     number = {sample: i for i, sample in enumerate(samples)}
     index = np.array([number[sample] for sample in aligned.sample_ids], dtype=np.intp)
-    processed, rule = model.process(aligned.values), rule or model.decision
+    processed, rule = _processed(model, aligned), rule or model.decision
     found = evaluate(model, processed, index, len(samples))
     mean = mean_by_sample(processed, index, len(samples))
     free, own = free_intervals(model, mean, found.value), model.method.remarks_each(mean)
@@ -72,6 +74,16 @@ def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | Non
     )
     told = rule.told(model.analyte.printed_unit) if rule else ""
     return PredictionResult(model=str(model), rule=told, predictions=rows, lineage=trace(model))
+
+
+def _processed(model: Calibration, spectra: SpectraSet) -> FloatArray:
+    try:
+        return model.process(spectra.values)
+    except QuantityError as problem:
+        lacking = dict.fromkeys(spectra.sample_ids[i] for i in np.flatnonzero(np.isnan(spectra.values).any(axis=1)))
+        if not lacking:
+            raise
+        raise QuantityError(f"{name_some(lacking)}: {problem}") from problem
 
 
 def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_samples: int) -> Evaluation:

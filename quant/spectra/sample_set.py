@@ -12,6 +12,7 @@ from quant.errors import ParameterError, SampleMismatchError
 from quant.spectra.frozen import FrozenMapping
 from quant.spectra.provenance import Source
 from quant.spectra.reference_table import NO_LIMIT, Analyte, ReferenceTable, Repeatability
+from quant.spectra.sample_ids import range_hint
 from quant.spectra.spectra_set import SpectraSet
 
 ORIGINS = ("process", "spiked", "blended")
@@ -152,7 +153,7 @@ class SampleSet:
         if missing:
             raise SampleMismatchError(
                 f"No sample {name_some(missing)} among the {len(self)} paired samples ({name_some(self.sample_ids)}). "
-                "Check the spelling of the sample IDs."
+                f"Check the spelling of the sample IDs.{range_hint(missing)}"
             )
         return np.array([place[sample] for sample in sample_ids], dtype=np.intp)
 
