@@ -86,6 +86,26 @@ def refuse_overwriting(option: str, target: str | Path, read: Iterable[str | Pat
         raise UsageError(f"{option} {target}: this file is read by the command and would be lost. Name another file.")
 
 
+def require_writable(folder: str | Path) -> None:
+    """Refuse a folder that cannot be written to, before long work is done for it; nothing is left there.
+
+    Raises
+    ------
+    UsageError
+        The folder, or the nearest one above it that exists, cannot be written to.
+    """
+    target = Path(folder)
+    there = next((place for place in (target, *target.resolve().parents) if place.exists()), target)
+    trial = there / f".{os.getpid()}-{time.monotonic_ns()}"
+    try:
+        trial.mkdir()
+        trial.rmdir()
+    except OSError as problem:
+        raise UsageError(
+            f"{target} cannot be written to ({problem.strerror}); expected a folder that may be. Choose another place."
+        ) from problem
+
+
 @contextmanager
 def whole_file(path: str | Path) -> Iterator[BinaryIO]:
     """Write a file whole or not at all: to a neighbour first, then renamed over the target.

@@ -6,6 +6,7 @@ import click
 
 from quant.checks import name_some
 from quant.errors import ExitCode, RecipeError
+from quant.files import require_writable
 
 
 @click.command("calibrate")
@@ -32,6 +33,7 @@ def command(ctx: click.Context, /, recipe: Path, folder: Path) -> None:
 
     wanted = load_recipe(recipe)
     names = model_files([table.name for table in wanted.analyte])
+    require_writable(folder)
     ledger = open_ledger(folder)
     result = calibrate(wanted, ledger=ledger)
     models = [save_model(entry.model, folder / names[entry.analyte]) for entry in result.analytes]

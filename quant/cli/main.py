@@ -7,7 +7,7 @@ from typing import Any
 
 import click
 
-from quant.errors import QuantError
+from quant.errors import ExitCode, QuantError
 
 # Name, module, and the line that --help shows without loading the module.
 COMMANDS = {
@@ -47,12 +47,15 @@ class LazyGroup(click.Group):
             formatter.write_dl([(name, line) for name, (_, line) in COMMANDS.items()])
 
     def invoke(self, ctx: click.Context) -> Any:
-        """Run a command; an expected error is told in words and becomes an exit code."""
+        """Run a command; an expected error or Ctrl-C is told in words and becomes an exit code."""
         try:
             return super().invoke(ctx)
         except QuantError as error:
             click.echo(f"{click.style('Error', fg='red', bold=True)}: {error}", err=True)
             ctx.exit(int(error.exit_code))
+        except (KeyboardInterrupt, click.Abort):
+            click.echo("\nInterrupted. Files named above were written whole; nothing else was.", err=True)
+            ctx.exit(int(ExitCode.INTERRUPTED))
 
 
 def _tell_version(ctx: click.Context, _: click.Parameter, asked: bool) -> None:  # noqa: FBT001 (click's signature)
@@ -70,7 +73,8 @@ def _tell_version(ctx: click.Context, _: click.Parameter, asked: bool) -> None: 
 def cli() -> None:
     """Make, defend and use a quantitative infrared calibration.
 
-    Exit codes: 0 done; 1 done, but the verdict is "not accepted"; 2 wrong usage or recipe; 3 unreadable data.
+    Exit codes: 0 done; 1 done, but the verdict is "not accepted"; 2 wrong usage or recipe; 3 unreadable data;
+    130 interrupted.
     """
 
 

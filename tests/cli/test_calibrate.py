@@ -63,8 +63,8 @@ def test_a_place_that_cannot_be_written(project) -> None:
     result = project.run("calibrate", project.folder / "recipe.toml", "--out", project.folder / "file" / "out")
     assert result.exit_code == 2
     assert result.stderr == (
-        f"Error: {project.folder}/file/out/acid.model cannot be written (Not a directory); expected a folder that may "
-        "be written to. Choose another place.\n"
+        f"Error: {project.folder}/file/out cannot be written to (Not a directory); expected a folder that may be. "
+        "Choose another place.\n"
     )
 
 

@@ -103,3 +103,13 @@ def test_a_bug_is_not_hidden(project, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr("quant.recipe.load.load_recipe", broken)
     with pytest.raises(ZeroDivisionError, match="a bug"):
         project.run("inspect", project.folder / "recipe.toml")
+
+
+def test_an_interruption_has_an_exit_code_of_its_own(project, monkeypatch) -> None:
+    def interrupted(*_: object, **__: object) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("quant.inspection.inspect.inspect", interrupted)
+    result = project.run("inspect", project.folder / "recipe.toml")
+    assert result.exit_code == 130  # 1 would be "not accepted"
+    assert "Interrupted." in result.stderr

@@ -61,9 +61,11 @@ def test_a_shift_is_found_and_a_new_model_written(project, visit):
     found = json.loads((out / "revalidation.json").read_text(encoding="utf-8"))
     assert found["verdict"] in ("holds after correction", "transfer needed")
     assert set(found) == {key for key in found["keys"] if "." not in key and "[" not in key}
-    again = command(project, visit, "moved", *options)
+    page = (out / "revalidation.html").read_bytes()
+    again = command(project, visit, "same", *options)
     assert again.exit_code == 2
     assert "never replaced" in again.output
+    assert (out / "revalidation.html").read_bytes() == page  # that tells why the model there was made
 
 
 def test_apply_needs_a_folder(project, visit):
