@@ -5,6 +5,7 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
+from quant.checks import one_of
 from quant.errors import ExitCode, ParameterError
 from quant.files import require_writable
 
@@ -58,15 +59,21 @@ def command(
     """
     if remedy is not None and folder is None:
         raise click.UsageError("--apply needs --out, the folder for the new model.")
+    for now, last in (("film", "film_before"), ("blank", "blank_before")):
+        if files[last] and not files[now]:
+            raise click.UsageError(f"--{last.replace('_', '-')} is compared with --{now}; expected that beside it.")
     from quant.model.storage import load_model, save_model  # deferred, as those below: --help needs none of it
     from quant.recipe.load import load_recipe
     from quant.revalidation.confirm import confirm_model, correct_model
     from quant.revalidation.gathered import InstrumentRecord
     from quant.revalidation.remedies.apply import PROVISIONAL
+    from quant.revalidation.remedies.table import REMEDIES
     from quant.revalidation.revalidate import revalidate
 
     if folder is not None:
         require_writable(folder)
+    if remedy not in (None, "proposed"):
+        one_of("--apply", remedy, ("proposed", *(known.name for known in REMEDIES)))
     calibration = load_model(model)
     after = _standards(calibration, files["after"], sample_pattern)
     record = {name: _plain(files[name]) for name in ("film", "film_before", "blank", "blank_before")}
