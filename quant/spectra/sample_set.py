@@ -224,7 +224,7 @@ def pair_samples(
     chosen = [place[sample] for sample in paired]
     values, limits = reference.values[chosen], reference.censored[chosen]
     if missing == "refuse":
-        _refuse_missing(reference.analytes, np.where(np.isnan(values), limits, values), paired)
+        _refuse_missing(reference, chosen)
     keep = np.array([sample in place for sample in spectra.sample_ids])
     kept = spectra[keep]
     number = {sample: i for i, sample in enumerate(paired)}
@@ -250,14 +250,15 @@ def pair_samples(
     )
 
 
-def _refuse_missing(analytes: Sequence[Analyte], values: FloatArray, samples: Sequence[str]) -> None:
-    for analyte, column in zip(analytes, values.T, strict=True):
-        without = [sample for sample, value in zip(samples, column, strict=True) if np.isnan(value)]
+def _refuse_missing(reference: ReferenceTable, rows: Sequence[int]) -> None:
+    known = ~(np.isnan(reference.values) & np.isnan(reference.censored))
+    for column, analyte in enumerate(reference.analytes):
+        without = [row for row in rows if not known[row, column]]
         if without:
             raise SampleMismatchError(
-                f"{len(without)} of {len(samples)} samples have no reference value of {analyte.name}: "
-                f"{name_some(without)}. "
-                'Supply the values, or set missing = "drop" under [reference].'
+                f"{reference.where(without[0])}{len(without)} of {len(rows)} samples have no reference value of "
+                f"{analyte.name}: {name_some(reference.sample_ids[row] for row in without)}. Supply the values, or set "
+                'missing = "drop" under [reference].'
             )
 
 
