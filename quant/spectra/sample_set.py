@@ -225,6 +225,7 @@ def pair_samples(
     values, limits = reference.values[chosen], reference.censored[chosen]
     if missing == "refuse":
         _refuse_missing(reference, chosen)
+    with_spectra = set(ids)
     keep = np.array([sample in place for sample in spectra.sample_ids])
     kept = spectra[keep]
     number = {sample: i for i, sample in enumerate(paired)}
@@ -242,7 +243,7 @@ def pair_samples(
         values,
         tuple(FrozenMapping(row) for row in rows),
         tuple(alone),
-        tuple(sample for sample in reference.sample_ids if sample not in set(ids)),
+        tuple(sample for sample in reference.sample_ids if sample not in with_spectra),
         limits,
         reference.determinations[chosen],
         reference.repeatability,
