@@ -3,6 +3,7 @@
 import json
 from pathlib import Path
 
+import numpy as np
 import pytest
 
 from quant.cli.calibrate import file_name, model_files
@@ -56,6 +57,16 @@ def test_a_folder_is_asked_for(project) -> None:
     result = project.run("calibrate", project.folder / "recipe.toml")
     assert result.exit_code == 2
     assert "Missing option '--out'" in result.stderr
+
+
+def test_a_file_that_a_step_names_is_among_the_training_files(project) -> None:
+    axis = np.linspace(1800.0, 1600.0, 41)
+    rows = "".join(f"{x:g},{0.5 + ((x - 1700) / 100) ** 3!r}\n" for x in axis.tolist())
+    (project.folder / "water.csv").write_text(f"cm-1,absorbance\n{rows}", encoding="utf-8")
+    step = '[[preprocessing]]\nstep = "emsc"\ninterferent_file = "water.csv"\n\n[regression]'
+    project.replace("recipe.toml", "[regression]", step)
+    names = [source.name for source in load_model(project.make_model()).training]
+    assert names == ["spectra.csv", "reference.csv", "water.csv"]
 
 
 def test_a_place_that_cannot_be_written(project) -> None:

@@ -144,7 +144,7 @@ def test_refuses_an_axis_that_does_not_fit():
         (
             {"signal": "area", "range": [1590, 1800]},
             None,
-            r"band_area: the band \(area from 1590 to 1800\) meets a gap",
+            r"the band \(area from 1590 to 1800\) meets a gap",
         ),
         ({"signal": "height_at", "position": 1700}, None, "height at 1700"),
         ({"signal": "height_at", "position": 1600, "baseline": [1590, 1800]}, None, None),
