@@ -1,6 +1,7 @@
 """``quant calibrate``: what it prints, what it leaves, and that the published sets come out of it."""
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
@@ -8,7 +9,8 @@ import pytest
 
 from quant.cli.calibrate import file_name, model_files
 from quant.errors import RecipeError
-from quant.model.storage import load_model
+from quant.model.calibration import ModelState
+from quant.model.storage import load_model, save_model
 
 ROOT = Path(__file__).resolve().parents[2]
 VALUES = ROOT / "tests" / "reference_values"
@@ -113,3 +115,22 @@ def test_criteria_decide_on_the_exit_code_and_looks_are_counted(project, largest
     seal = json.loads(first[1])["analytes"][0]["audit"]["seal"]
     assert (seal["look"], seal["fixed_beforehand"]) == (1, True)
     assert seal["statement"].startswith("first look at this validation set; the criteria of acceptance were fixed")
+
+
+def test_a_model_that_is_more_than_a_draft_is_not_replaced(project) -> None:
+    path = project.make_model()
+    save_model(replace(load_model(path), state=ModelState(name="approved", by="QA")), path)
+    before = path.read_bytes()
+    result = project.calibrate()
+    assert result.exit_code == 2
+    assert "acid.model holds a model that is approved by QA" in result.stderr
+    assert path.read_bytes() == before
+
+
+def test_an_interruption_leaves_no_model_without_its_report(project, monkeypatch) -> None:
+    def interrupted(*_: object) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("quant.reports.write.render_page", interrupted)
+    assert project.calibrate().exit_code == 130
+    assert not list((project.folder / "out").glob("*.model"))
