@@ -1,5 +1,6 @@
 """The command ``quant``: a table of commands, each loaded when it is called."""
 
+import errno
 import io
 import sys
 from importlib import import_module
@@ -56,6 +57,16 @@ class LazyGroup(click.Group):
         except (KeyboardInterrupt, click.Abort):
             click.echo("\nInterrupted. Files named above were written whole; nothing else was.", err=True)
             ctx.exit(int(ExitCode.INTERRUPTED))
+        except OSError as problem:  # of streams: files have their own words
+            if problem.errno == errno.EPIPE:  # nobody reads on, as behind "| head"
+                raise
+            place = f" ({problem.filename})" if problem.filename else ""
+            click.echo(
+                f"Error: the system refused to read or write{place}: {problem.strerror or problem}. Make room or "
+                "choose another place, and run the command again.",
+                err=True,
+            )
+            ctx.exit(int(ExitCode.USAGE))
 
 
 def _tell_version(ctx: click.Context, _: click.Parameter, asked: bool) -> None:  # noqa: FBT001 (click's signature)
