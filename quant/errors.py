@@ -27,6 +27,7 @@ class ExitCode(IntEnum):
     NOT_ACCEPTED = 1
     USAGE = 2
     DATA = 3
+    INTERRUPTED = 130
 
 
 class QuantError(ValueError):

@@ -148,11 +148,13 @@ class Step(Estimator):
     `axis` (where a step has that parameter) holds the axis values of its input; `axis_after` gives those of its output.
     A step that learns from other spectra has `learns = True`, and its `fit` takes `sample_weight`. One that turns a sum
     of spectra into the sum of its results has `linear = True`: differences and pure spectra may go through it, too.
+    `required` names parameters that a recipe has to give, since the step does nothing without them.
     """
 
     name: ClassVar[str]
     learns: ClassVar[bool] = False
     linear: ClassVar[bool] = False
+    required: ClassVar[tuple[str, ...]] = ()
 
     def fit(self, X: ArrayLike, y: ArrayLike | None = None) -> Self:  # noqa: ARG002 (the contract's signature)
         """Note the width of the spectra; steps that learn more override this."""

@@ -3,7 +3,7 @@
 import hashlib
 import os
 import time
-from collections.abc import Iterator
+from collections.abc import Iterable, Iterator
 from contextlib import contextmanager, suppress
 from pathlib import Path
 from typing import BinaryIO
@@ -64,6 +64,46 @@ def decode_text(path: str | Path, content: bytes) -> str:
     if "\x00" in text:
         raise FileFormatError(path, "binary content; expected a text file. Export the spectrum as JCAMP-DX or text.")
     return text
+
+
+def refuse_overwriting(option: str, target: str | Path, read: Iterable[str | Path]) -> None:
+    """Refuse to write over a file that was read.
+
+    Parameters
+    ----------
+    option : str
+        What named the target, such as ``--out``.
+    target : str or Path
+    read : iterable of str or Path
+
+    Raises
+    ------
+    UsageError
+        The target is one of those files.
+    """
+    place = Path(target).resolve()
+    if any(Path(file).resolve() == place for file in read):
+        raise UsageError(f"{option} {target}: this file is read by the command and would be lost. Name another file.")
+
+
+def require_writable(folder: str | Path) -> None:
+    """Refuse a folder that cannot be written to, before long work is done for it; nothing is left there.
+
+    Raises
+    ------
+    UsageError
+        The folder, or the nearest one above it that exists, cannot be written to.
+    """
+    target = Path(folder)
+    there = next((place for place in (target, *target.resolve().parents) if place.exists()), target)
+    trial = there / f".{os.getpid()}-{time.monotonic_ns()}"
+    try:
+        trial.mkdir()
+        trial.rmdir()
+    except OSError as problem:
+        raise UsageError(
+            f"{target} cannot be written to ({problem.strerror}); expected a folder that may be. Choose another place."
+        ) from problem
 
 
 @contextmanager

@@ -17,6 +17,7 @@ def test_exit_codes():
         ("NOT_ACCEPTED", 1),
         ("USAGE", 2),
         ("DATA", 3),
+        ("INTERRUPTED", 130),
     ]
 
 

@@ -5,8 +5,16 @@ from pathlib import Path
 
 import pytest
 
-from quant.errors import FileFormatError
-from quant.files import decode_text, fingerprint, read_bytes, whole_file, write_text
+from quant.errors import FileFormatError, UsageError
+from quant.files import (
+    decode_text,
+    fingerprint,
+    read_bytes,
+    refuse_overwriting,
+    require_writable,
+    whole_file,
+    write_text,
+)
 
 
 def test_content_within_the_limit(tmp_path: Path) -> None:
@@ -62,3 +70,22 @@ def test_a_failure_half_way_leaves_the_old_file(tmp_path: Path) -> None:
         stream.writelines([b"new, but", None])  # type: ignore[list-item]  # what goes wrong after a first write
     assert file.read_text() == "old"
     assert [path.name for path in tmp_path.iterdir()] == ["a.txt"]
+
+
+def test_a_file_that_is_read_is_not_written_over(tmp_path: Path) -> None:
+    (tmp_path / "in.csv").write_text("1")
+    (tmp_path / "link.csv").symlink_to(tmp_path / "in.csv")
+    refuse_overwriting("--out", tmp_path / "out.csv", [tmp_path / "in.csv"])
+    for name in ("in.csv", "link.csv", "none/../in.csv"):
+        with pytest.raises(UsageError, match=r"^--out .*in\.csv|link\.csv: this file is read by the command"):
+            refuse_overwriting("--out", tmp_path / name, [tmp_path / "in.csv"])
+
+
+def test_a_folder_that_cannot_be_written_to_is_refused_and_nothing_is_left(tmp_path: Path) -> None:
+    require_writable(tmp_path)
+    require_writable(tmp_path / "new" / "deep")
+    assert list(tmp_path.iterdir()) == []
+    (tmp_path / "file").write_text("1")
+    for place in (tmp_path / "file", tmp_path / "file" / "deep"):
+        with pytest.raises(UsageError, match=r"cannot be written to \(Not a directory\); expected a folder"):
+            require_writable(place)

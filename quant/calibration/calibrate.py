@@ -31,6 +31,7 @@ from quant.recipe.audit_schema import table_of
 from quant.recipe.load import load_samples, load_validation_samples
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
 from quant.recipe.schema import Recipe
+from quant.recipe.step_files import step_sources
 from quant.regression.method import Method
 from quant.spectra.sample_set import NOT_STATED, SampleSet
 from quant.statistics.figures import figures_of_merit
@@ -223,7 +224,7 @@ def _model(
         test_predictions=method.predict(processed[rows]),
         figures={"RMSECV": float(crossed.rmsecv[position])},
         recipe=recipe.text,
-        training=tuple(dict.fromkeys((*spectra.sources, *training.reference_sources))),
+        training=tuple(dict.fromkeys((*spectra.sources, *training.reference_sources, *step_sources(recipe)))),
         versions=program_versions(),
     )
 

@@ -21,6 +21,7 @@ from quant.spectra.sample_set import SampleSet
 from quant.statistics.factor_rules import RULES
 
 MOST_FACTORS = 15  # max_factors = "auto" never looks further
+SMALLEST_RANGE = 1e-100  # of reference values
 
 
 def cross_validate(samples: SampleSet, recipe: Recipe, analyte: str | None = None) -> CrossValidationResult:
@@ -63,11 +64,16 @@ def check_calibration_values(name: str, values: FloatArray) -> None:
     Raises
     ------
     NotEnoughDataError
-        Fewer than four, or all equal.
+        Fewer than four, all equal, or too small to be squared.
     """
     if values.size < 4:
         raise NotEnoughDataError(
             f"{values.size} samples with a value of {name}; at least 4 are needed, 24 or more are usual."
+        )
+    if 0 < np.ptp(values) < SMALLEST_RANGE:
+        raise NotEnoughDataError(
+            f"The reference values of {name} span {np.ptp(values):.3g}; expected {SMALLEST_RANGE:g} or more, since "
+            "squares of smaller numbers vanish. State them in a smaller unit."
         )
     if np.ptp(values) == 0:
         raise NotEnoughDataError(

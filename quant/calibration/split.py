@@ -12,7 +12,7 @@ from quant.preprocessing.chain import fit_chain
 from quant.recipe.pipeline import build_steps
 from quant.recipe.schema import Recipe
 from quant.spectra.concentration import refuse_other_scale
-from quant.spectra.sample_ids import expand_ids
+from quant.spectra.sample_ids import expand_ids, range_hint
 from quant.spectra.sample_set import SampleSet
 from quant.statistics import splits
 
@@ -117,7 +117,7 @@ def _excluded(recipe: Recipe, samples: SampleSet, separate: SampleSet | None) ->
     if missing:
         raise SampleMismatchError(
             f"[[exclude]] names what is not among the {len(known)} paired samples: {name_some(missing)}. "
-            f"Expected some of {name_some(known)}. Check the spelling."
+            f"Expected some of {name_some(known)}. Check the spelling.{range_hint(missing)}"
         )
     named = {item.sample for item in items}
     return samples.subset(np.array([sample not in named for sample in samples.sample_ids], dtype=bool)), items

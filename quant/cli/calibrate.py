@@ -5,7 +5,8 @@ from pathlib import Path
 import click
 
 from quant.checks import name_some
-from quant.errors import ExitCode, RecipeError
+from quant.errors import ExitCode, ModelFileError, RecipeError, UsageError
+from quant.files import require_writable
 
 
 @click.command("calibrate")
@@ -32,10 +33,13 @@ def command(ctx: click.Context, /, recipe: Path, folder: Path) -> None:
 
     wanted = load_recipe(recipe)
     names = model_files([table.name for table in wanted.analyte])
+    require_writable(folder)
+    for name in names.values():
+        _refuse_replacing(folder / name)
     ledger = open_ledger(folder)
     result = calibrate(wanted, ledger=ledger)
+    report = write_report(result, folder)  # takes longest: an interruption leaves neither report nor model
     models = [save_model(entry.model, folder / names[entry.analyte]) for entry in result.analytes]
-    report = write_report(result, folder)
     click.echo(str(result))
     click.echo()
     for path in models:
@@ -45,6 +49,21 @@ def command(ctx: click.Context, /, recipe: Path, folder: Path) -> None:
     if ledger.looks:
         click.echo(f"looks   {ledger.path}")
     ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))
+
+
+def _refuse_replacing(path: Path) -> None:
+    """Refuse to write over a model that is more than a draft; a damaged one is nothing to keep."""
+    from quant.model.calibration import ModelState  # deferred, as the next: --help needs none of it
+    from quant.model.storage import load_model
+
+    if not path.exists():
+        return
+    try:
+        state = load_model(path).state
+    except ModelFileError:
+        return
+    if state.name != ModelState().name:
+        raise UsageError(f"{path} holds a model that is {state}; it would be lost. Choose another folder.")
 
 
 def model_files(analytes: list[str]) -> dict[str, str]:

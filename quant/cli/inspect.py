@@ -5,6 +5,7 @@ from pathlib import Path
 import click
 
 from quant.errors import ExitCode
+from quant.files import require_writable
 
 
 @click.command("inspect")
@@ -25,7 +26,10 @@ def command(ctx: click.Context, recipe: Path, folder: Path | None) -> None:
     from quant.inspection.inspect import inspect  # deferred, as those below: --help needs none of it
     from quant.recipe.load import load_recipe
 
-    result = inspect(load_recipe(recipe))
+    wanted = load_recipe(recipe)
+    if folder is not None:
+        require_writable(folder)
+    result = inspect(wanted)
     click.echo(str(result))
     if folder is not None:
         from quant.reports.write import write_inspection

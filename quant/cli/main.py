@@ -1,5 +1,6 @@
 """The command ``quant``: a table of commands, each loaded when it is called."""
 
+import errno
 import io
 import sys
 from importlib import import_module
@@ -7,7 +8,7 @@ from typing import Any
 
 import click
 
-from quant.errors import QuantError
+from quant.errors import ExitCode, QuantError
 
 # Name, module, and the line that --help shows without loading the module.
 COMMANDS = {
@@ -47,12 +48,25 @@ class LazyGroup(click.Group):
             formatter.write_dl([(name, line) for name, (_, line) in COMMANDS.items()])
 
     def invoke(self, ctx: click.Context) -> Any:
-        """Run a command; an expected error is told in words and becomes an exit code."""
+        """Run a command; an expected error or Ctrl-C is told in words and becomes an exit code."""
         try:
             return super().invoke(ctx)
         except QuantError as error:
             click.echo(f"{click.style('Error', fg='red', bold=True)}: {error}", err=True)
             ctx.exit(int(error.exit_code))
+        except (KeyboardInterrupt, click.Abort):
+            click.echo("\nInterrupted. Files named above were written whole; nothing else was.", err=True)
+            ctx.exit(int(ExitCode.INTERRUPTED))
+        except OSError as problem:  # of streams: files have their own words
+            if problem.errno == errno.EPIPE:  # nobody reads on, as behind "| head"
+                raise
+            place = f" ({problem.filename})" if problem.filename else ""
+            click.echo(
+                f"Error: the system refused to read or write{place}: {problem.strerror or problem}. Make room or "
+                "choose another place, and run the command again.",
+                err=True,
+            )
+            ctx.exit(int(ExitCode.USAGE))
 
 
 def _tell_version(ctx: click.Context, _: click.Parameter, asked: bool) -> None:  # noqa: FBT001 (click's signature)
@@ -70,7 +84,8 @@ def _tell_version(ctx: click.Context, _: click.Parameter, asked: bool) -> None: 
 def cli() -> None:
     """Make, defend and use a quantitative infrared calibration.
 
-    Exit codes: 0 done; 1 done, but the verdict is "not accepted"; 2 wrong usage or recipe; 3 unreadable data.
+    Exit codes: 0 done; 1 done, but the verdict is "not accepted"; 2 wrong usage or recipe; 3 unreadable data;
+    130 interrupted.
     """
 
 

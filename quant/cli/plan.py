@@ -4,7 +4,7 @@ from pathlib import Path
 
 import click
 
-from quant.files import write_text
+from quant.files import refuse_overwriting, write_text
 
 
 @click.command("plan")
@@ -31,14 +31,26 @@ def command(
     if existing is not None:
         if design is not None or validation is not None:
             raise click.UsageError("--judge makes no design: leave --out and --validation out.")
+        if json_file is not None:
+            refuse_overwriting("--json", json_file, [existing, *([plan_file] if plan_file else [])])
         _judge(existing, plan_file, decimal, json_file)
         return
     if plan_file is None:
         raise click.UsageError("Missing PLAN; expected a TOML file that describes the standards, or --judge TABLE.csv.")
     from quant.planning.load import load_plan  # deferred, as the next: --help needs none of it
     from quant.planning.plan import plan
+    from quant.planning.pure_spectra import pure_files
+    from quant.readers.read import find_files
 
     wanted = load_plan(plan_file)
+    read = [plan_file, *(find_files(pure_files(wanted)) if wanted.pure_spectra else [])]
+    targets = [("--out", design), ("--validation", validation), ("--json", json_file)]
+    for option, path in targets:
+        if path is not None:
+            refuse_overwriting(option, path, read)
+    named = [path.resolve() for _, path in targets if path is not None]
+    if len(set(named)) < len(named):
+        raise click.UsageError("--out, --validation and --json name one file twice; expected a file each.")
     if validation is not None and wanted.validation.samples == 0:
         raise click.UsageError("--validation: the plan has [validation] samples = 0; leave the option out.")
     result = plan(wanted)

@@ -3,13 +3,14 @@
 from pathlib import Path
 
 import click
+from click.core import ParameterSource
 
 from quant.errors import ExitCode
-from quant.files import write_text
+from quant.files import refuse_overwriting, write_text
 from quant.model.storage import load_model
 from quant.prediction.predict import predict
 from quant.readers.options import ReadingOptions
-from quant.readers.read import read_spectra
+from quant.readers.read import find_files, read_spectra
 from quant.spectra.sample_ids import expand_ids
 
 
@@ -54,6 +55,8 @@ def command(
         raise click.UsageError(f"--out {table}: expected a name that ends in .csv or .json.")
     if limit is not None and lower_limit is not None:
         raise click.UsageError("--limit and --lower-limit were both given; expected one of them.")
+    if limit is lower_limit is None and ctx.get_parameter_source("risk") is ParameterSource.COMMANDLINE:
+        raise click.UsageError("--risk belongs to --limit or --lower-limit; expected one of them beside it.")
     calibration = load_model(model)
     rule, own = None, lower_limit if limit is None else limit
     if own is not None:
@@ -64,8 +67,13 @@ def command(
     if any(naming.values()):
         reading |= naming
     reading["notes"] = _notes(notes)
-    spectra = read_spectra(list(files), ReadingOptions.from_dict(reading))
+    options = ReadingOptions.from_dict(reading)
+    if table is not None:
+        refuse_overwriting("--out", table, find_files(files, options.format))
+    spectra = read_spectra(list(files), options)
     if samples is not None:
+        if not samples.strip():
+            raise click.UsageError('--samples is empty; expected IDs or ranges, such as "51..60" or "A3, A7".')
         spectra = spectra.select(expand_ids(samples.split(",")))
     result = predict(calibration, spectra, rule=rule)
     click.echo(str(result))

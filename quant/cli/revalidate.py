@@ -5,7 +5,9 @@ from typing import TYPE_CHECKING, Any
 
 import click
 
+from quant.checks import one_of
 from quant.errors import ExitCode, ParameterError
+from quant.files import require_writable
 
 if TYPE_CHECKING:
     from quant.model.calibration import Calibration
@@ -63,14 +65,24 @@ def command(
     """
     if remedy is not None and folder is None:
         raise click.UsageError("--apply needs --out, the folder for the new model.")
-    from quant.model.storage import load_model  # deferred, as those below: --help needs none of it
+    for now, last in (("film", "film_before"), ("blank", "blank_before")):
+        if files[last] and not files[now]:
+            raise click.UsageError(f"--{last.replace('_', '-')} is compared with --{now}; expected that beside it.")
+    if film_certificate is not None and not files["film"]:
+        raise click.UsageError("--film-certificate says where the bands of --film should be; expected that beside it.")
+    from quant.model.storage import load_model, save_model  # deferred, as those below: --help needs none of it
     from quant.readers.film_certificate import read_film_certificate
     from quant.recipe.load import load_recipe
     from quant.revalidation.confirm import confirm_model, correct_model
     from quant.revalidation.gathered import InstrumentRecord
     from quant.revalidation.remedies.apply import PROVISIONAL
+    from quant.revalidation.remedies.table import REMEDIES
     from quant.revalidation.revalidate import revalidate
 
+    if folder is not None:
+        require_writable(folder)
+    if remedy not in (None, "proposed"):
+        one_of("--apply", remedy, ("proposed", *(known.name for known in REMEDIES)))
     calibration = load_model(model)
     after = _standards(calibration, files["after"], sample_pattern)
     record = {name: _plain(files[name]) for name in ("film", "film_before", "blank", "blank_before")}
@@ -89,12 +101,14 @@ def command(
     if folder is not None:
         from quant.reports.write import write_revalidation
 
+        confirmed = remedy is None and result.accepted and calibration.state.name == PROVISIONAL
+        # Refused before the page of an earlier run is replaced.
+        path = _place(calibration, model, folder) if remedy or confirmed else None
         report = write_revalidation(result, folder)
         click.echo(f"\npage    {report.html}\nfigures {report.json}")
-        if remedy is not None:
-            _save(correct_model(result, remedy), model, folder)
-        elif result.accepted and calibration.state.name == PROVISIONAL:
-            _save(confirm_model(result), model, folder)
+        if path is not None:
+            made = correct_model(result, remedy) if remedy else confirm_model(result)
+            click.echo(f"model   {save_model(made, path)} (model {made.lineage.number}, {made.state})")
     ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))
 
 
@@ -133,12 +147,10 @@ def _reference(model: "Calibration", file: Path) -> "ReferenceTable":
     )
 
 
-def _save(made: "Calibration", parent: Path, folder: Path) -> None:
-    """Write a new model beside the page; a model that is there already is never replaced."""
-    from quant.model.storage import save_model  # deferred: --help needs none of it
-
-    stem = parent.stem.removesuffix(f"-{made.lineage.number - 1}")
-    path = folder / f"{stem}-{made.lineage.number}.model"
+def _place(parent: "Calibration", file: Path, folder: Path) -> Path:
+    """Return where the next model goes, beside the page; a model that is there already is never replaced."""
+    number = parent.lineage.number
+    path = folder / f"{file.stem.removesuffix(f'-{number}')}-{number + 1}.model"
     if path.exists():
         raise ParameterError(f"{path} exists already, and models are never replaced; choose another folder.")
-    click.echo(f"model   {save_model(made, path)} (model {made.lineage.number}, {made.state})")
+    return path

@@ -5,7 +5,7 @@ from pathlib import Path
 import click
 
 from quant.errors import ExitCode
-from quant.files import write_text
+from quant.files import refuse_overwriting, require_writable, write_text
 
 
 @click.command("screen")
@@ -32,7 +32,10 @@ def command(
     from quant.recipe.load import load_recipe  # deferred, as those below: --help needs none of it
     from quant.screening.screen import screen
 
-    result = screen(load_recipe(recipe), analyte=analyte, n_workers=n_workers, cluster=cluster)
+    wanted = load_recipe(recipe)
+    refuse_overwriting("--out: the winner would become", folder / "winner.toml", [recipe])
+    require_writable(folder)
+    result = screen(wanted, analyte=analyte, n_workers=n_workers, cluster=cluster)
     written = [
         ("winner", "winner.toml", result.recipe_text(folder)),
         ("table", "candidates.csv", result.to_csv()),

@@ -152,7 +152,7 @@ def check_pairing(material: Material) -> list[Finding]:
         refused = reference.unmatched == "refuse"
         findings.append(
             Finding(
-                gravity=DOUBT if refused else NOTE,
+                gravity=STOP if refused else NOTE,
                 code="spectra_without_values",
                 title=f"{plural(len(spectra), 'sample')} with spectra but no row in the reference table",
                 samples=spectra,
@@ -174,7 +174,7 @@ def check_pairing(material: Material) -> list[Finding]:
         refused = reference.missing == "refuse"
         findings.append(
             Finding(
-                gravity=DOUBT if refused else NOTE,
+                gravity=STOP if refused else NOTE,
                 code="missing_values",
                 title=f"{plural(len(lacking), 'reference value')} missing",
                 samples=tuple(lacking),

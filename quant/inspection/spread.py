@@ -18,7 +18,29 @@ TOGETHER, NEARLY = 0.9, 0.7  # |r|: as good as one variable; half of the varianc
 # ASTM E1655, from memory: calibration 6(k + 1) with mean-centring, never fewer than 24; validation 4k, never below 20.
 LEAST_CALIBRATION, LEAST_VALIDATION = 24, 20
 FEW_VALIDATION = 8  # fewer say next to nothing about RMSEP (95 % interval wider than −32 % to +92 %)
+ALIKE = 1e-13  # of the largest value: rounding
 LEAST_LEVELS = 5  # concentrations of a straight-line calibration; ICH Q2, from memory
+
+
+def check_vary(material: Material) -> list[Finding]:
+    """Find spectra that are all alike behind the preprocessing: nothing can be calibrated with them."""
+    if material.processed is None or len(material.calibration) < 2:
+        return []
+    rows = material.processed[: material.n_calibration]
+    largest = float(np.abs(rows).max())
+    if float(np.ptp(rows, axis=0).max()) > ALIKE * largest:
+        return []
+    return [
+        Finding(
+            gravity=STOP,
+            code="equal_spectra",
+            title="All calibration spectra are equal behind the preprocessing",
+            samples=(),
+            evidence=f"They differ by no more than rounding ({ALIKE:g} of their largest value, {largest:.3g}).",
+            advice="Check that each file holds its own spectrum, and which points and steps the recipe leaves; "
+            "calibrating will refuse it.",
+        )
+    ]
 
 
 def check_possible(material: Material) -> list[Finding]:

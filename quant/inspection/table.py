@@ -34,6 +34,7 @@ CHECKS: tuple[Check, ...] = (
     noise.check_spikes,
     noise.check_noise,
     atmosphere.check_atmosphere,
+    spread.check_vary,
     spread.check_possible,
     spread.check_range,
     spread.check_together,

@@ -3,7 +3,7 @@
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
-from quant.errors import QuantityError
+from quant.errors import ParameterError, QuantityError
 from quant.inspection.duplicates import duplicate_pairs
 from quant.inspection.exchange import Exchange, find_exchanges
 from quant.inspection.finding import DOUBT, STOP, Finding, percent, plural
@@ -11,7 +11,7 @@ from quant.inspection.left_out import best_smoother, make_smoothers, studentised
 from quant.inspection.material import Material
 from quant.inspection.robust import FALSE_ALARM, FEWEST, largest_z, robust_z
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
-from quant.spectra.bands import place_bands
+from quant.spectra.bands import place_bands, refuse_gaps
 
 PLAIN = 0.5  # left-out error falls to this share of what it was: more than a suspicion
 USEFUL = 0.5  # share of the values' variance that spectra have to explain, left out, before they may contradict any
@@ -23,7 +23,7 @@ def check_values(material: Material) -> list[Finding]:
         return []
     try:
         spectra = _predictors(material, material.processed)
-    except QuantityError as problem:
+    except (ParameterError, QuantityError) as problem:
         return [_no_signal(str(problem))]
     exchanges: dict[tuple[int, int], list[tuple[str, str, Exchange]]] = {}
     contradictions = []
@@ -73,6 +73,7 @@ def _predictors(material: Material, processed: FloatArray) -> FloatArray:
     behind = axis_behind(build_steps(material.recipe, axis, material.spectra.quantity), axis)
     method = build_method(material.recipe, behind, 1).get_params()
     bands = place_bands(method["bands"], method["reference_band"], behind, behind.size)
+    refuse_gaps("band_area", bands)
     return bands.signals(rows)[:, None]
 
 

@@ -1,10 +1,13 @@
 """The fingerprint of a model, and its way back to the first calibration."""
 
 import json
+from collections.abc import Mapping
 from hashlib import sha256
+from typing import Any
 
 import numpy as np
 
+from quant.arrays import AnyArray
 from quant.model.calibration import Calibration
 from quant.model.lineage import Ancestor
 from quant.model.manifest import to_manifest
@@ -12,7 +15,11 @@ from quant.model.manifest import to_manifest
 
 def fingerprint_of(model: Calibration) -> str:
     """Return SHA-256 over everything that a model's file holds, however it was packed."""
-    manifest, arrays = to_manifest(model)
+    return fingerprint_of_parts(*to_manifest(model))
+
+
+def fingerprint_of_parts(manifest: Mapping[str, Any], arrays: Mapping[str, AnyArray]) -> str:
+    """Return SHA-256 over a manifest and named arrays: values, types and shapes."""
     content = sha256(json.dumps(manifest, sort_keys=True, ensure_ascii=False, allow_nan=False).encode())
     for name, array in sorted(arrays.items()):
         content.update(f"{name} {array.dtype.str} {array.shape}".encode())

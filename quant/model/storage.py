@@ -15,6 +15,7 @@ from quant.arrays import AnyArray
 from quant.errors import ModelFileError
 from quant.files import read_bytes, whole_file
 from quant.model.calibration import Calibration
+from quant.model.identity import fingerprint_of_parts
 from quant.model.manifest import from_manifest, to_manifest
 
 LARGEST_ENTRY = 256 * 2**20  # bytes of one unpacked entry
@@ -24,6 +25,7 @@ _DAMAGE = (
     *(zipfile.BadZipFile, zlib.error, struct.error, EOFError, OSError),
     *(ValueError, LookupError, TypeError, AttributeError, ArithmeticError, MemoryError, RuntimeError),
 )
+_SEAL = "fingerprint"  # of everything else in the file; the first models of this format had none
 _EPOCH = (1980, 1, 1, 0, 0, 0)  # the same model gives the same bytes
 
 
@@ -42,6 +44,7 @@ def save_model(model: Calibration, path: str | Path) -> Path:
         Where it was written.
     """
     manifest, arrays = to_manifest(model)
+    manifest[_SEAL] = fingerprint_of_parts(manifest, arrays)
     with whole_file(path) as stream, zipfile.ZipFile(stream, "w", zipfile.ZIP_DEFLATED) as archive:
         _write(archive, "manifest.json", json.dumps(manifest, indent=2, ensure_ascii=False, allow_nan=False).encode())
         for name, array in arrays.items():
@@ -62,15 +65,18 @@ def load_model(path: str | Path) -> Calibration:
     Raises
     ------
     ModelFileError
-        No model file, a damaged one, one of a newer format, or a model that no longer reproduces its test predictions
-        to 1e-9 of its calibrated range.
+        No model file, a damaged or altered one, one of a newer format, or a model that no longer reproduces its test
+        predictions to 1e-9 of its calibrated range.
     FileFormatError
         The file cannot be read at all.
     """
     content = read_bytes(path)
     try:
         manifest, arrays = _read(content)
+        stated = manifest.pop(_SEAL, None)
         model = from_manifest(manifest, arrays)
+        _prove(model)
+        _compare(stated, fingerprint_of_parts(manifest, arrays))
     except ModelFileError as problem:
         raise ModelFileError(f"{path}: {problem}") from problem
     except _DAMAGE as problem:
@@ -78,7 +84,6 @@ def load_model(path: str | Path) -> Calibration:
             f"{path} is no intact model file ({type(problem).__name__}: {problem}); expected one written by "
             "'quant calibrate'. Fetch an undamaged copy."
         ) from problem
-    _prove(model, path)
     return model
 
 
@@ -107,18 +112,26 @@ def _read(content: bytes) -> tuple[dict[str, Any], dict[str, AnyArray]]:
     return manifest, arrays
 
 
-def _prove(model: Calibration, path: str | Path) -> None:
-    """Predict the kept test spectra again."""
+def _prove(model: Calibration) -> None:
+    """Predict the kept test spectra again, with all that tells whether the model applies to them."""
     try:
-        off = np.abs(model.predict_values(model.test_spectra) - model.test_predictions)
+        with np.errstate(all="ignore"):  # what comes of damaged numbers is refused, not warned of
+            off = np.abs(model.predict_values(model.test_spectra) - model.test_predictions)
+            processed = model.process(model.test_spectra)
+            np.stack([model.method.leverage_each(processed)[-1], model.method.residual_each(processed)[-1]])
     except _DAMAGE as problem:
-        raise ModelFileError(
-            f"{path}: the model cannot predict its own test spectra ({problem}). Do not use it."
-        ) from problem
+        raise ModelFileError(f"the model cannot predict its own test spectra ({problem}). Do not use it.") from problem
     allowed = REPRODUCES * (model.limits.highest - model.limits.lowest)
     if not (off <= allowed).all():
         raise ModelFileError(
-            f"{path}: the model no longer reproduces its own test predictions (off by up to "
-            f"{np.max(off, initial=0):.3g} {model.analyte.unit}, allowed {allowed:.3g}). Do not use it; "
-            "fetch an undamaged copy or calibrate again."
+            f"the model no longer reproduces its own test predictions (off by up to {np.max(off, initial=0):.3g} "
+            f"{model.analyte.unit}, allowed {allowed:.3g}). Do not use it; fetch an undamaged copy or calibrate again."
+        )
+
+
+def _compare(stated: object, found: str) -> None:
+    if stated is not None and stated != found:
+        raise ModelFileError(
+            f"the content was altered after the model was saved (fingerprint {found[:16]}, stated {str(stated)[:16]}). "
+            "Do not use it; fetch an unaltered copy, or make changes in Python and save them with 'save_model'."
         )

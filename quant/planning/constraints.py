@@ -1,5 +1,6 @@
 """Linear inequalities between components, written as a chemist writes them."""
 
+import math
 import re
 from collections.abc import Mapping, Sequence
 from typing import NamedTuple
@@ -85,6 +86,8 @@ def _tokens(side: str, text: str, names: Sequence[str]) -> list[str | float]:
                 f"Components are: {', '.join(names)}."
             )
         if match["number"] is not None:
+            if not math.isfinite(float(match["number"])):
+                raise RecipeError(f"constraint {text!r}: {match['number']} is beyond all numbers; {_EXPECTED}.")
             tokens.append(float(match["number"]))
         else:
             tokens.append(f"={match['name']}" if match["name"] is not None else match["sign"].replace("−", "-"))

@@ -1,10 +1,13 @@
 """Judge standards that exist already: a table of their concentrations."""
 
+from collections.abc import Sequence
+from dataclasses import replace
 from pathlib import Path
 
 import numpy as np
 
 from quant.arrays import FloatArray
+from quant.checks import name_some
 from quant.errors import FileFormatError
 from quant.files import decode_text, read_bytes
 from quant.planning.judge import judge_design
@@ -24,14 +27,16 @@ def judge_file(path: str | Path, plan: Plan | None = None, *, decimal: str = "."
     plan : Plan, optional
         What the standards should have been: its components are the columns, its ranges should be spanned; the column of
         the balance component may be missing. Without a plan every column of numbers counts, apart from the masses and
-        uncertainties that ``quant plan`` itself writes, and ranges are what the standards span.
+        uncertainties that ``quant plan`` itself writes, and the first finding names them; ranges are what the standards
+        span.
     decimal : {".", ","}, optional
         Decimal sign.
 
     Raises
     ------
     FileFormatError
-        The file cannot be read, a column is missing, or there is no column of numbers.
+        The file cannot be read, a column is missing or holds numbers only in part, or there is no column of numbers
+        that is named after a component.
     NotEnoughDataError
         Fewer than three standards, or a component that does not vary.
     """
@@ -42,7 +47,7 @@ def judge_file(path: str | Path, plan: Plan | None = None, *, decimal: str = "."
     for row in rows[1:]:
         delimited.check_width(file, row, len(headings))
     if plan is None:
-        names = _columns_of_numbers(file, headings, [cells for _, cells in rows[1:]], decimal)
+        names = _columns_of_numbers(file, headings, rows[1:], decimal)
     else:
         balance = None if plan.mixture is None else plan.mixture.balance
         names = [name for name in plan.names if name != balance or name in headings]
@@ -55,7 +60,8 @@ def judge_file(path: str | Path, plan: Plan | None = None, *, decimal: str = "."
         dtype=np.float64,
     ).reshape(-1, len(names))
     if plan is None:
-        return judge_design(amounts, names)
+        found = judge_design(amounts, names)
+        return replace(found, findings=(_told(names, headings), *found.findings))
     return _judge_against(plan, amounts, names)
 
 
@@ -73,21 +79,48 @@ def _judge_against(plan: Plan, amounts: FloatArray, names: list[str]) -> DesignJ
     )
 
 
-def _columns_of_numbers(path: Path, headings: list[str], rows: list[list[str]], decimal: str) -> list[str]:
-    lower = [heading.lower() for heading in headings]
-    names = [
-        heading
-        for place, heading in enumerate(headings)
-        if lower[place] not in delimited.SAMPLE_COLUMNS
-        and not heading.endswith(" [g]")
-        and not heading.startswith("u(")
-        and rows
-        and all(delimited.number_from(cells[place], decimal) is not None for cells in rows)
-    ]
+def _columns_of_numbers(path: Path, headings: list[str], rows: Sequence[delimited.Row], decimal: str) -> list[str]:
+    names = []
+    for place, heading in enumerate(headings):
+        if heading.lower() in delimited.SAMPLE_COLUMNS or heading.endswith(" [g]") or heading.startswith("u("):
+            continue
+        odd = [(line, cells[place]) for line, cells in rows if delimited.number_from(cells[place], decimal) is None]
+        if len(odd) < len(rows):
+            _refuse_gap(path, heading, odd)
+            names.append(heading)
     if not names:
         raise FileFormatError(
             path,
             f"no column of numbers with {decimal!r} as decimal sign; expected one column of concentrations a "
             "component. State the decimal sign, or mend the table.",
         )
+    spectral = [name for name in names if delimited.number_from(name, decimal) is not None]
+    if spectral:
+        raise FileFormatError(
+            path,
+            f"{len(spectral)} columns of numbers are headed by numbers ({name_some(spectral)}), as spectra are; "
+            "expected columns named after components. Give a plan that names the components, or leave the others out.",
+        )
     return names
+
+
+def _refuse_gap(path: Path, heading: str, odd: Sequence[tuple[int, str]]) -> None:
+    """Refuse a column of numbers in which some cells hold none."""
+    if odd:
+        line, cell = odd[0]
+        raise FileFormatError(
+            path,
+            f"{cell.strip()!r} in column {heading!r}, which elsewhere holds numbers; expected a concentration of every "
+            "standard. Mend the table, leave the column out, or give a plan that names the components.",
+            line=line,
+        )
+
+
+def _told(names: Sequence[str], headings: Sequence[str]) -> str:
+    """Say which columns were taken, since nothing but their numbers speaks for them."""
+    others = [name for name in headings if name not in names]
+    rest = f"; not taken: {name_some(others)}" if others else ""
+    return (
+        f"Columns taken as components, because they hold numbers: {name_some(names, 20)}{rest}. If that is wrong, give "
+        "a plan that names the components."
+    )

@@ -6,7 +6,7 @@ from pathlib import Path
 from pydantic import ValidationError
 
 from quant.errors import RecipeError
-from quant.files import decode_text, read_bytes
+from quant.recipe.load import recipe_text
 from quant.recipe.messages import problems
 from quant.recipe.plan_schema import Plan
 
@@ -22,13 +22,13 @@ def load_plan(path: str | Path) -> Plan:
     Raises
     ------
     RecipeError
-        No valid TOML, an unknown key (with a guess of what was meant), a missing key, or values that contradict
-        each other.
+        No text, no valid TOML, an unknown key (with a guess of what was meant), a missing key, or values that
+        contradict each other.
     FileFormatError
         The file cannot be read.
     """
     file = Path(path)
-    return plan_from_text(decode_text(file, read_bytes(file, limit=2**20)), name=file.name, folder=file.parent)
+    return plan_from_text(recipe_text(file), name=file.name, folder=file.parent)
 
 
 def plan_from_text(text: str, *, name: str = "plan", folder: str | Path = ".") -> Plan:

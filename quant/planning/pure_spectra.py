@@ -15,6 +15,12 @@ from quant.units import QUANTITIES, absorbance_from_transmittance
 _LINEAR = ("absorbance", "log_reflectance", "arbitrary")
 
 
+def pure_files(plan: Plan) -> list[str]:
+    """Return the files, patterns or folders of [pure_spectra], if the plan has any."""
+    table = plan.pure_spectra
+    return [str(Path(plan.folder) / file) for file in table.files] if table else []
+
+
 def read_pure_spectra(plan: Plan, table: PureSpectraTable) -> FloatArray:
     """Read one spectrum of each component of a plan, per unit of concentration.
 
@@ -40,8 +46,7 @@ def read_pure_spectra(plan: Plan, table: PureSpectraTable) -> FloatArray:
     FileFormatError
         A file that cannot be read.
     """
-    folder = Path(plan.folder)
-    spectra = read_spectra([str(folder / file) for file in table.files], table.options())
+    spectra = read_spectra(pure_files(plan), table.options())
     missing = [name for name in plan.names if name not in spectra.sample_ids]
     if missing:
         raise SampleMismatchError(

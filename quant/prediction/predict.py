@@ -7,6 +7,8 @@ from typing import Any
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
+from quant.checks import name_some
+from quant.errors import QuantityError
 from quant.model.calibration import Calibration
 from quant.model.decision_rule import DecisionRule
 from quant.model.identity import trace
@@ -42,7 +44,8 @@ class Evaluation:
 def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | None = None) -> PredictionResult:
     """Predict every sample of a set of spectra.
 
-    Spectra that share a sample ID are averaged after preprocessing.
+    Spectra that share a sample ID are averaged after preprocessing; one that was given twice, equal to the last digit,
+    counts once.
 
     Parameters
     ----------
@@ -58,20 +61,50 @@ def predict(model: Calibration, spectra: SpectraSet, *, rule: DecisionRule | Non
         The spectra were not recorded as the calibration's were.
     """
     check_acquisition(model, spectra)
+    spectra, copies = _distinct(spectra)
     aligned = spectra.on_axis(model.axis, resample=bool(model.reading.get("resample", False)))
     samples = list(dict.fromkeys(aligned.sample_ids))
     number = {sample: i for i, sample in enumerate(samples)}
     index = np.array([number[sample] for sample in aligned.sample_ids], dtype=np.intp)
-    processed, rule = model.process(aligned.values), rule or model.decision
+    processed, rule = _processed(model, aligned), rule or model.decision
     found = evaluate(model, processed, index, len(samples))
     mean = mean_by_sample(processed, index, len(samples))
     free, own = free_intervals(model, mean, found.value), model.method.remarks_each(mean)
     rows = tuple(
-        _row(model, sample, found, i, _remarks(model, aligned, np.flatnonzero(index == i), own[i]), free[i], rule)
+        _row(
+            model,
+            sample,
+            found,
+            i,
+            _remarks(model, aligned, np.flatnonzero(index == i), own[i], copies.get(sample, 0)),
+            free[i],
+            rule,
+        )
         for i, sample in enumerate(samples)
     )
     told = rule.told(model.analyte.printed_unit) if rule else ""
     return PredictionResult(model=str(model), rule=told, predictions=rows, lineage=trace(model))
+
+
+def _processed(model: Calibration, spectra: SpectraSet) -> FloatArray:
+    try:
+        return model.process(spectra.values)
+    except QuantityError as problem:
+        lacking = dict.fromkeys(spectra.sample_ids[i] for i in np.flatnonzero(np.isnan(spectra.values).any(axis=1)))
+        if not lacking:
+            raise
+        raise QuantityError(f"{name_some(lacking)}: {problem}") from problem
+
+
+def _distinct(spectra: SpectraSet) -> tuple[SpectraSet, dict[str, int]]:
+    """Leave copies out, which would pass for replicates; return how many of each sample they were, too."""
+    seen: set[tuple[str, bytes]] = set()
+    keep, copies = np.ones(len(spectra), dtype=bool), dict[str, int]()
+    for i, (sample, row) in enumerate(zip(spectra.sample_ids, spectra.values, strict=True)):
+        if (sample, row.tobytes()) in seen:
+            keep[i], copies[sample] = False, copies.get(sample, 0) + 1
+        seen.add((sample, row.tobytes()))
+    return (spectra[keep] if copies else spectra), copies
 
 
 def evaluate(model: Calibration, processed: FloatArray, index: IntArray, n_samples: int) -> Evaluation:
@@ -158,11 +191,15 @@ def _row(
     )
 
 
-def _remarks(model: Calibration, spectra: SpectraSet, rows: Sequence[int] | IntArray, own: str) -> tuple[str, ...]:
+def _remarks(
+    model: Calibration, spectra: SpectraSet, rows: Sequence[int] | IntArray, own: str, copies: int
+) -> tuple[str, ...]:
     notes = [spectra.notes[i] for i in rows]
     found = [f"{note} not stated" for note in model.domain if not all(row.get(note) for row in notes)]
     if any("resampled" in row for row in notes):
         found.append("resampled onto the model's axis")
+    if copies:
+        found.append(f"{copies} copied spectr{'um' if copies == 1 else 'a'} left out")
     if own:
         found.append(own)
     return tuple(found)

@@ -7,10 +7,10 @@ from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
 from quant.checks import as_matrix, name_some
-from quant.errors import NotEnoughDataError, ParameterError, QuantityError
+from quant.errors import NotEnoughDataError, QuantityError
 from quant.estimator import Step
-from quant.spectra.bands import SAME_PLACE, BandSet, BandSpec, place_bands
-from quant.spectra.segments import axis_values, describe_segment, median_step, segments
+from quant.spectra.bands import BandSet, BandSpec, place_bands, refuse_gaps
+from quant.spectra.segments import axis_values, segments
 
 LEAST_SIGNAL = 1e-9  # of the spectrum times the band's width: less is rounding error, and no spectrum's size
 
@@ -115,14 +115,7 @@ def normalise_band(spectra: ArrayLike, band: BandSpec | None = None, axis: Array
 def _place(band: BandSpec | None, axis: ArrayLike | None, points: int) -> BandSet:
     x = axis_values(axis, points)
     placed = place_bands(None if band is None else [band], None, x, points)
-    where, slack = placed.bands[0].x, SAME_PLACE * median_step(x)
-    held = [run for run in segments(x) if x[run].max() >= where.min() - slack and x[run].min() <= where.max() + slack]
-    if len(held) != 1:
-        raise ParameterError(
-            f"normalise_band: the band ({placed.bands[0].where}) meets a gap of the axis, whose contiguous ranges are "
-            f"{name_some(describe_segment(x, run) for run in segments(x))}; expected a band inside one of them. Move "
-            "the band, or cut the ranges after this step."
-        )
+    refuse_gaps("normalise_band", placed)
     return placed
 
 

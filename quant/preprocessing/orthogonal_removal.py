@@ -79,6 +79,7 @@ class OrthogonalRemoval(Step):
 
     name: ClassVar[str] = "orthogonal_removal"
     linear = True
+    required = ("differences",)
     fitted = ("directions_",)
 
     def __init__(self, differences: ArrayLike | None = None, components: int = 1) -> None:

@@ -57,6 +57,7 @@ class _Ranges(Step):
 
     fitted = ("kept_",)
     linear = True
+    required = ("ranges",)
     allow_nan = True
     leave_out: ClassVar[bool]
 

@@ -103,7 +103,8 @@ def _in_rows(rows: Sequence[Row], signs: Signs, sample_column: str | None) -> La
         head = clipped(cells)
         if len(head) <= LARGEST_PREAMBLE:
             continue
-        points = [i for i, cell in enumerate(head) if signs.position(cell) is not None]
+        is_point = [signs.position(cell) is not None for cell in head]
+        points = [i for i, yes in enumerate(is_point) if yes]
         is_header = 2 <= len(points) < len(head)
 
         def fits(row: list[str], head: list[str] = head, points: list[int] = points) -> bool:
@@ -114,7 +115,9 @@ def _in_rows(rows: Sequence[Row], signs: Signs, sample_column: str | None) -> La
             if not (is_header and fits(following)):
                 continue  # a comment, and no header that is marked as one
         if is_header:
-            evidence = _sample_evidence([head[i] for i in range(len(head)) if i not in points], sample_column)
+            evidence = _sample_evidence(
+                [cell for cell, yes in zip(head, is_point, strict=True) if not yes], sample_column
+            )
             return _counted(Layout("spectra_in_rows", (place,), place + 1, len(head), 0, 0, evidence), rows, fits)
         if sum(map(bool, head)) > LARGEST_PREAMBLE:
             return None

@@ -8,7 +8,8 @@ from quant.checks import name_some, one_of
 from quant.errors import ParameterError
 from quant.units import AXIS_UNITS, QUANTITIES
 
-HEAD = 2**16  # bytes that a reader is shown to recognise a file: the header of some thousand columns
+HEAD = 2**16  # bytes that a reader is shown to recognise a file: the header of some thousand columns ...
+FIRST_LINES, LARGEST_HEAD = 3, 2**24  # ... or as many lines, where they are longer, up to so many bytes
 FORMATS = ("auto", "jcamp_dx", "matrix", "two_columns", "spreadsheet")
 SEPARATORS = (",", ";", "tab", "space")
 DECIMALS = (".", ",")

@@ -1,18 +1,19 @@
 """Read spectra from files, whatever their format."""
 
 import glob
+import io
 import os
 import re
 from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import replace
 from pathlib import Path
-from typing import Any
+from typing import Any, BinaryIO
 
 from quant.checks import name_some
 from quant.errors import AxisMismatchError, FileFormatError, ParameterError, QuantError, QuantityError
 from quant.files import read_bytes
 from quant.readers.archive import is_zip, members_of
-from quant.readers.options import HEAD, ReadingOptions
+from quant.readers.options import FIRST_LINES, HEAD, LARGEST_HEAD, ReadingOptions
 from quant.readers.registry import READERS, Reader
 from quant.spectra.spectra_set import SpectraSet, join_spectra
 
@@ -117,9 +118,17 @@ def _inventory(folder: Path) -> str:
 def _head(file: Path) -> bytes:
     try:
         with file.open("rb") as stream:
-            return stream.read(HEAD)
+            return _head_of(stream)
     except OSError:
         return b""  # recognised by its name if at all; reading it then says what is wrong
+
+
+def _head_of(stream: BinaryIO) -> bytes:
+    """Return the first bytes of a file, and more where its first lines are longer."""
+    head = stream.read(HEAD)
+    while head.count(b"\n") < FIRST_LINES and len(head) < LARGEST_HEAD and (more := stream.read(HEAD)):
+        head += more
+    return head
 
 
 def _reader_of(name: str, head: bytes, file_format: str) -> Reader | None:
@@ -136,7 +145,7 @@ def _reader_inside(name: str, head: bytes, file_format: str) -> Reader | None:
 def _read_file(file: Path, options: ReadingOptions) -> Iterator[tuple[Path, SpectraSet]]:
     """Yield the spectra of a file, or of every member of an archive."""
     content = read_bytes(file)
-    reader = _reader_of(file.name, content[:HEAD], options.format)
+    reader = _reader_of(file.name, _head_of(io.BytesIO(content)), options.format)
     if reader is None and is_zip(content):
         yield from _read_archive(file, content, options)
         return
@@ -163,7 +172,7 @@ def _reason(file: Path, content: bytes, options: ReadingOptions) -> str:
 def _read_archive(file: Path, content: bytes, options: ReadingOptions) -> Iterator[tuple[Path, SpectraSet]]:
     left_out, n_read = [], 0
     for name, data in sorted(members_of(file, content), key=lambda member: _natural(Path(member[0]))):
-        reader = _reader_inside(Path(name).name, data[:HEAD], options.format)
+        reader = _reader_inside(Path(name).name, _head_of(io.BytesIO(data)), options.format)
         if reader is None:
             left_out.append(name)
             continue

@@ -102,10 +102,19 @@ def read_reference(
     values, limits = np.moveaxis(np.array(read), 2, 0)
     kinds, source = [each.analyte for each in columns], [source_of(file, content)]
     if replicates == "refuse":
-        return ReferenceTable(ids, kinds, values, notes, source, limits)
+        return ReferenceTable(ids, kinds, values, notes, source, limits, lines=[line for line, _ in body])
     mean = average_repeats(ids, kinds, values, limits, notes)
+    first = {name: line for name, (line, _) in zip(reversed(ids), reversed(body), strict=True)}
     return ReferenceTable(
-        mean.sample_ids, kinds, mean.values, mean.notes, source, mean.limits, mean.determinations, mean.repeatability
+        mean.sample_ids,
+        kinds,
+        mean.values,
+        mean.notes,
+        source,
+        mean.limits,
+        mean.determinations,
+        mean.repeatability,
+        [first[name] for name in mean.sample_ids],
     )
 
 

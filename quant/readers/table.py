@@ -157,8 +157,9 @@ def _refuse_damaged_headings(
 ) -> None:
     """Refuse a heading beside axis positions that may be a damaged one: its column would pass for notes and be lost."""
     beside = [any(is_point[max(i - 1, 0) : i + 2]) for i in range(len(headings))]
+    points = [i for i, yes in enumerate(is_point) if yes]
     for i, heading in enumerate(headings):
-        inside = any(is_point[:i]) and any(is_point[i:])
+        inside = bool(points) and points[0] < i <= points[-1]
         if is_point[i] or not beside[i] or not (delimited.looks_like_a_number(heading) or (inside and not heading)):
             continue
         numbers = [signs.number(cells[i]) for cells in body if len(cells) > i and cells[i].strip()]

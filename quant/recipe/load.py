@@ -6,7 +6,7 @@ from typing import Any
 
 from pydantic import ValidationError
 
-from quant.errors import RecipeError
+from quant.errors import FileFormatError, RecipeError
 from quant.files import decode_text, read_bytes
 from quant.readers.read import read_spectra
 from quant.readers.reference_column import ColumnOf
@@ -16,6 +16,8 @@ from quant.recipe.schema import Recipe
 from quant.spectra.reference_table import ReferenceTable
 from quant.spectra.sample_set import SampleSet, pair_samples
 from quant.spectra.spectra_set import SpectraSet
+
+LARGEST_RECIPE = 2**20  # bytes
 
 
 def load_recipe(path: str | Path) -> Recipe:
@@ -29,13 +31,34 @@ def load_recipe(path: str | Path) -> Recipe:
     Raises
     ------
     RecipeError
-        No valid TOML, an unknown key (with a guess of what was meant), a missing key, or a value of the wrong kind.
+        No text, no valid TOML, an unknown key (with a guess of what was meant), a missing key, or a value of the wrong
+        kind.
     FileFormatError
         The file cannot be read.
     """
     file = Path(path)
-    text = decode_text(file, read_bytes(file, limit=2**20))
-    return recipe_from_text(text, name=file.name, folder=file.parent)
+    return recipe_from_text(recipe_text(file), name=file.name, folder=file.parent)
+
+
+def recipe_text(path: str | Path) -> str:
+    """Return the text of a recipe or plan.
+
+    Raises
+    ------
+    RecipeError
+        The file is no text, or far too large for a recipe.
+    FileFormatError
+        The file cannot be read.
+    """
+    file = Path(path)
+    expected = "expected a recipe, which is a short text file in TOML. Check which file was named."
+    if file.is_file() and file.stat().st_size > LARGEST_RECIPE:
+        raise RecipeError(f"{file} holds {file.stat().st_size / 2**20:.0f} MiB; {expected}")
+    content = read_bytes(file)
+    try:
+        return decode_text(file, content)
+    except FileFormatError:
+        raise RecipeError(f"{file} holds binary content; {expected}") from None
 
 
 def recipe_from_text(text: str, *, name: str = "recipe", folder: str | Path = ".") -> Recipe:

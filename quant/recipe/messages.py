@@ -26,7 +26,7 @@ def problems(error: ValidationError, place: str, model: type[BaseModel]) -> str:
 
 
 def _told(items: list[Any], path: tuple[Any, ...], place: str, model: type[BaseModel]) -> str:
-    first, expected = items[0], [item["msg"].removeprefix("Input should be ") for item in items]
+    first, expected = items[0], [_expected(item) for item in items]
     if first["type"] == "value_error":  # a table that contradicts itself
         return f"{_where(path, place)}: {first['msg'].removeprefix('Value error, ')}."
     table, key = _table_of(path)
@@ -38,6 +38,17 @@ def _told(items: list[Any], path: tuple[Any, ...], place: str, model: type[BaseM
     if first["type"] == "missing":
         return f"{where}: the key {key!r} is missing. Add it."
     return f"{where}: {key} = {first.get('input')!r}; expected {' or '.join(dict.fromkeys(expected))}."
+
+
+def _expected(item: Any) -> str:
+    context = item.get("ctx", {})
+    if item["type"] == "too_short":
+        return f"{context['min_length']} or more of them, not {context['actual_length']}"
+    if item["type"] == "too_long":
+        return f"{context['max_length']} of them at most, not {context['actual_length']}"
+    if item["type"] == "string_too_short":
+        return "a text that is not empty"
+    return str(item["msg"]).removeprefix("Input should be ")
 
 
 def _table_of(path: tuple[Any, ...]) -> tuple[tuple[Any, ...], str]:

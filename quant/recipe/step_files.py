@@ -13,9 +13,11 @@ from quant.errors import AxisMismatchError, QuantError, QuantityError, RecipeErr
 from quant.estimator import Step
 from quant.preprocessing.chain import chain_axes, fit_chain, place_on_axis
 from quant.readers.options import ReadingOptions
-from quant.readers.read import read_spectra
+from quant.readers.read import find_files, read_spectra
 from quant.recipe.schema import Recipe
+from quant.recipe.steps import file_options
 from quant.spectra.axis import SpectralAxis
+from quant.spectra.provenance import Source, source_of
 from quant.spectra.resampling import interpolate
 from quant.spectra.spectra_set import SpectraSet
 from quant.units import AXIS_UNITS, QUANTITIES, absorbance_from_transmittance
@@ -71,6 +73,23 @@ def step_spectra(
     spectra = _in_quantity(_read(file, recipe), "absorbance" if turned else quantity, f"{place}: {file}")
     kept = chain_axes(cuts, axis.values)[-1]
     return fit_chain(place_on_axis(rest, kept), _on_axis(spectra, kept, axis.unit, f"{place}: {file}"))[1]
+
+
+def step_sources(recipe: Recipe) -> tuple[Source, ...]:
+    """Return the files that the recipe's steps name, with their fingerprints.
+
+    Raises
+    ------
+    FileFormatError
+        A file cannot be read.
+    """
+    named = [
+        str(Path(recipe.folder) / table[option])
+        for table in recipe.preprocessing
+        for option in file_options(str(table.get("step"))).values()
+        if table.get(option) is not None
+    ]
+    return tuple(source_of(file) for file in find_files(named)) if named else ()
 
 
 def _read(file: str, recipe: Recipe) -> SpectraSet:

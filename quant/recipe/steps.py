@@ -87,7 +87,7 @@ def make_step(table: dict[str, Any], place: str, read: Callable[[str], FloatArra
     Raises
     ------
     RecipeError
-        No such step, an unknown option, or an option of the wrong type.
+        No such step, an unknown option, one of the wrong type, or one lacking that the step needs.
     """
     options = dict(table)
     name = options.pop("step", None)
@@ -100,7 +100,14 @@ def make_step(table: dict[str, Any], place: str, read: Callable[[str], FloatArra
         given = dict(model.model_validate_json(json.dumps(options, default=str), strict=True))
     except ValidationError as error:
         raise RecipeError(problems(error, f"{place}, step {name!r}", model)) from None
-    for key, option in file_options(name).items():
+    options_of = file_options(name)
+    lacking = [key for key in (options_of.get(each, each) for each in STEPS[name].required) if given[key] is None]
+    if lacking:
+        raise RecipeError(
+            f"{place}, step {name!r}: the key {lacking[0]!r} is missing; expected it, since the step does nothing "
+            "without. Add it, or remove the step."
+        )
+    for key, option in options_of.items():
         file = given.pop(option)
         given[key] = None if file is None else read(file)
     return STEPS[name](**given)

@@ -15,4 +15,4 @@ Text = Annotated[str, Field(min_length=1)]
 class Table(BaseModel):
     """A table of a recipe: unknown keys and wrong types are errors."""
 
-    model_config = ConfigDict(extra="forbid", strict=True, frozen=True)
+    model_config = ConfigDict(extra="forbid", strict=True, frozen=True, allow_inf_nan=False)

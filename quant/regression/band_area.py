@@ -12,7 +12,7 @@ from quant.checks import one_of
 from quant.errors import NotEnoughDataError, ParameterError
 from quant.regression.line_weights import LAWS, level_table, standard_weights, told_weight, weight_at
 from quant.regression.method import LineMethod
-from quant.spectra.bands import BandSet, BandSpec, place_bands
+from quant.spectra.bands import BandSet, BandSpec, place_bands, refuse_gaps
 from quant.statistics.curve import (
     QuadraticFit,
     check_branch,
@@ -148,7 +148,8 @@ class BandArea(LineMethod):
             Too few samples, equal concentrations, a signal that does not follow them, or a quadratic that turns within
             their range.
         ParameterError
-            A band is not as described or does not lie on the axis, or curve and weights do not exist.
+            A band is not as described, does not lie on the axis or meets a gap of it, or curve and weights do not
+            exist.
         QuantityError
             The reference band shows no signal above zero.
         """
@@ -157,6 +158,7 @@ class BandArea(LineMethod):
             raise ParameterError("through_origin = true belongs to curve = 'line'; remove one of the two.")
         matrix, values, sds = self.check_fit_companions(X, y)
         bands = self._place()
+        refuse_gaps("band_area", bands)
         if values.size < 2 and not self.through_origin:
             raise NotEnoughDataError(f"A straight line needs 2 samples or more; n_samples={values.size} were given.")
         signal = bands.signals(matrix)

@@ -37,6 +37,7 @@ SMOOTHINGS = (
 )  # cm⁻¹, width of the smoothing, see FourierSeries.response
 SHARP_ENOUGH = 0.009  # cm⁻¹, standard error of a position
 FEWEST_BANDS = 3
+FOREIGN_SCATTER = 2.0  # cm⁻¹ about offset and stretch; bands of a film lie within a few tenths, whatever the axis does
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -143,7 +144,12 @@ def film_evidence(
         axis_error=against,
         axis_change=change,
         resolution=resolution,
-        words=(_verdict(found), *([change.words] if change else [against.words]), *(c.words for c in resolution)),
+        words=(
+            _verdict(found),
+            *_foreign(found, against),
+            *([change.words] if change else [against.words]),
+            *(c.words for c in resolution),
+        ),
     )
 
 
@@ -265,6 +271,20 @@ def _verdict(found: Sequence[BandPosition]) -> str:
         )
     named = ", ".join(f"{b.expected:g} ({b.deviation:+.2f}, permitted ±{b.tolerance:g})" for b in outside)
     return f"{len(outside)} of {len(found)} bands of the film are out of tolerance: {named}"
+
+
+def _foreign(found: Sequence[BandPosition], axis: AxisError) -> tuple[str, ...]:
+    """Doubt that it is the film at all where no error of an axis puts the bands there."""
+    if len(found) <= FEWEST_BANDS:
+        return ()
+    rest = [b.deviation - axis.at(b.expected) for b in found]
+    scatter = float(np.sqrt(np.sum(np.square(rest)) / (len(found) - 2)))
+    if scatter <= FOREIGN_SCATTER:
+        return ()
+    return (
+        f"The minima next to these positions scatter by {scatter:.1f} cm⁻¹ about any offset and stretch: this spectrum "
+        "is hardly that of a polystyrene film in transmission; check which file was given, before the instrument",
+    )
 
 
 def _signed(value: float | None) -> str:

@@ -128,8 +128,8 @@ def basis_of(
         A bound that is not above zero.
     """
     for name, bound in (("allowed_bias", allowed_bias), ("allowed_sep", allowed_sep)):
-        if bound is not None and not bound > 0:
-            raise ParameterError(f"{name} = {bound}; expected a number above zero in the unit of the analyte.")
+        if bound is not None and not 0 < bound < np.inf:
+            raise ParameterError(f"{name} = {bound}; expected a finite number above zero in the unit of the analyte.")
     own, s0 = model.revalidation, model.uncertainty.s0
     if own is None:
         own = RevalidationBasis(

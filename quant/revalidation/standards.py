@@ -180,7 +180,7 @@ def gather(
     Raises
     ------
     SampleMismatchError
-        A standard measured after lacks spectra from before.
+        A standard measured after lacks spectra from before, or the same spectrum was given as both.
     """
     resample = bool(model.reading.get("resample", False))
     check_acquisition(model, samples.spectra)
@@ -195,10 +195,24 @@ def gather(
             f"No spectrum from before of {name_some(lacking)}; expected the same standards before and after. Leave "
             "these out of the spectra after, or leave the spectra before out altogether."
         )
+    _refuse_copies(before, samples.spectra)
     chosen = before.select(samples.sample_ids).on_axis(model.axis, resample=resample)
     place = {sample: i for i, sample in enumerate(samples.sample_ids)}
     index = np.array([place[sample] for sample in chosen.sample_ids], dtype=np.intp)
     return Standards(model, samples.sample_ids, values, after, samples.sample_index, chosen, index, training)
+
+
+def _refuse_copies(before: SpectraSet, after: SpectraSet) -> None:
+    """Refuse spectra that were given twice: no measurement repeats another to the last digit."""
+    known = {(sample, row.tobytes()) for sample, row in zip(before.sample_ids, before.values, strict=True)}
+    copies = dict.fromkeys(
+        sample for sample, row in zip(after.sample_ids, after.values, strict=True) if (sample, row.tobytes()) in known
+    )
+    if copies:
+        raise SampleMismatchError(
+            f"The spectra before and after are the very same numbers for {name_some(copies)}; expected one measurement "
+            "before the visit and another after it. Check which files were named."
+        )
 
 
 def training_of(model: Calibration, samples: SampleSet) -> Training:

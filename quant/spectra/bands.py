@@ -11,6 +11,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_vector, name_some, one_of
 from quant.errors import AxisMismatchError, ParameterError, QuantityError
+from quant.spectra.segments import describe_segment, segments
 
 BandSpec: TypeAlias = Mapping[str, Any]
 
@@ -138,6 +139,39 @@ def place_bands(
         bands=tuple(_place(f"band {number}", band, rising) for number, band in enumerate(bands, start=1)),
         reference=None if reference_band is None else _place("reference_band", reference_band, rising),
     )
+
+
+def refuse_gaps(who: str, placed: BandSet) -> None:
+    """Refuse bands that meet a gap of the axis, where nothing was measured or it was cut out.
+
+    Parameters
+    ----------
+    who : str
+        The step or method, for the message.
+    placed : BandSet
+
+    Raises
+    ------
+    ParameterError
+        A band that does not lie in one contiguous range, or an end of a baseline in a gap.
+    """
+    slack = _slack(placed.axis)
+    axis = placed.axis[::-1] if placed.falling else placed.axis
+    runs = segments(axis)
+
+    def held(first: float, last: float) -> bool:
+        return any(axis[run].min() - slack <= first and last <= axis[run].max() + slack for run in runs)
+
+    for band in placed.bands if placed.reference is None else (*placed.bands, placed.reference):
+        places = [("band", float(band.x[0]), float(band.x[-1]))]
+        places += [("baseline of the band", end, end) for end in band.baseline or ()]
+        for what, first, last in places:
+            if not held(first, last):
+                raise ParameterError(
+                    f"{who}: the {what} ({band.where}) meets a gap of the axis, whose contiguous ranges are "
+                    f"{name_some(describe_segment(axis, run) for run in runs)}; expected a band inside one of them. "
+                    "Move the band, or keep more of the spectrum."
+                )
 
 
 def _place(name: str, band: BandSpec, axis: FloatArray) -> Band:

@@ -103,6 +103,8 @@ class ReferenceTable:
         How many determinations each value is the mean of; one each when not given.
     repeatability : mapping of str to Repeatability, optional
         By the analyte's name, where samples were determined more than once.
+    lines : sequence of int, optional
+        Line of the file that each sample stands in (first stands in), for messages.
 
     Raises
     ------
@@ -120,6 +122,7 @@ class ReferenceTable:
     censored: FloatArray
     determinations: IntArray
     repeatability: Mapping[str, Repeatability]
+    lines: tuple[int, ...]
 
     def __init__(
         self,
@@ -131,6 +134,7 @@ class ReferenceTable:
         censored: ArrayLike = NO_LIMIT,
         determinations: ArrayLike = 1,
         repeatability: Mapping[str, Repeatability] | None = None,
+        lines: Sequence[int] = (),
     ) -> None:
         matrix = np.array(values, dtype=np.float64)
         rows = [{}] * len(sample_ids) if notes is None else notes
@@ -159,12 +163,18 @@ class ReferenceTable:
         object.__setattr__(self, "censored", limits)
         object.__setattr__(self, "determinations", _one_a_value("determinations", np.asarray(determinations), matrix))
         object.__setattr__(self, "repeatability", FrozenMapping(repeatability or {}))
+        object.__setattr__(self, "lines", tuple(lines))
 
     def __setstate__(self, state: dict[str, Any]) -> None:
         restore(self, state)
 
     def __len__(self) -> int:
         return len(self.sample_ids)
+
+    def where(self, row: int) -> str:
+        """Return file and line of a row, for a message: "reference.csv, line 5: "; empty where they are not known."""
+        file = self.sources[0].name if self.sources else ""
+        return f"{file}, line {self.lines[row]}: " if file and self.lines else f"{file}: " if file else ""
 
     def __str__(self) -> str:
         """How many samples, which analytes."""

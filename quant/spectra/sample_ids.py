@@ -6,6 +6,9 @@ from pathlib import PurePath
 
 from quant.errors import ParameterError
 
+LONGEST_RANGE = 100_000  # IDs
+
+_DASH = re.compile(r"^(?P<head>.*?)(?P<first>\d+) *[-–—:] *(?P=head)(?P<last>\d+)$")
 _RANGE = re.compile(r"^(?P<head>.*?)(?P<first>\d+)\.\.(?P=head)(?P<last>\d+)$")
 
 
@@ -25,10 +28,27 @@ def expand_ids(items: Iterable[object]) -> list[str]:
             ids.append(text)
             continue
         first, last = int(match["first"]), int(match["last"])
-        if not first <= last <= first + 100_000:
-            raise ParameterError(f"Sample range {text!r} runs from {first} to {last}; expected a rising range.")
+        if not first <= last <= first + LONGEST_RANGE:
+            raise ParameterError(
+                f"Sample range {text!r} runs from {first} to {last}; expected a rising range of at most "
+                f"{LONGEST_RANGE} samples."
+            )
         ids.extend(f"{match['head']}{number:0{len(match['first'])}d}" for number in range(first, last + 1))
     return ids
+
+
+def range_hint(missing: Iterable[str]) -> str:
+    """Return a sentence on how ranges are written if an ID that was not found looks like one, else nothing.
+
+    >>> range_hint(["51-60"])
+    " A range of samples is written '51..60'."
+    """
+    for name in missing:
+        match = _DASH.match(name)
+        if match and int(match["first"]) < int(match["last"]):
+            head = match["head"]
+            return f" A range of samples is written '{head}{match['first']}..{head}{match['last']}'."
+    return ""
 
 
 def notes_from_name(path: str | PurePath, pattern: str) -> dict[str, str]:

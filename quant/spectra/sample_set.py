@@ -12,6 +12,7 @@ from quant.errors import ParameterError, SampleMismatchError
 from quant.spectra.frozen import FrozenMapping
 from quant.spectra.provenance import Source
 from quant.spectra.reference_table import NO_LIMIT, Analyte, ReferenceTable, Repeatability
+from quant.spectra.sample_ids import range_hint
 from quant.spectra.spectra_set import SpectraSet
 
 ORIGINS = ("process", "spiked", "blended")
@@ -152,7 +153,7 @@ class SampleSet:
         if missing:
             raise SampleMismatchError(
                 f"No sample {name_some(missing)} among the {len(self)} paired samples ({name_some(self.sample_ids)}). "
-                "Check the spelling of the sample IDs."
+                f"Check the spelling of the sample IDs.{range_hint(missing)}"
             )
         return np.array([place[sample] for sample in sample_ids], dtype=np.intp)
 
@@ -223,7 +224,8 @@ def pair_samples(
     chosen = [place[sample] for sample in paired]
     values, limits = reference.values[chosen], reference.censored[chosen]
     if missing == "refuse":
-        _refuse_missing(reference.analytes, np.where(np.isnan(values), limits, values), paired)
+        _refuse_missing(reference, chosen)
+    with_spectra = set(ids)
     keep = np.array([sample in place for sample in spectra.sample_ids])
     kept = spectra[keep]
     number = {sample: i for i, sample in enumerate(paired)}
@@ -241,7 +243,7 @@ def pair_samples(
         values,
         tuple(FrozenMapping(row) for row in rows),
         tuple(alone),
-        tuple(sample for sample in reference.sample_ids if sample not in set(ids)),
+        tuple(sample for sample in reference.sample_ids if sample not in with_spectra),
         limits,
         reference.determinations[chosen],
         reference.repeatability,
@@ -249,14 +251,15 @@ def pair_samples(
     )
 
 
-def _refuse_missing(analytes: Sequence[Analyte], values: FloatArray, samples: Sequence[str]) -> None:
-    for analyte, column in zip(analytes, values.T, strict=True):
-        without = [sample for sample, value in zip(samples, column, strict=True) if np.isnan(value)]
+def _refuse_missing(reference: ReferenceTable, rows: Sequence[int]) -> None:
+    known = ~(np.isnan(reference.values) & np.isnan(reference.censored))
+    for column, analyte in enumerate(reference.analytes):
+        without = [row for row in rows if not known[row, column]]
         if without:
             raise SampleMismatchError(
-                f"{len(without)} of {len(samples)} samples have no reference value of {analyte.name}: "
-                f"{name_some(without)}. "
-                'Supply the values, or set missing = "drop" under [reference].'
+                f"{reference.where(without[0])}{len(without)} of {len(rows)} samples have no reference value of "
+                f"{analyte.name}: {name_some(reference.sample_ids[row] for row in without)}. Supply the values, or set "
+                'missing = "drop" under [reference].'
             )
 
 

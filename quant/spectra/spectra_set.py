@@ -14,6 +14,7 @@ from quant.spectra.axis import SpectralAxis
 from quant.spectra.frozen import FrozenMapping, is_frozen, restore
 from quant.spectra.provenance import Source
 from quant.spectra.resampling import interpolate
+from quant.spectra.sample_ids import range_hint
 from quant.units import QUANTITIES
 
 if TYPE_CHECKING:
@@ -127,7 +128,7 @@ class SpectraSet:
         if missing:
             raise SampleMismatchError(
                 f"No spectrum of {name_some(missing)}; the set holds {name_some(dict.fromkeys(self.sample_ids))}. "
-                "Check the spelling of the sample IDs."
+                f"Check the spelling of the sample IDs.{range_hint(missing)}"
             )
         return self[np.array([sample in wanted for sample in self.sample_ids], dtype=bool)]
 

@@ -18,7 +18,6 @@ UNDECIDED = "undecided"
 CANNOT_DECIDE = "this method cannot decide this limit"
 NOT_APPLICABLE = "not applicable to this spectrum"
 OUTCOMES = (NOT_APPLICABLE, CANNOT_DECIDE, ACCEPT, UNDECIDED, REJECT)  # the first two come before any comparison
-NEVER = "no number of replicates will decide"
 SIDES = ("upper", "lower")  # the value has to stay below an upper limit, above a lower one
 LARGEST_SERIES = 10_000  # degrees of freedom; beyond, Student's t is normal to 1e-5
 
@@ -223,26 +222,6 @@ def replicates_to_decide(value: float, limit: float, factor: float, fixed: float
     needed = own**2 / room
     # A number that is whole but for rounding is not raised; beyond any practice it is none.
     return max(1, math.ceil(needed * (1 - 1e-12))) if math.isfinite(needed) else None
-
-
-def what_would_settle(value: float, limit: float, factor: float, fixed: float, repeatability: float) -> str:
-    """Say what would settle an undecided case, in one sentence.
-
-    Parameters
-    ----------
-    value, limit, factor, fixed, repeatability : float
-        As `replicates_to_decide` takes them.
-
-    Raises
-    ------
-    ParameterError
-        Negative or non-finite factor, uncertainty or repeatability.
-    """
-    number = replicates_to_decide(value, limit, factor, fixed, repeatability)
-    if number is None:
-        return f"{NEVER}: the calibration's uncertainty alone spans the limit; a better calibration would."
-    plural = "" if number == 1 else "s"
-    return f"the mean of {number} replicate{plural} would decide, if it stayed at {value:.4g}."
 
 
 def _sign(side: str) -> float:

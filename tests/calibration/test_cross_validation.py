@@ -8,7 +8,7 @@ from sklearn.cross_decomposition import PLSRegression
 from sklearn.model_selection import PredefinedSplit, cross_val_predict
 from sklearn.pipeline import make_pipeline
 
-from quant.calibration.cross_validation import cross_validate, factor_counts
+from quant.calibration.cross_validation import check_calibration_values, cross_validate, factor_counts
 from quant.calibration.folds import make_folds
 from quant.calibration.leave_out import fit_pipeline
 from quant.errors import NotEnoughDataError, ParameterError
@@ -166,6 +166,8 @@ def test_more_factors_than_the_training_sets_carry(make_samples, make_recipe, fa
 def test_too_little_to_learn_from(make_samples, make_recipe):
     with pytest.raises(NotEnoughDataError, match="3 samples with a value of acid; at least 4 are needed"):
         cross_validate(make_samples(n=3), make_recipe())
+    with pytest.raises(NotEnoughDataError, match=r"values of acid span 4e-300; expected 1e-100 or more"):
+        check_calibration_values("acid", np.arange(5) * 1e-300)
     with pytest.raises(NotEnoughDataError, match="All 5 reference values of acid are 2; expected values that span"):
         cross_validate(make_samples(n=5, values=np.full(5, 2.0)), make_recipe())
 

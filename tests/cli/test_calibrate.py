@@ -1,13 +1,16 @@
 """``quant calibrate``: what it prints, what it leaves, and that the published sets come out of it."""
 
 import json
+from dataclasses import replace
 from pathlib import Path
 
+import numpy as np
 import pytest
 
 from quant.cli.calibrate import file_name, model_files
 from quant.errors import RecipeError
-from quant.model.storage import load_model
+from quant.model.calibration import ModelState
+from quant.model.storage import load_model, save_model
 
 ROOT = Path(__file__).resolve().parents[2]
 VALUES = ROOT / "tests" / "reference_values"
@@ -58,13 +61,23 @@ def test_a_folder_is_asked_for(project) -> None:
     assert "Missing option '--out'" in result.stderr
 
 
+def test_a_file_that_a_step_names_is_among_the_training_files(project) -> None:
+    axis = np.linspace(1800.0, 1600.0, 41)
+    rows = "".join(f"{x:g},{0.5 + ((x - 1700) / 100) ** 3!r}\n" for x in axis.tolist())
+    (project.folder / "water.csv").write_text(f"cm-1,absorbance\n{rows}", encoding="utf-8")
+    step = '[[preprocessing]]\nstep = "emsc"\ninterferent_file = "water.csv"\n\n[regression]'
+    project.replace("recipe.toml", "[regression]", step)
+    names = [source.name for source in load_model(project.make_model()).training]
+    assert names == ["spectra.csv", "reference.csv", "water.csv"]
+
+
 def test_a_place_that_cannot_be_written(project) -> None:
     (project.folder / "file").write_text("in the way", encoding="utf-8")
     result = project.run("calibrate", project.folder / "recipe.toml", "--out", project.folder / "file" / "out")
     assert result.exit_code == 2
     assert result.stderr == (
-        f"Error: {project.folder}/file/out/acid.model cannot be written (Not a directory); expected a folder that may "
-        "be written to. Choose another place.\n"
+        f"Error: {project.folder}/file/out cannot be written to (Not a directory); expected a folder that may be. "
+        "Choose another place.\n"
     )
 
 
@@ -102,3 +115,22 @@ def test_criteria_decide_on_the_exit_code_and_looks_are_counted(project, largest
     seal = json.loads(first[1])["analytes"][0]["audit"]["seal"]
     assert (seal["look"], seal["fixed_beforehand"]) == (1, True)
     assert seal["statement"].startswith("first look at this validation set; the criteria of acceptance were fixed")
+
+
+def test_a_model_that_is_more_than_a_draft_is_not_replaced(project) -> None:
+    path = project.make_model()
+    save_model(replace(load_model(path), state=ModelState(name="approved", by="QA")), path)
+    before = path.read_bytes()
+    result = project.calibrate()
+    assert result.exit_code == 2
+    assert "acid.model holds a model that is approved by QA" in result.stderr
+    assert path.read_bytes() == before
+
+
+def test_an_interruption_leaves_no_model_without_its_report(project, monkeypatch) -> None:
+    def interrupted(*_: object) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("quant.reports.write.render_page", interrupted)
+    assert project.calibrate().exit_code == 130
+    assert not list((project.folder / "out").glob("*.model"))

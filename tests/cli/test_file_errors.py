@@ -46,8 +46,8 @@ def standards_for_validation(project) -> None:
 
 
 FILES = {
-    reference_without_a_value: "1 of 12 samples have no reference value of acid: S03. Supply the values, or set "
-    'missing = "drop" under [reference].',
+    reference_without_a_value: "reference.csv, line 4: 1 of 12 samples have no reference value of acid: S03. Supply "
+    'the values, or set missing = "drop" under [reference].',
     one_value_for_all: "All 12 reference values of acid are 5; expected values that span the range to predict. Check "
     "the column, or add standards.",
     reference_of_other_samples: "Not one of 12 samples with spectra (S01, S02, S03 and 9 more) is in the reference "

@@ -103,3 +103,23 @@ def test_a_bug_is_not_hidden(project, monkeypatch: pytest.MonkeyPatch) -> None:
     monkeypatch.setattr("quant.recipe.load.load_recipe", broken)
     with pytest.raises(ZeroDivisionError, match="a bug"):
         project.run("inspect", project.folder / "recipe.toml")
+
+
+def test_an_interruption_has_an_exit_code_of_its_own(project, monkeypatch) -> None:
+    def interrupted(*_: object, **__: object) -> None:
+        raise KeyboardInterrupt
+
+    monkeypatch.setattr("quant.inspection.inspect.inspect", interrupted)
+    result = project.run("inspect", project.folder / "recipe.toml")
+    assert result.exit_code == 130  # 1 would be "not accepted"
+    assert "Interrupted." in result.stderr
+
+
+def test_a_full_disk_behind_the_output_is_told(project, monkeypatch) -> None:
+    def full(*_: object, **__: object) -> None:
+        raise OSError(28, "No space left on device")
+
+    monkeypatch.setattr("quant.inspection.inspect.inspect", full)
+    result = project.run("inspect", project.folder / "recipe.toml")
+    assert result.exit_code == 2
+    assert "Error: the system refused to read or write: No space left on device. Make room" in result.stderr

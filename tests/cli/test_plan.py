@@ -101,3 +101,35 @@ def test_validation_samples_that_are_not_planned(planned):
     result = planned.run("plan", planned.folder / "plan.toml", "--validation", planned.folder / "v.csv")
     assert result.exit_code == 2
     assert "the plan has [validation] samples = 0" in result.stderr
+
+
+@pytest.mark.parametrize("option", ["--out", "--validation", "--json"])
+def test_the_plan_is_not_written_over(planned, option):
+    plan = planned.folder / "plan.toml"
+    result = planned.run("plan", plan, option, plan)
+    assert result.exit_code == 2
+    assert f"{option} {plan}: this file is read by the command and would be lost." in result.stderr
+    assert plan.read_text("utf-8") == PLAN
+
+
+def test_two_tables_do_not_go_into_one_file(planned):
+    table = planned.folder / "t.csv"
+    result = planned.run("plan", planned.folder / "plan.toml", "--out", table, "--validation", table)
+    assert result.exit_code == 2
+    assert "name one file twice; expected a file each." in result.stderr
+    assert not table.exists()
+
+
+def test_a_judged_table_is_not_written_over(planned):
+    table = planned.folder / "have.csv"
+    table.write_text("sample,a\n1,1\n2,2\n3,3\n", encoding="utf-8")
+    result = planned.run("plan", "--judge", table, "--json", table)
+    assert result.exit_code == 2
+    assert table.read_text("utf-8").startswith("sample,a")
+
+
+def test_a_binary_file_is_no_plan(planned):
+    (planned.folder / "plan.toml").write_bytes(b"PK\x03\x04\x00\x00")
+    result = planned.run("plan", planned.folder / "plan.toml")
+    assert result.exit_code == 2
+    assert "plan.toml holds binary content; expected a recipe, which is a short text file in TOML." in result.stderr

@@ -64,7 +64,10 @@ def test_samples_by_ranges(calibrated) -> None:
     assert "No spectrum of S13, S14; the set holds S01, S02, S03, S04, S05 and 7 more." in refused.stderr
     backwards = calibrated.run("predict", model, spectra, "--samples", "S04..S02")
     assert backwards.exit_code == 2
-    assert "Sample range 'S04..S02' runs from 4 to 2; expected a rising range." in backwards.stderr
+    assert (
+        "Sample range 'S04..S02' runs from 4 to 2; expected a rising range of at most 100000 samples."
+        in backwards.stderr
+    )
 
 
 def test_a_sample_the_model_does_not_apply_to(calibrated, make_spectra) -> None:
@@ -168,3 +171,39 @@ def test_the_models_own_limit(project, make_spectra) -> None:
     result = project.run("predict", model, new)
     assert result.exit_code == 1
     assert result.stdout.splitlines()[1] == "IPC 2: upper limit 4 % m/m (stated in the recipe), risk 5 %"
+
+
+def test_a_risk_without_a_limit_and_no_samples_are_refused(calibrated) -> None:
+    model, spectra = calibrated.folder / "out" / "acid.model", calibrated.folder / "spectra.csv"
+    alone = calibrated.run("predict", model, spectra, "--risk", "0.01")
+    assert alone.exit_code == 2
+    assert "--risk belongs to --limit or --lower-limit; expected one of them beside it." in alone.stderr
+    nothing = calibrated.run("predict", model, spectra, "--samples", " ")
+    assert nothing.exit_code == 2
+    assert "--samples is empty" in nothing.stderr
+
+
+def test_a_range_with_a_dash_is_told_how_it_is_written(calibrated) -> None:
+    model, spectra = calibrated.folder / "out" / "acid.model", calibrated.folder / "spectra.csv"
+    result = calibrated.run("predict", model, spectra, "--samples", "S02-S04")
+    assert result.exit_code == 3
+    assert "A range of samples is written 'S02..S04'." in result.stderr
+
+
+def test_the_table_is_not_written_over_the_spectra(calibrated) -> None:
+    model, spectra = calibrated.folder / "out" / "acid.model", calibrated.folder / "spectra.csv"
+    before = spectra.read_bytes()
+    result = calibrated.run("predict", model, spectra, "--out", spectra.parent / "out" / ".." / "spectra.csv")
+    assert result.exit_code == 2
+    assert "spectra.csv: this file is read by the command and would be lost. Name another file." in result.stderr
+    assert spectra.read_bytes() == before
+
+
+def test_missing_points_are_told_with_their_sample(calibrated) -> None:
+    lines = (calibrated.folder / "spectra.csv").read_text("utf-8").splitlines()
+    cells = lines[3].split(",")
+    lines[3] = ",".join([*cells[:9], "", *cells[10:]])
+    (calibrated.folder / "new.csv").write_text("\n".join(lines) + "\n", "utf-8")
+    result = calibrated.run("predict", calibrated.folder / "out" / "acid.model", calibrated.folder / "new.csv")
+    assert result.exit_code == 3
+    assert "S03: 1 of 12 spectra have missing points" in result.stderr

@@ -61,9 +61,11 @@ def test_a_shift_is_found_and_a_new_model_written(project, visit):
     found = json.loads((out / "revalidation.json").read_text(encoding="utf-8"))
     assert found["verdict"] in ("holds after correction", "transfer needed")
     assert set(found) == {key for key in found["keys"] if "." not in key and "[" not in key}
-    again = command(project, visit, "moved", *options)
+    page = (out / "revalidation.html").read_bytes()
+    again = command(project, visit, "same", *options)
     assert again.exit_code == 2
     assert "never replaced" in again.output
+    assert (out / "revalidation.html").read_bytes() == page  # that tells why the model there was made
 
 
 def test_apply_needs_a_folder(project, visit):
@@ -75,9 +77,29 @@ def test_apply_needs_a_folder(project, visit):
 def test_an_unknown_remedy_is_a_wrong_usage(project, visit):
     result = command(project, visit, "moved", "--apply", "luck", "--out", project.folder / "visit")
     assert result.exit_code == 2
-    assert "expected one of limits, bias" in result.output
+    assert "--apply = 'luck'; expected one of 'proposed', 'limits'" in result.output
+    assert not (project.folder / "visit").exists()
+
+
+def test_a_certificate_needs_its_film(project, visit):
+    result = command(project, visit, "moved", "--film-certificate", project.folder / "film.csv")
+    assert result.exit_code == 2
+    assert "expected that beside it" in result.output
 
 
 def test_a_table_without_the_standards_is_bad_data(project, visit):
     (project.folder / "standards.csv").write_text("sample,acid\nX,1.0\n", encoding="utf-8")
     assert command(project, visit, "moved").exit_code == 3
+
+
+def test_one_measurement_is_not_both_before_and_after(project, visit):
+    result = command(project, visit, "before")
+    assert result.exit_code == 3
+    assert "The spectra before and after are the very same numbers for S01, S02" in result.output
+
+
+@pytest.mark.parametrize("name", ["film", "blank"])
+def test_a_last_record_alone_is_not_passed_over(project, visit, name):
+    result = command(project, visit, "same", f"--{name}-before", project.folder / "before.csv")
+    assert result.exit_code == 2
+    assert f"--{name}-before is compared with --{name}; expected that beside it." in result.output

@@ -78,3 +78,21 @@ def test_a_recipe_without_the_table(project):
     result = project.run("screen", project.folder / "recipe.toml", "--out", project.folder / "out")
     assert result.exit_code == 2
     assert "has no table [screen]" in result.stderr
+
+
+def test_the_recipe_is_not_written_over_by_the_winner(screening):
+    recipe = screening.folder / "winner.toml"
+    (screening.folder / "recipe.toml").rename(recipe)
+    before = recipe.read_bytes()
+    result = screening.run("screen", recipe, "--out", screening.folder)
+    assert result.exit_code == 2
+    assert "this file is read by the command and would be lost" in result.stderr
+    assert recipe.read_bytes() == before
+
+
+def test_a_folder_that_cannot_be_written_to_is_told_before_the_search(screening, monkeypatch):
+    monkeypatch.setattr("quant.screening.screen.screen", lambda *_, **__: pytest.fail("searched"))
+    (screening.folder / "file").touch()
+    result = screening.run("screen", screening.folder / "recipe.toml", "--out", screening.folder / "file" / "out")
+    assert result.exit_code == 2
+    assert "cannot be written to" in result.stderr

@@ -106,7 +106,7 @@ water                2  7.000  9.000  8.000  B
 Preprocessing: keep_ranges → snv
 Points: 4 read, 3 behind the preprocessing"""
     )
-    assert findings.startswith("2 stops, ")  # three values and two: calibrating would refuse them
+    assert findings.startswith("4 stops, ")  # three values and two, E and B: calibrating would refuse them
     record = json.loads(found.to_json())
     assert record["sets"][0]["analytes"][1]["without_value"] == ["B"]
     assert {"gravity", "code", "title", "samples", "evidence", "advice"} == set(record["findings"][0])

@@ -12,6 +12,7 @@ from quant.inspection.spread import (
     check_possible,
     check_range,
     check_together,
+    check_vary,
     widest_gap,
 )
 from quant.recipe.load import recipe_from_text
@@ -145,3 +146,19 @@ def test_what_calibrating_would_refuse_is_a_stop(values, evidence):
 
 def test_values_that_differ_are_no_stop():
     assert check_possible(material([1.0, 2.0, 3.0, 4.0])) == []
+
+
+def test_spectra_that_are_all_equal_are_a_stop():
+    def laid_out(spectra, steps=""):
+        ids = [f"S{i}" for i in range(len(spectra))]
+        table = ReferenceTable(ids, [Analyte("a", "%")], np.arange(float(len(ids)))[:, None])
+        samples = pair_samples(SpectraSet(spectra, SpectralAxis(np.arange(6.0)), ids), table)
+        return gather(recipe_from_text(RECIPE + steps), samples, None)
+
+    one = np.random.default_rng(1).random(6)
+    [finding] = check_vary(laid_out(np.tile(one, (8, 1))))
+    assert (finding.code, finding.gravity) == ("equal_spectra", STOP)
+    apart = np.tile(one, (8, 1)) + 1e-9 * np.arange(8.0)[:, None]
+    assert check_vary(laid_out(apart)) == []
+    straight = '[[preprocessing]]\nstep = "snv"\n[[preprocessing]]\nstep = "keep_ranges"\nranges = [[0, 0]]\n'
+    assert len(check_vary(laid_out(np.outer(np.arange(1.0, 9.0), one), straight))) == 1  # size alone varied

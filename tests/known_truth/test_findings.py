@@ -198,7 +198,7 @@ DAMAGES = [
     (negative, "negative_absorbance", NOTE, ["K7-S06"]),
     (other_technique, "mixed_technique", STOP, [SPOILT]),
     (other_resolution, "mixed_resolution", DOUBT, [SPOILT]),
-    (no_value, "missing_values", DOUBT, ["K7-S06 (ethyl acetate)"]),
+    (no_value, "missing_values", STOP, ["K7-S06 (ethyl acetate)"]),
     (gap, "gap_in_range", DOUBT, None),
     (alone_at_the_end, "gap_in_range", DOUBT, None),
 ]

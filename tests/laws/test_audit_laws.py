@@ -1,6 +1,6 @@
 """Laws of the statistics that an audit asks for: changes of unit, order and origin, and what must grow with what."""
 
-import math
+from fractions import Fraction
 
 import numpy as np
 import pytest
@@ -174,15 +174,16 @@ def test_a_decision_is_the_risk_seen_from_the_other_side(value, u, limit, dof, r
 @given(st.floats(0.1, 10), st.floats(0, 5), st.floats(0.01, 5), st.floats(0.5, 4))
 def test_the_number_of_replicates_is_the_fewest(distance, fixed, repeatability, factor):
     number = replicates_to_decide(0.0, distance, factor, fixed, repeatability)
-
-    def decided(m):
-        return factor * math.hypot(fixed, repeatability / math.sqrt(m)) <= distance * (1 + 1e-9)
-
+    # Exactly: the mean of m decides if factor²·(fixed² + repeatability²/m) is at most distance².
+    room = Fraction(distance) ** 2 - (Fraction(factor) * Fraction(fixed)) ** 2
+    needed = (Fraction(factor) * Fraction(repeatability)) ** 2 / room if room else Fraction(0)
+    assume(abs(room) > 1e-6 * distance**2)  # nearer to the edge rounding decides
     if number is None:
-        assert not decided(1e12) or factor * fixed > distance * (1 - 1e-6)
+        assert room < 0
     else:
-        assert decided(number)
-        assert number == 1 or not decided((number - 1) * (1 - 1e-6))
+        assert room > 0
+        assert number >= needed * Fraction(1 - 1e-6)
+        assert number == 1 or number - 1 <= needed * Fraction(1 + 1e-6)
 
 
 @given(seeds, factors, factors, st.floats(-9, 9), st.floats(-9, 9))

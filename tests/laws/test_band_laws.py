@@ -62,6 +62,7 @@ def test_signals_are_proportional_to_the_spectrum(data, band, factor):
 @given(spectra(), st.floats(0.1, 5), st.booleans())
 def test_what_follows_beer_and_lambert_is_predicted_exactly(data, absorptivity, through_origin):
     axis, X = data
+    axis = np.linspace(axis[0], axis[-1], axis.size)  # without cuts: a band across one is refused
     c = np.linspace(1, 4, 6)
     mixtures = absorptivity * c[:, None] * X[0] + (0 if through_origin else X[1])
     model = BandArea(BANDS[::2], through_origin=through_origin, axis=axis).fit(mixtures, c)

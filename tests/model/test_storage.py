@@ -25,6 +25,13 @@ def write_parts(path: Path, parts: dict[str, bytes]) -> None:
             archive.writestr(name, content)
 
 
+def without_fingerprint(text: bytes, **changes: object) -> bytes:
+    """Return a manifest as the first programs wrote it, perhaps with other entries."""
+    manifest = {**json.loads(text), **changes}
+    del manifest["fingerprint"]
+    return json.dumps(manifest).encode()
+
+
 def npy(array: np.ndarray) -> bytes:
     stream = io.BytesIO()
     np.lib.format.write_array(stream, array)
@@ -79,8 +86,7 @@ def test_the_file_is_plain_json_and_plain_arrays(saved, model):
 
 def test_loading_does_not_read_the_recipe(saved):
     parts = parts_of(saved)
-    manifest = json.loads(parts["manifest.json"])
-    parts["manifest.json"] = json.dumps({**manifest, "recipe": "no = [TOML"}).encode()
+    parts["manifest.json"] = without_fingerprint(parts["manifest.json"], recipe="no = [TOML")
     write_parts(saved, parts)
     assert load_model(saved).recipe == "no = [TOML"
 
@@ -147,6 +153,41 @@ def test_another_manifest_is_refused(saved, changes, message):
         load_model(saved)
 
 
+ALTERED = [
+    ("uncertainty", "s0", 1e-6),
+    ("limits", "residual_stop", 1e9),
+    ("state", "name", "approved"),
+    ("analyte", "unit", "g/L"),
+]
+
+
+@pytest.mark.parametrize(("part", "key", "value"), ALTERED)
+def test_what_does_not_change_a_prediction_cannot_be_altered_either(saved, part, key, value):
+    manifest = json.loads(parts_of(saved)["manifest.json"])
+    other_manifest(saved, **{part: {**manifest[part], key: value}})
+    with pytest.raises(ModelFileError, match=r"a\.model: the content was altered after the model was saved"):
+        load_model(saved)
+
+
+def test_arrays_that_only_intervals_use_cannot_be_altered_either(saved):
+    parts = parts_of(saved)
+    entry = next(name for name in parts if name.startswith("arrays/method/"))
+    parts[entry] = npy(np.load(io.BytesIO(parts[entry])) * (1 + 1e-15))  # far below what the test spectra can tell
+    write_parts(saved, parts)
+    with pytest.raises(ModelFileError, match="altered after the model was saved"):
+        load_model(saved)
+
+
+@pytest.mark.parametrize("model", ["pls"], indirect=True)
+def test_a_model_without_fingerprint_has_to_tell_whether_it_applies(saved):
+    parts = parts_of(saved)
+    parts["manifest.json"] = without_fingerprint(parts["manifest.json"])
+    del parts["arrays/method/loadings_.npy"]
+    write_parts(saved, parts)
+    with pytest.raises(ModelFileError, match="cannot predict its own test spectra"):
+        load_model(saved)
+
+
 @pytest.mark.parametrize("text", [b"", b"[]", b"null", b"{", b"\xff\xfe", b"[" * 100_000])
 def test_a_manifest_that_is_none_is_refused(saved, text):
     parts = parts_of(saved)
@@ -180,6 +221,7 @@ def test_another_array_is_refused(saved, array, entry):
 
 def test_altered_predictions_are_refused_and_rounding_is_not(saved, model):
     parts = parts_of(saved)
+    parts["manifest.json"] = without_fingerprint(parts["manifest.json"])
     span = model.limits.highest - model.limits.lowest
     for shift, refused in ((0.5e-9 * span, False), (2e-9 * span, True)):
         parts["arrays/test_predictions.npy"] = npy(model.test_predictions + np.array([0, 0, shift]))

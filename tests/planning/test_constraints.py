@@ -41,6 +41,7 @@ def test_what_a_chemist_writes(text, coefficients, bound):
         ("water / 0 <= 3", "cannot be read as a sum of terms"),
         ("water acetate <= 3", r"two terms without \+ or - between them"),
         ("2 water <= 3", r"two terms without \+ or - between them"),
+        ("water <= 1e400", "1e400 is beyond all numbers"),
         ("water - water <= 3", "says nothing of any component"),
         ("(water) <= 3", r"'\(water\)' is neither a component nor a number"),
     ],

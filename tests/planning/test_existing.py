@@ -40,12 +40,18 @@ def test_columns_of_text_and_sample_numbers_are_no_components(table):
     found = judge_file(table("id;operator;a;b\n1;X;1,5;1\n2;Y;2,5;4\n3;X;0,5;9\n"), decimal=",")
     assert [spread.component for spread in found.components] == ["a", "b"]
     assert found.components[0].highest == 2.5
+    assert found.findings[0].startswith(
+        "Columns taken as components, because they hold numbers: a, b; not taken: id, operator. If that is wrong"
+    )
 
 
 @pytest.mark.parametrize(
     ("text", "error", "message"),
     [
         ("sample,x\n1,p\n2,q\n", FileFormatError, "no column of numbers with '.' as decimal sign"),
+        ("sample,a,b\n1,1,2\n2,,1\n3,4,4\n", FileFormatError, r"t\.csv, line 3: '' in column 'a', which elsewhere"),
+        ("sample,a,b\n1,1,2\n2,nan,1\n3,4,4\n", FileFormatError, "'nan' in column 'a', which elsewhere holds numbers"),
+        ("sample,a,900,902\n1,1,2,3\n2,3,1,4\n3,4,4,4\n", FileFormatError, "headed by numbers .900, 902., as spectra"),
         ("sample,a\n", FileFormatError, "no column of numbers"),
         ("sample,a,b\n1,1\n", FileFormatError, "found 2 cells; expected 3"),
         ("sample,a,b\n1,1,2\n2,2,1\n", NotEnoughDataError, r"2 standard\(s\); at least 3"),

@@ -125,8 +125,18 @@ def test_nothing_is_clipped_at_zero(make_model, new_spectra):
 
 def test_samples_come_in_the_order_read(make_model, new_spectra):
     new = new_spectra(np.array([3.0, 7.0, 5.0]), 2)[[2, 0, 1, 2]]
-    found = predict(make_model(), new)
+    values = new.values.copy()
+    values[3] += 1e-4
+    found = predict(make_model(), replace(new, values=values))
     assert [(row.sample, row.n_spectra) for row in found.predictions] == [("S03", 2), ("S01", 1), ("S02", 1)]
+
+
+def test_a_copy_counts_once(make_model, new_spectra):
+    new, model = new_spectra(np.array([3.0, 7.0]), 2), make_model()
+    [once, other] = predict(model, new).predictions
+    [copied, same] = predict(model, new[[0, 1, 0, 0]]).predictions
+    assert (copied.n_spectra, copied.spread, same) == (1, None, other)
+    assert copied == replace(once, remarks=(*once.remarks, "2 copied spectra left out"))
 
 
 def test_another_axis_only_where_the_recipe_resamples(make_model, new_spectra):

@@ -6,8 +6,11 @@ import numpy as np
 import pytest
 
 from quant.errors import AxisMismatchError, FileFormatError, ParameterError, QuantityError
-from quant.readers.options import ReadingOptions
+from quant.readers.matrix import write_matrix
+from quant.readers.options import HEAD, ReadingOptions
 from quant.readers.read import find_files, read_spectra
+from quant.spectra.axis import SpectralAxis
+from quant.spectra.spectra_set import SpectraSet
 
 
 @pytest.fixture
@@ -105,3 +108,14 @@ def test_quantities_that_differ_name_the_file(folder: Path) -> None:
     (folder / "S3.txt").write_text("nm,%T\n900,70\n902,80\n904,90\n")
     with pytest.raises(QuantityError, match=r"S3\.txt: .*transmittance"):
         read_spectra(folder)
+
+
+def test_a_spectrum_of_very_many_points_is_recognised(tmp_path: Path) -> None:
+    axis = np.linspace(1800.0, 1600.0, 20_001).round(2)
+    written = SpectraSet(np.outer([1.0, 2.0], np.sin(axis)).round(3), SpectralAxis(axis, "cm-1"), ["A", "B"])
+    write_matrix(written, tmp_path / "wide.csv")
+    assert (tmp_path / "wide.csv").read_bytes().index(b"\n") > HEAD  # the header alone is longer
+    for path in (tmp_path / "wide.csv", tmp_path):
+        found = read_spectra(path)
+        assert found.axis == written.axis
+        assert np.array_equal(found.values, written.values)

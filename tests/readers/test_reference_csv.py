@@ -84,6 +84,8 @@ def test_a_sample_comes_once_or_is_averaged(tmp_path: Path) -> None:
     with pytest.raises(SampleMismatchError, match=r'for S1; expected one.*set replicates = "average"'):
         read_text(tmp_path, text)
     table = read_text(tmp_path, text, replicates="average")
+    assert table.lines[0] == 2
+    assert len(table.lines) == len(table)
     assert table.sample_ids == ("S1", "S2")
     assert table.values.tolist() == [[1.5], [5]]
     assert table.determinations.tolist() == [[2], [1]]

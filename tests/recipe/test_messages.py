@@ -34,6 +34,15 @@ def message_of(text: str) -> str:
             '[regression]\nmethod = "band_area"\nbands = [{ range = [1, "2"] }]',
             "a.toml, [regression.bands] number 1: range, entry 2 = '2'; expected a valid number.",
         ),
+        (
+            '[regression]\nmethod = "band_area"\nbands = [{ range = [1] }]',
+            "a.toml, [regression.bands] number 1: range = [1]; expected 2 or more of them, not 1.",
+        ),
+        (
+            '[regression]\nmethod = "band_area"\nbands = [{ range = [1, 2, 3] }]',
+            "a.toml, [regression.bands] number 1: range = [1, 2, 3]; expected 2 of them at most, not 3.",
+        ),
+        ("[[analyte]]\nname = ''", "a.toml, [analyte] number 2: name = ''; expected a text that is not empty."),
         ("[spectra.notes]\nresolution = 4", "a.toml, [spectra.notes]: resolution = 4; expected a valid string."),
         ("[validation]\nsamples = [51]", "a.toml, [validation]: samples, entry 1 = 51; expected a valid string."),
     ],

@@ -26,6 +26,7 @@ def test_one_table_needs_no_analyte():
     ("text", "complaint"),
     [
         (BASE + "[revalidation]\nallowed_bias = 0.0\n", "greater than 0"),
+        (BASE + "[revalidation]\nallowed_bias = inf\n", "allowed_bias = inf; expected a finite number"),
         (BASE + "[revalidation]\nallowed_bais = 0.1\n", "allowed_bias"),
         (BASE + SECOND + "[revalidation]\nallowed_bias = 0.1\n", "without analyte"),
         (BASE + '[revalidation]\nanalyte = "salt"\n', "salt"),

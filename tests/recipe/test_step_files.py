@@ -7,7 +7,9 @@ from quant.errors import AxisMismatchError, FileFormatError, QuantityError, Reci
 from quant.preprocessing.savitzky_golay import savitzky_golay
 from quant.recipe.load import recipe_from_text
 from quant.recipe.pipeline import build_steps
+from quant.recipe.step_files import step_sources
 from quant.spectra.axis import SpectralAxis
+from quant.spectra.provenance import source_of
 
 RECIPE = (
     'title = "t"\n[spectra]\nfiles = ["x"]\n{spectra}\n[reference]\nfile = "x"\n[[analyte]]\nname = "acid"\n{steps}'
@@ -94,3 +96,11 @@ def test_what_does_not_fit(tmp_path):
     write(tmp_path, "cm-1,reflectance", AXIS.values, 0.1 + 0.1 * curve(AXIS.values))
     with pytest.raises(QuantityError, match=r"water\.csv holds reflectance; expected absorbance"):
         build(tmp_path, EMSC)
+
+
+def test_the_files_are_known_by_their_fingerprints(tmp_path):
+    write(tmp_path, "cm-1,absorbance", AXIS.values, curve(AXIS.values))
+    tables = "".join(f"[[preprocessing]]\n{step}\n" for step in (KEEP, EMSC))
+    recipe = recipe_from_text(RECIPE.format(spectra="", steps=tables), name="a.toml", folder=tmp_path)
+    assert step_sources(recipe) == (source_of(tmp_path / "water.csv"),)
+    assert step_sources(recipe_from_text(RECIPE.format(spectra="", steps=""), folder=tmp_path)) == ()

@@ -17,7 +17,9 @@ def no_file(file):
 
 @pytest.mark.parametrize("name", STEPS)
 def test_options_are_the_parameters_but_for_the_axis_and_files_for_spectra(name):
-    step = make_step({"step": name}, PLACE, no_file)
+    given = {"keep_ranges": {"ranges": [[1, 2]]}, "leave_out_ranges": {"ranges": [[1, 2]]}}
+    given["orthogonal_removal"] = {"difference_file": "d.csv"}
+    step = make_step({"step": name, **given.get(name, {})}, PLACE, lambda _: np.ones((1, 3)))
     assert type(step) is STEPS[name]
     options = {file_options(name).get(key, key) for key in step.parameter_names()}
     assert set(options_model(name).model_fields) == options - {"axis"}
@@ -58,6 +60,9 @@ def test_options_arrive():
     [
         ({"step": "snvv"}, "unknown step 'snvv'. Did you mean 'snv'? Steps there are: absorbance, "),
         ({"step": ["snv"]}, "unknown step ['snv']."),
+        ({"step": "keep_ranges"}, "step 'keep_ranges': the key 'ranges' is missing; expected it, since the step does"),
+        ({"step": "leave_out_ranges"}, "the key 'ranges' is missing"),
+        ({"step": "orthogonal_removal"}, "the key 'difference_file' is missing"),
         ({}, "no key 'step'. Steps there are: "),
         ({"step": "savitzky_golay", "windw": 9}, "step 'savitzky_golay': unknown key 'windw'. Did you mean 'window'?"),
         ({"step": "savitzky_golay", "axis": [1, 2]}, "unknown key 'axis'"),

@@ -244,6 +244,14 @@ def test_the_state_is_plain_and_comes_back():
     assert np.array_equal(back.predict(X), model.predict(X))
 
 
+def test_a_band_across_a_cut_is_refused():
+    axis = np.array([1.0, 2, 3, 4, 10, 11, 12])
+    X = np.random.default_rng(1).uniform(0.1, 1, (6, 7))
+    BandArea([{"signal": "area", "range": [1, 4]}], axis=axis).fit(X, X[:, 2])
+    with pytest.raises(ParameterError, match=r"band_area: the band .* meets a gap of the axis"):
+        BandArea([{"signal": "area", "range": [3, 11]}], axis=axis).fit(X, X[:, 2])
+
+
 # scikit-learn's contract.
 
 

@@ -147,6 +147,17 @@ def film_of(**transmittance: float) -> FourierSeries:
     return FourierSeries.of(axis, np.interp(axis, *zip(*places, strict=True)))
 
 
+def test_what_is_hardly_the_film_is_doubted(visit: ModuleType) -> None:
+    words = "hardly that of a polystyrene film"
+    film = visit.film_spectrum(np.random.default_rng(5), AT_4, NOISE)
+    assert words not in " ".join(film_evidence(film).words)
+    shifted = replace(film, axis=SpectralAxis(film.axis.values * 1.001 + 1.5, "cm-1"))  # a badly wrong axis, but a film
+    assert words not in " ".join(film_evidence(shifted).words)
+    light = np.random.default_rng(6).normal(1.0, NOISE, (1, AXIS.values.size))
+    empty = SpectraSet(light, AXIS, ["empty"], "transmittance")
+    assert words in " ".join(film_evidence(empty).words)
+
+
 def test_resolution_limits_as_published() -> None:
     # published-values.md 1.2: 18 %T and 12 %T (found), 0.33 A and 0.08 A (from memory)
     limits = [(c.name, c.limit, c.unit) for c in resolution_checks(film_of(w2870=0.7, w2850=0.5, w1589=0.8, w1583=0.6))]

@@ -151,7 +151,7 @@ def test_one_standard_is_refused(world, shifted):
         revalidate(world.model, shifted.after.select(table.sample_ids[:1]), one)
 
 
-@pytest.mark.parametrize("bound", [0.0, -1.0])
+@pytest.mark.parametrize("bound", [0.0, -1.0, float("inf"), float("nan")])
 def test_bounds_are_above_zero(world, bound):
     with pytest.raises(ParameterError, match="above zero"):
         basis_of(world.model, allowed_bias=bound)

@@ -4,7 +4,7 @@ import numpy as np
 import pytest
 
 from quant.errors import AxisMismatchError, ParameterError
-from quant.spectra.bands import place_bands
+from quant.spectra.bands import place_bands, refuse_gaps
 
 
 def signal(values, axis, *bands, reference=None):
@@ -135,3 +135,29 @@ def test_refuses_an_axis_that_does_not_fit():
     for axis in ([0, 1, 1, 2], [0, 2, 1, 3], [3, 1, 2, 0]):
         with pytest.raises(ParameterError, match="rise or fall throughout"):
             place_bands(None, None, axis, 4)
+
+
+@pytest.mark.parametrize(
+    ("band", "reference", "message"),
+    [
+        ({"signal": "area", "range": [1595, 1605]}, None, None),
+        (
+            {"signal": "area", "range": [1590, 1800]},
+            None,
+            r"the band \(area from 1590 to 1800\) meets a gap",
+        ),
+        ({"signal": "height_at", "position": 1700}, None, "height at 1700"),
+        ({"signal": "height_at", "position": 1600, "baseline": [1590, 1800]}, None, None),
+        ({"signal": "height_at", "position": 1600, "baseline": [1590, 1700]}, None, "the baseline of the band"),
+        ({"signal": "height_at", "position": 1600}, {"signal": "height", "range": [1600, 1805]}, "1600 to 1805"),
+    ],
+)
+@pytest.mark.parametrize("step", [1, -1])
+def test_bands_that_meet_a_gap(band, reference, message, step):
+    axis = np.array([*range(1580, 1611, 5), *range(1790, 1811, 5)], dtype=float)[::step]
+    placed = place_bands([band], reference, axis, axis.size)
+    if message is None:
+        refuse_gaps("band_area", placed)
+    else:
+        with pytest.raises(ParameterError, match=message):
+            refuse_gaps("band_area", placed)

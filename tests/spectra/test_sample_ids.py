@@ -3,7 +3,7 @@
 import pytest
 
 from quant.errors import ParameterError
-from quant.spectra.sample_ids import expand_ids, notes_from_name
+from quant.spectra.sample_ids import expand_ids, notes_from_name, range_hint
 
 
 @pytest.mark.parametrize(
@@ -26,6 +26,20 @@ def test_ranges(items: list[object], expected: list[str]) -> None:
 def test_ranges_that_are_none(item: str) -> None:
     with pytest.raises(ParameterError, match="rising range"):
         expand_ids([item])
+
+
+@pytest.mark.parametrize(
+    ("missing", "hint"),
+    [
+        (["x", "51-60"], " A range of samples is written '51..60'."),
+        (["S08 – S11"], " A range of samples is written 'S08..S11'."),
+        (["K7-N01"], ""),
+        (["2024-1"], ""),
+        ([], ""),
+    ],
+)
+def test_a_range_written_with_a_dash_is_told_how_ranges_are_written(missing: list[str], hint: str) -> None:
+    assert range_hint(missing) == hint
 
 
 def test_named_groups_of_a_file_name() -> None:

@@ -1,10 +1,13 @@
 """Pairing spectra with reference values by sample ID."""
 
+from dataclasses import replace
+
 import numpy as np
 import pytest
 
 from quant.errors import ParameterError, SampleMismatchError
 from quant.spectra.axis import SpectralAxis
+from quant.spectra.provenance import Source
 from quant.spectra.reference_table import Analyte, ReferenceTable
 from quant.spectra.sample_set import NOT_STATED, SampleSet, mean_by_sample, pair_samples
 from quant.spectra.spectra_set import SpectraSet
@@ -78,6 +81,10 @@ def test_missing_values_are_refused_or_kept_as_nan() -> None:
     rows = [[1.0, 2.0], [np.nan, 2.0], [1.0, 2.0]]
     with pytest.raises(SampleMismatchError, match="1 of 3 samples have no reference value of ethanol: B"):
         pair_samples(SPECTRA, reference("ABC", rows))
+    table = reference("ABC", rows)
+    told = replace(table, sources=(Source("values.csv", 1, "0"),), lines=(2, 3, 5))
+    with pytest.raises(SampleMismatchError, match=r"^values\.csv, line 3: 1 of 3 samples have no reference value"):
+        pair_samples(SPECTRA, told)
     kept: SampleSet = pair_samples(SPECTRA, reference("ABC", rows), missing="drop")
     assert np.isnan(kept.analyte("ethanol")[1][0])
 
