@@ -14,6 +14,7 @@ from quant.revalidation.judgements import AdvisoryTest, RemedyRow
 from quant.revalidation.standards import Standards
 from quant.revalidation.standards_state import StandardsEvidence
 from quant.revalidation.verdict import Facts
+from quant.statistics.quantiles import t_quantile
 
 SHARE_OUTSIDE = 0.5  # of the standards outside the model's domain: an unchanged instrument never puts so many there
 
@@ -58,8 +59,16 @@ def gather_facts(
         tests=tests,
         proposed=proposed,
         allowed_sep=basis.allowed_sep,
+        off_before=_off_before(standards, basis.allowed_bias) if standards.paired else None,
         costly=any(abs(change.effect or 0.0) > basis.allowed_bias for change in of_instrument(changes)),
     )
+
+
+def _off_before(standards: Standards, allowed: float) -> float | None:
+    """Mean error of the standards before the visit, where it exceeds what is allowed beyond chance."""
+    errors = standards.before - standards.reference
+    mean, half = float(errors.mean()), t_quantile(0.975, errors.size - 1) * float(errors.std(ddof=1)) / errors.size**0.5
+    return mean if abs(mean) - half > allowed else None
 
 
 def of_instrument(changes: tuple[Change, ...]) -> list[Change]:

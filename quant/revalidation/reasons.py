@@ -30,6 +30,11 @@ def reasons(
     told = [rule.words]
     if facts.standards_in_doubt and rule.verdict == CANNOT_DECIDE:
         told.append("have the standards assayed again, or prepare new ones")
+    if facts.off_before is not None:
+        told.append(
+            f"before the visit already, results lay {facts.off_before:+.3g} {unit} off the reference values: look at "
+            "these, their unit and labels first"
+        )
     told += [*_shown(facts, unit), *_found(facts, outside)]
     if rule.verdict == CANNOT_DECIDE:
         needed = f"{power.needed} standards" if power.needed else "no number of standards up to 200"

@@ -37,6 +37,7 @@ class Facts:
     tests: tuple[AdvisoryTest, ...]
     proposed: RemedyRow | None
     allowed_sep: float
+    off_before: float | None = None  # mean error before the visit, where it was too large already [unit of the analyte]
     costly: bool = False  # a change of the instrument was found that by itself moves results by more than allowed
 
     @property

@@ -83,3 +83,11 @@ def test_a_change_that_moves_results_by_more_than_allowed_is_costly(world):
         assert facts.costly == costly
         assert facts.applies
     assert not gather_facts(standards, basis, NO_LOSS, (), outside=7, proposed=None).applies  # more than half of twelve
+
+
+def test_reference_values_that_never_fitted_are_told(world):
+    standards, basis = world.standards(np.random.default_rng(2)), basis_of(world.model)
+    for factor, told in ((1.0, False), (1000.0, True)):
+        wrong = replace(standards, reference=factor * standards.reference)
+        facts = gather_facts(wrong, basis, NO_LOSS, (), outside=0, proposed=None)
+        assert (facts.off_before is not None) == told
