@@ -121,7 +121,7 @@ def _coefficients(window: int, polynomial: int, derivative: int) -> FloatArray:
     Q, R = np.linalg.qr(basis)
     fit = np.linalg.solve(R, Q.T)  # values in the window -> weights of the basis polynomials
     differentiated = legendre.legder(np.eye(polynomial + 1), derivative, scl=1.0 / half)
-    coefficients: FloatArray = legendre.legval(t, differentiated).T @ fit
+    coefficients = np.asarray(legendre.legval(t, differentiated).T @ fit, dtype=np.float64)
     coefficients.flags.writeable = False
     return coefficients
 

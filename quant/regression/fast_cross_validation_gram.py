@@ -119,8 +119,8 @@ def gram_scores(
     if weight is not None:
         grams = grams * (root[:, None] * root)
     found = ColumnScores(
-        np.zeros((c, len(columns), n_factors + 1, columns.asked.shape[1])),
-        np.zeros((c, len(columns), n_factors + 1)),
+        _by_factor(n_factors + 1, c, len(columns), columns.asked.shape[1]),
+        _by_factor(n_factors + 1, c, len(columns)),
         np.zeros((c, len(columns)), dtype=np.intp),
     )
     y = np.broadcast_to(y, (len(columns), n))
@@ -128,6 +128,11 @@ def gram_scores(
         part = ColumnScores(found.scores[:, block], found.y_loadings[:, block], found.stopped[:, block])
         _fit_block(grams, training[block], root, columns.asked[block], y[block], EPS * sizes / accuracy, part)
     return found
+
+
+def _by_factor(counts: int, c: int, F: int, *slots: int) -> FloatArray:
+    """Return zeros of shape (c, F, counts, *slots), one factor after the other in memory, as they are written."""
+    return np.moveaxis(np.zeros((counts, c, F, *slots)), 0, 2)
 
 
 def weighted_rows(columns: Columns, weight: FloatArray | None) -> tuple[FloatArray, BoolArray]:
@@ -172,34 +177,36 @@ def _fit_block(
     mask = training.astype(np.float64)
     ones, mean, rest = centred_values(mask, root, y)
     places = (asked + n * np.arange(F)[:, None]).ravel()
-    T, u, W, step = scratch("scores", (c, F, counts, n), (c, F, n), (c, F, n), (c, F, n))
-    inverse, S = np.zeros((c, F, counts)), out.scores
+    rows, u, W, step = scratch("scores", (counts, c, F, n), (c, F, n), (c, F, n), (c, F, n))
+    T, inverse, S = rows.transpose(1, 2, 0, 3), _by_factor(counts, c, F), out.scores
     total = np.linalg.norm(mask * root, axis=1)
     T[:, :, 0], inverse[:, :, 0], out.y_loadings[:, :, 0] = ones, 1.0, mean * total
     S[:, :, 0] = root[asked] / total[:, None]  # rows of S are scaled like those of G until the end
     u[:] = rest
     yy = np.vecdot(rest, rest)
-    uu, live = np.broadcast_to(yy, (c, F)), np.broadcast_to(yy > 0, (c, F)).copy()
+    live, uu = np.broadcast_to(yy > 0, (c, F)).copy(), np.broadcast_to(yy, (c, F)).copy()
+    least, rounding = np.square(limit)[:, None], EPS * yy
     for a in range(1, counts):
         np.matmul(u, grams, out=W)
-        raw = np.take(W.reshape(c, F * n), places, axis=1, mode="clip").reshape(c, F, slots)
+        raw = W.reshape(c, F * n).take(places, axis=1, mode="clip").reshape(c, F, slots)
         W *= mask
-        t = T[:, :, a]
-        h, removed = _remove(W, T[:, :, :a], inverse[:, :, :a], step, out=t)
+        t, before = T[:, :, a], T[:, :, :a]
+        h, removed = _remove(W, before, inverse[:, :, :a], step, out=t)
         tt = np.vecdot(t, t)
         if (live & (tt < CANCELLED * removed)).any():
-            h += _remove(t, T[:, :, :a], inverse[:, :, :a], step, out=t)[0]
+            h += _remove(t, before, inverse[:, :, :a], step, out=t)[0]
             tt = np.vecdot(t, t)
-        live &= tt > limit[:, None] ** 2 * uu
+        live &= tt > least * uu
         np.divide(1.0, tt, out=inverse[:, :, a], where=live)
         np.subtract(raw, np.vecmat(h, S[:, :, :a]), out=S[:, :, a])
         if not live.all():
             S[:, :, a][~live] = 0.0
-        share = np.vecdot(t, u) * inverse[:, :, a]
-        out.y_loadings[:, :, a] = share
-        out.stopped[live] = a
+        tu = np.vecdot(t, u)
+        share = np.multiply(tu, inverse[:, :, a], out=out.y_loadings[:, :, a])
         u -= np.multiply(t, share[..., None], out=step)
-        uu = np.maximum(uu - share**2 * tt, EPS * yy)  # ‖u‖², never below what rounding leaves of it
+        uu -= share * tu  # ‖u‖², never below what rounding leaves of it
+        np.maximum(uu, rounding, out=uu)
+    out.stopped[:] = np.count_nonzero(inverse[:, :, 1:], axis=2)
     size = np.sqrt(np.where(inverse > 0, 1.0 / np.where(inverse > 0, inverse, 1.0), 1.0))
     out.y_loadings[:, :, 1:] *= size[:, :, 1:]
     S /= size[..., None]

@@ -16,7 +16,7 @@ from quant.regression.fast_cross_validation_columns import Columns, check_factor
 from quant.regression.fast_cross_validation_gram import ACCURACY, Gram, gram_scores
 from quant.regression.fast_cross_validation_threads import one_blas_thread, scratch
 
-BLOCK_BYTES = 2**22  # of Gram matrices and scores of a block; measured best at n = 100 with 10 folds: 16 candidates
+BLOCK_BYTES = 2**23  # of Gram matrices and scores of a block; measured best at n = 100 with 10 folds: 36 candidates
 
 Candidate: TypeAlias = FloatArray | Gram | Callable[[], FloatArray | Gram]
 
@@ -209,19 +209,22 @@ def _errors(block: Sequence[Candidate], plan: _Plan) -> ManyErrors:
         columns = plan.columns.take(np.tile(np.arange(F), responses)) if responses > 1 else plan.columns
         targets = np.repeat(plan.y, F, axis=0) if responses > 1 else plan.y
         found = gram_scores(grams, columns, targets, plan.n_factors, plan.weight, plan.accuracy, sizes)
-        predicted = found.predicted().reshape(c, responses, F, counts, -1).swapaxes(2, 3)
-        predicted = predicted.reshape(c, responses, counts, -1).take(plan.places, axis=-1)
+        predicted = np.moveaxis(found.predicted(), 2, 0).reshape(counts, c, responses, -1)  # as it lies in memory
+        predicted = predicted.take(plan.places, axis=-1)  # (counts, c, responses, repeats, n)
         reference = plan.y
         if plan.samples is not None:
             predicted, reference = predicted @ _averaging(plan.samples), plan.y @ _averaging(plan.samples)
-        squared = np.mean((predicted - reference[:, None, None]) ** 2, axis=-2)
-        rmsecv = np.sqrt(squared.mean(axis=-1))
-        spread = squared.std(axis=-1, ddof=1) / np.sqrt(squared.shape[-1])
+        error = predicted - reference[:, None]
+        squared = np.square(error, out=error).mean(axis=-2)
+        mean = squared.mean(axis=-1)
+        squared -= mean[..., None]
+        spread = np.sqrt(np.vecdot(squared, squared) / (squared.shape[-1] - 1) / squared.shape[-1])
+        rmsecv = np.sqrt(mean)
         return ManyErrors(
-            rmsecv=rmsecv,
-            rmsecv_se=spread / (2 * np.where(rmsecv > 0, rmsecv, 1.0)),
+            rmsecv=np.moveaxis(rmsecv, 0, -1),
+            rmsecv_se=np.moveaxis(spread / (2 * np.where(rmsecv > 0, rmsecv, 1.0)), 0, -1),
             stopped=found.stopped.reshape(c, responses, F),
-            predicted=predicted.swapaxes(2, 3) if plan.keep_predicted else None,
+            predicted=np.moveaxis(predicted, 0, 3) if plan.keep_predicted else None,
         )
 
 
