@@ -73,7 +73,7 @@ def cross_validate_many(
         Share of a score that may be rounding error before a fold stops; see `gram_scores`. 1e-6 suits a ranking that
         is rescored.
     n_jobs : int
-        Workers, each with one thread of linear algebra; −1: one a core. Through joblib, whose backend may be another.
+        Processes, each with one thread of linear algebra; −1: one a core. Through joblib, whose backend may be another.
     keep_predicted : bool
         Whether to return left-out predictions: these do grow with the number of candidates.
 
@@ -135,10 +135,9 @@ def each_block(
         return
     from joblib import Parallel, delayed  # deferred: start-up
 
-    # Threads by preference: NumPy works outside the interpreter's lock, and no matrix has to be copied.
-    parallel = Parallel(n_jobs=n_jobs, prefer="threads", return_as="generator", pre_dispatch="2*n_jobs", batch_size=1)
-    with one_blas_thread():
-        yield from parallel(delayed(_errors)(block, plan) for block in blocks)
+    # Processes: many small steps in threads would wait for the interpreter's lock. Two blocks a worker are out at once.
+    parallel = Parallel(n_jobs=n_jobs, return_as="generator", pre_dispatch="2*n_jobs", batch_size=1)
+    yield from parallel(delayed(_errors)(block, plan) for block in blocks)
 
 
 @dataclass(frozen=True, kw_only=True)

@@ -166,7 +166,7 @@ def test_candidates_against_scikit_learn_on_one_core(one_core, show):
 
 def test_candidates_against_scikit_learn_on_all_cores(show):
     X, y, fold = spectra(100, 2000)
-    many = [gram(X)] * 512
+    many = [gram(X) for _ in range(512)]  # each in memory of its own, as the workers are sent them
     time_of = seconds(
         {
             "grid search": partial(grid_search, X, y, fold, jobs=-1),
