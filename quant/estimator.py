@@ -7,6 +7,7 @@ Not supported: `set_output` and metadata routing.
 """
 
 import inspect
+from functools import cache
 from typing import Any, ClassVar, Self, TypeVar
 
 import numpy as np
@@ -31,7 +32,7 @@ class Estimator:
     @classmethod
     def parameter_names(cls) -> list[str]:
         """Names of the constructor's parameters, sorted."""
-        return sorted(name for name in inspect.signature(cls).parameters)
+        return list(_parameter_names(cls))  # type: ignore[arg-type]  # mypy asks for the hash of an instance
 
     def get_params(self, deep: bool = True) -> dict[str, Any]:  # noqa: ARG002, FBT001 (the contract's signature)
         """Return the constructor's parameters as they were given."""
@@ -204,6 +205,11 @@ class Regressor(Estimator):
             )
         matrix = self.check_fit(X)
         return matrix, check_target(y, matrix.shape[0])
+
+
+@cache  # a signature takes as long to read as a small step takes to work
+def _parameter_names(estimator: type[Estimator]) -> tuple[str, ...]:
+    return tuple(sorted(inspect.signature(estimator).parameters))
 
 
 def check_spectra(X: ArrayLike, *, allow_nan: bool = False) -> FloatArray:

@@ -69,6 +69,23 @@ def _summed(parts: FloatArray) -> FloatArray:
     return parts
 
 
+def centred_gram(X: FloatArray) -> FloatArray:
+    """Return the inner products of spectra less their mean, which changes no result and keeps digits.
+
+    Parameters
+    ----------
+    X : array of shape (n, k)
+
+    Returns
+    -------
+    array of shape (n, n)
+        [(unit of X)²]
+    """
+    (centred,) = scratch("centred", X.shape)
+    np.subtract(X, X.mean(axis=0), out=centred)
+    return np.asarray(centred @ centred.T)
+
+
 def gram_scores(
     grams: FloatArray,
     columns: Columns,
@@ -82,9 +99,9 @@ def gram_scores(
 
     Parameters
     ----------
-    grams : array of shape (c, n, n)
-        Inner products of the spectra of each candidate, symmetric. Subtract the mean spectrum before forming them: it
-        changes no result and keeps digits. [(unit of X)²]
+    grams : array of shape (c, n, n) or (c, columns, n, n)
+        Inner products of the spectra of each candidate, symmetric, for all columns alike or for each its own; see
+        `centred_gram`. [(unit of X)²]
     columns : Columns
         Training rows and rows asked about.
     y : array of shape (1 or columns, n)
@@ -99,7 +116,7 @@ def gram_scores(
         range of y, and leverages to 5e-9 of themselves, with 1e-8; with 1e-6, to 5e-9 and 4e-7. The laws under tests
         hold predictions to 1e-8 with the default; with 1e-6 one in thousands misses that, which is no harm where
         candidates are only ranked, and very smooth spectra carry more factors: raw meat spectra (Tecator) 18, not 11.
-    size : array of shape (c,), optional
+    size : array of shape (c,) or (c, columns), optional
         Size of what each Gram matrix was worked out from, by default its trace; see `Gram`. [(unit of X)²]
 
     Returns
@@ -113,8 +130,9 @@ def gram_scores(
     .. [2] J. W. Daniel, W. B. Gragg, L. Kaufman, G. W. Stewart, Reorthogonalization and stable algorithms for updating
        the Gram-Schmidt QR factorization, Math. Comp. 30 (1976) 772 (from memory): when to repeat a pass.
     """
-    c, n = grams.shape[:2]
-    sizes = np.einsum("cii->c", grams) if size is None else size
+    c, n = grams.shape[0], grams.shape[-1]
+    sizes = np.einsum("...ii->...", grams) if size is None else size
+    least = np.broadcast_to(np.square(EPS * sizes / accuracy).reshape(c, -1), (c, len(columns)))
     root, training = weighted_rows(columns, weight)
     if weight is not None:
         grams = grams * (root[:, None] * root)
@@ -126,7 +144,8 @@ def gram_scores(
     y = np.broadcast_to(y, (len(columns), n))
     for block in columns.blocks(c * (n_factors + 4) * n * 8, BLOCK_BYTES, least=8):
         part = ColumnScores(found.scores[:, block], found.y_loadings[:, block], found.stopped[:, block])
-        _fit_block(grams, training[block], root, columns.asked[block], y[block], EPS * sizes / accuracy, part)
+        own = grams if grams.ndim == 3 else grams[:, block]
+        _fit_block(own, training[block], root, columns.asked[block], y[block], least[:, block], part)
     return found
 
 
@@ -168,12 +187,12 @@ def _fit_block(
     root: FloatArray,
     asked: IntArray,
     y: FloatArray,
-    limit: FloatArray,
+    least: FloatArray,
     out: ColumnScores,
 ) -> None:
-    """Fill `out`. T holds scores not scaled, within training; `inverse` their 1/(t't); limit: least ‖t‖/‖u‖."""
+    """Fill `out`. T holds scores not scaled, within training; `inverse` their 1/(t't); least: of t't/u'u."""
     c, F, counts, slots = out.scores.shape
-    n = grams.shape[1]
+    n = grams.shape[-1]
     mask = training.astype(np.float64)
     ones, mean, rest = centred_values(mask, root, y)
     places = (asked + n * np.arange(F)[:, None]).ravel()
@@ -185,9 +204,9 @@ def _fit_block(
     u[:] = rest
     yy = np.vecdot(rest, rest)
     live, uu = np.broadcast_to(yy > 0, (c, F)).copy(), np.broadcast_to(yy, (c, F)).copy()
-    least, rounding = np.square(limit)[:, None], EPS * yy
+    rounding = EPS * yy
     for a in range(1, counts):
-        np.matmul(u, grams, out=W)
+        np.matmul(u, grams, out=W) if grams.ndim == 3 else np.matvec(grams, u, out=W)
         raw = W.reshape(c, F * n).take(places, axis=1, mode="clip").reshape(c, F, slots)
         W *= mask
         t, before = T[:, :, a], T[:, :, :a]

@@ -14,7 +14,7 @@ from quant.errors import NotEnoughDataError, ParameterError, SampleMismatchError
 from quant.estimator import check_weights
 from quant.regression.fast_cross_validation_columns import Columns, check_factors, check_samples, fold_columns
 from quant.regression.fast_cross_validation_gram import ACCURACY, Gram, gram_scores
-from quant.regression.fast_cross_validation_threads import one_blas_thread, scratch
+from quant.regression.fast_cross_validation_threads import keep_freed_memory, one_blas_thread, scratch
 
 BLOCK_BYTES = 2**23  # of Gram matrices and scores of a block; measured best at n = 100 with 10 folds: 36 candidates
 
@@ -200,6 +200,7 @@ def _in_blocks(candidates: Iterable[Candidate], size: int) -> Iterator[list[Cand
 
 
 def _errors(block: Sequence[Candidate], plan: _Plan) -> ManyErrors:
+    keep_freed_memory()
     with one_blas_thread():
         responses, n = plan.y.shape
         F, counts = len(plan.columns), plan.n_factors + 1
