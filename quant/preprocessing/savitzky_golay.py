@@ -35,7 +35,7 @@ def window_coefficients(window: int, polynomial: int, derivative: int = 0) -> Fl
     -------
     array of shape (window, window)
         Row i gives the result at point i of the window. The middle row holds the convolution coefficients of [1], the
-        others those for the ends of a spectrum. Derivatives are per point^derivative. Read-only.
+        others those for the ends of a spectrum. Derivatives are per point^derivative.
 
     Raises
     ------
@@ -48,7 +48,13 @@ def window_coefficients(window: int, polynomial: int, derivative: int = 0) -> Fl
     .. [2] P. A. Gorry, Analytical Chemistry 62 (1990) 570-573 (orthogonal polynomials, ends); from memory.
     """
     _check_numbers(window, polynomial, derivative)
-    return _coefficients(index(window), index(polynomial), index(derivative))
+    half = max(window // 2, 1)
+    t = (np.arange(window) - window // 2) / half  # −1 to 1, on which Legendre polynomials keep the fit well-conditioned
+    basis = legendre.legvander(t, polynomial)
+    Q, R = np.linalg.qr(basis)
+    fit = np.linalg.solve(R, Q.T)  # values in the window -> weights of the basis polynomials
+    differentiated = legendre.legder(np.eye(polynomial + 1), derivative, scl=1.0 / half)
+    return np.asarray(legendre.legval(t, differentiated).T @ fit, dtype=np.float64)
 
 
 def savitzky_golay(
@@ -113,23 +119,20 @@ def _check_numbers(window: int, polynomial: int, derivative: int) -> None:
         )
 
 
-@lru_cache(maxsize=64)  # the same few windows are asked for again and again
-def _coefficients(window: int, polynomial: int, derivative: int) -> FloatArray:
-    half = max(window // 2, 1)
-    t = (np.arange(window) - window // 2) / half  # −1 to 1, on which Legendre polynomials keep the fit well-conditioned
-    basis = legendre.legvander(t, polynomial)
-    Q, R = np.linalg.qr(basis)
-    fit = np.linalg.solve(R, Q.T)  # values in the window -> weights of the basis polynomials
-    differentiated = legendre.legder(np.eye(polynomial + 1), derivative, scl=1.0 / half)
-    coefficients = np.asarray(legendre.legval(t, differentiated).T @ fit, dtype=np.float64)
-    coefficients.flags.writeable = False
-    return coefficients
-
-
 def _plan(axis: FloatArray, window: int, polynomial: int, derivative: int) -> tuple[FloatArray, list[slice]]:
     """Return coefficients per axis unit, shape (window, window), and the segments they slide over."""
+    _check_numbers(window, polynomial, derivative)
+    coefficients, runs = _kept_plan(axis.tobytes(), window, polynomial, derivative)
+    return coefficients.copy(), list(runs)
+
+
+@lru_cache(maxsize=64)  # a search fits the same step again and again
+def _kept_plan(
+    axis_bytes: bytes, window: int, polynomial: int, derivative: int
+) -> tuple[FloatArray, tuple[slice, ...]]:
+    axis = np.frombuffer(axis_bytes, dtype=np.float64)
     coefficients = window_coefficients(window, polynomial, derivative)
-    runs = segments(axis)
+    runs = tuple(segments(axis))
     if window == 1:  # the points themselves: no spacing needed
         return coefficients, runs
     short = [run for run in runs if run.stop - run.start < window]

@@ -50,7 +50,7 @@ def snv(spectra: ArrayLike) -> FloatArray:
             f"{flat.size} spectra are flat (standard deviation 0), in row(s) {name_some(flat)} (counted from 0); "
             "expected spectra that vary along the axis. Leave them out, or measure them again."
         )
-    result /= spread[:, np.newaxis]
+    result *= (1.0 / spread)[:, np.newaxis]
     return result
 
 

@@ -75,15 +75,15 @@ def centred_gram(X: FloatArray) -> FloatArray:
     Parameters
     ----------
     X : array of shape (n, k)
+        The mean is subtracted in place: a copy would cost a tenth of the time.
 
     Returns
     -------
     array of shape (n, n)
         [(unit of X)²]
     """
-    (centred,) = scratch("centred", X.shape)
-    np.subtract(X, X.mean(axis=0), out=centred)
-    return np.asarray(centred @ centred.T)
+    X -= X.mean(axis=0)
+    return np.asarray(X @ X.T)
 
 
 def gram_scores(

@@ -2,6 +2,8 @@
 
 from itertools import takewhile
 
+import numpy as np
+
 from quant.arrays import FloatArray
 from quant.preprocessing.chain import fit_chain
 from quant.screening.problem import Problem
@@ -10,15 +12,21 @@ from quant.screening.problem import Problem
 class FirstSteps:
     """Applies the steps of preprocessings up to the first that learns from other spectra.
 
-    What is behind each step of the last preprocessing stays; neighbours in the table of a search often begin alike.
+    What is behind each of them but the last stays: neighbours in the table of a search often begin alike.
 
     Parameters
     ----------
     problem : Problem
+
+    Attributes
+    ----------
+    missing : bool
+        Whether any spectrum lacks points.
     """
 
     def __init__(self, problem: Problem) -> None:
         self.problem = problem
+        self.missing = bool(np.isnan(problem.samples.spectra.values).any())
         self._words: list[str] = []
         self._behind: list[FloatArray] = [problem.samples.spectra.values]
 
@@ -27,12 +35,13 @@ class FirstSteps:
         return len(list(takewhile(lambda step: not step.learns, self.problem.layout(chain).steps)))
 
     def behind(self, chain: int) -> FloatArray:
-        """Return the spectra behind these steps, shape (spectra, points); not to be written to. [any unit]"""
-        number = self.count(chain)
-        words = [repr(table) for table in self.problem.chains[chain].steps[:number]]
-        same = len(list(takewhile(lambda pair: pair[0] == pair[1], zip(words, self._words, strict=False))))
+        """Return the spectra behind these steps, shape (spectra, points), free to be overwritten. [any unit]"""
+        steps = self.problem.layout(chain).steps[: self.count(chain)]
+        words = [repr(table) for table in self.problem.chains[chain].steps[: len(steps)]]
+        same = len(list(takewhile(lambda pair: pair[0] == pair[1], zip(words[:-1], self._words, strict=False))))
         del self._behind[same + 1 :]
-        for step in self.problem.layout(chain).steps[same:number]:
+        for step in steps[same:-1]:
             self._behind.append(fit_chain([step], self._behind[-1])[1])
-        self._words = words
-        return self._behind[-1]
+        self._words = words[:-1]
+        found = fit_chain(steps[-1:], self._behind[-1])[1]
+        return found.copy() if np.may_share_memory(found, self._behind[-1]) else found

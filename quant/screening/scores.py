@@ -29,7 +29,7 @@ class PieceGrams:
     Parameters
     ----------
     X : array of shape (n, k)
-        Behind the preprocessing. Their mean is subtracted here.
+        Behind the preprocessing. Their mean is subtracted here, in place.
     pieces : sequence of slice
         Of points.
     block : int, optional
@@ -39,7 +39,7 @@ class PieceGrams:
     def __init__(self, X: FloatArray, pieces: Sequence[slice], block: int | None) -> None:
         self.all = centred_gram(X)
         self.windows = WindowGrams(X, block) if block is not None else None
-        self.parts = [centred_gram(X[:, piece]) for piece in pieces] if self.windows is None else []
+        self.parts = [X[:, piece] @ X[:, piece].T for piece in pieces] if self.windows is None else []
 
     def gram(self, kept: Kept) -> FloatArray | Gram:
         """Return the Gram matrix of what is kept. [(unit of X)²]"""
@@ -78,7 +78,7 @@ class ChainScores:
         self.spectra = first.behind(chain)
         self.learning = layout.steps[first.count(chain) :]  # and what comes behind
         if not self.learning:
-            self.grams = PieceGrams(self.spectra, self.pieces, self.block)
+            self.grams = PieceGrams(self.spectra, self.pieces, self.block)  # overwrites the spectra
 
     def candidates(self, selections: Sequence[Kept]) -> list[Candidate]:
         """Return the selections with their scores; those that cannot carry the factors asked for are left out."""
@@ -139,7 +139,8 @@ def score_whole(problem: Problem, chains: Sequence[int], first: FirstSteps) -> l
         if chain_learns(layout.steps):
             found += ChainScores(problem, chain, first).candidates([EVERYTHING])
         else:
-            check_missing_points(problem.samples, layout.steps)
+            if first.missing:
+                check_missing_points(problem.samples, layout.steps)
             batches.setdefault(problem.most_factors(layout.axis.size), []).append(chain)
     for most, batch in batches.items():
         rmsecv, se = gram_errors(problem, (partial(whole_gram, first, chain) for chain in batch), most)
