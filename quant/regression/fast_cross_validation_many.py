@@ -58,9 +58,9 @@ def cross_validate_many(
     Parameters
     ----------
     candidates : iterable
-        Of Gram matrices of shape (n, n), plain or as `Gram`, or of functions without arguments that return one (then
-        the worker forms it). Taken only as far as workers are free, so that memory does not grow with their number.
-        Subtract the mean spectrum before forming them. [(unit of X)²]
+        Of Gram matrices of shape (n, n), plain or as `Gram`, or of functions without arguments that return one: then
+        the worker forms it, which costs less than to send it. Taken only as far as workers are free, so that memory
+        does not grow with their number. Subtract the mean spectrum before forming them. [(unit of X)²]
     y : array of shape (n,) or (responses, n)
         Reference values of each spectrum; more rows for more analytes, or for permutations.
     fold_labels : sequence of arrays of shape (n,)
@@ -135,6 +135,7 @@ def each_block(
         return
     from joblib import Parallel, delayed  # deferred: start-up
 
+    keep_freed_memory()
     # Processes: many small steps in threads would wait for the interpreter's lock. Two blocks a worker are out at once.
     parallel = Parallel(n_jobs=n_jobs, return_as="generator", pre_dispatch="2*n_jobs", batch_size=1)
     yield from parallel(delayed(_errors)(block, plan) for block in blocks)
