@@ -1,4 +1,4 @@
-"""RMSECV of many candidates, each a Gram matrix: in blocks that stay in cache, on all cores, in bounded memory."""
+"""RMSECV of many candidates, each a Gram matrix: in blocks, on all cores, in bounded memory."""
 
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass

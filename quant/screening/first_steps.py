@@ -5,6 +5,7 @@ from itertools import takewhile
 import numpy as np
 
 from quant.arrays import FloatArray
+from quant.calibration.cross_validation import check_missing_points
 from quant.preprocessing.chain import fit_chain
 from quant.screening.problem import Problem
 
@@ -17,16 +18,11 @@ class FirstSteps:
     Parameters
     ----------
     problem : Problem
-
-    Attributes
-    ----------
-    missing : bool
-        Whether any spectrum lacks points.
     """
 
     def __init__(self, problem: Problem) -> None:
         self.problem = problem
-        self.missing = bool(np.isnan(problem.samples.spectra.values).any())
+        self._missing = bool(np.isnan(problem.samples.spectra.values).any())
         self._words: list[str] = []
         self._behind: list[FloatArray] = [problem.samples.spectra.values]
 
@@ -35,7 +31,15 @@ class FirstSteps:
         return len(list(takewhile(lambda step: not step.learns, self.problem.layout(chain).steps)))
 
     def behind(self, chain: int) -> FloatArray:
-        """Return the spectra behind these steps, shape (spectra, points), free to be overwritten. [any unit]"""
+        """Return the spectra behind these steps, shape (spectra, points), free to be overwritten. [any unit]
+
+        Raises
+        ------
+        QuantityError
+            Points are missing that no step leaves out first.
+        """
+        if self._missing:
+            check_missing_points(self.problem.samples, self.problem.layout(chain).steps)
         steps = self.problem.layout(chain).steps[: self.count(chain)]
         words = [repr(table) for table in self.problem.chains[chain].steps[: len(steps)]]
         same = len(list(takewhile(lambda pair: pair[0] == pair[1], zip(words[:-1], self._words, strict=False))))

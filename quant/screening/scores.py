@@ -6,7 +6,6 @@ from functools import partial
 import numpy as np
 
 from quant.arrays import BoolArray, FloatArray, IntArray
-from quant.calibration.cross_validation import check_missing_points
 from quant.preprocessing.chain import apply_chain, chain_learns, fit_chain
 from quant.regression.fast_cross_validation_columns import fold_columns
 from quant.regression.fast_cross_validation_gram import Gram, centred_gram, gram_scores
@@ -72,7 +71,6 @@ class ChainScores:
         self.problem, self.chain = problem, chain
         layout = problem.layout(chain)
         self.pieces, self.n_points = layout.pieces, layout.axis.size
-        check_missing_points(problem.samples, layout.steps)
         self.block = problem.table.ranges.block if problem.table.ranges else None
         self.most = problem.most_factors(self.n_points)
         self.spectra = first.behind(chain)
@@ -139,8 +137,6 @@ def score_whole(problem: Problem, chains: Sequence[int], first: FirstSteps) -> l
         if chain_learns(layout.steps):
             found += ChainScores(problem, chain, first).candidates([EVERYTHING])
         else:
-            if first.missing:
-                check_missing_points(problem.samples, layout.steps)
             batches.setdefault(problem.most_factors(layout.axis.size), []).append(chain)
     for most, batch in batches.items():
         rmsecv, se = gram_errors(problem, (partial(whole_gram, first, chain) for chain in batch), most)

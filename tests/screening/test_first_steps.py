@@ -1,7 +1,9 @@
 """First steps of preprocessings: what neighbours share is worked out once, and results are those of the whole chain."""
 
 import numpy as np
+import pytest
 
+from quant.errors import QuantityError
 from quant.preprocessing.chain import fit_chain
 from quant.preprocessing.snv import SNV
 from quant.screening.first_steps import FirstSteps
@@ -39,9 +41,11 @@ def test_what_neighbours_share_is_worked_out_once(make_problem, monkeypatch):
     assert len(calls) == 1
 
 
-def test_missing_points_are_seen(make_problem, make_samples):
-    assert not FirstSteps(make_problem(CHAINS)).missing
+def test_missing_points_are_refused_unless_left_out_first(make_problem, make_samples):
     samples = make_samples()
     samples.spectra.values.flags.writeable = True
-    samples.spectra.values[3, 5] = np.nan
-    assert FirstSteps(make_problem(CHAINS, samples)).missing
+    samples.spectra.values[3, 5] = np.nan  # at 1775 cm-1
+    kept = 'chains = [[{ step = "keep_ranges", ranges = [[1750, 1600]] }, { step = "snv" }]]'
+    assert np.isfinite(FirstSteps(make_problem(kept, samples)).behind(0)).all()
+    with pytest.raises(QuantityError, match="1 of 24 spectra have missing points: S04"):
+        FirstSteps(make_problem(CHAINS, samples)).behind(2)
