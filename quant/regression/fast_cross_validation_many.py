@@ -2,7 +2,7 @@
 
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
-from itertools import islice
+from itertools import chain, islice
 from typing import Any, TypeAlias
 
 import numpy as np
@@ -59,8 +59,8 @@ def cross_validate_many(
     ----------
     candidates : iterable
         Of Gram matrices of shape (n, n), plain or as `Gram`, or of functions without arguments that return one: then
-        the worker forms it, which costs less than to send it. Taken only as far as workers are free, so that memory
-        does not grow with their number. Subtract the mean spectrum before forming them. [(unit of X)²]
+        the worker forms it, and all cores are of use. Taken only as far as workers are free, so that memory does not
+        grow with their number. Subtract the mean spectrum before forming them. [(unit of X)²]
     y : array of shape (n,) or (responses, n)
         Reference values of each spectrum; more rows for more analytes, or for permutations.
     fold_labels : sequence of arrays of shape (n,)
@@ -73,7 +73,8 @@ def cross_validate_many(
         Share of a score that may be rounding error before a fold stops; see `gram_scores`. 1e-6 suits a ranking that
         is rescored.
     n_jobs : int
-        Processes, each with one thread of linear algebra; −1: one a core. Through joblib, whose backend may be another.
+        Workers, each with one thread of linear algebra; −1: one a core. Through joblib: processes for functions,
+        threads for matrices, or a backend chosen outside.
     keep_predicted : bool
         Whether to return left-out predictions: these do grow with the number of candidates.
 
@@ -136,9 +137,13 @@ def each_block(
     from joblib import Parallel, delayed  # deferred: start-up
 
     keep_freed_memory()
-    # Processes: many small steps in threads would wait for the interpreter's lock. Two blocks a worker are out at once.
-    parallel = Parallel(n_jobs=n_jobs, return_as="generator", pre_dispatch="2*n_jobs", batch_size=1)
-    yield from parallel(delayed(_errors)(block, plan) for block in blocks)
+    # Threads wait for the interpreter's lock between their many small steps, so that two do little more than one. But
+    # matrices cost as much to send to another process. Two blocks a worker are out at once, however busy the machine.
+    first = next(blocks, [])
+    prefer = "processes" if first and callable(first[0]) else "threads"
+    parallel = Parallel(n_jobs=n_jobs, prefer=prefer, return_as="generator", pre_dispatch="2*n_jobs", batch_size=1)
+    with one_blas_thread():
+        yield from parallel(delayed(_errors)(block, plan) for block in chain([first], blocks) if block)
 
 
 @dataclass(frozen=True, kw_only=True)

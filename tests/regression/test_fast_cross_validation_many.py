@@ -47,10 +47,13 @@ def test_errors_count_samples_not_spectra(data):
     assert found.rmsecv[0, 0] == pytest.approx(expected, rel=1e-9)
 
 
-def test_any_number_of_workers_gives_the_same(data):
+@pytest.mark.parametrize("given", ["functions", "matrices"])
+def test_any_number_of_workers_gives_the_same(data, given, monkeypatch):
+    monkeypatch.setattr("quant.regression.fast_cross_validation_many.BLOCK_BYTES", 2**17)  # several blocks
     X, y, folds = data
     forms = [partial(gram, X[:, first:]) for first in range(40)]
-    alone, two = (cross_validate_many(forms, y, folds, 3, n_jobs=jobs) for jobs in (1, 2))
+    candidates = forms if given == "functions" else [form() for form in forms]
+    alone, two = (cross_validate_many(candidates, y, folds, 3, n_jobs=jobs) for jobs in (1, 2))
     assert (alone.rmsecv == two.rmsecv).all()
     assert (alone.stopped == two.stopped).all()
     assert (np.diff(alone.rmsecv[:, 0, 3]) != 0).all()
