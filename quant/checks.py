@@ -52,6 +52,8 @@ def as_matrix(name: str, values: ArrayLike) -> FloatArray:
     matrix = np.asarray(values, dtype=np.float64)
     if matrix.ndim != 2:
         raise ParameterError(f"{name} has shape {matrix.shape}; expected a table of numbers, shape (n, k).")
+    if np.isfinite(np.vdot(matrix, matrix)):  # faster; of huge numbers this overflows, and each is looked at
+        return matrix
     bad = np.flatnonzero(~np.isfinite(matrix).all(axis=1))
     if bad.size:
         raise ParameterError(f"{name} holds numbers that are not finite, in row(s) {name_some(bad)} (counted from 0).")

@@ -7,6 +7,7 @@ Not supported: `set_output` and metadata routing.
 """
 
 import inspect
+from functools import cache
 from typing import Any, ClassVar, Self, TypeVar
 
 import numpy as np
@@ -31,7 +32,7 @@ class Estimator:
     @classmethod
     def parameter_names(cls) -> list[str]:
         """Names of the constructor's parameters, sorted."""
-        return sorted(name for name in inspect.signature(cls).parameters)
+        return list(_parameter_names(cls))  # type: ignore[arg-type]  # mypy asks for the hash of an instance
 
     def get_params(self, deep: bool = True) -> dict[str, Any]:  # noqa: ARG002, FBT001 (the contract's signature)
         """Return the constructor's parameters as they were given."""
@@ -208,6 +209,11 @@ class Regressor(Estimator):
         return matrix, check_target(y, matrix.shape[0])
 
 
+@cache  # a signature takes as long to read as a small step takes to work
+def _parameter_names(estimator: type[Estimator]) -> tuple[str, ...]:
+    return tuple(sorted(inspect.signature(estimator).parameters))
+
+
 def check_spectra(X: ArrayLike, *, allow_nan: bool = False) -> FloatArray:
     """Return spectra as float64 of shape (n, k), refusing what scikit-learn's `check_array` refuses, in its words.
 
@@ -304,6 +310,8 @@ def unfitted_copy(estimator: EstimatorType) -> EstimatorType:
 
 
 def _refuse_infinite(name: str, values: FloatArray, *, allow_nan: bool = False) -> None:
+    if np.isfinite(np.vdot(values, values)):  # faster; of huge numbers this overflows, and each is looked at
+        return
     bad = np.isinf(values) if allow_nan else ~np.isfinite(values)
     if not bad.any():
         return

@@ -41,15 +41,16 @@ def snv(spectra: ArrayLike) -> FloatArray:
         raise NotEnoughDataError(
             f"The standard normal variate needs at least two points a spectrum; found n_features = {X.shape[1]}."
         )
-    centred = X - X.mean(axis=1, keepdims=True)
-    spread = np.sqrt((centred**2).sum(axis=1) / (X.shape[1] - 1))
-    flat = np.flatnonzero(vanishes(spread, np.abs(X).max(axis=1)))
+    mean = X.mean(axis=1)
+    result: FloatArray = X - mean[:, np.newaxis]  # the one array of this size: what follows works in place
+    spread = np.sqrt(np.vecdot(result, result) / (X.shape[1] - 1))
+    flat = np.flatnonzero(vanishes(spread, np.abs(mean)))
     if flat.size:
         raise QuantityError(
             f"{flat.size} spectra are flat (standard deviation 0), in row(s) {name_some(flat)} (counted from 0); "
             "expected spectra that vary along the axis. Leave them out, or measure them again."
         )
-    result: FloatArray = centred / spread[:, np.newaxis]
+    result *= (1.0 / spread)[:, np.newaxis]
     return result
 
 

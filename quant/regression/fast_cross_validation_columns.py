@@ -79,18 +79,20 @@ def fold_columns(fold_labels: Sequence[ArrayLike], n_rows: int) -> Columns:
                 f"fold_labels[{repeat}] has shape {labels.shape} and type {labels.dtype}; expected {n_rows} whole "
                 "numbers, one a row of the spectra."
             )
-        for fold in np.unique(labels[labels != NEVER]):
-            training.append((labels != fold) & (labels != NEVER))
-            asked.append(np.flatnonzero((labels == fold) | (labels == NEVER)))
-            repeats.append(repeat)
-    if not training:
+        never = labels == NEVER
+        out = labels == np.unique(labels[~never])[:, None]
+        training.append(~out & ~never)
+        asked.append(out | never)
+        repeats += [repeat] * len(out)
+    if not repeats:
         raise ParameterError("Every fold label is −1, so there is nothing to leave out; label the rows to learn from.")
-    few = [column for column, mask in enumerate(training) if np.count_nonzero(mask) < 2]
-    if few:
+    learnt = np.concatenate(training)
+    few = np.flatnonzero(np.count_nonzero(learnt, axis=1) < 2)
+    if few.size:
         raise ParameterError(
             f"Fold(s) {name_some(few)}, counted from 0, leave fewer than 2 rows to learn from; use more folds."
         )
-    return Columns(np.array(training), *_padded(asked), np.array(repeats, dtype=np.intp))
+    return Columns(learnt, *_padded(np.concatenate(asked)), np.array(repeats, dtype=np.intp))
 
 
 def check_factors(n_factors: object, columns: Columns, weight: FloatArray, n_points: int) -> int:
@@ -143,7 +145,9 @@ def check_samples(sample_index: ArrayLike | None, fold_labels: Sequence[ArrayLik
     return samples.astype(np.intp)
 
 
-def _padded(asked: Sequence[IntArray]) -> tuple[IntArray, BoolArray]:
-    width = max(rows.size for rows in asked)
-    slots = np.array([np.resize(rows, width) for rows in asked], dtype=np.intp)
-    return slots, np.arange(width) < np.array([rows.size for rows in asked])[:, None]
+def _padded(asked: BoolArray) -> tuple[IntArray, BoolArray]:
+    """Return the rows asked about in each column, from a mask of shape (columns, rows), and which slots are real."""
+    counts = np.count_nonzero(asked, axis=1)[:, None]
+    slots = np.arange(counts.max())
+    first = np.cumsum(counts)[:, None] - counts
+    return np.nonzero(asked)[1][first + slots % counts], slots < counts

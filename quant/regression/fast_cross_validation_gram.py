@@ -69,6 +69,23 @@ def _summed(parts: FloatArray) -> FloatArray:
     return parts
 
 
+def centred_gram(X: FloatArray) -> FloatArray:
+    """Return the inner products of spectra less their mean, which changes no result and keeps digits.
+
+    Parameters
+    ----------
+    X : array of shape (n, k)
+        The mean is subtracted in place: a copy would cost a tenth of the time.
+
+    Returns
+    -------
+    array of shape (n, n)
+        [(unit of X)²]
+    """
+    X -= X.mean(axis=0)
+    return np.asarray(X @ X.T)
+
+
 def gram_scores(
     grams: FloatArray,
     columns: Columns,
@@ -82,9 +99,9 @@ def gram_scores(
 
     Parameters
     ----------
-    grams : array of shape (c, n, n)
-        Inner products of the spectra of each candidate, symmetric. Subtract the mean spectrum before forming them: it
-        changes no result and keeps digits. [(unit of X)²]
+    grams : array of shape (c, n, n) or (c, columns, n, n)
+        Inner products of the spectra of each candidate, symmetric, for all columns alike or for each its own; see
+        `centred_gram`. [(unit of X)²]
     columns : Columns
         Training rows and rows asked about.
     y : array of shape (1 or columns, n)
@@ -99,7 +116,7 @@ def gram_scores(
         range of y, and leverages to 5e-9 of themselves, with 1e-8; with 1e-6, to 5e-9 and 4e-7. The laws under tests
         hold predictions to 1e-8 with the default; with 1e-6 one in thousands misses that, which is no harm where
         candidates are only ranked, and very smooth spectra carry more factors: raw meat spectra (Tecator) 18, not 11.
-    size : array of shape (c,), optional
+    size : array of shape (c,) or (c, columns), optional
         Size of what each Gram matrix was worked out from, by default its trace; see `Gram`. [(unit of X)²]
 
     Returns
@@ -113,21 +130,28 @@ def gram_scores(
     .. [2] J. W. Daniel, W. B. Gragg, L. Kaufman, G. W. Stewart, Reorthogonalization and stable algorithms for updating
        the Gram-Schmidt QR factorization, Math. Comp. 30 (1976) 772 (from memory): when to repeat a pass.
     """
-    c, n = grams.shape[:2]
-    sizes = np.einsum("cii->c", grams) if size is None else size
+    c, n = grams.shape[0], grams.shape[-1]
+    sizes = np.einsum("...ii->...", grams) if size is None else size
+    least = np.broadcast_to(np.square(EPS * sizes / accuracy).reshape(c, -1), (c, len(columns)))
     root, training = weighted_rows(columns, weight)
     if weight is not None:
         grams = grams * (root[:, None] * root)
     found = ColumnScores(
-        np.zeros((c, len(columns), n_factors + 1, columns.asked.shape[1])),
-        np.zeros((c, len(columns), n_factors + 1)),
+        _by_factor(n_factors + 1, c, len(columns), columns.asked.shape[1]),
+        _by_factor(n_factors + 1, c, len(columns)),
         np.zeros((c, len(columns)), dtype=np.intp),
     )
     y = np.broadcast_to(y, (len(columns), n))
     for block in columns.blocks(c * (n_factors + 4) * n * 8, BLOCK_BYTES, least=8):
         part = ColumnScores(found.scores[:, block], found.y_loadings[:, block], found.stopped[:, block])
-        _fit_block(grams, training[block], root, columns.asked[block], y[block], EPS * sizes / accuracy, part)
+        own = grams if grams.ndim == 3 else grams[:, block]
+        _fit_block(own, training[block], root, columns.asked[block], y[block], least[:, block], part)
     return found
+
+
+def _by_factor(counts: int, c: int, F: int, *slots: int) -> FloatArray:
+    """Return zeros of shape (c, F, counts, *slots), one factor after the other in memory, as they are written."""
+    return np.moveaxis(np.zeros((counts, c, F, *slots)), 0, 2)
 
 
 def weighted_rows(columns: Columns, weight: FloatArray | None) -> tuple[FloatArray, BoolArray]:
@@ -163,43 +187,45 @@ def _fit_block(
     root: FloatArray,
     asked: IntArray,
     y: FloatArray,
-    limit: FloatArray,
+    least: FloatArray,
     out: ColumnScores,
 ) -> None:
-    """Fill `out`. T holds scores not scaled, within training; `inverse` their 1/(t't); limit: least ‖t‖/‖u‖."""
+    """Fill `out`. T holds scores not scaled, within training; `inverse` their 1/(t't); least: of t't/u'u."""
     c, F, counts, slots = out.scores.shape
-    n = grams.shape[1]
+    n = grams.shape[-1]
     mask = training.astype(np.float64)
     ones, mean, rest = centred_values(mask, root, y)
     places = (asked + n * np.arange(F)[:, None]).ravel()
-    T, u, W, step = scratch("scores", (c, F, counts, n), (c, F, n), (c, F, n), (c, F, n))
-    inverse, S = np.zeros((c, F, counts)), out.scores
+    rows, u, W, step = scratch("scores", (counts, c, F, n), (c, F, n), (c, F, n), (c, F, n))
+    T, inverse, S = rows.transpose(1, 2, 0, 3), _by_factor(counts, c, F), out.scores
     total = np.linalg.norm(mask * root, axis=1)
     T[:, :, 0], inverse[:, :, 0], out.y_loadings[:, :, 0] = ones, 1.0, mean * total
     S[:, :, 0] = root[asked] / total[:, None]  # rows of S are scaled like those of G until the end
     u[:] = rest
     yy = np.vecdot(rest, rest)
-    uu, live = np.broadcast_to(yy, (c, F)), np.broadcast_to(yy > 0, (c, F)).copy()
+    live, uu = np.broadcast_to(yy > 0, (c, F)).copy(), np.broadcast_to(yy, (c, F)).copy()
+    rounding = EPS * yy
     for a in range(1, counts):
-        np.matmul(u, grams, out=W)
-        raw = np.take(W.reshape(c, F * n), places, axis=1, mode="clip").reshape(c, F, slots)
+        np.matmul(u, grams, out=W) if grams.ndim == 3 else np.matvec(grams, u, out=W)
+        raw = W.reshape(c, F * n).take(places, axis=1, mode="clip").reshape(c, F, slots)
         W *= mask
-        t = T[:, :, a]
-        h, removed = _remove(W, T[:, :, :a], inverse[:, :, :a], step, out=t)
+        t, before = T[:, :, a], T[:, :, :a]
+        h, removed = _remove(W, before, inverse[:, :, :a], step, out=t)
         tt = np.vecdot(t, t)
         if (live & (tt < CANCELLED * removed)).any():
-            h += _remove(t, T[:, :, :a], inverse[:, :, :a], step, out=t)[0]
+            h += _remove(t, before, inverse[:, :, :a], step, out=t)[0]
             tt = np.vecdot(t, t)
-        live &= tt > limit[:, None] ** 2 * uu
+        live &= tt > least * uu
         np.divide(1.0, tt, out=inverse[:, :, a], where=live)
         np.subtract(raw, np.vecmat(h, S[:, :, :a]), out=S[:, :, a])
         if not live.all():
             S[:, :, a][~live] = 0.0
-        share = np.vecdot(t, u) * inverse[:, :, a]
-        out.y_loadings[:, :, a] = share
-        out.stopped[live] = a
+        tu = np.vecdot(t, u)
+        share = np.multiply(tu, inverse[:, :, a], out=out.y_loadings[:, :, a])
         u -= np.multiply(t, share[..., None], out=step)
-        uu = np.maximum(uu - share**2 * tt, EPS * yy)  # ‖u‖², never below what rounding leaves of it
+        uu -= share * tu  # ‖u‖², never below what rounding leaves of it
+        np.maximum(uu, rounding, out=uu)
+    out.stopped[:] = np.count_nonzero(inverse[:, :, 1:], axis=2)
     size = np.sqrt(np.where(inverse > 0, 1.0 / np.where(inverse > 0, inverse, 1.0), 1.0))
     out.y_loadings[:, :, 1:] *= size[:, :, 1:]
     S /= size[..., None]

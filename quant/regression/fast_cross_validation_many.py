@@ -1,8 +1,8 @@
-"""RMSECV of many candidates, each a Gram matrix: in blocks that stay in cache, on all cores, in bounded memory."""
+"""RMSECV of many candidates, each a Gram matrix: in blocks, on all cores, in bounded memory."""
 
 from collections.abc import Callable, Iterable, Iterator, Sequence
 from dataclasses import dataclass
-from itertools import islice
+from itertools import chain, islice
 from typing import Any, TypeAlias
 
 import numpy as np
@@ -14,9 +14,9 @@ from quant.errors import NotEnoughDataError, ParameterError, SampleMismatchError
 from quant.estimator import check_weights
 from quant.regression.fast_cross_validation_columns import Columns, check_factors, check_samples, fold_columns
 from quant.regression.fast_cross_validation_gram import ACCURACY, Gram, gram_scores
-from quant.regression.fast_cross_validation_threads import one_blas_thread, scratch
+from quant.regression.fast_cross_validation_threads import keep_freed_memory, one_blas_thread, scratch
 
-BLOCK_BYTES = 2**22  # of Gram matrices and scores of a block; measured best at n = 100 with 10 folds: 16 candidates
+BLOCK_BYTES = 2**23  # of Gram matrices and scores of a block; measured best at n = 100 with 10 folds: 36 candidates
 
 Candidate: TypeAlias = FloatArray | Gram | Callable[[], FloatArray | Gram]
 
@@ -58,9 +58,9 @@ def cross_validate_many(
     Parameters
     ----------
     candidates : iterable
-        Of Gram matrices of shape (n, n), plain or as `Gram`, or of functions without arguments that return one (then
-        the worker forms it). Taken only as far as workers are free, so that memory does not grow with their number.
-        Subtract the mean spectrum before forming them. [(unit of X)²]
+        Of Gram matrices of shape (n, n), plain or as `Gram`, or of functions without arguments that return one: then
+        the worker forms it, and all cores are of use. Taken only as far as workers are free, so that memory does not
+        grow with their number. Subtract the mean spectrum before forming them. [(unit of X)²]
     y : array of shape (n,) or (responses, n)
         Reference values of each spectrum; more rows for more analytes, or for permutations.
     fold_labels : sequence of arrays of shape (n,)
@@ -73,7 +73,8 @@ def cross_validate_many(
         Share of a score that may be rounding error before a fold stops; see `gram_scores`. 1e-6 suits a ranking that
         is rescored.
     n_jobs : int
-        Workers, each with one thread of linear algebra; −1: one a core. Through joblib, whose backend may be another.
+        Workers, each with one thread of linear algebra; −1: one a core. Through joblib: processes for functions,
+        threads for matrices, or a backend chosen outside.
     keep_predicted : bool
         Whether to return left-out predictions: these do grow with the number of candidates.
 
@@ -135,10 +136,14 @@ def each_block(
         return
     from joblib import Parallel, delayed  # deferred: start-up
 
-    # Threads by preference: NumPy works outside the interpreter's lock, and no matrix has to be copied.
-    parallel = Parallel(n_jobs=n_jobs, prefer="threads", return_as="generator", pre_dispatch="2*n_jobs", batch_size=1)
+    keep_freed_memory()
+    # Threads wait for the interpreter's lock between their many small steps, so that two do little more than one. But
+    # matrices cost as much to send to another process. Two blocks a worker are out at once, however busy the machine.
+    first = next(blocks, [])
+    prefer = "processes" if first and callable(first[0]) else "threads"
+    parallel = Parallel(n_jobs=n_jobs, prefer=prefer, return_as="generator", pre_dispatch="2*n_jobs", batch_size=1)
     with one_blas_thread():
-        yield from parallel(delayed(_errors)(block, plan) for block in blocks)
+        yield from parallel(delayed(_errors)(block, plan) for block in chain([first], blocks) if block)
 
 
 @dataclass(frozen=True, kw_only=True)
@@ -201,6 +206,7 @@ def _in_blocks(candidates: Iterable[Candidate], size: int) -> Iterator[list[Cand
 
 
 def _errors(block: Sequence[Candidate], plan: _Plan) -> ManyErrors:
+    keep_freed_memory()
     with one_blas_thread():
         responses, n = plan.y.shape
         F, counts = len(plan.columns), plan.n_factors + 1
@@ -209,19 +215,22 @@ def _errors(block: Sequence[Candidate], plan: _Plan) -> ManyErrors:
         columns = plan.columns.take(np.tile(np.arange(F), responses)) if responses > 1 else plan.columns
         targets = np.repeat(plan.y, F, axis=0) if responses > 1 else plan.y
         found = gram_scores(grams, columns, targets, plan.n_factors, plan.weight, plan.accuracy, sizes)
-        predicted = found.predicted().reshape(c, responses, F, counts, -1).swapaxes(2, 3)
-        predicted = predicted.reshape(c, responses, counts, -1).take(plan.places, axis=-1)
+        predicted = np.moveaxis(found.predicted(), 2, 0).reshape(counts, c, responses, -1)  # as it lies in memory
+        predicted = predicted.take(plan.places, axis=-1)  # (counts, c, responses, repeats, n)
         reference = plan.y
         if plan.samples is not None:
             predicted, reference = predicted @ _averaging(plan.samples), plan.y @ _averaging(plan.samples)
-        squared = np.mean((predicted - reference[:, None, None]) ** 2, axis=-2)
-        rmsecv = np.sqrt(squared.mean(axis=-1))
-        spread = squared.std(axis=-1, ddof=1) / np.sqrt(squared.shape[-1])
+        error = predicted - reference[:, None]
+        squared = np.square(error, out=error).mean(axis=-2)
+        mean = squared.mean(axis=-1)
+        squared -= mean[..., None]
+        spread = np.sqrt(np.vecdot(squared, squared) / (squared.shape[-1] - 1) / squared.shape[-1])
+        rmsecv = np.sqrt(mean)
         return ManyErrors(
-            rmsecv=rmsecv,
-            rmsecv_se=spread / (2 * np.where(rmsecv > 0, rmsecv, 1.0)),
+            rmsecv=np.moveaxis(rmsecv, 0, -1),
+            rmsecv_se=np.moveaxis(spread / (2 * np.where(rmsecv > 0, rmsecv, 1.0)), 0, -1),
             stopped=found.stopped.reshape(c, responses, F),
-            predicted=predicted.swapaxes(2, 3) if plan.keep_predicted else None,
+            predicted=np.moveaxis(predicted, 0, 3) if plan.keep_predicted else None,
         )
 
 

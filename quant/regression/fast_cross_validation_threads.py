@@ -14,7 +14,19 @@ import numpy as np
 
 from quant.arrays import FloatArray
 
+LARGEST_BLOCK = 31 * 2**20  # bytes, see `keep_freed_memory`
 KEPT_BYTES = 2**24  # of working memory of each kind, by each thread
+
+
+@cache  # once is enough
+def keep_freed_memory() -> None:
+    """Let freed arrays be used again: pages fresh from the system cost more than preprocessing a set of spectra.
+
+    The C library of Linux gives freed memory back where a block, or twice as much at the end, is larger than the
+    largest it was ever given to free, up to 32 MB. So it is given one, that nobody writes to. Elsewhere, and where the
+    environment sets MALLOC_TRIM_THRESHOLD_, as on Dask's workers: no effect.
+    """
+    np.empty(LARGEST_BLOCK, dtype=np.uint8)
 
 
 @contextmanager

@@ -1,6 +1,6 @@
 """What a search works on, and the recipes of its candidates."""
 
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from functools import cached_property
 
 import numpy as np
@@ -8,6 +8,7 @@ import numpy as np
 from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.calibration.cross_validation import factor_limit
 from quant.calibration.folds import BATCH, FEWEST_BATCHES, Folds, groups_together, make_folds
+from quant.estimator import Step
 from quant.recipe.pipeline import axis_behind, build_steps
 from quant.recipe.schema import Recipe
 from quant.recipe.screen_schema import ScreenTable
@@ -49,6 +50,15 @@ class Candidate:
         return self.rmsecv, self.chain, tuple(self.kept)
 
 
+@dataclass(frozen=True)
+class Layout:
+    """One preprocessing: its steps, not fitted, the axis values behind them, and the pieces to choose from."""
+
+    steps: list[Step]
+    axis: FloatArray  # before ranges are cut [axis unit]
+    pieces: tuple[slice, ...]
+
+
 @dataclass(frozen=True, eq=False)
 class Problem:
     """Samples, the analyte and the recipe with its table [screen]; what follows from them is worked out when needed."""
@@ -56,6 +66,7 @@ class Problem:
     samples: SampleSet
     recipe: Recipe
     analyte: str
+    layouts: dict[int, Layout] = field(default_factory=dict)  # by preprocessing; parts of a problem share them
 
     @cached_property
     def table(self) -> ScreenTable:
@@ -87,26 +98,19 @@ class Problem:
             note = BATCH if all(batches) and len(set(batches)) >= FEWEST_BATCHES else None
         return groups_together(self.samples, note, duplicates=table.duplicates_together)
 
-    @cached_property
-    def _axes(self) -> dict[int, tuple[FloatArray, tuple[slice, ...]]]:
-        return {}
-
-    def layout(self, chain: int) -> tuple[FloatArray, tuple[slice, ...]]:
-        """Axis values behind a preprocessing, before ranges are cut, and the pieces to choose from. [axis unit]"""
-        if chain not in self._axes:
+    def layout(self, chain: int) -> Layout:
+        """Return the steps of a preprocessing, and the axis behind it."""
+        if chain not in self.layouts:
             spectra = self.samples.spectra
-            axis = axis_behind(build_steps(self.chain_recipe(chain), spectra.axis, spectra.quantity), spectra.axis)
-            self._axes[chain] = axis, pieces_of(self.table.ranges, axis)
-        return self._axes[chain]
-
-    def chain_recipe(self, chain: int) -> Recipe:
-        """Return the recipe with one preprocessing, keeping all points."""
-        return self._recipe(list(self.chains[chain].steps))
+            steps = build_steps(self._recipe(list(self.chains[chain].steps)), spectra.axis, spectra.quantity)
+            axis = axis_behind(steps, spectra.axis)
+            self.layouts[chain] = Layout(steps, axis, pieces_of(self.table.ranges, axis))
+        return self.layouts[chain]
 
     def ranges(self, candidate: Candidate) -> tuple[tuple[float, float], ...]:
         """Return the ranges a candidate keeps; empty: all points. [axis unit]"""
-        axis, pieces = self.layout(candidate.chain)
-        return ranges_kept(pieces, candidate.kept, axis)
+        layout = self.layout(candidate.chain)
+        return ranges_kept(layout.pieces, candidate.kept, layout.axis)
 
     def candidate_recipe(self, candidate: Candidate) -> Recipe:
         """Return a candidate as a recipe of its own: its steps, its ranges, and no more factors than it can carry."""
@@ -129,20 +133,20 @@ class Problem:
         samples = self.samples.subset(kept)
         folds = make_folds(samples, self.recipe.cross_validation)
         smallest = min(int(labels.size - np.bincount(labels).max()) for labels in folds.repeats)
-        return Problem(samples, capped(self.recipe, smallest - 1), self.analyte)
+        return Problem(samples, capped(self.recipe, smallest - 1), self.analyte, self.layouts)
 
     def with_values(self, values: FloatArray) -> "Problem":
         """Return the same search for other reference values of the analyte, shape (n_samples,)."""
         every = self.samples.values.copy()
         every[:, [one.name for one in self.samples.analytes].index(self.analyte)] = values
-        return Problem(replace(self.samples, values=every), self.recipe, self.analyte)
+        return Problem(replace(self.samples, values=every), self.recipe, self.analyte, self.layouts)
 
 
 def measure(problem: Problem, chain: int, kept: Kept) -> tuple[int, int, int]:
     """Return points, ranges (a window is one, so is everything; else intervals) and steps of a selection."""
-    axis, pieces = problem.layout(chain)
+    layout = problem.layout(chain)
     n_ranges = len(kept) if isinstance(kept, tuple) and kept else 1
-    return points_kept(pieces, kept, axis.size), n_ranges, len(problem.chains[chain].steps)
+    return points_kept(layout.pieces, kept, layout.axis.size), n_ranges, len(problem.chains[chain].steps)
 
 
 def capped(recipe: Recipe, most: int) -> Recipe:

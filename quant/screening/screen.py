@@ -158,7 +158,7 @@ def _windows(problem: Problem, found: Search) -> WindowMap | None:
     ranges, chain = problem.table.ranges, found.winner.candidate.chain
     if ranges is None or ranges.block is None:
         return None
-    edges = window_edges(problem.layout(chain)[0], ranges.block)
+    edges = window_edges(problem.layout(chain).axis, ranges.block)
     own = [one for one in found.candidates if one.chain == chain]
     ends = [(one.kept[0], one.kept[-1] + 1) if one.kept else (0, edges.size - 1) for one in own]
     return WindowMap(

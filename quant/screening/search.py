@@ -9,20 +9,22 @@ import numpy as np
 from quant.arrays import FloatArray
 from quant.calibration.cross_validation import cross_validate
 from quant.errors import ParameterError
+from quant.screening.first_steps import FirstSteps
 from quant.screening.forward_backward import forward_backward
 from quant.screening.pieces import Kept, count_of, selections
 from quant.screening.problem import Candidate, Problem
-from quant.screening.scores import ChainScores
+from quant.screening.scores import ChainScores, score_whole
 from quant.screening.work import Workers
 
 CHUNK = 512  # selections a task: long enough that forming running sums anew costs little
+CHAINS = 16  # preprocessings a task where all points are kept: enough for a batch, and for workers to share them out
 
 
 @dataclass(frozen=True)
 class Task:
-    """Selections of one preprocessing to score, or a search for them (none given) with a budget."""
+    """All points behind some preprocessings; else, behind one, selections to score, or a search with a budget."""
 
-    chain: int
+    chains: tuple[int, ...]
     selections: tuple[Kept, ...]
     budget: int
 
@@ -58,31 +60,34 @@ def tasks_of(problem: Problem, chains: Sequence[int] | None = None) -> tuple[lis
     """
     table, wanted = problem.table, range(len(problem.chains)) if chains is None else chains
     ranges = table.ranges
-    pieces = {chain: len(problem.layout(chain)[1]) for chain in wanted}
+    pieces = {chain: len(problem.layout(chain).pieces) for chain in wanted}
     possible = sum(count_of(ranges, pieces[chain]) for chain in wanted)
     share = max(1, table.budget // max(len(problem.chains), 1))
     if len(wanted) > table.budget:  # even all points are too many candidates
         rng = np.random.default_rng([table.seed, 1])
         wanted = sorted(rng.choice(list(wanted), table.budget, replace=False).tolist())
+    if ranges is None:
+        return [Task(tuple(wanted[i : i + CHAINS]), (), 0) for i in range(0, len(wanted), CHAINS)], possible
     tasks = []
     for chain in wanted:
-        if ranges is not None and ranges.search == "forward_backward":
-            tasks.append(Task(chain, (), share))
+        if ranges.search == "forward_backward":
+            tasks.append(Task((chain,), (), share))
             continue
         most = possible if possible <= table.budget else share
         kept = selections(ranges, pieces[chain], most, (table.seed, 2, chain))
-        tasks += [Task(chain, tuple(kept[first : first + CHUNK]), 0) for first in range(0, len(kept), CHUNK)]
+        tasks += [Task((chain,), tuple(kept[first : first + CHUNK]), 0) for first in range(0, len(kept), CHUNK)]
     return tasks, possible
 
 
 def run_task(problem: Problem, task: Task) -> list[Candidate]:
     """Score the candidates of one piece of work."""
-    scores = ChainScores(problem, task.chain)
+    ranges, first = problem.table.ranges, FirstSteps(problem)
+    if ranges is None:
+        return score_whole(problem, task.chains, first)
+    scores = ChainScores(problem, task.chains[0], first)
     if task.selections:
         return scores.candidates(task.selections)
-    ranges = problem.table.ranges
-    most = ranges.most if ranges is not None else 1
-    return forward_backward(scores.candidates, len(scores.pieces), most, task.budget)
+    return forward_backward(scores.candidates, len(scores.pieces), ranges.most, task.budget)
 
 
 def score_all(

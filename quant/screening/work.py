@@ -10,7 +10,7 @@ from typing import Any, TypeVar
 from joblib import Parallel, delayed, parallel_config
 
 from quant.errors import ParameterError, UsageError
-from quant.regression.fast_cross_validation_threads import one_blas_thread
+from quant.regression.fast_cross_validation_threads import keep_freed_memory, one_blas_thread
 
 Task = TypeVar("Task")
 Found = TypeVar("Found")
@@ -61,6 +61,7 @@ class Workers:
 
 
 def _alone(function: Callable[[Task], Found], task: Task) -> Found:
+    keep_freed_memory()
     with one_blas_thread():
         return function(task)
 

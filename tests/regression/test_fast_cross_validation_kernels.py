@@ -1,5 +1,10 @@
 """The kernels below fast cross-validation: columns, Gram matrices, rotated spectra, cross-products, threads."""
 
+import os
+import platform
+import subprocess
+import sys
+
 import numpy as np
 import pytest
 from threadpoolctl import threadpool_info, threadpool_limits
@@ -83,6 +88,49 @@ def test_a_score_that_cancels_is_made_orthogonal_again(data, monkeypatch):
     model = PLS(10).fit(X[fold != 1], y[fold != 1])
     last = found.stopped[0, 1]
     assert found.predicted()[0, 1, : last + 1] == pytest.approx(model.predict_each(X[fold == 1])[: last + 1], abs=1e-9)
+
+
+def test_a_gram_matrix_for_every_column(data):
+    X, y, columns = data
+    others = [X, X[:, :7], X[:, 2:]]  # as where a step learns in every fold
+    grams = np.stack([gram_kernel.centred_gram(part.copy()) for part in others])
+    found = gram_kernel.gram_scores(grams[None], columns, y[None], 4)
+    for number, part in enumerate(grams):
+        alone = gram_kernel.gram_scores(part[None], columns.take(np.array([number])), y[None], 4)
+        assert found.predicted()[0, number] == pytest.approx(alone.predicted()[0, 0], rel=1e-10)
+        assert found.stopped[0, number] == alone.stopped[0, 0]
+
+
+def test_a_mean_spectrum_is_taken_out_of_a_gram_matrix():
+    X = 1e3 + np.random.default_rng(44).standard_normal((6, 40))
+    centred = X - X.mean(axis=0)
+    assert gram_kernel.centred_gram(X) == pytest.approx(centred @ centred.T, rel=1e-12)
+    np.testing.assert_allclose(X, centred)
+
+
+@pytest.mark.skipif(
+    platform.libc_ver()[0] != "glibc", reason="other C libraries keep freed memory by rules of their own"
+)
+def test_freed_memory_is_used_again():
+    script = """
+import resource, numpy as np
+from quant.regression.fast_cross_validation_threads import keep_freed_memory
+def faults():
+    before = resource.getrusage(resource.RUSAGE_SELF).ru_minflt
+    for _ in range(50):
+        parts = [np.ones(200_000) for _ in range(4)]
+        del parts
+    return resource.getrusage(resource.RUSAGE_SELF).ru_minflt - before
+first = faults()
+keep_freed_memory()
+faults()
+print(first, faults())
+"""
+    own = {name: value for name, value in os.environ.items() if not name.startswith("MALLOC_")}  # Dask sets some
+    done = subprocess.run([sys.executable, "-c", script], env=own, capture_output=True, check=True)
+    before, after = map(int, done.stdout.split())
+    assert before > 10_000  # 50 times four arrays of 400 pages, most of them fresh: else there is nothing to mend
+    assert after < 100
 
 
 def test_rotation_keeps_all_inner_products():

@@ -66,6 +66,7 @@ def test_half_a_search_is_none(make_problem, monkeypatch):
         return run_task(problem, task)
 
     monkeypatch.setattr("quant.screening.search.run_task", task)
+    monkeypatch.setattr("quant.screening.search.CHAINS", 1)  # a task for each chain
     chance, interrupted = chance_level(problem, found.winner.candidate, found.candidates, Workers())
     assert interrupted
     assert chance.lowest.size == 1

@@ -3,6 +3,7 @@
 import numpy as np
 import pytest
 
+from quant.screening.first_steps import FirstSteps
 from quant.screening.scores import ChainScores, PieceGrams, choose
 from quant.screening.search import refit, run_task, tasks_of
 from quant.statistics.factor_rules import RULES
@@ -32,10 +33,11 @@ def test_gram_scores_equal_refitting(make_problem, make_samples, ranges, replica
 
 def test_a_learning_step_applied_once_would_score_otherwise(make_problem):
     # Known-bad control of the test above: MSC fitted to all samples is another, too good, method.
-    scores = ChainScores(make_problem('chains = [[{ step = "msc" }]]'), 0)
+    problem = make_problem('chains = [[{ step = "msc" }]]')
+    scores = ChainScores(problem, 0, FirstSteps(problem))
     honest = scores.errors([()])[0]
-    scores.learns = False
-    processed = scores.steps[0].fit_transform(scores.problem.samples.spectra.values)
+    processed = scores.learning[0].fit_transform(problem.samples.spectra.values)
+    scores.learning = []
     scores.grams = PieceGrams(processed, [], None)
     assert np.abs(scores.errors([()])[0] - honest).max() > 1e-6
 
