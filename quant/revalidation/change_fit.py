@@ -6,7 +6,7 @@ from dataclasses import dataclass
 import numpy as np
 
 from quant.arrays import FloatArray
-from quant.revalidation.change_terms import RESOLUTION, VAPOUR, Ground, blurred, changed, largest_sizes, terms
+from quant.revalidation.change_terms import RESOLUTION, Ground, blurred, changed, largest_sizes, terms
 
 ROUNDS = 3  # Gauss-Newton steps from nothing
 ROUNDS_ON = 2  # steps from an earlier fit, or where little can have changed
@@ -183,21 +183,3 @@ def robust_weights(ground: Ground, rest: FloatArray, weights: FloatArray) -> Flo
     z = rest.mean(axis=0) * np.sqrt(weights)
     scale = 1.4826 * float(np.median(np.abs(z[ground.used])))
     return np.asarray(weights / (1.0 + (z / (NEW_BAND * scale)) ** 2)) if scale > 0 else weights
-
-
-def vapour_heights(ground: Ground, rows: FloatArray, directions: FloatArray, weights: FloatArray) -> FloatArray:
-    """Return the vapour in each of several spectra against their mean, shape (n_spectra,). [absorbance]
-
-    Parameters
-    ----------
-    ground : Ground
-    rows : array of shape (n_spectra, n_points)
-        Measured under the same conditions. [absorbance]
-    directions : array of shape (n_directions, n_points)
-        How spectra differ by composition.
-    weights : array of shape (n_points,)
-        Of the squared residuals.
-    """
-    middle = np.broadcast_to(rows.mean(axis=0), rows.shape)
-    fit = fit_changes(ground, middle, rows, ground.kinds, directions, weights, rounds=ROUNDS_ON)
-    return fit.sizes[:, fit.kinds.index(VAPOUR)]

@@ -65,11 +65,12 @@ def spread_p(before: FloatArray, after: FloatArray) -> float:
 
     Parameters
     ----------
-    before, after : arrays of shape (n_before,), (n_after,)
-        Two at least, normally distributed.
+    before, after : arrays of shape (n_before,), (n_after,), or with a column for each part
+        Two rows at least, normally distributed. Variances of parts add up; degrees of freedom are counted as if one
+        part made up all of it, which errs towards chance.
     """
-    first, second = float(before.var(ddof=1)), float(after.var(ddof=1))
+    first, second = (float(np.sum(rows.var(axis=0, ddof=1))) for rows in (before, after))
     if first <= 0 or second <= 0:
         return float(first == second)
-    above = float(special.fdtrc(after.size - 1, before.size - 1, second / first))
+    above = float(special.fdtrc(len(after) - 1, len(before) - 1, second / first))
     return min(1.0, 2.0 * min(above, 1.0 - above))

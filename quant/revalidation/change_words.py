@@ -5,7 +5,8 @@ from collections.abc import Sequence
 from quant.revalidation import change_terms as kinds
 from quant.text_table import format_number
 
-NOISE, CONTENT, UNEXPLAINED, VAPOUR_SPREAD = "noise", "content", "unexplained", "vapour_spread"
+NOISE, CONTENT, UNEXPLAINED = "noise", "content", "unexplained"
+VAPOUR_SPREAD, BASELINE_SPREAD = "vapour_spread", "baseline_spread"
 
 CAUSES = {
     kinds.SHIFT: "Usual cause: the interferometer or its laser was re-aligned, the accessory or the sample sits "
@@ -26,6 +27,8 @@ CAUSES = {
     "background more often.",
     VAPOUR_SPREAD: "Usual cause: an unsteady purge, or a background measured too seldom: look at the purge gas, "
     "seals and desiccant.",
+    BASELINE_SPREAD: "Usual cause: samples lie or are pressed differently from one to the next, an accessory or a "
+    "stage that moves, or a background measured too seldom.",
     NOISE: "Usual cause: source or detector old or exchanged, fewer scans, less light (alignment, a dirty crystal).",
     CONTENT: "Usual cause: the standards themselves, not the instrument: vials that were opened or leak, evaporation, "
     "water taken up. Have them assayed again.",
@@ -54,6 +57,7 @@ _NAMES = {
     kinds.RESOLUTION: "line width (resolution)",
     kinds.VAPOUR: "water vapour",
     VAPOUR_SPREAD: "how much water vapour varies",
+    BASELINE_SPREAD: "how much the baseline varies",
     NOISE: "noise",
     CONTENT: "analyte in the standards",
     UNEXPLAINED: "bands of something new",
@@ -78,6 +82,10 @@ _SENTENCES = {
     VAPOUR_SPREAD: (
         "Water vapour varies more from standard to standard, strongest line {0} (standard deviation)",
         "Water vapour varies less from standard to standard, strongest line {0} (standard deviation)",
+    ),
+    BASELINE_SPREAD: (
+        "The baseline varies more from standard to standard, {0} (standard deviation)",
+        "The baseline varies less from standard to standard, {0} (standard deviation)",
     ),
     NOISE: ("Noise is larger by {0}", "Noise is smaller by {0}"),
     CONTENT: ("The standards seem to have gained {0} of analyte", "The standards seem to have lost {0} of analyte"),

@@ -16,12 +16,12 @@ from quant.revalidation.change_fit import (
     fit_changes,
     robust_weights,
     scatter_weights,
-    vapour_heights,
 )
 from quant.revalidation.change_pairs import Pairs, pair_spectra
-from quant.revalidation.change_terms import RESOLUTION, VAPOUR, Ground, changed, core_of
-from quant.revalidation.change_tests import dempster_p, mean_p, spread_p
-from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, VAPOUR_SPREAD, describe
+from quant.revalidation.change_spread import Spread, spreads
+from quant.revalidation.change_terms import RESOLUTION, Ground, changed, core_of
+from quant.revalidation.change_tests import dempster_p, mean_p
+from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, describe
 from quant.revalidation.multiple_tests import holm_adjusted
 from quant.spectra.spectra_set import SpectraSet
 from quant.statistics.groups import connected_groups
@@ -44,6 +44,10 @@ class Change(Result):
     p_value: float = documented("Probability of as much by chance, adjusted by Holm for the number of questions asked")
     significant: bool = documented("Whether chance does not explain it, at 5 % for all kinds together")
     effect: float | None = documented("Mean change of the predictions that this alone causes, in the analyte's unit")
+    scatter: float | None = documented(
+        "Standard deviation that it adds to the predictions, if it is a greater spread, in the analyte's unit",
+        default=None,
+    )
     words: str = documented("The finding in words")
     usual_cause: str = documented("Where such a change usually comes from")
     same_class_as: tuple[str, ...] = documented("Kinds that cannot be told apart from it on this range")
@@ -70,8 +74,8 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     are fitted together to each standard's pair of mean spectra, beside the ways in which the standards' composition
     differs. The mean over standards is the size; the scatter between standards gives its standard error and test. Kinds
     whose estimates correlate by more than 0.9 on this range form one class, tested together. Noise, the analyte's
-    content, how much vapour varies, and what is left unexplained are tested beside them, all in one family held by
-    Holm.
+    content, how much vapour and baseline vary, and what is left unexplained are tested beside them, all in one family
+    held by Holm.
 
     Size (gain) is judged against the mean spectrum: where the analyte makes up much of it, part of a loss looks like
     smaller absorbances. Where something is left that chance does not explain, the fit is repeated with little weight on
@@ -106,12 +110,11 @@ def estimate_changes(before: SpectraSet, after: SpectraSet, model: Calibration) 
     content = _content(pairs, model, best.wholly)
     found = [(members, _columns(best.fit, content, members)) for members in _classes(best.fit, content)]
     found.append(((NOISE,), pairs.noise_ratios[:, None]))
-    heights = _vapour_heights(best) if VAPOUR in best.ground.kinds else None
-    spread = [] if heights is None else [spread_p(heights[0], heights[1])]
-    adjusted = holm_adjusted([best.unexplained_p, *spread, *(mean_p(columns) for _, columns in found)]).tolist()
+    spread = spreads(best.ground, best.before, best.after, best.directions, best.scatter)
+    alone = [best.unexplained_p, *(each.p_value for each in spread)]
+    adjusted = holm_adjusted([*alone, *(mean_p(columns) for _, columns in found)]).tolist()
     changes = [_unexplained(pairs, model, best, adjusted[0])]
-    if heights is not None:
-        changes.append(_vapour_spread(heights[0], heights[1], adjusted[1]))
+    changes += [_spread(pairs, model, each, p) for each, p in zip(spread, adjusted[1:], strict=False)]
     for (members, columns), p in zip(found, adjusted[len(changes) :], strict=True):
         # A new substance may look like more or less of the old ones.
         alike = (CONTENT, UNEXPLAINED) if members == (CONTENT,) and changes[0].significant else members
@@ -160,14 +163,6 @@ def _alone(best: _Best, kind: str, members: Sequence[str]) -> FloatArray:
     kinds = [k for k in best.ground.kinds if k == kind or k not in members]
     fit = fit_changes(best.ground, best.before, best.after, kinds, best.directions, best.weights)
     return fit.sizes[:, kinds.index(kind)]
-
-
-def _vapour_heights(best: _Best) -> tuple[FloatArray, FloatArray]:
-    """Vapour in each spectrum before and after, against the means of both, shape (n_standards,) each."""
-    before, after = (
-        vapour_heights(best.ground, rows, best.directions, best.scatter) for rows in (best.before, best.after)
-    )
-    return before, after
 
 
 def _content(pairs: Pairs, model: Calibration, directions: FloatArray) -> FloatArray:
@@ -273,20 +268,22 @@ def _unexplained(pairs: Pairs, model: Calibration, best: _Best, p_value: float) 
     )
 
 
-def _vapour_spread(before: FloatArray, after: FloatArray, p_value: float) -> Change:
-    """Whether water vapour varies more, or less, from standard to standard; its mean is another question."""
-    sd = [float(before.std(ddof=1)), float(after.std(ddof=1))]
-    size, significant = sd[1] - sd[0], p_value <= SIGNIFICANCE
-    error = float(np.hypot(sd[0], sd[1]) / np.sqrt(2.0 * (before.size - 1)))  # of two standard deviations of n values
+def _spread(pairs: Pairs, model: Calibration, spread: Spread, p_value: float) -> Change:
+    """Whether something varies more, or less, from standard to standard; its mean is another question."""
+    size, significant = spread.after - spread.before, p_value <= SIGNIFICANCE
+    step = SMALL * float(np.abs(pairs.before[:, pairs.ground.used]).max()) or SMALL
+    moved = {kind: _effect(pairs, model, kind, step) / step for kind in spread.added}
+    variance = sum(moved[kind] ** 2 * added for kind, added in spread.added.items())
     return Change(
-        kind=VAPOUR_SPREAD,
+        kind=spread.kind,
         size=size,
         unit="absorbance",
-        standard_error=error,
+        standard_error=spread.error,
         p_value=p_value,
         significant=significant,
         effect=None,
-        words=describe(VAPOUR_SPREAD, size, error, "absorbance", significant=significant),
-        usual_cause=CAUSES[VAPOUR_SPREAD],
+        scatter=float(np.sqrt(max(variance, 0.0))),
+        words=describe(spread.kind, size, spread.error, "absorbance", significant=significant),
+        usual_cause=CAUSES[spread.kind],
         same_class_as=(),
     )

@@ -11,12 +11,13 @@ from quant.revalidation.equivalence import (
     scatter_equivalence,
 )
 from quant.revalidation.judgements import AdvisoryTest, RemedyRow
+from quant.revalidation.noise_cost import added_by_noise
 from quant.revalidation.standards import Standards
 from quant.revalidation.standards_state import StandardsEvidence
 from quant.revalidation.verdict import Facts
 from quant.statistics.quantiles import t_quantile
 
-SHARE_OUTSIDE = 0.5  # of the standards outside the model's domain: an unchanged instrument never puts so many there
+SHARE_OUTSIDE = 1 / 3  # of the standards outside the model's domain: an unchanged instrument never puts more there
 
 
 def gather_facts(
@@ -60,8 +61,17 @@ def gather_facts(
         proposed=proposed,
         allowed_sep=basis.allowed_sep,
         off_before=_off_before(standards, basis.allowed_bias) if standards.paired else None,
-        costly=any(abs(change.effect or 0.0) > basis.allowed_bias for change in of_instrument(changes)),
+        costly=_costly(standards, basis, changes),
     )
+
+
+def _costly(standards: Standards, basis: RevalidationBasis, changes: tuple[Change, ...]) -> bool:
+    """Whether what was found in the spectra costs, by itself, more bias or more scatter than is allowed."""
+    moved = any(abs(change.effect or 0.0) > basis.allowed_bias for change in of_instrument(changes))
+    added = sum(change.scatter**2 for change in changes if change.significant and change.scatter is not None)
+    if any(change.kind == NOISE and change.significant for change in changes):
+        added += max(added_by_noise(standards, standards.model), 0.0)
+    return moved or basis.sep**2 + added > basis.allowed_sep**2
 
 
 def _off_before(standards: Standards, allowed: float) -> float | None:

@@ -73,7 +73,7 @@ def _found(facts: Facts, outside: int) -> Iterator[str]:
     if facts.tests:
         yield f"chance does not explain: {', '.join(found)}" if found else "no test of the family finds a change"
     if facts.costly:
-        yield "a change of the instrument was found that by itself moves results by more than the allowed bias"
+        yield "what was found in the spectra costs, by itself, more bias or scatter than is allowed"
 
 
 def _helps(proposed: RemedyRow, unit: str, *, rebuild: bool) -> Iterator[str]:

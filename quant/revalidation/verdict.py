@@ -38,7 +38,7 @@ class Facts:
     proposed: RemedyRow | None
     allowed_sep: float
     off_before: float | None = None  # mean error before the visit, where it was too large already [unit of the analyte]
-    costly: bool = False  # a change of the instrument was found that by itself moves results by more than allowed
+    costly: bool = False  # what was found in the spectra costs, by itself, more bias or scatter than is allowed
 
     @property
     def equivalent(self) -> bool:

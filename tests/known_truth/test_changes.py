@@ -49,6 +49,7 @@ CASES = {
     "resolution": Case({"resolution": 5.0}, ("resolution",)),
     "noise": Case({"noise": 1.6e-3}, ("noise",)),
     "vapour": Case({"water_vapour": 4e-3}, ("vapour_spread",)),
+    "baseline drift": Case({"baseline_offset": 2e-2, "baseline_slope": 1e-2}, ("baseline_spread",)),
     "residue": Case({"interferent": RESIDUE, "interferent_amount": 1.0}, ("unexplained",)),
     "evaporation": Case({}, ("content",), lost=0.12),
     "shift and resolution": Case({"shift": 0.3, "resolution": 4.8}, ("shift", "resolution")),

@@ -60,7 +60,7 @@ VISITS = {
     "offset 0.01": Visit({"offset": 0.01}, ({"offset"},)),
     "baseline drift five times": Visit(
         {"baseline_offset": 2e-2, "baseline_slope": 1e-2, "baseline_curvature": 6e-3},
-        ({"offset", "baseline_slope", "baseline_curvature"},),
+        ({"offset", "baseline_slope", "baseline_curvature", "baseline_spread"},),
     ),
     "noise twice": Visit({"noise": 1.6e-3}, ({"noise"},)),
     "noise three times": Visit({"noise": 2.4e-3}, ({"noise"},)),

@@ -49,3 +49,12 @@ def test_spread_is_the_two_sided_f_test() -> None:
     assert spread_p(before, after) == pytest.approx(2 * stats.f.sf(ratio, 11, 11))
     assert spread_p(after, before) == pytest.approx(spread_p(before, after))
     assert spread_p(np.zeros(5), np.zeros(5)) == 1.0
+
+
+def test_variances_of_parts_add_up_and_chance_is_not_understated() -> None:
+    rng = np.random.default_rng(5)
+    before, after = rng.normal(0, 1, (2, 2000, 12, 3)) * [3.0, 1.0, 0.5]
+    found = np.array([spread_p(b, a) for b, a in zip(before, after, strict=True)])
+    assert np.mean(found <= 0.05) < 0.05
+    assert np.mean([spread_p(b, 4 * a) <= 0.05 for b, a in zip(before, after, strict=True)]) > 0.95
+    assert spread_p(before[0], after[0]) == pytest.approx(spread_p(after[0], before[0]))

@@ -27,7 +27,7 @@ LOSS = replace(NO_LOSS, loss_suspected=True, trustworthy=False)
 EXPIRED = replace(NO_LOSS, trustworthy=False)
 
 
-def change(kind, *, significant=True, effect=0.2):
+def change(kind, *, significant=True, effect=0.2, scatter=None):
     return Change(
         kind=kind,
         size=1.0,
@@ -36,6 +36,7 @@ def change(kind, *, significant=True, effect=0.2):
         p_value=0.001 if significant else 0.5,
         significant=significant,
         effect=effect,
+        scatter=scatter,
         words="",
         usual_cause="",
         same_class_as=(),
@@ -82,7 +83,13 @@ def test_a_change_that_moves_results_by_more_than_allowed_is_costly(world):
         facts = gather_facts(standards, basis, NO_LOSS, moved, outside=0, proposed=None)
         assert facts.costly == costly
         assert facts.applies
-    assert not gather_facts(standards, basis, NO_LOSS, (), outside=7, proposed=None).applies  # more than half of twelve
+    for factor, costly in ((0.9, False), (1.1, True)):
+        size = factor * np.sqrt(basis.allowed_sep**2 - basis.sep**2)
+        varied = (change("vapour_spread", effect=None, scatter=size),)
+        assert gather_facts(standards, basis, NO_LOSS, varied, outside=0, proposed=None).costly == costly
+    assert not gather_facts(
+        standards, basis, NO_LOSS, (), outside=5, proposed=None
+    ).applies  # more than a third of twelve
 
 
 def test_reference_values_that_never_fitted_are_told(world):
