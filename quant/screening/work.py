@@ -7,7 +7,7 @@ from dataclasses import dataclass
 from functools import partial
 from typing import Any, TypeVar
 
-from joblib import Parallel, delayed, parallel_config
+from joblib import Parallel, cpu_count, delayed, parallel_config
 
 from quant.errors import ParameterError, UsageError
 from quant.regression.fast_cross_validation_threads import keep_freed_memory, one_blas_thread
@@ -73,7 +73,7 @@ def workers(number: int = 1, cluster: str | None = None) -> Iterator[Workers]:
     Parameters
     ----------
     number : int
-        Processes, −1: one a core.
+        Processes, −1: one a core; never more than cores.
     cluster : str, optional
         Address of the scheduler, such as "tcp://10.0.0.5:8786". Its workers need the same versions of everything.
 
@@ -87,7 +87,7 @@ def workers(number: int = 1, cluster: str | None = None) -> Iterator[Workers]:
     if isinstance(number, bool) or not isinstance(number, int) or (number < 1 and number != -1):
         raise ParameterError(f"workers = {number!r}; expected 1 or more, or -1 for one a core.")
     if cluster is None:
-        yield Workers(number)
+        yield Workers(min(number, cpu_count()))  # more processes than cores would only take memory
         return
     client = _client(cluster)
     try:

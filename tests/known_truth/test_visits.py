@@ -28,7 +28,7 @@ from quant.spectra.simulate_instrument import measure
 from quant.spectra.simulate_substances import ACETONE
 
 SEED = 20261201  # fixed before the first run
-# Rules were chosen on plants below 100. A first count, on 1000 to 1199, showed that more varying vapour and baseline were
+# Rules were chosen on plants below 100. A first count, on 1000 to 1199, showed vapour and baseline that vary more to be
 # judged badly; plants counted now were not looked at before.
 COUNTED = range(2000, 2200)
 ENOUGH = 20  # visits of a kind that a share is asked of; fewer count in the sum over all kinds only

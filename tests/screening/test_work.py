@@ -3,6 +3,7 @@
 import os
 import sys
 
+import joblib
 import pytest
 
 from quant.errors import ParameterError, UsageError
@@ -66,3 +67,8 @@ def test_no_extra_for_clusters(monkeypatch):
 def test_nobody_answers_at_the_address():
     with pytest.raises(UsageError, match="Nobody answers at 'nonsense'"), workers(1, "nonsense"):
         pass
+
+
+def test_never_more_processes_than_cores():
+    with workers(100_000) as hands:
+        assert hands.number == joblib.cpu_count()
