@@ -25,6 +25,7 @@ from quant.calibration.validate import ValidationResult, regression_direction, v
 from quant.errors import NotEnoughDataError
 from quant.estimator import Step
 from quant.model.calibration import Calibration
+from quant.model.lineage import Lineage
 from quant.model.versions import program_versions
 from quant.prediction.applicability import acquisition_domain
 from quant.recipe.audit_schema import table_of
@@ -207,6 +208,7 @@ def _model(
     position = crossed.factor_counts.index(factors)
     return Calibration(
         analyte=analyte,
+        lineage=Lineage(samples=training.sample_ids),
         axis=spectra.axis,
         quantity=spectra.quantity,
         # Notes of the calibration's spectra are no statement about new ones.

@@ -104,10 +104,10 @@ def command(
         confirmed = remedy is None and result.accepted and calibration.state.name == PROVISIONAL
         # Refused before the page of an earlier run is replaced.
         path = _place(calibration, model, folder) if remedy or confirmed else None
+        made = correct_model(result, remedy) if remedy else confirm_model(result) if confirmed else None
         report = write_revalidation(result, folder)
         click.echo(f"\npage    {report.html}\nfigures {report.json}")
-        if path is not None:
-            made = correct_model(result, remedy) if remedy else confirm_model(result)
+        if path is not None and made is not None:
             click.echo(f"model   {save_model(made, path)} (model {made.lineage.number}, {made.state})")
     ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))
 

@@ -26,7 +26,7 @@ class Ancestor:
     made_from : tuple of Source
         Files of the spectra and values that it was made from.
     samples : tuple of str
-        Samples that took part in making it; empty for a first calibration.
+        Samples that took part in making it; empty in the first models of this format.
     """
 
     number: int
@@ -39,7 +39,8 @@ class Ancestor:
 
     def told(self) -> str:
         """Everything in one line."""
-        files = f" from {len(self.made_from)} files" if self.made_from else ""
+        n = len(self.made_from)
+        files = f" from {n} file{'s' * (n > 1)}" if n else ""
         why = f", because {self.verdict}" if self.verdict else ""
         return f"model {self.number} [{self.fingerprint[:16]}]: {self.made_by}{files}{why}; state {self.state}"
 
@@ -67,6 +68,11 @@ class Lineage:
             return cls()
         ancestors = tuple(Ancestor(**_with_records(entry)) for entry in plain["ancestors"])
         return cls(**{**_with_records(plain), "ancestors": ancestors})
+
+
+def took_part(lineage: Lineage) -> frozenset[str]:
+    """Return the samples that took part in making a model or one of its ancestors."""
+    return frozenset(lineage.samples).union(*(entry.samples for entry in lineage.ancestors))
 
 
 def _with_records(plain: Mapping[str, Any]) -> dict[str, Any]:

@@ -15,7 +15,7 @@ from quant.result import jsonable
 from quant.revalidation.changes import Change
 from quant.revalidation.history import ControlChart
 from quant.revalidation.result import RevalidationResult
-from quant.revalidation.verdict import CANNOT_DECIDE, RULES
+from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, RULES
 from quant.text_table import format_number
 
 MOST_CHANGES = 4  # on the first screen; the table below names all
@@ -110,7 +110,7 @@ def _matters(result: RevalidationResult) -> Answer:
     ]
     if result.not_applicable:
         told.append(f"the model does not apply to {result.not_applicable} of {len(result.sample_ids)} standards now")
-    if result.accepted:
+    if result.verdict == HOLDS:
         return "No: shown to be within what is allowed", told
     return ("Not shown either way" if result.verdict == CANNOT_DECIDE else "Yes"), told
 
@@ -137,7 +137,7 @@ def _remedy(result: RevalidationResult) -> Answer:
     chosen = next((row for row in result.remedies if row.proposed), None)
     if chosen is not None:
         return f"{chosen.name.replace('_', ' ')}: {chosen.words}", []
-    if result.accepted:
+    if result.verdict == HOLDS:
         return "None is needed", []
     return ("None helps: calibrate anew" if result.verdict == "rebuild" else "None is proposed yet"), []
 

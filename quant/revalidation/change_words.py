@@ -36,6 +36,8 @@ CAUSES = {
     "oil), or an exchanged accessory.",
 }
 
+QUIETER = "Usual cause: a new source or detector, better alignment, cleaner optics, or more scans."
+
 UNITS = {
     kinds.STRETCH: "relative",
     kinds.GAIN: "relative",

@@ -21,7 +21,7 @@ from quant.revalidation.change_pairs import Pairs, pair_spectra
 from quant.revalidation.change_spread import Spread, spreads
 from quant.revalidation.change_terms import RESOLUTION, Ground, changed, core_of
 from quant.revalidation.change_tests import dempster_p, mean_p
-from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, UNEXPLAINED, UNITS, describe
+from quant.revalidation.change_words import CAUSES, CONTENT, NOISE, QUIETER, UNEXPLAINED, UNITS, describe
 from quant.revalidation.multiple_tests import holm_adjusted
 from quant.spectra.spectra_set import SpectraSet
 from quant.statistics.groups import connected_groups
@@ -29,6 +29,7 @@ from quant.text_table import format_columns
 from quant.units import AXIS_UNITS
 
 SIGNIFICANCE = 0.05  # of the whole family, held by Holm
+OF_NO_ACCOUNT = 1e-6  # of s0
 SMALL = 1e-3  # step of a numerical derivative, of the largest absorbance
 SAME_CLASS = 0.9  # correlation of two estimates beyond which the two changes cannot be told apart on this range
 
@@ -204,6 +205,8 @@ def _change(
     """Put what was found of one kind into words."""
     size, error = float(each.mean()), float(each.std(ddof=1) / np.sqrt(each.size))
     effect = None if kind == NOISE else size if kind == CONTENT else _effect(pairs, model, kind, size)
+    if effect is not None and abs(effect) < OF_NO_ACCOUNT * model.uncertainty.s0:
+        effect = 0.0  # what a step takes out to the last digits
     unit = {CONTENT: model.analyte.printed_unit, **UNITS}.get(kind, AXIS_UNITS[pairs.unit])
     if kind == NOISE:
         size, error = float(np.expm1(size)), float(np.exp(size) * error)
@@ -220,7 +223,7 @@ def _change(
         significant=significant,
         effect=effect,
         words=describe(kind, size, error, unit, significant=significant, others=others),
-        usual_cause=CAUSES[kind],
+        usual_cause=QUIETER if kind == NOISE and size < 0 else CAUSES[kind],
         same_class_as=others,
     )
 

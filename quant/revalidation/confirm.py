@@ -6,7 +6,7 @@ from quant.checks import name_some
 from quant.errors import ParameterError, SampleMismatchError
 from quant.model.calibration import Calibration, ModelState
 from quant.model.identity import as_ancestor
-from quant.model.lineage import Lineage
+from quant.model.lineage import Lineage, took_part
 from quant.revalidation.remedies.apply import PROVISIONAL, apply_remedy
 from quant.revalidation.result import RevalidationResult
 
@@ -30,7 +30,7 @@ def correct_model(result: RevalidationResult, remedy: str = PROPOSED) -> Calibra
     name = result.proposed if remedy == PROPOSED else remedy
     if not name:
         raise ParameterError(f"No remedy is proposed, since the verdict is: {result.verdict}. Name one to apply it.")
-    return apply_remedy(result.standards, result.judged, name, verdict=result.verdict, sources=result.files)
+    return apply_remedy(result.standards, result.judged, name, verdict=result.told_verdict, sources=result.files)
 
 
 def confirm_model(result: RevalidationResult) -> Calibration:
@@ -52,7 +52,7 @@ def confirm_model(result: RevalidationResult) -> Calibration:
         Standards, or files, that the model was made from.
     """
     model = result.standards.model
-    own = model.lineage
+    own, standards = model.lineage, result.standards
     earlier = [entry.state.partition(" ")[0] for entry in own.ancestors]
     lifted = next((state for state in reversed(earlier) if state != PROVISIONAL), None)
     if model.state.name != PROVISIONAL or lifted is None:
@@ -60,15 +60,16 @@ def confirm_model(result: RevalidationResult) -> Calibration:
     if not result.accepted:
         raise ParameterError(f"The verdict is: {result.verdict}; a model is confirmed only when it holds.")
     known = {source.sha256 for source in (*own.made_from, *model.training)}
-    again = [sample for sample in result.sample_ids if sample in own.samples]
-    again += [source.name for source in result.files if source.sha256 in known]
+    again = [sample for sample in result.sample_ids if sample in took_part(own)]
+    if len(standards.after_spectra.sources) >= len(standards):  # not one table of many samples
+        again += [source.name for source in standards.after_spectra.sources if source.sha256 in known]
     if again:
         raise SampleMismatchError(
             f"{name_some(again)} had a part in making the model; expected standards that had none. Measure others."
         )
     state = ModelState(
         name=lifted,
-        why=f"{own.made_by}; confirmed by {len(result.sample_ids)} independent standards",
+        why=f"{model.state.why.partition('; not yet')[0]}; confirmed by {len(result.sample_ids)} independent standards",
     )
     return replace(
         model,
@@ -76,7 +77,7 @@ def confirm_model(result: RevalidationResult) -> Calibration:
         lineage=Lineage(
             number=own.number + 1,
             made_by="confirmation",
-            verdict=result.verdict,
+            verdict=result.told_verdict,
             made_from=result.files,
             samples=result.sample_ids,
             ancestors=(*own.ancestors, as_ancestor(model)),

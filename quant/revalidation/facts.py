@@ -53,7 +53,7 @@ def gather_facts(
     )
     return Facts(
         n_standards=n,
-        standards_in_doubt=in_doubt(labels, changes, tests, float(differences.mean())),
+        standards_in_doubt=in_doubt(labels, changes, tests, float(differences.mean()), unlike=outside > 0),
         applies=outside <= SHARE_OUTSIDE * n,
         bias=bias_equivalence(differences, basis.allowed_bias),
         scatter=scatter_equivalence(errors, basis.allowed_sep),
@@ -87,13 +87,19 @@ def of_instrument(changes: tuple[Change, ...]) -> list[Change]:
 
 
 def in_doubt(
-    labels: StandardsEvidence, changes: tuple[Change, ...], tests: tuple[AdvisoryTest, ...], mean: float
+    labels: StandardsEvidence,
+    changes: tuple[Change, ...],
+    tests: tuple[AdvisoryTest, ...],
+    mean: float,
+    *,
+    unlike: bool = False,
 ) -> bool:
     """Say whether the standards, rather than the instrument, may have changed.
 
     They are in doubt if one is past its date; if they are low, and lower with age, and no change of the instrument
-    explains half of it; and if results differ beyond chance while the spectra show no change of the instrument at all
-    (scatter alone may also come from noise).
+    explains half of it; if results differ beyond chance while the spectra show no change of the instrument at all
+    (scatter alone may also come from noise); and, without spectra from before, if they are low, nothing is known of
+    their age, and the model applies to all of their spectra.
 
     Parameters
     ----------
@@ -103,6 +109,8 @@ def in_doubt(
     tests : tuple of AdvisoryTest
     mean : float
         Mean of after minus before, or of predicted minus reference. [unit of the analyte]
+    unlike : bool
+        Whether any spectrum lies outside the model's domain now.
     """
     instrument = of_instrument(changes)
     explained = any(abs(change.effect or 0.0) >= abs(mean) / 2 for change in instrument)
@@ -110,4 +118,5 @@ def in_doubt(
     differing = {test.name for test in tests if test.significant}
     noisy = any(change.significant and change.kind == NOISE for change in changes)
     unexplained = bool(changes) and not instrument and bool(differing - {SCATTER} if noisy else differing)
-    return expired or (labels.loss_suspected and not explained) or unexplained
+    lost = not changes and not unlike and mean < 0 and bool(differing) and labels.age_p is None
+    return expired or lost or (labels.loss_suspected and not explained) or unexplained

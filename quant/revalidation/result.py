@@ -6,6 +6,7 @@ from quant.arrays import FloatArray
 from quant.model.revalidation_basis import RevalidationBasis
 from quant.result import Result, documented
 from quant.revalidation.changes import Change, format_changes
+from quant.revalidation.equivalence import FAMILY_RISK
 from quant.revalidation.gathered import Gathered
 from quant.revalidation.judgements import (
     ANALYTE,
@@ -22,6 +23,7 @@ from quant.spectra.provenance import Source
 from quant.text_table import Row, format_columns, format_rows
 
 HIDDEN = {"json": False}
+BY_HAND = "given with the standards"
 
 
 @dataclass(frozen=True, kw_only=True, eq=False)
@@ -59,8 +61,18 @@ class RevalidationResult(Result):
 
     @property
     def accepted(self) -> bool:
-        """True if the calibration was shown to hold."""
-        return self.verdict == HOLDS
+        """True if the calibration was shown to hold, on an instrument whose film, if given, is within tolerance."""
+        return self.verdict == HOLDS and (self.evidence.film is None or self.evidence.film.passed)
+
+    @property
+    def told_verdict(self) -> str:
+        """The verdict, with bounds that were given by hand."""
+        basis = self.basis
+        if basis.source != BY_HAND:
+            return self.verdict
+        return (
+            f"{self.verdict} (bias up to {basis.allowed_bias:g}, SEP up to {basis.allowed_sep:g} {self.unit} allowed)"
+        )
 
     def rows(self) -> list[Row]:
         """Rows of the printed table: what was found, what is allowed, what could be shown."""
@@ -90,7 +102,7 @@ class RevalidationResult(Result):
         parts = [f"{self.model}\nVerdict: {self.verdict}", *(f"  {reason}" for reason in self.reasons)]
         parts += ["", format_rows(self.rows())] if self.rows() else []
         if self.tests:
-            header = ("advisory test", "value", "statistic", "p (Holm)", "significant")
+            header = ("advisory test", "value", "statistic", "p (Holm)", f"below {FAMILY_RISK:g}")
             table = [(t.name, t.value, t.statistic, t.p, t.significant) for t in self.tests]
             parts += ["", format_columns(header, table)]
         if self.changes:

@@ -5,9 +5,11 @@ from dataclasses import replace
 import numpy as np
 
 from quant.calibration.sensitivity import ALLOWED_BIAS, ALLOWED_SEP
-from quant.errors import NotEnoughDataError, ParameterError, QuantError
+from quant.checks import name_some
+from quant.errors import NotEnoughDataError, ParameterError, QuantError, SampleMismatchError
 from quant.model.calibration import Calibration
 from quant.model.identity import fingerprint_of, trace
+from quant.model.lineage import took_part
 from quant.model.revalidation_basis import RevalidationBasis
 from quant.recipe.schema import Recipe
 from quant.revalidation.changes import Change, estimate_changes
@@ -17,8 +19,9 @@ from quant.revalidation.gathered import InstrumentRecord, gather_evidence
 from quant.revalidation.judgements import Power
 from quant.revalidation.power import power_of
 from quant.revalidation.reasons import reasons
+from quant.revalidation.remedies.apply import PROVISIONAL
 from quant.revalidation.remedies.judge import judge_remedies
-from quant.revalidation.result import RevalidationResult
+from quant.revalidation.result import BY_HAND, RevalidationResult
 from quant.revalidation.standards import Standards, calibration_samples, gather, not_applicable, training_of
 from quant.revalidation.standards_state import standards_evidence
 from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, REBUILD, decide
@@ -67,7 +70,14 @@ def revalidate(
         Standards without values, or without spectra from before; values on another scale than the calibration's.
     NotEnoughDataError
         Fewer than two standards.
+    ParameterError
+        A bound that is not above zero; spectra from before for a provisional model.
     """
+    if model.state.name == PROVISIONAL and before is not None:
+        raise ParameterError(
+            "The model is provisional: it was made for the instrument as it is since the visit, and spectra from "
+            "before are none of its kind. Leave them out; reference values of other standards confirm it."
+        )
     samples = _samples(model, after, reference)
     own = calibration_samples(training, model.analyte.name) if isinstance(training, Recipe) else training
     standards = gather(model, samples, before, training_of(model, own) if own is not None else None)
@@ -79,6 +89,7 @@ def revalidate(
     outside = not_applicable(model, standards.after)
     facts = gather_facts(standards, basis, labels, changes, outside, next((row for row in rows if row.proposed), None))
     rule = decide(facts)
+    evidence = gather_evidence(model, samples, labels, own, instrument or NO_RECORD)
     power = _power(standards, basis)
     wanted = rule.verdict not in (HOLDS, CANNOT_DECIDE, REBUILD)
     return RevalidationResult(
@@ -90,7 +101,17 @@ def revalidate(
         state=str(model.state),
         verdict=rule.verdict,
         rule=rule.name,
-        reasons=reasons(rule, facts, power, changes, outside=outside, unit=model.analyte.printed_unit, note=note),
+        reasons=reasons(
+            rule,
+            facts,
+            power,
+            changes,
+            outside=outside,
+            known=[sample for sample in standards.sample_ids if sample in took_part(model.lineage)],
+            film_failed=evidence.film is not None and not evidence.film.passed,
+            unit=model.analyte.printed_unit,
+            note=note,
+        ),
         sample_ids=standards.sample_ids,
         reference=standards.reference,
         before=standards.before if standards.paired else None,
@@ -102,7 +123,7 @@ def revalidate(
         tests=facts.tests,
         power=power,
         changes=changes,
-        evidence=gather_evidence(model, samples, labels, own, instrument or NO_RECORD),
+        evidence=evidence,
         remedies=rows if wanted else tuple(replace(row, proposed=False) for row in rows),
         proposed=facts.proposed.name if wanted and facts.proposed else "",
         files=tuple(dict.fromkeys((*(before.sources if before else ()), *after.sources, *reference.sources))),
@@ -146,7 +167,7 @@ def basis_of(
         own,
         allowed_bias=allowed_bias or own.allowed_bias,
         allowed_sep=allowed_sep or own.allowed_sep,
-        source="given with the standards",
+        source=BY_HAND,
     )
 
 
@@ -155,6 +176,13 @@ def _samples(model: Calibration, after: SpectraSet, reference: ReferenceTable) -
     analyte, values = samples.analyte(model.analyte.name)
     refuse_other_scale(model.analyte, analyte)
     known = np.isfinite(values)
+    training = {source.sha256 for source in model.training}
+    again = [source.name for source in after.sources if source.sha256 in training]
+    if again and len(after.sources) >= len(set(after.sample_ids)):  # not one table of many samples
+        raise SampleMismatchError(
+            f"The calibration was made from {name_some(again)}; expected spectra measured after the visit. Check which "
+            "files were named."
+        )
     if np.count_nonzero(known) < 2:
         raise NotEnoughDataError(
             f"{np.count_nonzero(known)} standard(s) with a value of {analyte.name}; expected two or more."

@@ -212,7 +212,10 @@ def _label_words(states: Sequence[StandardState], expired: Sequence[str]) -> lis
         words.append(f"Opened since their value was determined, and not assayed again: {name_some(opened)}")
     undated = [s.sample for s in states if s.age is None]
     if undated:
-        words.append(f"No age stated for {len(undated)} of {len(states)} standards ({name_some(undated)})")
+        words.append(
+            f"No age known for {len(undated)} of {len(states)} standards ({name_some(undated)}): that takes a date of "
+            f"the value ({PREPARED[0]} or {PREPARED[2]}) and one of the spectrum ({MEASURED[0]} or {MEASURED[1]})"
+        )
     return words
 
 

@@ -62,7 +62,9 @@ SHIFT, STILL = change("shift"), change("shift", significant=False)
         (NO_LOSS, (STILL,), family("SEP"), 0.0, True),
         (NO_LOSS, (STILL, change("noise", effect=None)), family("SEP"), 0.0, False),  # noise scatters results ...
         (NO_LOSS, (STILL, change("noise", effect=None)), family("SEP", "bias"), 0.2, True),  # ... but moves none
-        (NO_LOSS, (), family("bias"), -0.2, False),  # without spectra from before nothing is known of changes
+        (NO_LOSS, (), family("bias"), -0.2, True),  # low, of unknown age, and all spectra fit: lost or moved?
+        (NO_LOSS, (), family("bias"), 0.2, False),  # nothing lost makes results high
+        (replace(NO_LOSS, age_p=0.5), (), family("bias"), -0.2, False),  # no lower with age
         (LOSS, (SHIFT,), family("bias"), -0.2, False),
         (LOSS, (change("shift", effect=0.05),), family("bias"), -0.2, True),  # explains a quarter of it
         (EXPIRED, (SHIFT,), family("bias"), -0.2, True),
@@ -70,6 +72,10 @@ SHIFT, STILL = change("shift"), change("shift", significant=False)
 )
 def test_the_standards_are_doubted_where_the_instrument_explains_nothing(labels, changes, found, mean, doubt):
     assert in_doubt(labels, changes, found, mean) == doubt
+
+
+def test_spectra_that_do_not_fit_speak_for_the_instrument():
+    assert not in_doubt(NO_LOSS, (), family("bias"), -0.2, unlike=True)
 
 
 def test_noise_and_content_are_no_changes_of_the_instrument_that_move_results():

@@ -179,3 +179,52 @@ def test_film_and_empty_beam_are_part_of_the_evidence(world, shifted):
     assert result.evidence.film.axis_change.offset == pytest.approx(0.6, abs=0.05)
     assert result.to_dict()["evidence"]["film"]["bands"]
     assert "standards" not in result.to_dict()
+
+
+def test_the_calibrations_own_spectra_are_no_check(world):
+    maker = world.maker
+    own = maker.draw_visit(np.random.default_rng(3), 4)
+    sources = tuple(Source(f"{i}.dx", 1, f"{i}") for i in range(4))
+    model = replace(world.model, training=sources[:1])
+    with pytest.raises(SampleMismatchError, match=r"made from 0\.dx; expected spectra measured after the visit"):
+        revalidate(model, replace(own.after, sources=sources), own.reference)
+    table = replace(own.after, sources=sources[:1])  # one table may hold calibration and check samples
+    assert revalidate(model, table, own.reference).verdict
+
+
+def test_samples_of_the_calibration_are_told_and_confirm_nothing(world):
+    child = correct_model(revalidate(world.model, *_after(drawn(world, 4, **SHIFTED))))
+    lineage = replace(child.lineage, ancestors=(replace(child.lineage.ancestors[0], samples=("K7-V201",)),))
+    confirmation = drawn(world, 2, first=201, n=16, **SHIFTED)
+    result = revalidate(replace(child, lineage=lineage), confirmation.after, confirmation.reference)
+    assert any("K7-V201 took part in making the model" in reason for reason in result.reasons)
+    assert result.verdict == HOLDS
+    with pytest.raises(SampleMismatchError, match="K7-V201 had a part"):
+        confirm_model(result)
+
+
+def test_a_provisional_model_is_not_asked_about_spectra_from_before(world):
+    child = correct_model(revalidate(world.model, *_after(drawn(world, 4, **SHIFTED))))
+    visit = drawn(world, 5, first=201, **SHIFTED)
+    with pytest.raises(ParameterError, match="The model is provisional"):
+        revalidate(child, visit.after, visit.reference, before=visit.before)
+
+
+def test_bounds_given_by_hand_stand_in_the_lineage(world):
+    visit = drawn(world, 4, **SHIFTED)
+    child = correct_model(revalidate(world.model, *_after(visit), allowed_sep=0.09), "slope_bias")
+    assert child.lineage.verdict.endswith("(bias up to 0.05, SEP up to 0.09 % m/m allowed)")
+    assert "residual spectra up to" in child.state.why  # limits had to be widened
+
+
+def test_a_film_out_of_tolerance_is_not_accepted(world):
+    visit = drawn(world, 6)
+    film = world.maker.film_spectrum(np.random.default_rng(1), replace(world.maker.BEFORE, shift=3.0))
+    result = revalidate(world.model, *_after(visit), before=visit.before, instrument=InstrumentRecord(film=film))
+    assert result.verdict == HOLDS
+    assert not result.accepted
+    assert "the film is out of tolerance" in result.reasons[1]
+
+
+def _after(visit):
+    return visit.after, visit.reference

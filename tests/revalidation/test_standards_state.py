@@ -80,7 +80,7 @@ def test_without_ages_a_loss_cannot_be_told(model: Calibration) -> None:
     found = standards_evidence(model, samples_of(VALUES, VALUES - 0.3, seed=2))
     assert found.age_p is None
     assert "cannot be told from a change of the instrument" in found.words[0]
-    assert "No age stated for 9 of 9" in found.words[-1]
+    assert "No age known for 9 of 9" in found.words[-1]
 
 
 def test_good_standards_are_seldom_suspected(model: Calibration) -> None:

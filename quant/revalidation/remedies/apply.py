@@ -53,13 +53,16 @@ def apply_remedy(
     fitted = remedy.fit(standards, np.arange(len(standards)))
     errors = entry.predicted - standards.reference
     s0 = float(np.sqrt(np.mean(errors**2 / (1 + entry.leverage))))
+    limits = _widened(parent.limits, entry)
+    wider = limits.residual_stop / parent.limits.residual_stop
+    caution = f"; residual spectra up to {wider:.3g} times the former limit now pass" if wider > 1 else ""
     return replace(
         fitted,
-        limits=_widened(parent.limits, entry),
+        limits=limits,
         uncertainty=replace(parent.uncertainty, s0=max(parent.uncertainty.s0, s0)),
         test_predictions=fitted.predict_values(fitted.test_spectra),
         figures={**parent.figures, "left-out RMSE of check standards": entry.row.rmse_reference or 0.0},
-        state=ModelState(name=PROVISIONAL, why=f"{remedy.words}; not yet confirmed by independent standards"),
+        state=ModelState(name=PROVISIONAL, why=f"{remedy.words}{caution}; not yet confirmed by independent standards"),
         left_out=None,
         left_out_note=NO_LEFT_OUT,
         lineage=Lineage(

@@ -114,7 +114,8 @@ def expected_sep(standards: Standards, model: Calibration, values: FloatArray) -
 
     That is what differences from before scatter beyond the presentation of samples, or what noise adds, whichever is
     more. Unlike errors against a dozen of reference values, which laboratory and model dominate, these show what the
-    visit did. Without them, or without the scatter of presenting samples, the left-out error against the references.
+    visit did. Without them, or without the scatter of presenting samples, the left-out error against the references, if
+    it is the larger.
 
     Parameters
     ----------
@@ -125,7 +126,7 @@ def expected_sep(standards: Standards, model: Calibration, values: FloatArray) -
         Left-out predictions after. [unit of the analyte]
     """
     if not standards.paired or standards.model.uncertainty.replicate_sd is None:
-        return float(np.sqrt(np.mean((values - standards.reference) ** 2)))
+        return max(standards.validated_sep, float(np.sqrt(np.mean((values - standards.reference) ** 2))))
     left = float(np.mean((values - standards.before) ** 2)) - standards.difference_sd[0] ** 2
     return float(np.sqrt(standards.validated_sep**2 + max(left, added_by_noise(standards, model), 0.0)))
 
