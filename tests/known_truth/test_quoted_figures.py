@@ -1,6 +1,7 @@
 """The README quotes what the long tests counted."""
 
 import json
+from collections import Counter
 
 
 def test_the_readme_quotes_the_counts_of_the_long_tests(repository):
@@ -28,3 +29,26 @@ def test_the_readme_quotes_the_counts_of_the_long_tests(repository):
     readme = (repository / "README.md").read_text("utf-8")
     for claim, part, whole, counts in rows:
         assert f"| {claim} | {counts[part]} of {counts[whole]} |" in readme
+
+
+def test_the_readme_quotes_the_table_of_visits(repository):
+    found = json.loads((repository / "tests" / "long" / "results.json").read_text("utf-8"))
+    visits = {name.removeprefix("visit: "): counts for name, counts in found.items() if name.startswith("visit: ")}
+    readme = (repository / "README.md").read_text("utf-8")
+    shown = (
+        *("broken", "named", "wrongly holds", "called broken"),
+        *("mendable", "mendable, restored", "beyond mending", "beyond mending, rebuild"),
+    )
+    assert len(visits) > 20
+    for name, counts in visits.items():
+        assert counts["visits"] == 200
+        assert f"| {name} | {' | '.join(str(counts[key]) for key in shown)} |" in readme
+    total = Counter()
+    for counts in visits.values():
+        total.update({key: counts[key] for key in shown})
+    assert f"| all | {' | '.join(str(total[key]) for key in shown)} |" in readme
+    assert total["wrongly holds"] <= 0.05 * total["broken"]
+    for part, whole in (("named", "broken"), ("mendable, restored", "mendable")):
+        assert total[part] >= 0.9 * total[whole]
+    assert total["beyond mending, rebuild"] >= 0.9 * total["beyond mending"]
+    assert visits["nothing"]["called broken"] <= 10  # 5 %
