@@ -15,7 +15,7 @@ from quant.recipe.schema import Recipe
 from quant.revalidation.changes import Change, estimate_changes
 from quant.revalidation.equivalence import LEAST_STANDARDS
 from quant.revalidation.facts import gather_facts
-from quant.revalidation.gathered import InstrumentRecord, gather_evidence
+from quant.revalidation.gathered import Gathered, InstrumentRecord, gather_evidence
 from quant.revalidation.judgements import Power
 from quant.revalidation.power import power_of
 from quant.revalidation.reasons import reasons
@@ -24,7 +24,7 @@ from quant.revalidation.remedies.judge import judge_remedies
 from quant.revalidation.result import BY_HAND, RevalidationResult
 from quant.revalidation.standards import Standards, calibration_samples, gather, not_applicable, training_of
 from quant.revalidation.standards_state import standards_evidence
-from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, REBUILD, decide
+from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, REBUILD, Facts, Rule, decide
 from quant.spectra.concentration import refuse_other_scale
 from quant.spectra.reference_table import ReferenceTable
 from quant.spectra.sample_set import SampleSet, pair_samples
@@ -73,12 +73,7 @@ def revalidate(
     ParameterError
         A bound that is not above zero; spectra from before for a provisional model.
     """
-    if model.state.name == PROVISIONAL and before is not None:
-        raise ParameterError(
-            "The model is provisional: it was made for the instrument as it is since the visit, and spectra from "
-            "before are none of its kind. Leave them out; reference values of other standards confirm it."
-        )
-    samples = _samples(model, after, reference)
+    samples = _samples(model, after, before, reference)
     own = calibration_samples(training, model.analyte.name) if isinstance(training, Recipe) else training
     standards = gather(model, samples, before, training_of(model, own) if own is not None else None)
     basis = basis_of(model, allowed_bias, allowed_sep)
@@ -101,17 +96,7 @@ def revalidate(
         state=str(model.state),
         verdict=rule.verdict,
         rule=rule.name,
-        reasons=reasons(
-            rule,
-            facts,
-            power,
-            changes,
-            outside=outside,
-            known=[sample for sample in standards.sample_ids if sample in took_part(model.lineage)],
-            film_failed=evidence.film is not None and not evidence.film.passed,
-            unit=model.analyte.printed_unit,
-            note=note,
-        ),
+        reasons=_reasons(standards, rule, facts, power, changes, evidence, outside, note),
         sample_ids=standards.sample_ids,
         reference=standards.reference,
         before=standards.before if standards.paired else None,
@@ -171,7 +156,12 @@ def basis_of(
     )
 
 
-def _samples(model: Calibration, after: SpectraSet, reference: ReferenceTable) -> SampleSet:
+def _samples(model: Calibration, after: SpectraSet, before: SpectraSet | None, reference: ReferenceTable) -> SampleSet:
+    if model.state.name == PROVISIONAL and before is not None:
+        raise ParameterError(
+            "The model is provisional: it was made for the instrument as it is since the visit, and spectra from "
+            "before are none of its kind. Leave them out; reference values of other standards confirm it."
+        )
     samples = pair_samples(after, reference)
     analyte, values = samples.analyte(model.analyte.name)
     refuse_other_scale(model.analyte, analyte)
@@ -188,6 +178,30 @@ def _samples(model: Calibration, after: SpectraSet, reference: ReferenceTable) -
             f"{np.count_nonzero(known)} standard(s) with a value of {analyte.name}; expected two or more."
         )
     return samples.subset(known)
+
+
+def _reasons(
+    standards: Standards,
+    rule: Rule,
+    facts: Facts,
+    power: Power,
+    changes: tuple[Change, ...],
+    evidence: Gathered,
+    outside: int,
+    note: str,
+) -> tuple[str, ...]:
+    model = standards.model
+    return reasons(
+        rule,
+        facts,
+        power,
+        changes,
+        outside=outside,
+        known=[sample for sample in standards.sample_ids if sample in took_part(model.lineage)],
+        film_failed=evidence.film is not None and not evidence.film.passed,
+        unit=model.analyte.printed_unit,
+        note=note,
+    )
 
 
 def _power(standards: Standards, basis: RevalidationBasis) -> Power:
