@@ -83,7 +83,7 @@ def plot_remedies(result: RevalidationResult, ax: Axes | None = None) -> Axes:
     ax.axvline(result.basis.allowed_sep, color=INK, linewidth=THIN, linestyle=(0, (4, 2)))
     ax.axvline(result.basis.sep, color=BLUE, linewidth=THIN)
     ax.set_yticks(np.arange(len(rows)), [row.name.replace("_", " ") for row in rows], fontsize=SMALL)
-    label_axes(ax, with_unit("expected SEP; blue: validated, dashed: allowed", result.unit), "")
+    label_axes(ax, with_unit("expected SEP", result.unit), "")
     return ax
 
 

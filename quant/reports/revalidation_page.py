@@ -18,6 +18,9 @@ from quant.revalidation.result import RevalidationResult
 from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, RULES
 from quant.text_table import format_number
 
+REMEDIES_CAPTION = (
+    "SEP to expect with each remedy; blue line: validated, dashed: allowed; pale: the model does not apply again."
+)
 MOST_CHANGES = 4  # on the first screen; the table below names all
 
 
@@ -33,7 +36,7 @@ def render_revalidation(result: RevalidationResult, history: ControlChart | None
     style = Markup("".join((TEMPLATES / name).read_text(encoding="utf-8") for name in ("page.css", "revalidation.css")))
     pictures = [
         _draw(plot_standards, result, "standards", "Differences of the standards, the bias allowed.", narrow=True),
-        _draw(plot_remedies, result, "remedies", "SEP to expect with each remedy.", narrow=True),
+        _draw(plot_remedies, result, "remedies", REMEDIES_CAPTION, narrow=True),
     ]
     return (
         page_environment()

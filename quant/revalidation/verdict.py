@@ -102,7 +102,7 @@ RULES = (
     Rule(
         "transfer",
         TRANSFER,
-        "the change is real; no simple correction is as good as a map of the spectra or a new fit",
+        "the change is real; left out, a map of the spectra or a new fit does better than simple corrections",
         lambda f: f.proposed is not None,
     ),
 )
