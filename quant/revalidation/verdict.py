@@ -102,7 +102,7 @@ RULES = (
     Rule(
         "transfer",
         TRANSFER,
-        "the change is real; on left-out standards a map of the spectra or a new fit does better than simple corrections",
+        "the change is real; on standards left out a map or a new fit does better than simple corrections",
         lambda f: f.proposed is not None,
     ),
 )
