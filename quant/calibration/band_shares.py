@@ -13,7 +13,7 @@ import numpy as np
 from quant.arrays import BoolArray, FloatArray
 from quant.calibration.evidence import Evidence
 from quant.chemistry.bands import CARBON_DIOXIDE, WATER_VAPOUR, Band
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.recipe.chemistry_schema import ChemistryTable
 from quant.result import Result, documented
 from quant.spectra.segments import median_step, segments

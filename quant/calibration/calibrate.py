@@ -23,7 +23,7 @@ from quant.calibration.sensitivity import with_revalidation
 from quant.calibration.split import Split, split_samples
 from quant.calibration.validate import ValidationResult, regression_direction, validate
 from quant.errors import NotEnoughDataError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.model.calibration import Calibration
 from quant.model.lineage import Lineage
 from quant.model.versions import program_versions

@@ -11,7 +11,7 @@ from quant.calibration.folds import Folds, make_folds
 from quant.calibration.leave_out import LeftOut, all_folds_at_once, refit_every_fold
 from quant.checks import name_some
 from quant.errors import NotEnoughDataError, ParameterError, QuantityError
-from quant.estimator import Step, unfitted_copy
+from quant.estimator.base import Step, unfitted_copy
 from quant.preprocessing.chain import chain_learns
 from quant.recipe.pipeline import axis_behind, build_method, build_steps
 from quant.recipe.schema import Recipe

@@ -8,7 +8,7 @@ import numpy as np
 from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.calibration.companions import with_companions
 from quant.calibration.folds import Folds
-from quant.estimator import Step, unfitted_copy
+from quant.estimator.base import Step, unfitted_copy
 from quant.parallel import progress
 from quant.preprocessing.chain import apply_chain, fit_chain
 from quant.regression.fast_cross_validation import fast_left_out

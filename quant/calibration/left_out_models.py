@@ -9,7 +9,7 @@ from quant.calibration.companions import with_companions
 from quant.calibration.cross_validation_result import CrossValidationResult
 from quant.calibration.folds import make_folds
 from quant.errors import NotEnoughDataError
-from quant.estimator import Step, unfitted_copy
+from quant.estimator.base import Step, unfitted_copy
 from quant.model.left_out_models import LeftOutModels, linear_features
 from quant.preprocessing.chain import chain_learns
 from quant.recipe.schema import Recipe

@@ -8,7 +8,7 @@ import numpy as np
 
 from quant.arrays import FloatArray
 from quant.errors import QuantityError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.model.decision_rule import DecisionRule
 from quant.model.left_out_models import LeftOutModels
 from quant.model.lineage import Lineage

@@ -6,7 +6,7 @@ from typing import Any
 
 from quant.arrays import AnyArray
 from quant.errors import ModelFileError
-from quant.estimator import Estimator
+from quant.estimator.base import Estimator
 from quant.model.calibration import Calibration, Limits, ModelState, Uncertainty
 from quant.model.decision_rule import DecisionRule
 from quant.model.left_out_models import LeftOutModels

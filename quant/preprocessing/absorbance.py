@@ -8,7 +8,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import BoolArray, FloatArray
 from quant.checks import name_some
 from quant.errors import QuantityError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.spectra.segments import axis_values
 
 HIGHEST_FRACTION = 1.5  # noise lifts a clear spectrum a little above 1; more than this is no fraction

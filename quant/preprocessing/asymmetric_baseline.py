@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_matrix, name_some
 from quant.errors import NotEnoughDataError, ParameterError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.spectra.segments import axis_values, describe_segment, equal_spacing, segments
 
 REFINEMENTS = 2  # of the last solution: its rounding error falls from the condition number's size to that of its root

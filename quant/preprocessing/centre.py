@@ -6,7 +6,8 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
-from quant.estimator import Step, check_weights
+from quant.estimator.base import Step
+from quant.estimator.input import check_weights
 
 
 def mean_spectrum(spectra: FloatArray, weight: FloatArray) -> FloatArray:

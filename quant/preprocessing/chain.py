@@ -6,7 +6,8 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
-from quant.estimator import Step, check_spectra, unfitted_copy
+from quant.estimator.base import Step, unfitted_copy
+from quant.estimator.input import check_spectra
 from quant.spectra.segments import axis_values
 
 

@@ -10,7 +10,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray, IntArray
 from quant.checks import as_matrix, name_some
 from quant.errors import ParameterError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.spectra.segments import axis_values, describe_segment, equal_spacing, segments
 
 

@@ -8,7 +8,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_matrix, name_some
 from quant.errors import NotEnoughDataError, QuantityError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.spectra.bands import BandSet, BandSpec, place_bands, refuse_gaps
 from quant.spectra.segments import axis_values, segments
 

@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_matrix
 from quant.errors import ParameterError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.preprocessing.known_spectra import known_spectra
 
 RANK = 1e-10  # a singular value below this share of the first is rounding

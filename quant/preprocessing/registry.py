@@ -1,6 +1,6 @@
 """All preprocessing steps, by the name a recipe calls them."""
 
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.later import LaterTable
 
 STEPS: LaterTable[type[Step]] = LaterTable(

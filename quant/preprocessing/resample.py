@@ -7,7 +7,7 @@ from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
 from quant.errors import ParameterError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.spectra.resampling import apply_weights, interpolation_weights
 from quant.spectra.segments import axis_values, median_step
 

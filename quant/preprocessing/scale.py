@@ -8,7 +8,8 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import name_some
 from quant.errors import NotEnoughDataError, QuantityError
-from quant.estimator import Step, check_weights
+from quant.estimator.base import Step
+from quant.estimator.input import check_weights
 from quant.preprocessing.centre import mean_spectrum
 from quant.preprocessing.rounding import vanishes
 

@@ -11,7 +11,7 @@ from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray, IntArray
 from quant.errors import ParameterError
-from quant.estimator import Step
+from quant.estimator.base import Step
 
 
 class SpectralMap(Step):

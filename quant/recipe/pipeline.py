@@ -5,7 +5,7 @@ from functools import partial
 
 from quant.arrays import FloatArray
 from quant.errors import QuantityError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.preprocessing.chain import chain_axes, place_on_axis
 from quant.recipe.schema import Recipe
 from quant.recipe.step_files import step_spectra

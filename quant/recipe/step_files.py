@@ -10,7 +10,7 @@ import numpy as np
 from quant.arrays import FloatArray
 from quant.checks import name_some
 from quant.errors import AxisMismatchError, QuantError, QuantityError, RecipeError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.preprocessing.chain import chain_axes, fit_chain, place_on_axis
 from quant.readers.options import ReadingOptions
 from quant.readers.read import find_files, read_spectra

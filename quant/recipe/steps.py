@@ -15,7 +15,7 @@ from pydantic import ConfigDict, Field, ValidationError, create_model
 
 from quant.arrays import FloatArray
 from quant.errors import RecipeError
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.preprocessing.registry import STEPS
 from quant.recipe.messages import did_you_mean, problems
 from quant.recipe.table import Text

@@ -9,7 +9,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray
 from quant.checks import as_vector, one_of
 from quant.errors import AxisMismatchError, NotEnoughDataError
-from quant.estimator import check_weights
+from quant.estimator.input import check_weights
 from quant.regression.bidiagonal import EPS
 from quant.regression.method import Method
 from quant.regression.non_negative import non_negative_least_squares

@@ -15,7 +15,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray, IntArray
 from quant.checks import as_matrix, as_vector
 from quant.errors import ParameterError, SampleMismatchError
-from quant.estimator import check_weights
+from quant.estimator.input import check_weights
 from quant.regression.fast_cross_validation_columns import NEVER, Columns, check_factors, check_samples, fold_columns
 from quant.regression.fast_cross_validation_cross_products import ACCURACY_NOTE, cross_product_scores
 from quant.regression.fast_cross_validation_exact import ExactScores, exact_scores, rotated

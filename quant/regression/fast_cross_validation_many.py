@@ -11,7 +11,7 @@ from numpy.typing import ArrayLike
 from quant.arrays import FloatArray, IntArray
 from quant.checks import as_matrix
 from quant.errors import NotEnoughDataError, ParameterError, SampleMismatchError
-from quant.estimator import check_weights
+from quant.estimator.input import check_weights
 from quant.regression.fast_cross_validation_columns import Columns, check_factors, check_samples, fold_columns
 from quant.regression.fast_cross_validation_gram import ACCURACY, Gram, gram_scores
 from quant.regression.fast_cross_validation_threads import keep_freed_memory, one_blas_thread, scratch

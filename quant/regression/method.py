@@ -7,7 +7,8 @@ from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
 from quant.errors import ParameterError
-from quant.estimator import Regressor, check_target
+from quant.estimator.base import Regressor
+from quant.estimator.input import check_target
 
 if TYPE_CHECKING:
     from quant.statistics.straight_line import InverseInterval

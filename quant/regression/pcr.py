@@ -10,7 +10,7 @@ import numpy as np
 from numpy.typing import ArrayLike
 
 from quant.arrays import FloatArray
-from quant.estimator import check_weights
+from quant.estimator.input import check_weights
 from quant.regression.bidiagonal import EPS, running_sum
 from quant.regression.factor_regression import FactorRegression, check_n_factors
 

@@ -10,7 +10,7 @@ from typing import Self
 import numpy as np
 from numpy.typing import ArrayLike
 
-from quant.estimator import check_weights
+from quant.estimator.input import check_weights
 from quant.regression.bidiagonal import pls_bidiagonal
 from quant.regression.factor_regression import FactorRegression, check_n_factors
 

@@ -8,7 +8,7 @@ import numpy as np
 from quant.arrays import BoolArray, FloatArray, IntArray
 from quant.calibration.cross_validation import factor_limit
 from quant.calibration.folds import BATCH, FEWEST_BATCHES, Folds, groups_together, make_folds
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.recipe.pipeline import axis_behind, build_steps
 from quant.recipe.schema import Recipe
 from quant.recipe.screen_schema import ScreenTable

@@ -5,7 +5,7 @@ from typing import Any
 import numpy as np
 
 from quant.calibration.result import AnalyteResult, CalibrationResult
-from quant.estimator import Step
+from quant.estimator.base import Step
 from quant.plots.spectra import kept_ranges, plot_spectra
 from quant.reports.pictures import picture
 

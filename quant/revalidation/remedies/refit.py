@@ -5,7 +5,7 @@ from dataclasses import replace
 import numpy as np
 
 from quant.arrays import FloatArray, IntArray
-from quant.estimator import unfitted_copy
+from quant.estimator.base import unfitted_copy
 from quant.model.calibration import Calibration
 from quant.preprocessing.orthogonal_removal import orthogonal_directions
 from quant.preprocessing.spectral_map import low_rank_map

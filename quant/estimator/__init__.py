@@ -1,0 +1,1 @@
+"""The contract of steps and regressions, and what they take."""
