@@ -101,14 +101,15 @@ def command(
     if folder is not None:
         from quant.reports.write import write_revalidation
 
-        confirmed = remedy is None and result.accepted and calibration.state.name == PROVISIONAL
-        # Refused before the page of an earlier run is replaced.
-        path = _place(calibration, model, folder) if remedy or confirmed else None
-        made = correct_model(result, remedy) if remedy else confirm_model(result) if confirmed else None
+        new = None
+        if remedy or (result.accepted and calibration.state.name == PROVISIONAL):
+            # Refused, if at all, before the page of an earlier run is replaced.
+            path = _place(calibration, model, folder)
+            new = correct_model(result, remedy) if remedy else confirm_model(result)
         report = write_revalidation(result, folder)
         click.echo(f"\npage    {report.html}\nfigures {report.json}")
-        if path is not None and made is not None:
-            click.echo(f"model   {save_model(made, path)} (model {made.lineage.number}, {made.state})")
+        if new is not None:
+            click.echo(f"model   {save_model(new, path)} (model {new.lineage.number}, {new.state})")
     ctx.exit(int(ExitCode.DONE if result.accepted else ExitCode.NOT_ACCEPTED))
 
 
@@ -129,22 +130,11 @@ def _plain(files: tuple[str, ...]) -> "SpectraSet | None":
 
 def _reference(model: "Calibration", file: Path) -> "ReferenceTable":
     """Read the table in the way of the model's own recipe."""
-    from quant.readers.reference_csv import read_reference  # deferred: --help needs none of it
-    from quant.recipe.load import recipe_from_text
+    from quant.recipe.load import recipe_from_text, reference_read_as  # deferred: --help needs none of it
 
     own = recipe_from_text(model.recipe, name="the model's recipe")
     columns = [table.column_of() for table in own.analyte if table.name == model.analyte.name]
-    table = own.reference
-    return read_reference(
-        file,
-        columns,
-        sample_column=table.sample_column,
-        separator=table.separator,
-        decimal=table.decimal,
-        replicates=table.replicates,
-        date_column=table.date_column,
-        date_order=table.date_order,
-    )
+    return reference_read_as(own, file, columns)
 
 
 def _place(parent: "Calibration", file: Path, folder: Path) -> Path:

@@ -1,11 +1,11 @@
 """[decision], [acceptance] and [uncertainty]: what a recipe demands of a calibration and decides with it."""
 
 from collections.abc import Sequence
-from typing import Annotated, Any, Literal
+from typing import Annotated, Any, Literal, Protocol
 
 from pydantic import BeforeValidator, Field, model_validator
 
-from quant.recipe.table import DEFAULTS, Table, Text
+from quant.recipe.table import DEFAULTS, Table, Text, as_list
 
 
 class DecisionTable(Table):
@@ -87,21 +87,23 @@ class UncertaintyTable(Table):
     )
 
 
-def _as_list(value: Any) -> Any:
-    return [value] if isinstance(value, dict) else value
-
-
 Decisions = Annotated[
-    list[DecisionTable], BeforeValidator(_as_list, json_schema_input_type=DecisionTable | list[DecisionTable])
+    list[DecisionTable], BeforeValidator(as_list, json_schema_input_type=DecisionTable | list[DecisionTable])
 ]
 Acceptances = Annotated[
-    list[AcceptanceTable], BeforeValidator(_as_list, json_schema_input_type=AcceptanceTable | list[AcceptanceTable])
+    list[AcceptanceTable], BeforeValidator(as_list, json_schema_input_type=AcceptanceTable | list[AcceptanceTable])
 ]
 
 
-def check_analytes(
-    name: str, tables: Sequence[DecisionTable] | Sequence[AcceptanceTable], analytes: Sequence[str]
-) -> None:
+class OfAnalyte(Protocol):
+    """A table that may name its analyte."""
+
+    @property
+    def analyte(self) -> str | None:
+        """Which analyte; not needed if there is one."""
+
+
+def check_analytes(name: str, tables: Sequence[OfAnalyte], analytes: Sequence[str]) -> None:
     """Refuse tables whose analyte is not there, is not told, or is told twice.
 
     Raises

@@ -1,13 +1,13 @@
 """[chemistry]: where analyte and matrix absorb, and what else could be predicted in the analyte's place."""
 
 from collections.abc import Sequence
-from typing import Annotated, Any
+from typing import Annotated
 
 from pydantic import BeforeValidator, Field, FiniteFloat, model_validator
 
 from quant.chemistry.bands import Band, named_bands
 from quant.errors import ParameterError
-from quant.recipe.table import DEFAULTS, Table, Text
+from quant.recipe.table import DEFAULTS, Table, Text, as_list
 
 Wavenumber = Annotated[FiniteFloat, Field(gt=0)]
 Range = Annotated[list[Wavenumber], Field(min_length=2, max_length=2)]
@@ -73,12 +73,8 @@ def _widened(band: Band, half_width: float) -> Band:
     return Band(band.name, band.low - half_width, band.high + half_width, band.strength, band.note, band.source)
 
 
-def _as_list(value: Any) -> Any:
-    return [value] if isinstance(value, dict) else value
-
-
 Chemistries = Annotated[
-    list[ChemistryTable], BeforeValidator(_as_list, json_schema_input_type=ChemistryTable | list[ChemistryTable])
+    list[ChemistryTable], BeforeValidator(as_list, json_schema_input_type=ChemistryTable | list[ChemistryTable])
 ]
 
 

@@ -1,6 +1,7 @@
 """Recipes from TOML files, and the data they name."""
 
 import tomllib
+from collections.abc import Sequence
 from pathlib import Path
 from typing import Any
 
@@ -94,17 +95,25 @@ def read_recipe_spectra(recipe: Recipe, files: list[str] | None = None) -> Spect
 
 def read_recipe_reference(recipe: Recipe, file: str | None = None) -> ReferenceTable:
     """Read the recipe's table of reference values, or another file in the way the recipe says."""
+    path = Path(recipe.folder) / (file or recipe.reference.file)
+    return reference_read_as(recipe, path, analytes_of(recipe), sheet=recipe.reference.sheet)
+
+
+def reference_read_as(
+    recipe: Recipe, path: Path, columns: Sequence[ColumnOf], *, sheet: str | None = None
+) -> ReferenceTable:
+    """Read reference values of some analytes from any table in the way the recipe says."""
     table = recipe.reference
     return read_reference(
-        Path(recipe.folder) / (file or table.file),
-        analytes_of(recipe),
+        path,
+        columns,
         sample_column=table.sample_column,
         separator=table.separator,
         decimal=table.decimal,
         replicates=table.replicates,
         date_column=table.date_column,
         date_order=table.date_order,
-        sheet=table.sheet,
+        sheet=sheet,
     )
 
 

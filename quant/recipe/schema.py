@@ -10,7 +10,7 @@ from quant.recipe.audit_schema import Acceptances, Decisions, UncertaintyTable, 
 from quant.recipe.chemistry_schema import Chemistries, check_chemistry
 from quant.recipe.reference_schema import AnalyteTable, ReferenceSection
 from quant.recipe.regression_schema import RegressionTable, check_regression
-from quant.recipe.revalidation_schema import Revalidations, check_revalidation
+from quant.recipe.revalidation_schema import Revalidations
 from quant.recipe.screen_schema import ScreenTable
 from quant.recipe.table import DEFAULTS, Positive, Table, Text
 
@@ -171,7 +171,7 @@ class Recipe(Table):
         check_analytes("decision", self.decision, names)
         check_regression(self.regression, names, [str(table.get("step")) for table in self.preprocessing])
         check_chemistry(self.chemistry, names)
-        check_revalidation(self.revalidation, names)
+        check_analytes("revalidation", self.revalidation, names)
         return self
 
     _folder: str = PrivateAttr(default=".")

@@ -12,6 +12,11 @@ Positive = Annotated[int, Field(ge=1)]
 Text = Annotated[str, Field(min_length=1)]
 
 
+def as_list(value: Any) -> Any:
+    """Return one table as a list of one; for keys that take [table] and [[table]]."""
+    return [value] if isinstance(value, dict) else value
+
+
 class Table(BaseModel):
     """A table of a recipe: unknown keys and wrong types are errors."""
 

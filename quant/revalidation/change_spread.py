@@ -68,11 +68,10 @@ def spreads(
             continue
         places = [ground.kinds.index(part) for part in parts]
         then, now = (each[:, places] * np.array(list(parts.values())) for each in sizes)
-        sd = [float(np.sqrt(columns.var(axis=0, ddof=1).sum())) for columns in (then, now)]
-        grown = sizes[1][:, places].var(axis=0, ddof=1) - sizes[0][:, places].var(axis=0, ddof=1)
-        error = float(
-            np.hypot(sd[0], sd[1]) / np.sqrt(2.0 * (len(before) - 1))
-        )  # of two standard deviations of n values
-        added = dict(zip(parts, grown.tolist(), strict=True))
-        found.append(Spread(kind, sd[0], sd[1], error, spread_p(then, now), added))
+        before_sd, after_sd = (float(np.sqrt(columns.var(axis=0, ddof=1).sum())) for columns in (then, now))
+        variances = [each[:, places].var(axis=0, ddof=1) for each in sizes]
+        added = dict(zip(parts, (variances[1] - variances[0]).tolist(), strict=True))
+        # Of two standard deviations of n values.
+        error = float(np.hypot(before_sd, after_sd) / np.sqrt(2.0 * (len(before) - 1)))
+        found.append(Spread(kind, before_sd, after_sd, error, spread_p(then, now), added))
     return found

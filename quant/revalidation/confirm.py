@@ -7,8 +7,9 @@ from quant.errors import ParameterError, SampleMismatchError
 from quant.model.calibration import Calibration, ModelState
 from quant.model.identity import as_ancestor
 from quant.model.lineage import Lineage, took_part
-from quant.revalidation.remedies.apply import PROVISIONAL, apply_remedy
+from quant.revalidation.remedies.apply import NOT_CONFIRMED, PROVISIONAL, apply_remedy
 from quant.revalidation.result import RevalidationResult
+from quant.revalidation.standards import files_among
 
 PROPOSED = "proposed"
 
@@ -59,17 +60,17 @@ def confirm_model(result: RevalidationResult) -> Calibration:
         raise ParameterError(f"The model's state is {model.state.name}; only a provisional one is confirmed.")
     if not result.accepted:
         raise ParameterError(f"The verdict is: {result.verdict}; a model is confirmed only when it holds.")
-    known = {source.sha256 for source in (*own.made_from, *model.training)}
-    again = [sample for sample in result.sample_ids if sample in took_part(own)]
-    if len(standards.after_spectra.sources) >= len(standards):  # not one table of many samples
-        again += [source.name for source in standards.after_spectra.sources if source.sha256 in known]
+    made_it = took_part(own)
+    again = [sample for sample in result.sample_ids if sample in made_it]
+    again += files_among(standards.after_spectra, (*own.made_from, *model.training))
     if again:
         raise SampleMismatchError(
             f"{name_some(again)} had a part in making the model; expected standards that had none. Measure others."
         )
+    why = model.state.why.removesuffix(NOT_CONFIRMED)
     state = ModelState(
         name=lifted,
-        why=f"{model.state.why.partition('; not yet')[0]}; confirmed by {len(result.sample_ids)} independent standards",
+        why=f"{why}; confirmed by {len(result.sample_ids)} independent standards",
     )
     return replace(
         model,

@@ -3,10 +3,7 @@
 import numpy as np
 
 from quant.model.calibration import Calibration
-from quant.revalidation.change_pairs import used_points
-from quant.revalidation.point_noise import noise_of
 from quant.revalidation.standards import Standards
-from quant.spectra.sample_set import mean_by_sample
 
 DRAWS = 100  # of noise: the standard deviation they give is good to 7 %
 SEED = 20260302
@@ -30,19 +27,12 @@ def added_by_noise(standards: Standards, model: Calibration) -> float:
     float
         [(unit of the analyte)²]
     """
-    if standards.before_spectra is None or standards.before_index is None:
+    if not standards.paired:
         return 0.0
-    axis, used = model.axis.values, used_points(standards.model)
-    levels = []
-    for spectra, index in (
-        (standards.before_spectra.values, standards.before_index),
-        (standards.after_spectra.values, standards.after_index),
-    ):
-        variance = mean_by_sample(noise_of(spectra, axis, used)[:, None] ** 2, index, len(standards))[:, 0]
-        levels.append(float(np.mean(variance / np.bincount(index, minlength=len(standards)))))
-    size = np.sqrt(max(levels))
+    before, after = standards.noise_variances
+    size = np.sqrt(max(before, after))
     if size == 0:
         return 0.0
-    draws = np.random.default_rng(SEED).standard_normal((DRAWS, axis.size))
+    draws = np.random.default_rng(SEED).standard_normal((DRAWS, len(model.axis)))
     predicted = model.predict_values(standards.after_raw.mean(axis=0) + size * draws)
-    return float(predicted.var(ddof=1) / size**2 * (levels[1] - levels[0]))
+    return float(predicted.var(ddof=1) / size**2 * (after - before))

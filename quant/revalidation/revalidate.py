@@ -22,7 +22,14 @@ from quant.revalidation.reasons import reasons
 from quant.revalidation.remedies.apply import PROVISIONAL
 from quant.revalidation.remedies.judge import judge_remedies
 from quant.revalidation.result import BY_HAND, RevalidationResult
-from quant.revalidation.standards import Standards, calibration_samples, gather, not_applicable, training_of
+from quant.revalidation.standards import (
+    Standards,
+    calibration_samples,
+    files_among,
+    gather,
+    not_applicable,
+    training_of,
+)
 from quant.revalidation.standards_state import standards_evidence
 from quant.revalidation.verdict import CANNOT_DECIDE, HOLDS, REBUILD, Facts, Rule, decide
 from quant.spectra.concentration import refuse_other_scale
@@ -166,9 +173,8 @@ def _samples(model: Calibration, after: SpectraSet, before: SpectraSet | None, r
     analyte, values = samples.analyte(model.analyte.name)
     refuse_other_scale(model.analyte, analyte)
     known = np.isfinite(values)
-    training = {source.sha256 for source in model.training}
-    again = [source.name for source in after.sources if source.sha256 in training]
-    if again and len(after.sources) >= len(set(after.sample_ids)):  # not one table of many samples
+    again = files_among(after, model.training)
+    if again:
         raise SampleMismatchError(
             f"The calibration was made from {name_some(again)}; expected spectra measured after the visit. Check which "
             "files were named."
@@ -190,14 +196,14 @@ def _reasons(
     outside: int,
     note: str,
 ) -> tuple[str, ...]:
-    model = standards.model
+    model, made_it = standards.model, took_part(standards.model.lineage)
     return reasons(
         rule,
         facts,
         power,
         changes,
         outside=outside,
-        known=[sample for sample in standards.sample_ids if sample in took_part(model.lineage)],
+        known=[sample for sample in standards.sample_ids if sample in made_it],
         film_failed=evidence.film is not None and not evidence.film.passed,
         unit=model.analyte.printed_unit,
         note=note,

@@ -1,5 +1,6 @@
 """The check standards as remedies and judgements see them: one row a standard, before and after."""
 
+from collections.abc import Iterable
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -14,6 +15,9 @@ from quant.prediction.applicability import NOT_APPLICABLE, check_acquisition, ju
 from quant.prediction.predict import Evaluation, evaluate
 from quant.recipe.load import load_samples, load_validation_samples
 from quant.recipe.schema import Recipe
+from quant.revalidation.change_pairs import used_points
+from quant.revalidation.point_noise import noise_of
+from quant.spectra.provenance import Source
 from quant.spectra.sample_set import SampleSet, mean_by_sample
 from quant.spectra.spectra_set import SpectraSet
 
@@ -113,6 +117,18 @@ class Standards:
         sd = replicate_sd * float(np.sqrt(np.mean(1 / counts[0] + 1 / counts[1])))
         return sd, "replicate spectra of the calibration, before and after"
 
+    @cached_property
+    def noise_variances(self) -> tuple[float, float]:
+        """Noise variance of the standards' mean spectra before and after, mean over standards. [ordinate²]"""
+        assert self.before_spectra is not None
+        assert self.before_index is not None
+        axis, used = self.model.axis.values, used_points(self.model)
+        found = []
+        for spectra, index in ((self.before_spectra, self.before_index), (self.after_spectra, self.after_index)):
+            variance = mean_by_sample(noise_of(spectra.values, axis, used)[:, None] ** 2, index, len(self))[:, 0]
+            found.append(float(np.mean(variance / np.bincount(index, minlength=len(self)))))
+        return found[0], found[1]
+
     @property
     def validated_sep(self) -> float:
         """SEP before any service. [unit of the analyte]"""
@@ -158,6 +174,14 @@ def not_applicable(model: Calibration, found: Evaluation) -> int:
         for r, h, s in zip(found.residual, found.leverage, found.standard_error, strict=True)
     ]
     return verdicts.count(NOT_APPLICABLE)
+
+
+def files_among(spectra: SpectraSet, sources: Iterable[Source]) -> list[str]:
+    """Return the names of the spectra's files that are among others; none of a table that holds many samples."""
+    known = {source.sha256 for source in sources}
+    if len(spectra.sources) < len(set(spectra.sample_ids)):
+        return []
+    return [source.name for source in spectra.sources if source.sha256 in known]
 
 
 def gather(

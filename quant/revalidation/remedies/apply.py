@@ -14,6 +14,7 @@ from quant.revalidation.standards import Standards
 from quant.spectra.provenance import Source
 
 PROVISIONAL = "provisional"
+NOT_CONFIRMED = "; not yet confirmed by independent standards"
 NO_LEFT_OUT = "the model was corrected after a service visit; the left-out models are those of its parent"
 WARN = 0.95  # share of good samples inside a warning limit, as in a calibration
 
@@ -62,7 +63,7 @@ def apply_remedy(
         uncertainty=replace(parent.uncertainty, s0=max(parent.uncertainty.s0, s0)),
         test_predictions=fitted.predict_values(fitted.test_spectra),
         figures={**parent.figures, "left-out RMSE of check standards": entry.row.rmse_reference or 0.0},
-        state=ModelState(name=PROVISIONAL, why=f"{remedy.words}{caution}; not yet confirmed by independent standards"),
+        state=ModelState(name=PROVISIONAL, why=f"{remedy.words}{caution}{NOT_CONFIRMED}"),
         left_out=None,
         left_out_note=NO_LEFT_OUT,
         lineage=Lineage(
